@@ -1,0 +1,135 @@
+import type { Detector } from './detector';
+import type { DialValues } from './dial';
+import type { Layout } from './layout';
+import type { Outcome } from './outcome';
+import type { StudyOutput } from './output';
+import type { Plane } from './plane';
+import type { StudyId } from './study';
+
+/**
+ * The part of `Blob` the engine uses: a browser File fits, and so does a file handle wrapped for Node.
+ * `shared` knows neither.
+ */
+export interface SliceableBytes {
+  readonly size: number;
+  slice(start: number, end: number): { arrayBuffer(): Promise<ArrayBuffer> };
+}
+
+/** Where bytes come from. Exactly one of `file` (browser) and `path` (Node) is set. */
+export interface SourceRef {
+  name: string;
+  size: number;
+  file?: SliceableBytes;
+  path?: string;
+}
+
+export interface RunInput {
+  source: SourceRef;
+  layout: Layout;
+  detector: Detector;
+  plane: Plane | null;
+}
+
+export interface RunRequest {
+  jobId: string;
+  study: StudyId;
+  inputs: Record<string, RunInput>;
+  dials: DialValues;
+  seed: number;
+}
+
+export interface InputProvenance {
+  name: string;
+  fileName: string;
+  sha256: string;
+  bytes: number;
+  layout: Layout;
+  detector: Detector;
+  plane: Plane | null;
+}
+
+export interface RunResult {
+  output: StudyOutput;
+  provenance: {
+    inputs: InputProvenance[];
+    dials: DialValues;
+    engine: string;
+    seed: number;
+    startedAt: string;
+    seconds: number;
+  };
+}
+
+export type RunEvent =
+  | {
+      kind: 'progress';
+      jobId: string;
+      /** What is going on, in words: "near: finding the delay", "near: reading". */
+      stage: string;
+      bytesDone: number;
+      bytesTotal: number;
+      recordsDone: number;
+      recordsPerSecond: number;
+      secondsLeft: number | null;
+    }
+  /** A look at the accumulators while they fill: same shape as the final output, fewer bootstrap resamples. */
+  | { kind: 'partial'; jobId: string; output: StudyOutput; fraction: number };
+
+/** What the bytes of a file look like, before any study. */
+export interface Inspection {
+  fileName: string;
+  bytes: number;
+  /** Proposed layout, null when nothing fits and the person must describe the bytes. */
+  layout: Layout | null;
+  /** Why this layout: one sentence. */
+  because: string;
+  /** What looks wrong, in sentences. */
+  warnings: string[];
+  /** Which reader reads it ("jsfive", "h5wasm", "records"). */
+  reader: string;
+  facts: InspectionFacts;
+  /** Every dataset of an HDF5 file, so that the person can point elsewhere. */
+  datasets: DatasetFact[];
+}
+
+export interface DatasetFact {
+  path: string;
+  shape: number[];
+  /** "uint64", "int16", "float32", "compound{time:uint64,channel:uint16}". */
+  type: string;
+  /** Compound member names, else empty. */
+  fields: string[];
+}
+
+export type InspectionFacts =
+  | {
+      kind: 'tags';
+      records: number;
+      /** First tags decoded: absolute tick as decimal text (may pass 2^53) and channel. */
+      first: { tick: string; channel: number }[];
+      /** Over the sampled part. */
+      channels: { channel: number; count: number }[];
+      sampled: number;
+      /** Span of the sampled part, seconds. */
+      sampledSeconds: number;
+    }
+  | {
+      kind: 'frames';
+      frames: number;
+      width: number;
+      height: number;
+      type: string;
+      mean: number;
+      max: number;
+      sampled: number;
+    }
+  | { kind: 'none' };
+
+/** Told by comlink proxy in the page and by a plain function in Node. */
+export type OnRunEvent = (event: RunEvent) => void | Promise<void>;
+
+export interface Engine {
+  inspect(source: SourceRef, layout: Layout | null): Promise<Outcome<Inspection>>;
+  run(request: RunRequest, onEvent: OnRunEvent): Promise<Outcome<RunResult>>;
+  cancel(jobId: string): Promise<void>;
+}

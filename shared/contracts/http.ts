@@ -1,0 +1,115 @@
+import { z } from '../util/zod';
+import { presetSchema } from './preset';
+import { resultFileSchema } from './result';
+
+/** Bodies of the JSON API under /api. Everything is inside one group: /api/groups/:groupId/... */
+
+export const roles = ['lead', 'analyst', 'runner', 'guest'] as const;
+export type Role = (typeof roles)[number];
+
+export const errorBodySchema = z.object({
+  error: z.object({ code: z.string(), message: z.string(), place: z.string().nullable().default(null) }),
+});
+export type ErrorBody = z.infer<typeof errorBodySchema>;
+
+/** GET /api/me */
+export const meSchema = z.object({
+  user: z.object({ id: z.string(), name: z.string(), email: z.string() }),
+  groups: z.array(z.object({ id: z.string(), name: z.string(), role: z.enum(roles) })),
+});
+export type Me = z.infer<typeof meSchema>;
+
+/** GET /api/server (open): what the sign-in page needs to know. */
+export const serverInfoSchema = z.object({
+  version: z.string(),
+  /** Present only on loopback with the demo group. */
+  demo: z.object({ email: z.string(), password: z.string() }).nullable(),
+});
+export type ServerInfo = z.infer<typeof serverInfoSchema>;
+
+/** GET /api/samples, GET /api/samples/:file (signed in). */
+export const sampleSchema = z.object({
+  file: z.string(),
+  bytes: z.number(),
+  sha256: z.string(),
+  /** What it shows, one sentence. */
+  shows: z.string(),
+});
+export const samplesSchema = z.object({
+  scenario: z.string(),
+  files: z.array(sampleSchema),
+  /** Presets with the files their inputs take, so that one click opens and runs them. */
+  presets: z.array(z.object({ preset: presetSchema, files: z.record(z.string(), z.string()) })),
+});
+export type Samples = z.infer<typeof samplesSchema>;
+
+const stamp = { id: z.string(), createdAt: z.string(), updatedAt: z.string(), by: z.string() };
+
+export const presetRowSchema = z.object({
+  ...stamp,
+  name: z.string(),
+  study: z.string(),
+  version: z.int(),
+  preset: presetSchema,
+});
+export const presetListSchema = z.object({ presets: z.array(presetRowSchema) });
+/** POST /presets, and POST /presets/:id for a new version. */
+export const presetWriteSchema = z.strictObject({ preset: presetSchema });
+export type PresetRow = z.infer<typeof presetRowSchema>;
+
+/** A session: state of the bench. Files are named by fingerprint; their bytes never leave the machine. */
+export const benchStateSchema = z.strictObject({
+  version: z.literal(1),
+  study: z.string().max(80),
+  preset: presetSchema,
+  /** Which acquisition serves which input. */
+  shelf: z
+    .array(
+      z.strictObject({
+        name: z.string().max(400),
+        bytes: z.int().min(0),
+        sha256: z.string().max(64).nullable(),
+        input: z.string().max(80).nullable(),
+        /** Sample file name when it came with Gemel, so that it reopens by itself. */
+        sample: z.string().max(200).nullable(),
+      }),
+    )
+    .max(50),
+  seed: z.int(),
+  resultId: z.string().nullable(),
+});
+export type BenchState = z.infer<typeof benchStateSchema>;
+export const sessionWriteSchema = z.strictObject({
+  name: z.string().min(1).max(200),
+  state: benchStateSchema,
+});
+export const sessionRowSchema = z.object({ ...stamp, name: z.string(), state: benchStateSchema });
+export const sessionListSchema = z.object({
+  sessions: z.array(z.object({ ...stamp, name: z.string(), study: z.string() })),
+});
+export type SessionRow = z.infer<typeof sessionRowSchema>;
+
+/** POST /results: maps inline. */
+export const resultWriteSchema = z.strictObject({
+  name: z.string().min(1).max(200),
+  result: resultFileSchema,
+});
+export const resultSummarySchema = z.object({
+  ...stamp,
+  name: z.string(),
+  study: z.string(),
+  /** Headline: up to three quantities. */
+  headline: z.array(
+    z.object({ id: z.string(), value: z.number(), sigma: z.number().nullable(), unit: z.string() }),
+  ),
+});
+export type ResultSummary = z.infer<typeof resultSummarySchema>;
+export const resultListSchema = z.object({ results: z.array(resultSummarySchema) });
+/** GET /results/:id: maps as { file: "/api/groups/G/maps/<sha256>" } addresses of the packed arrays. */
+export const resultRowSchema = z.object({
+  ...stamp,
+  name: z.string(),
+  study: z.string(),
+  result: resultFileSchema,
+});
+export type ResultRow = z.infer<typeof resultRowSchema>;

@@ -1,0 +1,81 @@
+/**
+ * Seeded random numbers: xoshiro128** (Blackman & Vigna, ACM Trans. Math. Softw. 47, 36 (2021)), seeded through
+ * splitmix32. Same seed, same numbers on every platform; samples, bootstrap and tests depend on that.
+ */
+export interface Random {
+  /** Uniform on [0, 1), 53 bits. */
+  uniform(): number;
+  /** Whole number on [0, n). */
+  below(n: number): number;
+  /** Standard normal. */
+  normal(): number;
+  /** Exponential with mean 1. */
+  exponential(): number;
+  /** Poisson with the given mean. */
+  poisson(mean: number): number;
+}
+
+export function createRandom(seed: number): Random {
+  let mix = seed >>> 0;
+  const splitmix = (): number => {
+    mix = (mix + 0x9e3779b9) >>> 0;
+    let z = mix;
+    z = Math.imul(z ^ (z >>> 16), 0x85ebca6b);
+    z = Math.imul(z ^ (z >>> 13), 0xc2b2ae35);
+    return (z ^ (z >>> 16)) >>> 0;
+  };
+  let s0 = splitmix();
+  let s1 = splitmix();
+  let s2 = splitmix();
+  let s3 = splitmix();
+  const rotl = (x: number, k: number): number => ((x << k) | (x >>> (32 - k))) >>> 0;
+  const next = (): number => {
+    const result = Math.imul(rotl(Math.imul(s1, 5) >>> 0, 7), 9) >>> 0;
+    const t = (s1 << 9) >>> 0;
+    s2 = (s2 ^ s0) >>> 0;
+    s3 = (s3 ^ s1) >>> 0;
+    s1 = (s1 ^ s2) >>> 0;
+    s0 = (s0 ^ s3) >>> 0;
+    s2 = (s2 ^ t) >>> 0;
+    s3 = rotl(s3, 11);
+    return result;
+  };
+  let spare = Number.NaN;
+
+  const uniform = (): number => (next() * 2097152 + (next() >>> 11)) / 9007199254740992;
+  const normal = (): number => {
+    if (spare === spare) {
+      const kept = spare;
+      spare = Number.NaN;
+      return kept;
+    }
+    // Box-Muller; 1 - u is never zero.
+    const radius = Math.sqrt(-2 * Math.log(1 - uniform()));
+    const angle = 2 * Math.PI * uniform();
+    spare = radius * Math.sin(angle);
+    return radius * Math.cos(angle);
+  };
+  const exponential = (): number => -Math.log(1 - uniform());
+  const poissonSmall = (mean: number): number => {
+    const limit = Math.exp(-mean);
+    let product = uniform();
+    let count = 0;
+    while (product > limit) {
+      product *= uniform();
+      count += 1;
+    }
+    return count;
+  };
+  const poisson = (mean: number): number => {
+    // A Poisson variable is the sum of Poisson variables, so large means are halved until the product method is exact.
+    if (!(mean > 0)) return 0;
+    let left = mean;
+    let count = 0;
+    while (left > 30) {
+      count += poissonSmall(30);
+      left -= 30;
+    }
+    return count + poissonSmall(left);
+  };
+  return { uniform, below: (n) => Math.floor(uniform() * n), normal, exponential, poisson };
+}
