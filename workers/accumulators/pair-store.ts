@@ -1,0 +1,103 @@
+import type { ArmSpec, PairTally } from '../../shared/contracts/tally';
+import {
+  countCells,
+  countDifference,
+  countMatrix,
+  countSlots,
+  countSum,
+  type PairColumns,
+} from '../kernels/pair-counts';
+import { SliceRing } from './slice-grid';
+
+/** Above this many channel pairs the full matrix is not kept. */
+export const MATRIX_LIMIT = 2 ** 22;
+
+/**
+ * Everything that is counted about the pairs of one window (or of all shifted windows together).
+ * With `enabled` false (no window) nothing but zeros per slice is kept and the other arrays are empty.
+ * Memory: 128 slices of 8 * (wA*wB + hA*hB + nA + nB) bytes, and 8 * nA * nB for the matrix.
+ */
+export class PairStore {
+  readonly #a: ArmSpec;
+  readonly #b: ArmSpec;
+  readonly #rings: Record<'pairs' | 'jointX' | 'jointY' | 'imageB' | 'imageA', SliceRing>;
+  readonly #difference: Float64Array;
+  readonly #sum: Float64Array;
+  readonly #matrix: Float64Array | null;
+
+  constructor(a: ArmSpec, b: ArmSpec, enabled: boolean) {
+    this.#a = a;
+    this.#b = b;
+    const one = enabled ? 1 : 0;
+    const pixelsA = a.width * a.height;
+    const pixelsB = b.width * b.height;
+    this.#rings = {
+      pairs: new SliceRing(1),
+      jointX: new SliceRing(one * a.width * b.width),
+      jointY: new SliceRing(one * a.height * b.height),
+      imageB: new SliceRing(one * pixelsB),
+      imageA: new SliceRing(one * pixelsA),
+    };
+    const lags = one * (a.width + b.width - 1) * (a.height + b.height - 1);
+    this.#difference = new Float64Array(lags);
+    this.#sum = new Float64Array(lags);
+    this.#matrix = enabled && pixelsA * pixelsB <= MATRIX_LIMIT ? new Float64Array(pixelsA * pixelsB) : null;
+  }
+
+  add(pairs: PairColumns, count: number): void {
+    if (count === 0) return;
+    const { slot, xA, yA, xB, yB } = pairs;
+    const { width: widthA, height: heightA } = this.#a;
+    const { width: widthB } = this.#b;
+    const { pairs: perSlice, jointX, jointY, imageB, imageA } = this.#rings;
+    countSlots(slot, count, perSlice.counts);
+    countCells(slot, xB, xA, count, widthA, jointX.cells, jointX.counts);
+    countCells(slot, yB, yA, count, heightA, jointY.cells, jointY.counts);
+    countCells(slot, yB, xB, count, widthB, imageB.cells, imageB.counts);
+    countCells(slot, yA, xA, count, widthA, imageA.cells, imageA.counts);
+    countDifference(pairs, count, widthA, heightA, widthB, this.#difference);
+    countSum(pairs, count, widthA, widthB, this.#sum);
+    if (this.#matrix !== null) countMatrix(pairs, count, widthA * heightA, this.#matrix);
+  }
+
+  fold(doublings: number, first: number, count: number): void {
+    for (const ring of Object.values(this.#rings)) ring.fold(doublings, first, count);
+  }
+
+  addStore(other: PairStore, doublings: number, first: number, count: number): void {
+    for (const name of ringNames) this.#rings[name].addRing(other.#rings[name], doublings, first, count);
+    this.#addTotals(other.#difference, other.#sum, other.#matrix);
+  }
+
+  addTally(tally: PairTally, first: number, count: number): void {
+    for (const name of ringNames) this.#rings[name].addDense(tally[name], first, count);
+    this.#addTotals(tally.difference, tally.sum, tally.matrix);
+  }
+
+  tally(first: number, count: number): PairTally {
+    const { pairs, jointX, jointY, imageB, imageA } = this.#rings;
+    return {
+      pairs: pairs.toDense(first, count),
+      jointX: jointX.toDense(first, count),
+      jointY: jointY.toDense(first, count),
+      imageB: imageB.toDense(first, count),
+      imageA: imageA.toDense(first, count),
+      difference: this.#difference.slice(),
+      sum: this.#sum.slice(),
+      matrix: this.#matrix?.slice() ?? null,
+    };
+  }
+
+  #addTotals(difference: Float64Array, sum: Float64Array, matrix: Float64Array | null): void {
+    addInto(this.#difference, difference);
+    addInto(this.#sum, sum);
+    if (this.#matrix !== null && matrix !== null) addInto(this.#matrix, matrix);
+  }
+}
+
+const ringNames = ['pairs', 'jointX', 'jointY', 'imageB', 'imageA'] as const;
+
+/** to[i] += from[i] over the length of `to`. */
+export function addInto(to: Float64Array, from: Float64Array): void {
+  for (let i = 0; i < to.length; i++) to[i]! += from[i]!;
+}

@@ -1,0 +1,123 @@
+/**
+ * The slices of time that serve as bootstrap blocks: 2^bits ticks each, counted from tick 0 of the acquisition. The
+ * length doubles as the run grows, so that the span of tags needs at most 128. It depends on the first and last tag
+ * alone, so any chunking and any split end with the same slices.
+ */
+export const SLICE_LIMIT = 128;
+const SLOT_MASK = SLICE_LIMIT - 1;
+/** The shortest slice is the smallest power of two ticks that lasts at least 10 us. */
+const SHORTEST_SLICE_FS = 1e10;
+
+export class SliceGrid {
+  bits: number;
+  firstTick: bigint | null = null;
+  lastTick: bigint | null = null;
+
+  constructor(tickFs: number) {
+    this.bits = Math.max(0, Math.ceil(Math.log2(SHORTEST_SLICE_FS / tickFs)));
+    // log2 may round either way at an exact power of two.
+    while (this.bits > 0 && 2 ** (this.bits - 1) * tickFs >= SHORTEST_SLICE_FS) this.bits -= 1;
+    while (2 ** this.bits * tickFs < SHORTEST_SLICE_FS) this.bits += 1;
+  }
+
+  get sliceTick(): number {
+    return 2 ** this.bits;
+  }
+
+  /** Absolute index of the first slice in use, 0 when there is none. Shifting a bigint floors, also below tick 0. */
+  get first(): number {
+    return this.firstTick === null ? 0 : Number(this.firstTick >> BigInt(this.bits));
+  }
+
+  get count(): number {
+    if (this.lastTick === null) return 0;
+    return Number(this.lastTick >> BigInt(this.bits)) - this.first + 1;
+  }
+
+  /** Grows to hold both ticks. Returns how many times the length doubled: rings must be folded by as much. */
+  cover(fromTick: bigint, toTick: bigint): number {
+    const before = this.bits;
+    if (this.firstTick === null || fromTick < this.firstTick) this.firstTick = fromTick;
+    if (this.lastTick === null || toTick > this.lastTick) this.lastTick = toTick;
+    while (this.count > SLICE_LIMIT) this.bits += 1;
+    return this.bits - before;
+  }
+
+  /** How to find the ring slot of a time given in ticks after `refTick`; good until the next `cover`. */
+  clockAt(refTick: bigint): SlotClock {
+    const bits = BigInt(this.bits);
+    const slice = refTick >> bits;
+    return {
+      slot: Number(slice & BigInt(SLOT_MASK)),
+      offsetTick: Number(refTick - (slice << bits)),
+      perTick: 2 ** -this.bits,
+    };
+  }
+}
+
+export interface SlotClock {
+  slot: number;
+  offsetTick: number;
+  /** 1 / sliceTick, a power of two: multiplying by it is exact. */
+  perTick: number;
+}
+
+export function slotOf(clock: SlotClock, time: number): number {
+  return (clock.slot + Math.floor((time + clock.offsetTick) * clock.perTick)) & SLOT_MASK;
+}
+
+/** Slot of an absolute slice index. Bit operators keep the low bits of any whole number below 2^53, also negative. */
+function slotOfSlice(slice: number): number {
+  return slice & SLOT_MASK;
+}
+
+/**
+ * `cells` counters for each slice in use. At most 128 slices in a row are in use, so the slot is the absolute index
+ * modulo 128 and nothing moves as the run grows at either end.
+ */
+export class SliceRing {
+  readonly cells: number;
+  counts: Float64Array;
+
+  constructor(cells: number) {
+    this.cells = cells;
+    this.counts = new Float64Array(cells * SLICE_LIMIT);
+  }
+
+  /** Joins slices after the length doubled `doublings` times; [first, first + count) were in use before. */
+  fold(doublings: number, first: number, count: number): void {
+    if (doublings === 0 || count === 0 || this.cells === 0) return;
+    const before = this.counts;
+    this.counts = new Float64Array(before.length);
+    for (let slice = first; slice < first + count; slice++) {
+      this.#addSlot(Math.floor(slice / 2 ** doublings), before, slotOfSlice(slice) * this.cells);
+    }
+  }
+
+  /** Adds another ring whose slices are shorter by `doublings` doublings. */
+  addRing(other: SliceRing, doublings: number, first: number, count: number): void {
+    for (let slice = first; slice < first + count; slice++) {
+      this.#addSlot(Math.floor(slice / 2 ** doublings), other.counts, slotOfSlice(slice) * this.cells);
+    }
+  }
+
+  /** Adds `count` slices in order of time, as `toDense` gives them. */
+  addDense(dense: Float64Array, first: number, count: number): void {
+    for (let i = 0; i < count; i++) this.#addSlot(first + i, dense, i * this.cells);
+  }
+
+  /** A copy in order of time, [slice][cell]. */
+  toDense(first: number, count: number): Float64Array {
+    const dense = new Float64Array(count * this.cells);
+    for (let i = 0; i < count; i++) {
+      const from = slotOfSlice(first + i) * this.cells;
+      dense.set(this.counts.subarray(from, from + this.cells), i * this.cells);
+    }
+    return dense;
+  }
+
+  #addSlot(slice: number, from: Float64Array, fromIndex: number): void {
+    const to = slotOfSlice(slice) * this.cells;
+    for (let i = 0; i < this.cells; i++) this.counts[to + i]! += from[fromIndex + i]!;
+  }
+}
