@@ -44,7 +44,7 @@ export function createRandom(seed: number): Random {
 
   const uniform = (): number => (next() * 2097152 + (next() >>> 11)) / 9007199254740992;
   const normal = (): number => {
-    if (spare === spare) {
+    if (!Number.isNaN(spare)) {
       const kept = spare;
       spare = Number.NaN;
       return kept;
