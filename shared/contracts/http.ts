@@ -43,7 +43,15 @@ export const samplesSchema = z.object({
 });
 export type Samples = z.infer<typeof samplesSchema>;
 
-const stamp = { id: z.string(), createdAt: z.string(), updatedAt: z.string(), by: z.string() };
+const stamp = {
+  id: z.string(),
+  createdAt: z.string(),
+  updatedAt: z.string(),
+  /** Name of the maker, for reading. */
+  by: z.string(),
+  /** Id of the maker, as in GET /api/me, to tell one's own. */
+  byId: z.string().optional(),
+};
 
 export const presetRowSchema = z.object({
   ...stamp,

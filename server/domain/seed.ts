@@ -1,0 +1,65 @@
+import type { Role, ServerInfo } from '../../shared/contracts/http';
+import type { People } from '../data/repositories/people';
+import type { Presets } from '../data/repositories/presets';
+import type { SampleStore } from '../data/sample-store';
+import { readSamples } from './samples';
+
+/** The invented group a new server starts with, and one person for each role. */
+const group = { name: 'Lanternfield pair bench', slug: 'lanternfield' };
+export const demoPeople: readonly { email: string; name: string; role: Role }[] = [
+  { email: 'lead@demo.gemel', name: 'Demo lead', role: 'lead' },
+  { email: 'analyst@demo.gemel', name: 'Demo analyst', role: 'analyst' },
+  { email: 'runner@demo.gemel', name: 'Demo runner', role: 'runner' },
+  { email: 'guest@demo.gemel', name: 'Demo guest', role: 'guest' },
+];
+
+export interface SeedStores {
+  people: People;
+  presets: Presets;
+  samples: SampleStore;
+  hash(password: string): Promise<string>;
+  note(sentence: string): void;
+}
+
+async function ensureGroup(people: People): Promise<string> {
+  const found = await people.groupBySlug(group.slug);
+  return found?.id ?? people.createGroup(group.name, group.slug);
+}
+
+/** On loopback: the demo people can sign in with this password. May run at every start. */
+export async function openDemo(stores: SeedStores, password: string): Promise<ServerInfo['demo']> {
+  const groupId = await ensureGroup(stores.people);
+  const passwordHash = await stores.hash(password);
+  let leadId = '';
+  for (const person of demoPeople) {
+    const id = await stores.people.admit({ ...person, passwordHash, groupId });
+    if (person.role === 'lead') leadId = id;
+  }
+  await seedPresets(stores, groupId, leadId);
+  return { email: demoPeople[0]!.email, password };
+}
+
+/** Elsewhere: nobody can sign in as a demo person, even on a data directory that once had the demo open. */
+export async function closeDemo(people: People): Promise<void> {
+  await people.lockOut(demoPeople.map((person) => person.email));
+}
+
+/** First start of a server others can reach: one lead, with a password that is shown once. */
+export async function admitFirstLead(stores: SeedStores, email: string, password: string): Promise<void> {
+  const groupId = await ensureGroup(stores.people);
+  const passwordHash = await stores.hash(password);
+  const id = await stores.people.admit({ email, name: email, role: 'lead', passwordHash, groupId });
+  await seedPresets(stores, groupId, id);
+}
+
+/** Presets of the samples, once: presets cannot be deleted, so none means they were never stored. */
+async function seedPresets(stores: SeedStores, groupId: string, madeBy: string): Promise<void> {
+  if ((await stores.presets.countIn(groupId)) > 0) return;
+  const { presets, files } = await readSamples(stores.samples);
+  if (files.length === 0) {
+    stores.note('There are no samples (samples/manifest.json is missing), so no presets were stored.');
+    return;
+  }
+  // Lists show the newest first; stored backwards they keep the order of the manifest.
+  for (const { preset } of [...presets].reverse()) await stores.presets.insert(groupId, madeBy, preset);
+}
