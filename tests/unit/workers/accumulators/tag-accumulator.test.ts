@@ -78,7 +78,7 @@ const cases: fc.Arbitrary<Case> = fc
           back: fc.nat(50),
           channel: fc.constantFrom(0, 1, 2, 3, 4, 5, 10, 11, 12, 13, 14, 15, 16, 17, 99),
         }),
-        { maxLength: 90 },
+        { maxLength: 90, size: 'max' },
       ),
     }),
   )
