@@ -19,7 +19,8 @@ function toSummary(record: SessionSummaryRecord): SessionSummary {
 }
 
 function toRow(record: SessionRecord): SessionRow {
-  return { ...toSummary(record), state: record.state };
+  const { study: _study, ...stamp } = toSummary(record);
+  return { ...stamp, state: record.state };
 }
 
 export async function listSessions(sessions: Sessions, member: Member): Promise<SessionSummary[]> {

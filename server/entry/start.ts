@@ -79,7 +79,8 @@ async function openStore(
   }
 }
 
-async function assemble(
+/** Everything the app stands on, over an open database; also what the tests run on. */
+export async function assemble(
   config: Config,
   place: Place,
   secrets: Secrets,
