@@ -1,0 +1,34 @@
+import type { Block } from '../../shared/contracts/blocks';
+import type { Tally, TallySpec } from '../../shared/contracts/tally';
+import { Problem } from '../../shared/errors/problem';
+import { createFrameAccumulator, type FramePart, frameAccumulatorFromPart } from './frame-accumulator';
+import { createTagAccumulator, type TagPart, tagAccumulatorFromPart } from './tag-accumulator';
+
+export type Part = TagPart | FramePart;
+
+/**
+ * What all accumulators have in common: they take blocks in any chunking, merge with the range that follows, and can
+ * be looked at while they fill.
+ */
+export interface Accumulator {
+  readonly kind: Tally['kind'];
+  /** @throws Problem `bad-input` for a block of the other kind. */
+  push(block: Block): void;
+  /** `next` is the later range of the same acquisition; it stays usable. */
+  merge(next: Accumulator): void;
+  /** A copy of what has been counted so far. */
+  tally(): Tally;
+  /** A copy as plain data: structured-clone-able, its buffers (`transferablesOf`) transferable. */
+  toPart(): Part;
+}
+
+export function createAccumulator(spec: TallySpec): Accumulator {
+  return spec.kind === 'tags' ? createTagAccumulator(spec) : createFrameAccumulator(spec);
+}
+
+/** @throws Problem when the part is newer than this engine or does not belong to the specification. */
+export function accumulatorFromPart(spec: TallySpec, part: Part): Accumulator {
+  if (spec.kind === 'tags' && part.kind === 'tags') return tagAccumulatorFromPart(spec, part);
+  if (spec.kind === 'frames' && part.kind === 'frames') return frameAccumulatorFromPart(spec, part);
+  throw new Problem('bad-input', `A part of ${spec.kind} was expected, one of ${part.kind} was found.`);
+}
