@@ -1,8 +1,10 @@
 import type { Block } from '../../shared/contracts/blocks';
 import type { Tally, TallySpec } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
-import { createFrameAccumulator, type FramePart, frameAccumulatorFromPart } from './frame-accumulator';
-import { createTagAccumulator, type TagPart, tagAccumulatorFromPart } from './tag-accumulator';
+import { createFrameAccumulator, frameAccumulatorFromPart } from './frame-accumulator';
+import type { FramePart } from './frame-part';
+import { createTagAccumulator, tagAccumulatorFromPart } from './tag-accumulator';
+import type { TagPart } from './tag-part';
 
 export type Part = TagPart | FramePart;
 

@@ -3,41 +3,8 @@ import type { FrameSpec, FrameTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
 import { FrameSpectra } from '../kernels/frame-spectra';
 import { addDiagonal, addOuter, projectFrame, subtract, takeFrame } from '../kernels/frame-sums';
+import { assertFramePart, type BlockSums, type FramePart, type Segment } from './frame-part';
 import { addInto } from './pair-store';
-
-/** Sums of one bootstrap block: frames l of it, and D_k D_k / 2 of the differences k of it. */
-interface BlockSums {
-  frames: number;
-  total: number;
-  differences: number;
-  plus: Float64Array;
-  minus: Float64Array;
-  diagonal: Float64Array;
-}
-
-/** A gapless stretch of frames: both ends are kept, to close gaps and to correct the totals. */
-interface Segment {
-  first: number;
-  last: number;
-  firstImage: Float64Array;
-  lastImage: Float64Array;
-}
-
-/** Version 1. Only the bootstrap blocks that the range has touched are in it. */
-export interface FramePart {
-  part: 1;
-  kind: 'frames';
-  width: number;
-  height: number;
-  frames: number;
-  blocks: number;
-  sum: Float64Array;
-  sumSquares: Float64Array;
-  jointX: Float64Array;
-  jointY: Float64Array;
-  touched: (BlockSums & { block: number })[];
-  segments: Segment[];
-}
 
 /**
  * Consecutive-frame covariance of one range of frames, as maps. D_k = I_k - I_(k+1) of the unmasked pixels goes to the
@@ -332,24 +299,7 @@ export function createFrameAccumulator(spec: FrameSpec): FrameAccumulator {
 
 /** @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of another stack. */
 export function frameAccumulatorFromPart(spec: FrameSpec, part: FramePart): FrameAccumulator {
-  if (part.part !== 1) {
-    throw new Problem(
-      'newer-version',
-      `A part of version 1 was expected, version ${String(part.part)} was found; use the engine that wrote it.`,
-    );
-  }
-  const fits =
-    part.kind === 'frames' &&
-    part.width === spec.width &&
-    part.height === spec.height &&
-    part.frames === spec.frames &&
-    part.blocks === spec.blocks;
-  if (!fits) {
-    throw new Problem(
-      'bad-input',
-      'The part was summed over another stack or other blocks; use parts of one run.',
-    );
-  }
+  assertFramePart(spec, part);
   const accumulator = new FrameAccumulator(spec);
   accumulator.load(part);
   return accumulator;

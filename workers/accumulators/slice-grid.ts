@@ -66,6 +66,11 @@ export function slotOf(clock: SlotClock, time: number): number {
   return (clock.slot + Math.floor((time + clock.offsetTick) * clock.perTick)) & SLOT_MASK;
 }
 
+/** First time past the slice of `time`, against the same reference. */
+export function sliceEnd(clock: SlotClock, time: number): number {
+  return (Math.floor((time + clock.offsetTick) * clock.perTick) + 1) / clock.perTick - clock.offsetTick;
+}
+
 /** Slot of an absolute slice index. Bit operators keep the low bits of any whole number below 2^53, also negative. */
 function slotOfSlice(slice: number): number {
   return slice & SLOT_MASK;

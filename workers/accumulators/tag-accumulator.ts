@@ -5,7 +5,7 @@ import { TagColumns } from '../kernels/tag-columns';
 import { scanBetween, scanHistogram, scanWindows } from '../kernels/tag-scan';
 import { firstAtLeast, sortTags } from '../kernels/tag-sort';
 import { addInto } from './pair-store';
-import { SliceGrid, SliceRing, slotOf } from './slice-grid';
+import { SliceGrid, SliceRing, sliceEnd, slotOf } from './slice-grid';
 import {
   borderFromPart,
   borderToPart,
@@ -14,22 +14,10 @@ import {
   offerToHead,
   rebaseTail,
   type TagBorder,
-  type TagBorderPart,
 } from './tag-border';
+import { assertTagPart, NO_WINDOW, type TagPart } from './tag-part';
 import { planTags, type TagPlan } from './tag-plan';
 import { WindowCounter } from './window-counter';
-
-/** What the tally says when no window was asked for: an empty one. */
-const NO_WINDOW: NonNullable<TagSpec['window']> = { loTick: 0, hiTick: -1, shiftsTick: [] };
-
-/** Version 1. What one range has counted, plus the tags at its ends that may meet those of its neighbours. */
-export interface TagPart {
-  part: 1;
-  kind: 'tags';
-  tally: TagTally;
-  head: TagBorderPart;
-  tail: TagBorderPart;
-}
 
 /**
  * Counts tags and all pairs of one range of an acquisition. At every moment all pairs among the tags so far are
@@ -231,8 +219,16 @@ export class TagAccumulator {
     const { sitesA } = this.#plan;
     const clock = this.#grid.clockAt(this.#tail.refTick);
     const { counts } = this.#singlesPerSlice;
-    for (let i = start; i < stop; i++)
-      counts[2 * slotOf(clock, time[i]!) + (site[i]! < sitesA ? 0 : 1)]! += 1;
+    for (let low = start; low < stop; ) {
+      const high = firstAtLeast(time, low + 1, stop, sliceEnd(clock, time[low]!));
+      const cell = 2 * slotOf(clock, time[low]!);
+      let ofA = 0;
+      // The sign bit instead of a comparison: arms alternate at random and a branch would be mispredicted.
+      for (let i = low; i < high; i++) ofA += (site[i]! - sitesA) >>> 31;
+      counts[cell]! += ofA;
+      counts[cell + 1]! += high - low - ofA;
+      low = high;
+    }
   }
 
   #pairWithin(start: number, stop: number): void {
@@ -299,40 +295,10 @@ export function createTagAccumulator(spec: TagSpec): TagAccumulator {
   return new TagAccumulator(spec);
 }
 
-/** @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of other arms or histogram. */
+/** @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of other arms or windows. */
 export function tagAccumulatorFromPart(spec: TagSpec, part: TagPart): TagAccumulator {
-  if (part.part !== 1) {
-    throw new Problem(
-      'newer-version',
-      `A part of version 1 was expected, version ${String(part.part)} was found; use the engine that wrote it.`,
-    );
-  }
-  if (!fitsSpec(spec, part)) {
-    throw new Problem(
-      'bad-input',
-      'The part was counted with another detector map or histogram; use parts of one run.',
-    );
-  }
+  assertTagPart(spec, part);
   const accumulator = new TagAccumulator(spec);
   accumulator.load(part);
   return accumulator;
-}
-
-function fitsSpec(spec: TagSpec, part: TagPart): boolean {
-  if (part.kind !== 'tags') return false;
-  const { a, b, histogram, window, tickFs } = part.tally;
-  const { loTick, binTick, bins } = spec.histogram;
-  const wanted = spec.window ?? NO_WINDOW;
-  return (
-    tickFs === spec.tickFs &&
-    a.width === spec.a.width &&
-    a.height === spec.a.height &&
-    b.width === spec.b.width &&
-    b.height === spec.b.height &&
-    histogram.loTick === loTick &&
-    histogram.binTick === binTick &&
-    histogram.counts.length === bins &&
-    [window.loTick, window.hiTick, ...window.shiftsTick].join() ===
-      [wanted.loTick, wanted.hiTick, ...wanted.shiftsTick].join()
-  );
 }

@@ -43,8 +43,11 @@ export function scanHistogram(
   const spanTick = counts.length * binTick;
   const reachA = range.maxTauTick;
   const reachB = -range.minTauTick;
+  const reach = Math.max(reachA, reachB);
   for (let i = start; i < stop; i++) {
     const t = time[i]!;
+    // Most tags have no near neighbour: say so before the branch on the arm, which cannot be predicted.
+    if (i + 1 < stop && time[i + 1]! > t + reach) continue;
     const first = site[i]! < sitesA;
     const limit = t + (first ? reachA : reachB);
     for (let j = i + 1; j < stop; j++) {
@@ -73,9 +76,12 @@ export function scanWindows(
   const spanTick = counts.length * binTick;
   const reachA = range.maxTauTick;
   const reachB = -range.minTauTick;
+  const reach = Math.max(reachA, reachB);
   let filled = 0;
   for (let i = start; i < stop; i++) {
     const t = time[i]!;
+    // As in `scanHistogram`.
+    if (i + 1 < stop && time[i + 1]! > t + reach) continue;
     const s = site[i]!;
     const first = s < sitesA;
     const limit = t + (first ? reachA : reachB);

@@ -5,13 +5,15 @@ import { accumulatorFromPart, createAccumulator } from '../../../../workers/accu
 import {
   createFrameAccumulator,
   type FrameAccumulator,
-  type FramePart,
   frameAccumulatorFromPart,
 } from '../../../../workers/accumulators/frame-accumulator';
+import type { FramePart } from '../../../../workers/accumulators/frame-part';
 import { transferablesOf } from '../../../../workers/accumulators/transferables';
 import { frameBlock, projections, slowCovariance, slowFrameTally } from './frame-twin';
 import { cutRanges, mergeAnyOrder } from './merge-any';
 import { armSpec, tagBlock } from './tag-twin';
+
+fc.configureGlobal({ seed: 1 });
 
 const cases = fc
   .record({

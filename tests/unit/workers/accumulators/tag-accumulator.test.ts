@@ -4,12 +4,14 @@ import type { TagSpec } from '../../../../shared/contracts/tally';
 import {
   createTagAccumulator,
   type TagAccumulator,
-  type TagPart,
   tagAccumulatorFromPart,
 } from '../../../../workers/accumulators/tag-accumulator';
+import type { TagPart } from '../../../../workers/accumulators/tag-part';
 import { transferablesOf } from '../../../../workers/accumulators/transferables';
 import { cutRanges, mergeAnyOrder } from './merge-any';
 import { armSpec, type RawTag, slowTagTally, tagBlock } from './tag-twin';
+
+fc.configureGlobal({ seed: 1 });
 
 /** A tick of 1 ns: the horizon of 5 ms is 5 million ticks. */
 const NS_FS = 1e6;

@@ -11,6 +11,8 @@ import {
 } from '../../../../workers/kernels/tag-scan';
 import { firstAbove, firstAtLeast, sortTags } from '../../../../workers/kernels/tag-sort';
 
+fc.configureGlobal({ seed: 1 });
+
 function columnsOf(tags: { time: number; site: number }[]): TagColumns {
   const columns = new TagColumns(1);
   columns.append(
