@@ -1,0 +1,56 @@
+import { scaleLinear, scaleLog } from '@visx/scale';
+import { decades, formatDecade, tickFormatter } from './format-tick';
+import type { BoundRulerProps } from './types';
+
+export interface RulerAxis {
+  log: boolean;
+  domain: readonly [number, number];
+  x(value: number): number;
+  ticks: readonly number[];
+  /** Unlabelled ticks between the decades. */
+  minor: readonly number[];
+  format(value: number): string;
+}
+
+/** Every number the ruler has to show. */
+function numbersOf({ entries, bounds }: Pick<BoundRulerProps, 'entries' | 'bounds'>): number[] {
+  const values = entries.flatMap((entry) => [entry.value, ...entry.interval]);
+  return [...values, ...bounds.map((bound) => bound.value)].filter(Number.isFinite);
+}
+
+/** Whole decades around the numbers with a little room, two at least. */
+function decadeDomain(numbers: readonly number[]): [number, number] {
+  const lo = Math.floor(Math.log10(Math.min(...numbers) * 0.8));
+  const hi = Math.ceil(Math.log10(Math.max(...numbers) * 1.6));
+  return [10 ** lo, 10 ** Math.max(hi, lo + 2)];
+}
+
+/** One logarithmic axis; a linear one when a number is zero or less (an entropy may be), which a logarithm cannot hold. */
+export function buildRulerAxis(
+  props: Pick<BoundRulerProps, 'entries' | 'bounds'>,
+  left: number,
+  width: number,
+): RulerAxis {
+  const numbers = numbersOf(props);
+  const range = [left, left + width];
+  if (numbers.length > 0 && numbers.every((value) => value > 0)) {
+    const domain = decadeDomain(numbers);
+    const scale = scaleLog<number>({ domain, range });
+    const ticks = decades(...domain);
+    const minor = ticks.slice(0, -1).flatMap((decade) => [2, 3, 4, 5, 6, 7, 8, 9].map((k) => k * decade));
+    return { log: true, domain, x: (value) => scale(value), ticks, minor, format: formatDecade };
+  }
+  const [lo, hi] = numbers.length > 0 ? [Math.min(...numbers), Math.max(...numbers)] : [0, 1];
+  const pad = (hi - lo) * 0.15 || 1;
+  const scale = scaleLinear<number>({ domain: [lo - pad, hi + pad], range, nice: true });
+  const [from = lo, to = hi] = scale.domain();
+  const ticks = scale.ticks(6);
+  return {
+    log: false,
+    domain: [from, to],
+    x: (value) => scale(value),
+    ticks,
+    minor: [],
+    format: tickFormatter(ticks),
+  };
+}
