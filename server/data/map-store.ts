@@ -36,7 +36,7 @@ export function createMapStore(root: string): MapStore {
     async write(bytes) {
       const hash = sha256(bytes);
       // A file already there is kept only if it still holds what its name says.
-      if ((await read(hash)) === null) await writeSynced(pathOf(hash), await pack(bytes));
+      if ((await read(hash)) === null) await writeSynced(pathOf(hash), await pack(bytes, { level: 3 }));
       return { hash, bytes: bytes.byteLength };
     },
     remove: (hash) => rm(pathOf(hash), { force: true }),

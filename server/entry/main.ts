@@ -16,14 +16,15 @@ async function main(): Promise<void> {
     .parse(JSON.parse(readFileSync(`${root}package.json`, 'utf8')));
   const config = parseConfig(process.env, { root, development: import.meta.url.endsWith('.ts') });
   const log = createLog(config.logLevel);
-  const running = await start(config, { root, version: packageFile.version }, log, say);
+  const starting = start(config, { root, version: packageFile.version }, log, say);
 
+  // Also while starting: the database is then opened to its end and closed properly.
   let stopping = false;
   const stop = async (signal: string): Promise<void> => {
     if (stopping) return;
     stopping = true;
     say(`Stopping (${signal}).`);
-    await running.stop();
+    await (await starting).stop();
     process.exit(0);
   };
   for (const signal of ['SIGTERM', 'SIGINT'] as const) {
@@ -35,6 +36,7 @@ async function main(): Promise<void> {
     });
   }
 
+  const running = await starting;
   say(`Gemel ${packageFile.version} is ready at ${config.origin}`);
   if (config.databaseUrl === null) say(`Data: ${config.dataDir}`);
   if (running.demo !== null) {
