@@ -1,6 +1,6 @@
 import { displayUnit, formatInterval, formatPlain, formatQuantity } from '../lib/format-number';
 import { labelRows } from './LineMarks';
-import { buildRulerAxis, type RulerAxis } from './ruler-layout';
+import { fitRulerAxis, type RulerAxis } from './ruler-layout';
 import type { BoundRulerProps, RulerEntry } from './types';
 import { useBox } from './use-box';
 
@@ -17,25 +17,17 @@ export function BoundRuler(props: BoundRulerProps) {
   const { entries, bounds, sentence, assumption, side = 'below', title = null } = props;
   const [hostRef, { width, em }] = useBox<HTMLDivElement>();
   const left = MARGIN.left * em;
-  const axis = buildRulerAxis(props, left, Math.max(1, width - (MARGIN.left + MARGIN.right) * em));
+  const sorted = [...bounds].sort((a, b) => a.value - b.value);
+  const labelWidths = sorted.map((b) => (Math.max(b.name.length, boundText(b).length) + 2) * em * CHAR);
+  const axis = fitRulerAxis(props, { left, width, right: MARGIN.right * em }, sorted, labelWidths);
   const above = entries.filter((entry) => entry.label === 'accidentals removed');
   const below = entries.filter((entry) => entry.label === 'raw');
-  const sorted = [...bounds].sort((a, b) => a.value - b.value);
-  const labels = sorted.map((bound) => ({
-    x: axis.x(bound.value),
-    width: (Math.max(bound.name.length, boundText(bound).length) + 2) * em * CHAR,
-    flip: false,
-  }));
-  // A label that would leave the plot turns to the left of its line.
-  for (const label of labels) {
-    if (label.x + label.width > width) Object.assign(label, { flip: true, x: label.x - label.width });
-  }
-  const rows = labelRows(labels);
+  const rows = labelRows(sorted.map((bound, i) => ({ x: axis.x(bound.value), width: labelWidths[i]! })));
   const boundsHeight = (Math.max(0, ...rows) + 1) * ROW.bound * em;
   const base = Math.round(boundsHeight + (above.length * ROW.entry + 0.5) * em);
   const foot = base + Math.max(1, below.length) * ROW.entry * em;
   const height = foot + em * 1.8;
-  const strictest = side === 'below' ? Math.min(...bounds.map(valueOf)) : Math.max(...bounds.map(valueOf));
+  const strictest = (side === 'below' ? sorted[0] : sorted[sorted.length - 1])?.value;
   return (
     <figure className="min-w-0" aria-label={title ?? 'Values against their bounds'}>
       <figcaption className="flex items-baseline justify-between gap-3">
@@ -45,7 +37,7 @@ export function BoundRuler(props: BoundRulerProps) {
       <div ref={hostRef} className="font-mono text-[length:var(--plot-text)]" style={{ height }}>
         {width === 0 ? null : (
           <svg role="img" aria-label={describeRuler(props)} width={width} height={height} fontSize={em}>
-            {bounds.length > 0 ? (
+            {strictest !== undefined ? (
               <Shade axis={axis} side={side} at={strictest} top={boundsHeight} height={foot - boundsHeight} />
             ) : null}
             <RulerLine axis={axis} base={base} foot={foot} em={em} />
@@ -57,8 +49,10 @@ export function BoundRuler(props: BoundRulerProps) {
                   strokeWidth="calc(var(--plot-line) * 1.2)"
                 />
                 <g
-                  transform={`translate(${axis.x(bound.value) + (labels[i]!.flip ? -1 : 1) * em * 0.7} ${rows[i]! * ROW.bound * em})`}
-                  textAnchor={labels[i]!.flip ? 'end' : 'start'}
+                  transform={`translate(${axis.x(bound.value) + em * 0.7} ${rows[i]! * ROW.bound * em})`}
+                  stroke="var(--color-bg)"
+                  strokeWidth={3}
+                  paintOrder="stroke"
                 >
                   <text y={em} fill="var(--color-text)" fontWeight={600} fontFamily="var(--font-sans)">
                     {bound.name}
@@ -95,8 +89,6 @@ export function BoundRuler(props: BoundRulerProps) {
     </figure>
   );
 }
-
-const valueOf = (bound: { value: number }): number => bound.value;
 
 function boundText({ value, unit }: { value: number; unit: string }): string {
   return `bound ${formatPlain(value, 4)} ${displayUnit(unit)}`.trim();

@@ -49,7 +49,7 @@ export function HeatMap(props: HeatMapProps) {
   const xScale = scaleLinear<number>({ domain: [...view.x], range: [rect.left, rect.left + rect.width] });
   const yScale = scaleLinear<number>({ domain: [...view.y], range: [rect.top + rect.height, rect.top] });
   const project = { x: (at: number) => xScale(at), y: (at: number) => yScale(at) };
-  const xTicks = xScale.ticks(Math.max(2, Math.min(8, Math.floor(rect.width / (box.em * 6)))));
+  const xTicks = xScale.ticks(Math.max(2, Math.min(8, Math.floor(rect.width / (box.em * 5)))));
   const yTicks = yScale.ticks(Math.max(2, Math.min(8, Math.floor(rect.height / (box.em * 4)))));
   const { cursor } = gestures;
   const hint = tool ? `draw ${tool.label}: drag, or Enter at two corners` : '';

@@ -1,6 +1,6 @@
 import { memo } from 'react';
 import type { MapData } from '../../shared/contracts/output';
-import { dotPath, errorPath, linePath, type Scales, stepPath } from './line-paths';
+import { curvePath, dotPath, errorPath, linePath, type Scales, stepPath } from './line-paths';
 import type { LinePlotProps } from './types';
 
 interface LineDataProps {
@@ -50,7 +50,7 @@ export const LineData = memo(function LineData(props: LineDataProps) {
       )}
       {showModel && map.model ? (
         <path
-          d={linePath(map, bins, map.model, scales)}
+          d={curvePath(map, bins, map.model, scales)}
           stroke="var(--color-text)"
           strokeWidth="var(--plot-line)"
           data-model=""

@@ -28,6 +28,7 @@ export function RateStrip({ series, label, height = 28 }: RateStripProps) {
       {series.map(({ tone, label: name, values }, i) => (
         <svg
           key={name}
+          aria-hidden="true"
           y={i * share + 1.5}
           width="100%"
           height={Math.max(1, share - 3)}

@@ -17,7 +17,8 @@ export function binCentre(axis: Axis, bin: number): number {
 
 /** The bin a position falls in, or null outside the axis. */
 export function binAt(axis: Axis, bins: number, at: number): number | null {
-  const bin = Math.round((at - axis.start) / (axis.step || 1));
+  // floor, not round: round gives -0 just below zero.
+  const bin = Math.floor((at - axis.start) / (axis.step || 1) + 0.5);
   return bin >= 0 && bin < bins ? bin : null;
 }
 

@@ -17,8 +17,8 @@ export interface ColourScale {
 const LOG_DECADES = 6;
 
 /**
- * Counts start at zero, the background; signed maps are centred on it. A logarithmic scale starts at the smallest value
- * above zero (what is zero keeps the background); it is not offered for signed maps.
+ * Counts start at zero, the background; signed maps are centred on it. A logarithmic scale starts just below the smallest
+ * value above zero (what is zero keeps the background); it is not offered for signed maps.
  */
 export function buildColourScale(
   kind: 'counts' | 'signed',
@@ -35,7 +35,8 @@ export function buildColourScale(
     hi = Math.max(Math.abs(lo), Math.abs(hi));
     lo = -hi;
   }
-  if (log && lo <= 0) lo = Math.max(extremes.minPositive, hi * 10 ** -LOG_DECADES);
+  // Half the smallest value, so that one count still differs from none.
+  if (log && lo <= 0) lo = Math.max(extremes.minPositive / 2, hi * 10 ** -LOG_DECADES);
   if (!(hi > lo)) hi = lo === 0 ? 1 : lo + Math.abs(lo);
   return {
     lo,

@@ -8,7 +8,7 @@ export interface LineRects {
 }
 
 /** Margins in text sizes; the left one is that of the maps, so that plots above each other line up. */
-const MARGIN = { left: 5.6, right: 1.4, top: 0.6, bottom: 3.4 };
+const MARGIN = { left: 5.6, right: 2.4, top: 0.6, bottom: 3.4 };
 const STRIP = { height: 3.4, gap: 0.7 };
 
 export function computeLineRects({ width, height, em }: Box, withStrip: boolean): LineRects {

@@ -1,6 +1,7 @@
 import type { MapData } from '../../shared/contracts/output';
 import { binCentre, type Span } from './axis-geometry';
 import { isBlank } from './map-values';
+import { monotoneSlopes } from './monotone';
 
 /** Bins that touch the view, one more on either side so that lines run to the frame. */
 export function visibleBins(map: MapData, view: Span): { from: number; to: number } {
@@ -71,6 +72,30 @@ export function linePath(
   const axis = map.axes[0]!;
   return runs(map, bins, values)
     .map((run) => `M${run.map((i) => point(s.x(binCentre(axis, i)), s.y(values[i]!))).join('L')}`)
+    .join('');
+}
+
+/** The model between its bins, drawn as the smooth curve it samples: cubic pieces that never overshoot. */
+export function curvePath(
+  map: MapData,
+  bins: { from: number; to: number },
+  values: Float64Array,
+  s: Scales,
+): string {
+  const axis = map.axes[0]!;
+  return runs(map, bins, values)
+    .map((run) => {
+      const xs = run.map((i) => s.x(binCentre(axis, i)));
+      const ys = run.map((i) => s.y(values[i]!));
+      const slopes = monotoneSlopes(xs, ys);
+      const pieces = xs.slice(1).map((x, k) => {
+        const third = (x - xs[k]!) / 3;
+        const first = point(xs[k]! + third, ys[k]! + slopes[k]! * third);
+        const second = point(x - third, ys[k + 1]! - slopes[k + 1]! * third);
+        return `C${first} ${second} ${point(x, ys[k + 1]!)}`;
+      });
+      return `M${point(xs[0]!, ys[0]!)}${pieces.join('')}`;
+    })
     .join('');
 }
 

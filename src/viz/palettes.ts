@@ -1,4 +1,5 @@
 import { hexToRgb, isInGamut, type Lab, labToRgb, type Rgb, rgbToLab } from './lab';
+import { interpolateMonotone } from './monotone';
 import type { Theme } from './types';
 
 /**
@@ -21,31 +22,6 @@ const SIGNED_STOPS: Record<Theme, { below: readonly string[]; above: readonly st
   bench: { below: ['#1d2a33', '#4c7f9c', '#a9cfe0'], above: ['#3a2418', '#b5622f', '#f3c392'] },
   projector: { below: ['#a9c4d6', '#3f7597', '#0f3550'], above: ['#e6b184', '#b25a22', '#5a2208'] },
 };
-
-/** Slope at each knot that keeps every piece monotonic (Fritsch and Carlson, SIAM J. Numer. Anal. 17, 238, 1980). */
-function monotoneSlopes(at: readonly number[], value: readonly number[]): number[] {
-  const secants = at.slice(1).map((x, i) => (value[i + 1]! - value[i]!) / (x - at[i]!));
-  return at.map((_, i) => {
-    const [left, right] = [secants[i - 1], secants[i]];
-    if (left === undefined || right === undefined) return left ?? right ?? 0;
-    return left * right <= 0 ? 0 : (2 * left * right) / (left + right);
-  });
-}
-
-function interpolate(at: readonly number[], value: readonly number[], x: number): number {
-  const slopes = monotoneSlopes(at, value);
-  let i = 0;
-  while (i < at.length - 2 && x > at[i + 1]!) i++;
-  const width = at[i + 1]! - at[i]!;
-  const t = (x - at[i]!) / width;
-  const [t2, t3] = [t * t, t * t * t];
-  return (
-    (2 * t3 - 3 * t2 + 1) * value[i]! +
-    (t3 - 2 * t2 + t) * width * slopes[i]! +
-    (3 * t2 - 2 * t3) * value[i + 1]! +
-    (t3 - t2) * width * slopes[i + 1]!
-  );
-}
 
 /** Nearest colour of the same lightness and hue that a screen can show. */
 function intoGamut([lightness, a, b]: Lab): Rgb {
@@ -70,7 +46,7 @@ function evenScale(stops: readonly string[], size: number, lastLightness?: numbe
   return Array.from({ length: size }, (_, i) => {
     const lightness = start + ((end - start) * i) / (size - 1);
     const x = Math.abs(lightness - start);
-    return intoGamut([lightness, interpolate(at, a, x), interpolate(at, b, x)]);
+    return intoGamut([lightness, interpolateMonotone(at, a, x), interpolateMonotone(at, b, x)]);
   });
 }
 

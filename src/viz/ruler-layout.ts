@@ -54,3 +54,26 @@ export function buildRulerAxis(
     format: tickFormatter(ticks),
   };
 }
+
+interface RulerRoom {
+  left: number;
+  width: number;
+  right: number;
+}
+
+/** The axis, shortened where a bound's label would run out of the plot at its right. Never below half the room. */
+export function fitRulerAxis(
+  props: Pick<BoundRulerProps, 'entries' | 'bounds'>,
+  { left, width, right }: RulerRoom,
+  sorted: readonly { value: number }[],
+  labelWidths: readonly number[],
+): RulerAxis {
+  const whole = Math.max(1, width - left - right);
+  const axis = buildRulerAxis(props, left, whole);
+  const fits = sorted.map(({ value }, i) => {
+    const share = (axis.x(value) - left) / whole;
+    return share > 0 ? (width - left - labelWidths[i]!) / share : whole;
+  });
+  const length = Math.max(whole / 2, Math.min(whole, ...fits));
+  return length === whole ? axis : buildRulerAxis(props, left, length);
+}
