@@ -72,7 +72,7 @@ export function HeatMap(props: HeatMapProps) {
           aria-describedby={`${id}-keys`}
           // biome-ignore lint/a11y/noNoninteractiveTabindex: the arrow keys move the cursor
           tabIndex={0}
-          className={`absolute inset-0 touch-none ${tool ? 'cursor-crosshair' : ''}`}
+          className={`group/plot absolute inset-0 touch-none outline-none ${tool ? 'cursor-crosshair' : ''}`}
           {...gestures.handlers}
         >
           {asSvg ? null : <MapCanvas {...images} blank={extremes.blank} rect={rect} transform={transform} />}

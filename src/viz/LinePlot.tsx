@@ -92,7 +92,7 @@ export function LinePlot(props: LinePlotProps) {
           aria-label={`${map.label}: cursor`}
           // biome-ignore lint/a11y/noNoninteractiveTabindex: the arrow keys move the cursor
           tabIndex={0}
-          className="absolute inset-0 touch-none"
+          className="group/plot absolute inset-0 touch-none outline-none"
           {...gestures.handlers}
         >
           <svg

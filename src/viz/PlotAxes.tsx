@@ -90,6 +90,7 @@ export function LeftAxis({ scale, ticks, format, rect, em, axis }: AxisProps) {
   );
 }
 
+/** Edge of the plot; carries the focus ring of the plot it stands in. */
 export function Frame({ rect }: { rect: PlotRect }) {
   return (
     <rect
@@ -101,6 +102,7 @@ export function Frame({ rect }: { rect: PlotRect }) {
       stroke="var(--color-strong)"
       strokeWidth="var(--plot-hair)"
       pointerEvents="none"
+      className="group-focus-visible/plot:stroke-focus group-focus-visible/plot:stroke-2"
     />
   );
 }

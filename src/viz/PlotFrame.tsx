@@ -30,10 +30,10 @@ export function PlotFrame(props: PlotFrameProps) {
         )}
       </figcaption>
       <div className="flex h-[1.6em] items-center justify-between gap-3 overflow-hidden font-mono text-[length:var(--plot-text)] whitespace-nowrap text-dim">
-        <span className="min-w-0 truncate" data-readout="">
+        <span className="min-w-0 shrink-0 max-w-full truncate" data-readout="">
           {readout}
         </span>
-        {keys}
+        <span className="flex min-w-0 items-center gap-3 overflow-hidden">{keys}</span>
       </div>
       <div ref={hostRef} className="relative min-h-0 flex-1 font-mono text-[length:var(--plot-text)]">
         {children}
