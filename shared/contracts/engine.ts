@@ -4,7 +4,7 @@ import type { Layout } from './layout';
 import type { Outcome } from './outcome';
 import type { StudyOutput } from './output';
 import type { Plane } from './plane';
-import type { StudyId } from './study';
+import type { StudyId, StudyInfo } from './study';
 
 /**
  * The part of `Blob` the engine uses: a browser File fits, and so does a file handle wrapped for Node.
@@ -132,4 +132,13 @@ export interface Engine {
   inspect(source: SourceRef, layout: Layout | null): Promise<Outcome<Inspection>>;
   run(request: RunRequest, onEvent: OnRunEvent): Promise<Outcome<RunResult>>;
   cancel(jobId: string): Promise<void>;
+}
+
+/**
+ * What the coordinating worker of the page exposes: the engine, plus the doors to its compute workers (MessagePorts,
+ * transferred; `shared` has no DOM and so no name for them) and the list of studies.
+ */
+export interface EngineHost extends Engine {
+  attach(ports: readonly unknown[]): Promise<void>;
+  studies(): Promise<StudyInfo[]>;
 }
