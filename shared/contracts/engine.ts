@@ -21,6 +21,8 @@ export interface SourceRef {
   size: number;
   file?: SliceableBytes;
   path?: string;
+  /** When the file was last changed, ms since 1970: with name and size it tells whether counts can be used again. */
+  modified?: number;
 }
 
 export interface RunInput {

@@ -1,0 +1,156 @@
+import { createSHA256 } from 'hash-wasm';
+import type { SourceRef } from '../../shared/contracts/engine';
+import type { Layout } from '../../shared/contracts/layout';
+import type { Outcome } from '../../shared/contracts/outcome';
+import type { ByteSource, CancelToken, Reader, ReaderEnvironment } from '../../shared/contracts/reader';
+import { Cancelled, toProblemData } from '../../shared/errors/problem';
+import { createAccumulator } from '../accumulators/accumulator';
+import { inspectSource, openReader } from '../formats/registry';
+import type { ComputeHost, OnTaskProgress } from './compute';
+
+export interface ComputePlatform {
+  openSource(ref: SourceRef): Promise<ByteSource>;
+  environment: ReaderEnvironment;
+}
+
+/** Opened readers kept between tasks: opening HDF5 costs tens of milliseconds, and a file is read in many tasks. */
+const READERS_KEPT = 4;
+/** A slice of the file while hashing it. */
+const HASH_BYTES = 8 * 2 ** 20;
+const REPORT_EVERY_MS = 100;
+
+interface OpenReader {
+  key: string;
+  reader: Reader;
+  source: ByteSource;
+}
+
+export function createComputeHost(platform: ComputePlatform): ComputeHost {
+  const open: OpenReader[] = [];
+  const tokens = new Map<string, { cancelled: boolean }>();
+
+  async function withSource<T>(ref: SourceRef, use: (source: ByteSource) => Promise<T>): Promise<T> {
+    const source = await platform.openSource(ref);
+    try {
+      return await use(source);
+    } finally {
+      await source.close();
+    }
+  }
+
+  async function readerFor(ref: SourceRef, layout: Layout): Promise<Reader> {
+    const key = JSON.stringify([ref.path ?? ref.name, ref.size, ref.modified ?? null, layout]);
+    const at = open.findIndex((kept) => kept.key === key);
+    if (at >= 0 && ref.modified !== undefined) {
+      const [kept] = open.splice(at, 1);
+      open.push(kept!);
+      return kept!.reader;
+    }
+    while (open.length >= READERS_KEPT) await closeKept(open.shift()!);
+    const source = await platform.openSource(ref);
+    try {
+      const reader = await openReader(source, layout, platform.environment);
+      open.push({ key, reader, source });
+      return reader;
+    } catch (thrown) {
+      await source.close();
+      throw thrown;
+    }
+  }
+
+  async function asTask<T>(taskId: string, work: (token: CancelToken) => Promise<T>): Promise<Outcome<T>> {
+    const token = { cancelled: false };
+    tokens.set(taskId, token);
+    try {
+      return await answer(() => work(token));
+    } finally {
+      tokens.delete(taskId);
+    }
+  }
+
+  return {
+    inspect: (ref, layout) =>
+      answer(
+        () => withSource(ref, (source) => inspectSource(source, layout, platform.environment)),
+        ref.name,
+      ),
+    facts: (ref, layout) => answer(async () => (await readerFor(ref, layout)).facts, ref.name),
+    count: (task, onProgress) =>
+      asTask(task.taskId, async (token) => {
+        const reader = await readerFor(task.source, task.layout);
+        const accumulator = createAccumulator(task.spec);
+        const report = createReport(onProgress);
+        const offset = await reader.tickOffsetAt(task.range.start, token);
+        for await (const block of reader.read(task.range, offset, token)) {
+          accumulator.push(block);
+          report.add(block.bytes, block.kind === 'tags' ? block.records : block.count);
+        }
+        report.flush();
+        return accumulator.toPart();
+      }),
+    fingerprint: (taskId, ref, onProgress) =>
+      asTask(taskId, (token) => withSource(ref, (source) => hashSource(source, token, onProgress))),
+    async cancel(taskId) {
+      const token = tokens.get(taskId);
+      if (token !== undefined) token.cancelled = true;
+    },
+  };
+}
+
+async function closeKept(kept: OpenReader): Promise<void> {
+  await kept.reader.close();
+  await kept.source.close();
+}
+
+async function hashSource(
+  source: ByteSource,
+  token: CancelToken,
+  onProgress: OnTaskProgress,
+): Promise<string> {
+  const hash = await createSHA256();
+  hash.init();
+  const report = createReport(onProgress);
+  for (let start = 0; start < source.size; start += HASH_BYTES) {
+    if (token.cancelled) throw new Cancelled();
+    const bytes = await source.read(start, Math.min(start + HASH_BYTES, source.size));
+    hash.update(bytes);
+    report.add(bytes.length, 0);
+  }
+  report.flush();
+  return hash.digest('hex');
+}
+
+/** Messages cost more than blocks: progress goes out at most ten times a second. */
+function createReport(onProgress: OnTaskProgress): {
+  add(bytes: number, records: number): void;
+  flush(): void;
+} {
+  let bytes = 0;
+  let records = 0;
+  let last = performance.now();
+  const flush = (): void => {
+    if (bytes === 0 && records === 0) return;
+    onProgress({ bytes, records });
+    bytes = 0;
+    records = 0;
+    last = performance.now();
+  };
+  return {
+    add(moreBytes, moreRecords) {
+      bytes += moreBytes;
+      records += moreRecords;
+      if (performance.now() - last >= REPORT_EVERY_MS) flush();
+    },
+    flush,
+  };
+}
+
+/** Turns anything thrown into plain data, because class identity does not survive the border of a worker. */
+export async function answer<T>(work: () => Promise<T>, place: string | null = null): Promise<Outcome<T>> {
+  try {
+    return { status: 'ok', value: await work() };
+  } catch (thrown) {
+    if (thrown instanceof Cancelled) return { status: 'cancelled' };
+    return { status: 'error', problem: toProblemData(thrown, place) };
+  }
+}

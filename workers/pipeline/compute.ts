@@ -1,0 +1,35 @@
+import type { Inspection, SourceRef } from '../../shared/contracts/engine';
+import type { Layout } from '../../shared/contracts/layout';
+import type { Outcome } from '../../shared/contracts/outcome';
+import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
+import type { TallySpec } from '../../shared/contracts/tally';
+import type { Part } from '../accumulators/accumulator';
+
+/**
+ * What one worker does for the engine: small tasks that answer with plain data. The engine decides what to do; compute
+ * workers know nothing of studies or jobs.
+ */
+export interface CountTask {
+  taskId: string;
+  source: SourceRef;
+  layout: Layout;
+  spec: TallySpec;
+  range: ReadRange;
+}
+
+export interface TaskProgress {
+  /** Since the last report of the same task. */
+  bytes: number;
+  records: number;
+}
+export type OnTaskProgress = (progress: TaskProgress) => void;
+
+export interface ComputeHost {
+  inspect(source: SourceRef, layout: Layout | null): Promise<Outcome<Inspection>>;
+  facts(source: SourceRef, layout: Layout): Promise<Outcome<ReaderFacts>>;
+  count(task: CountTask, onProgress: OnTaskProgress): Promise<Outcome<Part>>;
+  /** SHA-256 of the whole source, lower-case hexadecimal. */
+  fingerprint(taskId: string, source: SourceRef, onProgress: OnTaskProgress): Promise<Outcome<string>>;
+  /** Unknown tasks are ignored: they may have ended meanwhile. */
+  cancel(taskId: string): Promise<void>;
+}
