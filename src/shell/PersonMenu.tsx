@@ -1,0 +1,65 @@
+import { useMutation } from '@tanstack/react-query';
+import { ChevronDown } from 'lucide-react';
+import { useNavigate } from 'react-router-dom';
+import { ProblemNote } from '../components/page/ProblemNote';
+import { Dialog } from '../components/ui/Dialog';
+import { Menu, type MenuItem } from '../components/ui/Menu';
+import { useGroupChoice } from '../lib/query/group-choice';
+import { useGroup, useMe } from '../lib/query/me';
+import { signOut } from './sign-out';
+
+/** Name and role; groups when there are several; account and the way out. */
+export function PersonMenu() {
+  const me = useMe();
+  const group = useGroup();
+  const choose = useGroupChoice((state) => state.choose);
+  const navigate = useNavigate();
+  const leaving = useMutation({ mutationFn: signOut });
+  const groups: MenuItem[] =
+    me.groups.length < 2
+      ? []
+      : [
+          ...me.groups.map(
+            (each): MenuItem => ({
+              kind: 'check',
+              label: each.name,
+              checked: each.id === group?.id,
+              onChange: () => choose(each.id),
+            }),
+          ),
+          { kind: 'separator', id: 'groups' },
+        ];
+  const items: MenuItem[] = [
+    { kind: 'heading', label: me.user.email },
+    { kind: 'separator', id: 'person' },
+    ...groups,
+    { label: 'Account', onSelect: () => void navigate('/account') },
+    { label: 'Sign out', onSelect: () => leaving.mutate() },
+  ];
+  return (
+    <>
+      <Menu
+        align="end"
+        items={items}
+        trigger={
+          <button
+            type="button"
+            className="flex h-7 items-center gap-2 rounded-sm px-1.5 text-sm text-text hover:bg-shade"
+          >
+            {me.user.name}
+            {group === null ? null : <span className="font-mono text-xs text-dim">{group.role}</span>}
+            <ChevronDown size={14} aria-hidden="true" className="text-dim" />
+          </button>
+        }
+      />
+      <Dialog
+        open={leaving.isError}
+        onOpenChange={() => leaving.reset()}
+        title="You are still signed in"
+        size="sm"
+      >
+        <ProblemNote error={leaving.error} />
+      </Dialog>
+    </>
+  );
+}
