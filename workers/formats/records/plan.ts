@@ -110,7 +110,11 @@ function toWords(integer: bigint): Uint32Array {
  */
 export function countRecords(plan: RecordPlan, size: number, name: string): number {
   if (size === 0) {
-    throw new Problem('empty-file', `${name} holds no bytes; choose the file that the acquisition wrote.`, name);
+    throw new Problem(
+      'empty-file',
+      `${name} holds no bytes; choose the file that the acquisition wrote.`,
+      name,
+    );
   }
   const body = size - plan.headerBytes;
   if (body < 0) {

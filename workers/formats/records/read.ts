@@ -4,7 +4,13 @@ import { Problem } from '../../../shared/errors/problem';
 import { passTurn } from '../turn';
 import { compileDecode } from './decode-fast';
 import { rebase, timeHigh, timeLow } from './decode-general';
-import { baseTickOf, createDecodeState, type Decode, type DecodeState, type TagColumns } from './decode-state';
+import {
+  baseTickOf,
+  createDecodeState,
+  type Decode,
+  type DecodeState,
+  type TagColumns,
+} from './decode-state';
 import type { RecordPlan } from './plan';
 import { isSkipped, toRecordWords, withoutSkipped } from './words';
 

@@ -4,7 +4,10 @@ import type { MaskTest, RecordPlan } from './plan';
  * Bytes of whole records -> words, `stride` of them a record, least significant first. Little-endian records of 4 and
  * 8 bytes are viewed in place when aligned. Typed arrays are little-endian on every platform the engine runs on.
  */
-export function toRecordWords(bytes: Uint8Array, plan: RecordPlan): Uint32Array {
+export function toRecordWords(
+  bytes: Uint8Array,
+  plan: Pick<RecordPlan, 'recordBytes' | 'stride' | 'bigEndian'>,
+): Uint32Array {
   const { recordBytes, stride, bigEndian } = plan;
   const records = bytes.length / recordBytes;
   if (!bigEndian && recordBytes === 4 * stride) {
@@ -63,7 +66,13 @@ export function withoutSkipped(words: Uint32Array, plan: RecordPlan): Uint32Arra
 }
 
 /** Bits [firstBit, firstBit + bits) with bits <= 32, across word borders. */
-export function bitsOf(words: Uint32Array, at: number, stride: number, firstBit: number, bits: number): number {
+export function bitsOf(
+  words: Uint32Array,
+  at: number,
+  stride: number,
+  firstBit: number,
+  bits: number,
+): number {
   const word = firstBit >>> 5;
   const shift = firstBit & 31;
   let value = words[at + word]! >>> shift;

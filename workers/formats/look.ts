@@ -1,0 +1,50 @@
+import { isTextLike } from './text-like';
+
+const magics: { bytes: number[]; what: string; wayOut: string }[] = [
+  { bytes: [0x1f, 0x8b, 0x08], what: 'a gzip archive', wayOut: 'unpack it first' },
+  { bytes: [0x50, 0x4b, 0x03, 0x04], what: 'a zip archive', wayOut: 'unpack it first' },
+  { bytes: [0x28, 0xb5, 0x2f, 0xfd], what: 'a zstd archive', wayOut: 'unpack it first' },
+  { bytes: [0xfd, 0x37, 0x7a, 0x58, 0x5a], what: 'an xz archive', wayOut: 'unpack it first' },
+  { bytes: [0x89, 0x50, 0x4e, 0x47], what: 'a PNG picture', wayOut: 'choose the raw data it was made from' },
+  { bytes: [0xff, 0xd8, 0xff], what: 'a JPEG picture', wayOut: 'choose the raw data it was made from' },
+  { bytes: [0x25, 0x50, 0x44, 0x46], what: 'a PDF document', wayOut: 'choose the raw data instead' },
+  {
+    bytes: [0x49, 0x49, 0x2a, 0x00],
+    what: 'a TIFF picture',
+    wayOut: 'save the frames as one 3-D dataset of HDF5',
+  },
+  {
+    bytes: [0x4d, 0x4d, 0x00, 0x2a],
+    what: 'a TIFF picture',
+    wayOut: 'save the frames as one 3-D dataset of HDF5',
+  },
+  {
+    bytes: [0x93, 0x4e, 0x55, 0x4d, 0x50, 0x59],
+    what: 'a NumPy array',
+    wayOut: 'save it as a dataset of HDF5',
+  },
+];
+
+/** What bytes that are no acquisition look like, and the way out; null when they look like nothing known. */
+export function lookAt(head: Uint8Array): { what: string; wayOut: string } | null {
+  for (const { bytes, what, wayOut } of magics) {
+    if (bytes.every((byte, at) => head[at] === byte)) return { what, wayOut };
+  }
+  if (!isTextLike(head)) return null;
+  return {
+    what: describeText(head),
+    wayOut: 'choose the file that the acquisition wrote, or convert the text to HDF5',
+  };
+}
+
+function describeText(head: Uint8Array): string {
+  const text = new TextDecoder().decode(head.subarray(0, 4096)).trimStart();
+  const firstLine = text.split(/[\r\n]/, 1)[0] ?? '';
+  const shown = firstLine.length > 40 ? `${firstLine.slice(0, 40)}…` : firstLine;
+  const kind = /^[[{]/.test(text)
+    ? 'JSON text'
+    : /^<(!doctype|\?xml|html)/i.test(text)
+      ? 'a web page'
+      : 'text';
+  return `${kind} beginning "${shown}"`;
+}

@@ -1,0 +1,72 @@
+import type { RecordsLayout } from '../../../shared/contracts/layout';
+import { FS_PER_PS } from '../../../shared/units/ticks';
+import { type Guess, guessRecords } from './guess';
+
+export interface RecordsProposal {
+  layout: RecordsLayout;
+  because: string;
+  warnings: string[];
+}
+
+/** Bytes from the start of a file that a proposal is made from. */
+export const proposalBytes = 2 ** 16;
+
+/** A layout for the bytes, or null. What bytes cannot tell (tick length, markers) is said in `warnings`. */
+export function proposeRecords(sample: Uint8Array, size: number): RecordsProposal | null {
+  const guess = guessRecords(sample, size);
+  if (guess === null) return null;
+  const { recordBytes, byteOrder, time, channel } = guess;
+  // Shorter fields may wrap after the sampled part: in ordered tags `wrap` is right whether they do or not.
+  const rollover = time.bits < 64 ? ({ in: 'wrap' } as const) : ({ in: 'none' } as const);
+  return {
+    layout: {
+      version: 1,
+      format: 'records',
+      kind: 'tags',
+      recordBytes,
+      byteOrder,
+      headerBytes: 0,
+      time,
+      channel,
+      rollover,
+      skip: [],
+      tickFs: FS_PER_PS,
+    },
+    because: because(guess),
+    warnings: [
+      'The length of a tick cannot be known from such bytes: 1 ps is proposed, set the one of your time tagger.',
+      ...(time.bits < 64
+        ? [
+            'Records that announce rollovers or states cannot be told from tags: set their conditions if your time tagger writes them.',
+          ]
+        : []),
+    ],
+  };
+}
+
+function because({
+  recordBytes,
+  byteOrder,
+  time,
+  channel,
+  records,
+  wraps,
+  backward,
+  channels,
+  lastChannel,
+}: Guess): string {
+  const falls =
+    backward > 0
+      ? `hardly ever fall (${backward} times)`
+      : wraps > 0
+        ? 'fall only where they wrap'
+        : 'never fall';
+  const order = byteOrder === 'little' ? 'little-endian' : 'big-endian';
+  const values =
+    channels === 1 ? `hold one value, ${lastChannel}` : `hold ${channels} values up to ${lastChannel}`;
+  return `Read as ${order} records of ${recordBytes} bytes, bits ${bitRange(time)} ${falls} over the first ${records} records and bits ${bitRange(channel)} ${values}.`;
+}
+
+function bitRange({ firstBit, bits }: { firstBit: number; bits: number }): string {
+  return `${firstBit} to ${firstBit + bits - 1}`;
+}

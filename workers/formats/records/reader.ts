@@ -1,0 +1,29 @@
+import type { RecordsLayout } from '../../../shared/contracts/layout';
+import type { ByteSource, Reader } from '../../../shared/contracts/reader';
+import { assertRange } from '../ranges';
+import { countRecords, planRecords, type RecordPlan } from './plan';
+import { readRecords, scanOffset } from './read';
+
+/** Opens a file of fixed-width records. Throws `empty-file`, `wrong-length` or `bad-layout`. */
+export function openRecords(source: ByteSource, layout: RecordsLayout): Reader {
+  const plan = planRecords(layout);
+  return recordsReader(source, plan, countRecords(plan, source.size, source.name), layout.tickFs);
+}
+
+/** Reader over the first `records` records, whatever follows them. */
+export function recordsReader(source: ByteSource, plan: RecordPlan, records: number, tickFs: number): Reader {
+  // Ranges are mostly asked for in rising order: each scan goes on from the last one.
+  let known = { start: 0, offsetTick: 0n };
+  return {
+    facts: { kind: 'tags', records, tickFs, reader: 'records' },
+    tickOffsetAt: async (start, token, onBytes) => {
+      assertRange({ start, end: records }, records, 'records', source.name);
+      const offsetTick = await scanOffset(source, plan, start, token, known, onBytes);
+      if (start >= known.start) known = { start, offsetTick };
+      return offsetTick;
+    },
+    read: (range, tickOffset, token) =>
+      readRecords(source, plan, assertRange(range, records, 'records', source.name), tickOffset, token),
+    close: () => source.close(),
+  };
+}
