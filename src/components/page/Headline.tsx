@@ -1,0 +1,18 @@
+import type { ResultSummary } from '../../../shared/contracts/http';
+import { formatQuantity } from '../../lib/format-number';
+import { quantityName } from '../../lib/quantity-name';
+
+/** Up to three numbers of a result on one line, each with its name, uncertainty and unit. */
+export function Headline({ quantities }: { quantities: ResultSummary['headline'] }) {
+  if (quantities.length === 0) return <span className="text-dim">no quantities</span>;
+  return (
+    <span className="flex flex-wrap gap-x-5 gap-y-0.5">
+      {quantities.map((quantity) => (
+        <span key={quantity.id} className="whitespace-nowrap">
+          <span className="text-xs text-dim">{quantityName(quantity.id)}</span>{' '}
+          <span className="font-mono">{formatQuantity(quantity)}</span>
+        </span>
+      ))}
+    </span>
+  );
+}

@@ -1,0 +1,31 @@
+import type { ReactNode } from 'react';
+import { Link } from 'react-router-dom';
+
+export interface LinkRowProps {
+  to: string;
+  name: ReactNode;
+  /** Mono, at the right end of the first line: who, when, which study. */
+  note?: ReactNode;
+  /** Second line. */
+  children?: ReactNode;
+}
+
+/** One line of a list that leads somewhere; the whole line is the link. */
+export function LinkRow({ to, name, note, children }: LinkRowProps) {
+  return (
+    <li className="relative -mx-2 border-b border-line px-2 py-2 last:border-b-0 focus-within:bg-raised hover:bg-raised">
+      <div className="flex items-baseline justify-between gap-4">
+        <Link
+          to={to}
+          className="min-w-0 truncate font-semibold outline-offset-0 after:absolute after:inset-0"
+        >
+          {name}
+        </Link>
+        {note === undefined ? null : (
+          <span className="shrink-0 font-mono text-xs whitespace-nowrap text-dim">{note}</span>
+        )}
+      </div>
+      {children === undefined ? null : <div className="mt-0.5 text-dim">{children}</div>}
+    </li>
+  );
+}
