@@ -3,9 +3,10 @@ import type { SourceRef } from '../../shared/contracts/engine';
 import type { Layout } from '../../shared/contracts/layout';
 import type { Outcome } from '../../shared/contracts/outcome';
 import type { ByteSource, CancelToken, Reader, ReaderEnvironment } from '../../shared/contracts/reader';
-import { Cancelled, toProblemData } from '../../shared/errors/problem';
+import { Cancelled } from '../../shared/errors/problem';
 import { createAccumulator } from '../accumulators/accumulator';
 import { inspectSource, openReader } from '../formats/registry';
+import { answer } from './answer';
 import type { ComputeHost, OnTaskProgress } from './compute';
 
 export interface ComputePlatform {
@@ -143,14 +144,4 @@ function createReport(onProgress: OnTaskProgress): {
     },
     flush,
   };
-}
-
-/** Turns anything thrown into plain data, because class identity does not survive the border of a worker. */
-export async function answer<T>(work: () => Promise<T>, place: string | null = null): Promise<Outcome<T>> {
-  try {
-    return { status: 'ok', value: await work() };
-  } catch (thrown) {
-    if (thrown instanceof Cancelled) return { status: 'cancelled' };
-    return { status: 'error', problem: toProblemData(thrown, place) };
-  }
 }
