@@ -1,0 +1,70 @@
+import { X } from 'lucide-react';
+import { useMemo, useState } from 'react';
+import type { MapData } from '../../../shared/contracts/output';
+import { displayUnit, formatPlain, formatWithSigma } from '../../lib/format-number';
+import { formatPosition } from '../../viz/format-tick';
+import { LinePlot } from '../../viz/LinePlot';
+import { Button } from '../ui/Button';
+import { IconButton } from '../ui/IconButton';
+import { computeSlice, type Estimate } from './conditional-slice';
+import { HEIGHTS } from './MapCell';
+
+interface SliceOfMapProps {
+  map: MapData;
+  ix: number;
+  iy: number;
+  onClose(): void;
+}
+
+function estimateWords(name: string, estimate: Estimate | null, unit: string): string {
+  if (estimate === null) return `${name} not defined here`;
+  return `${name} ${formatWithSigma(estimate.value, estimate.sigma)} ${displayUnit(unit)}`;
+}
+
+/** The conditional distribution through a clicked bin: where the partner is, given where this photon is. */
+export function SliceOfMap({ map, ix, iy, onClose }: SliceOfMapProps) {
+  const [given, setGiven] = useState<'x' | 'y'>('x');
+  const slice = useMemo(() => computeSlice(map, given, ix, iy), [map, given, ix, iy]);
+  const { axis, at } = slice.given;
+  const where = `${axis.label} = ${formatPosition(at, axis.step / 10)} ${displayUnit(axis.unit)}`;
+  const unit = slice.map.axes[0]!.unit;
+  const other = map.axes[given === 'x' ? 1 : 0]!.label;
+  return (
+    <section aria-label="Conditional slice" className="border-t border-line pt-2">
+      <div className="flex items-start justify-between gap-3">
+        <div className="flex items-center gap-2">
+          <Button size="sm" onClick={() => setGiven(given === 'x' ? 'y' : 'x')}>
+            Given {other} instead
+          </Button>
+        </div>
+        <IconButton label="Close the slice" onClick={onClose}>
+          <X size={14} aria-hidden="true" />
+        </IconButton>
+      </div>
+      {slice.mean === null ? (
+        <p className="py-2 text-sm text-dim">
+          {formatPlain(slice.pairs, 4)} pairs at {where}: too few against their noise to normalise. Click
+          nearer to the ridge.
+        </p>
+      ) : (
+        <>
+          <LinePlot
+            map={{ ...slice.map, label: `${slice.map.axes[0]!.label}, given ${where}` }}
+            height={HEIGHTS.line}
+            style="points"
+            tone={slice.map.axes[0]!.arm ?? 'pair'}
+            note="probability"
+          />
+          <p className="font-mono text-xs text-dim" data-slice="">
+            {[
+              estimateWords('mean', slice.mean, unit),
+              estimateWords('σ', slice.width, unit),
+              `${formatPlain(slice.pairs, 5)} pairs`,
+              'moments of the whole slice',
+            ].join(' · ')}
+          </p>
+        </>
+      )}
+    </section>
+  );
+}

@@ -1,0 +1,75 @@
+import type { Quantity, Verdict } from '../../../shared/contracts/output';
+import { displayUnit } from '../../lib/format-number';
+import { BoundRuler } from '../../viz/BoundRuler';
+import type { RulerEntry } from '../../viz/types';
+import { pairVariants, type QuantityRow } from './quantity-words';
+
+export interface VerdictRulersProps {
+  verdicts: Record<string, Verdict>;
+  quantities: Record<string, Quantity>;
+}
+
+interface Measured {
+  verdict: Verdict;
+  quantity: Quantity;
+}
+
+/** What a value beyond the bound shows, by witness. */
+const BOUND_NAMES: Record<string, string> = {
+  reid: 'steering (Reid)',
+  mancini: 'separable (Mancini)',
+  duan: 'separable (Duan)',
+};
+
+function boundName(base: string): string {
+  return BOUND_NAMES[base.split('.')[0] ?? ''] ?? 'bound';
+}
+
+function entryOf(label: RulerEntry['label'], measured: Measured | null): RulerEntry[] {
+  if (measured === null) return [];
+  const { quantity, verdict } = measured;
+  return [
+    { label, value: quantity.value, sigma: quantity.sigma, interval: verdict.interval, unit: quantity.unit },
+  ];
+}
+
+/** Verdict sentences first, each with its value on a ruler of its bound. */
+export function VerdictRulers({ verdicts, quantities }: VerdictRulersProps) {
+  const measured: Record<string, Measured> = {};
+  for (const [id, verdict] of Object.entries(verdicts)) {
+    const quantity = quantities[id];
+    if (quantity !== undefined) measured[id] = { verdict, quantity };
+  }
+  const rows = pairVariants(measured);
+  if (rows.length === 0) return null;
+  return (
+    <div
+      className="grid grid-cols-[repeat(auto-fit,minmax(min(100%,24rem),1fr))] gap-x-8 gap-y-6"
+      data-section="verdicts"
+    >
+      {rows.map((row) => (
+        <Ruler key={row.base} row={row} />
+      ))}
+    </div>
+  );
+}
+
+function Ruler({ row }: { row: QuantityRow<Measured> }) {
+  const raw = row.raw ?? row.only;
+  const first = row.net ?? raw;
+  if (first === null) return null;
+  const { verdict, quantity } = first;
+  const rawSentence = row.net !== null && raw !== null ? raw.verdict.sentence : undefined;
+  return (
+    <div data-verdict={row.base}>
+      <BoundRuler
+        title={row.label}
+        entries={[...entryOf('accidentals removed', row.net), ...entryOf('raw', raw)]}
+        bounds={[{ name: boundName(row.base), value: verdict.bound, unit: displayUnit(quantity.unit) }]}
+        side={verdict.side}
+        sentence={verdict.sentence}
+        assumption={rawSentence}
+      />
+    </div>
+  );
+}

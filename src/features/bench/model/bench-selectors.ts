@@ -1,0 +1,66 @@
+import type { DialValues } from '../../../../shared/contracts/dial';
+import type { RunRequest } from '../../../../shared/contracts/engine';
+import type { StudyInfo } from '../../../../shared/contracts/study';
+import type { BenchState, Found } from './bench-types';
+import { completeDials, type DialHistory, startHistory } from './dial-history';
+import { assignInputs, type Need, readyInputs } from './study-inputs';
+
+export function currentStudy({ studies, study }: BenchState): StudyInfo | null {
+  return studies.find(({ id }) => id === study) ?? null;
+}
+
+export function currentHistory({ dials, study }: BenchState): DialHistory {
+  return dials[study] ?? startHistory({});
+}
+
+export function currentAssignment(state: BenchState): Record<string, string | null> {
+  const study = currentStudy(state);
+  return study === null ? {} : assignInputs(study, state.shelf, state.chosen[state.study] ?? {});
+}
+
+/** Dials as a preset or the engine takes them: all of them, defaults filled in. */
+export function currentDials(state: BenchState): DialValues {
+  const study = currentStudy(state);
+  return study === null ? {} : completeDials(study.dials, currentHistory(state).present);
+}
+
+export function currentFound({ found, study }: BenchState): Found | null {
+  return found[study] ?? null;
+}
+
+/** What "changed" is measured from: the preset's dials for its own study, the defaults for the others. */
+export function baseDials({ preset, study }: BenchState): DialValues {
+  return preset?.study === study ? preset.dials : {};
+}
+
+export interface Plan {
+  needs: Need[];
+  /** null while something is missing. */
+  request: Omit<RunRequest, 'jobId'> | null;
+  /** Same key, same output. */
+  key: string;
+  /** The part of the key that names bytes and how they are read. */
+  inputsKey: string;
+}
+
+/** What would be run now. */
+export function planRun(state: BenchState): Plan {
+  const study = currentStudy(state);
+  if (study === null) return { needs: [], request: null, key: '', inputsKey: '' };
+  const assignment = currentAssignment(state);
+  const { needs, inputs } = readyInputs(study, state.shelf, assignment);
+  const dials = currentDials(state);
+  const inputsKey = JSON.stringify([
+    study.id,
+    study.inputs.map(({ name }) => {
+      const input = inputs[name];
+      return input && [name, assignment[name], input.layout, input.detector, input.plane];
+    }),
+  ]);
+  return {
+    needs,
+    request: needs.length > 0 ? null : { study: study.id, inputs, dials, seed: state.seed },
+    key: `${inputsKey}${JSON.stringify([dials, state.seed])}`,
+    inputsKey,
+  };
+}

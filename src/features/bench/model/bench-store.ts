@@ -1,0 +1,256 @@
+import { createStore, type StoreApi } from 'zustand/vanilla';
+import type { Detector } from '../../../../shared/contracts/detector';
+import type { DialValues } from '../../../../shared/contracts/dial';
+import type { Inspection } from '../../../../shared/contracts/engine';
+import type { Layout } from '../../../../shared/contracts/layout';
+import type { Plane } from '../../../../shared/contracts/plane';
+import type { InputSetting } from '../../../../shared/contracts/preset';
+import type { StudyId } from '../../../../shared/contracts/study';
+import type { ProblemData } from '../../../../shared/errors/problem';
+import { factsWords } from '../../../components/output/reading-words';
+import type { EngineDoor } from '../../../lib/workers/engine-door';
+import { type Acquisition, newAcquisition } from './acquisition';
+import { currentAssignment, currentHistory, currentStudy } from './bench-selectors';
+import { type BenchState, emptyBench, type PresetRef } from './bench-types';
+import { redoDials, replaceDials, startHistory, turnDials, undoDials } from './dial-history';
+import { proposeDetector } from './propose-detector';
+
+/** What a person settles in the reading dialog. */
+export interface ReadingChange {
+  layout: Layout;
+  detector: Detector | null;
+  detectorGiven: boolean;
+  plane: Plane | null;
+  inspection: Inspection;
+}
+
+export interface SampleFile {
+  file: File;
+  sample: string | null;
+  /** Input it is meant for, with its settings, when a preset says so. */
+  input?: string;
+}
+
+export interface BenchActions {
+  loadStudies(): Promise<void>;
+  addFiles(files: readonly SampleFile[]): void;
+  /** Places for acquisitions whose bytes must be handed over again. */
+  awaitFiles(entries: readonly { name: string; bytes: number; input: string | null }[]): void;
+  lookAgain(id: string): void;
+  changeReading(id: string, change: ReadingChange): void;
+  remove(id: string): void;
+  assign(input: string, id: string | null): void;
+  chooseStudy(study: StudyId): void;
+  turn(values: DialValues): void;
+  undo(): void;
+  redo(): void;
+  resetDials(): void;
+  openPreset(ref: PresetRef, inputs: Record<string, InputSetting>): void;
+  clear(): void;
+  say(text: string, tone?: 'plain' | 'problem'): void;
+}
+
+export type BenchStore = StoreApi<BenchState & BenchActions>;
+
+const MOST_LOG_LINES = 200;
+
+/** The bench without its runs: shelf, study, dials. `attachRunner` adds the runs. */
+export function createBenchStore(engine: EngineDoor): BenchStore {
+  let counter = 0;
+  const nextId = (): string => `a${++counter}`;
+  return createStore((set, get) => {
+    const patch = (id: string, change: Partial<Acquisition>): void =>
+      set(({ shelf }) => ({ shelf: shelf.map((a) => (a.id === id ? { ...a, ...change } : a)) }));
+
+    const fail = (acquisition: Acquisition, problem: ProblemData): void => {
+      patch(acquisition.id, { reading: { status: 'failed', problem } });
+      get().say(`${acquisition.name}: ${problem.message}`, 'problem');
+    };
+
+    const look = async (id: string): Promise<void> => {
+      const before = get().shelf.find((a) => a.id === id);
+      if (before === undefined || before.file === null) return;
+      patch(id, { reading: { status: 'looking' } });
+      const source = { name: before.name, size: before.bytes, file: before.file };
+      const outcome = await engine.inspect(source, before.layoutGiven ? before.layout : null);
+      const now = get().shelf.find((a) => a.id === id);
+      // Removed, or corrected by hand in the meantime: this look is of yesterday.
+      if (now === undefined || now.reading.status !== 'looking') return;
+      if (outcome.status === 'error') return fail(now, outcome.problem);
+      if (outcome.status === 'cancelled') return;
+      const inspection = outcome.value;
+      const layout = now.layoutGiven ? now.layout : inspection.layout;
+      const proposal = now.detectorGiven ? null : proposeDetector(inspection.facts);
+      patch(id, {
+        reading: { status: 'read', inspection },
+        layout,
+        ...(now.detectorGiven ? {} : { detector: proposal?.detector ?? null }),
+      });
+      get().say(`${now.name}: ${factsWords(inspection.facts)}.`);
+    };
+
+    /** The waiting setting an acquisition answers to: the input it is meant for, or the one its name says. */
+    const takeSetting = (name: string, input: string | undefined, free: Set<string>): string | null => {
+      if (input !== undefined) return input;
+      const lower = name.toLowerCase();
+      const named = [...free].filter((key) => lower.includes(key.toLowerCase()));
+      return named[0] ?? (free.size === 1 ? [...free][0]! : null);
+    };
+
+    const withSetting = (acquisition: Acquisition, setting: InputSetting | undefined): Acquisition => {
+      if (setting === undefined) return acquisition;
+      return {
+        ...acquisition,
+        layout: setting.layout ?? acquisition.layout,
+        layoutGiven: setting.layout !== null || acquisition.layoutGiven,
+        detector: setting.detector ?? acquisition.detector,
+        detectorGiven: setting.detector !== null || acquisition.detectorGiven,
+        plane: setting.plane ?? acquisition.plane,
+      };
+    };
+
+    const chooseFor = (input: string, id: string | null): void =>
+      set(({ chosen, study }) => ({
+        chosen: { ...chosen, [study]: { ...chosen[study], [input]: id } },
+      }));
+
+    return {
+      ...emptyBench,
+
+      async loadStudies() {
+        const outcome = await engine.studies();
+        if (outcome.status === 'ok') set({ studies: outcome.value, studiesProblem: null });
+        else if (outcome.status === 'error') set({ studiesProblem: outcome.problem });
+      },
+
+      addFiles(files) {
+        const added: string[] = [];
+        for (const { file, sample, input } of files) {
+          const { shelf, waiting } = get();
+          const awaited = shelf.find(
+            (a) => a.reading.status === 'awaited' && a.name === file.name && a.bytes === file.size,
+          );
+          if (awaited !== undefined) {
+            patch(awaited.id, { file, sample, reading: { status: 'looking' } });
+            added.push(awaited.id);
+            continue;
+          }
+          const almost = shelf.find((a) => a.reading.status === 'awaited' && a.name === file.name);
+          if (almost !== undefined) {
+            get().say(
+              `${file.name} has ${file.size} bytes, the session used one of ${almost.bytes}; it was added as another acquisition.`,
+              'problem',
+            );
+          }
+          const free = new Set(Object.keys(waiting));
+          const setting = takeSetting(file.name, input, free);
+          const fresh = newAcquisition(nextId(), { name: file.name, bytes: file.size, file, sample });
+          const acquisition = withSetting(fresh, setting === null ? undefined : waiting[setting]);
+          set({ shelf: [...get().shelf, acquisition] });
+          if (setting !== null) {
+            chooseFor(setting, acquisition.id);
+            set({ waiting: Object.fromEntries(Object.entries(waiting).filter(([key]) => key !== setting)) });
+          }
+          added.push(acquisition.id);
+        }
+        for (const id of added) void look(id);
+      },
+
+      awaitFiles(entries) {
+        for (const { name, bytes, input } of entries) {
+          const { waiting } = get();
+          const fresh = newAcquisition(nextId(), { name, bytes, file: null, sample: null });
+          set({
+            shelf: [...get().shelf, withSetting(fresh, input === null ? undefined : waiting[input])],
+          });
+          if (input !== null) {
+            chooseFor(input, fresh.id);
+            set({ waiting: Object.fromEntries(Object.entries(waiting).filter(([key]) => key !== input)) });
+          }
+        }
+      },
+
+      lookAgain(id) {
+        void look(id);
+      },
+
+      changeReading(id, { inspection, ...change }) {
+        patch(id, { ...change, layoutGiven: true, reading: { status: 'read', inspection } });
+      },
+
+      remove(id) {
+        const gone = get().shelf.find((a) => a.id === id);
+        set(({ shelf }) => ({ shelf: shelf.filter((a) => a.id !== id) }));
+        if (gone !== undefined) get().say(`${gone.name} taken off the shelf.`);
+      },
+
+      assign(input, id) {
+        // One acquisition cannot serve two inputs without being asked to: it leaves the other.
+        const before = currentAssignment(get());
+        for (const [other, held] of Object.entries(before))
+          if (other !== input && id !== null && held === id) chooseFor(other, before[input] ?? null);
+        chooseFor(input, id);
+      },
+
+      chooseStudy(study) {
+        set({ study });
+      },
+
+      turn(values) {
+        const { study } = get();
+        const history = turnDials(currentHistory(get()), values, Date.now());
+        set(({ dials }) => ({ dials: { ...dials, [study]: history } }));
+      },
+
+      undo() {
+        const { study } = get();
+        set(({ dials }) => ({ dials: { ...dials, [study]: undoDials(currentHistory(get())) } }));
+      },
+
+      redo() {
+        const { study } = get();
+        set(({ dials }) => ({ dials: { ...dials, [study]: redoDials(currentHistory(get())) } }));
+      },
+
+      resetDials() {
+        const { study, preset } = get();
+        const base = preset?.study === study ? preset.dials : {};
+        set(({ dials }) => ({ dials: { ...dials, [study]: replaceDials(currentHistory(get()), base) } }));
+      },
+
+      openPreset(ref, inputs) {
+        const { study } = ref;
+        set(({ dials, chosen }) => ({
+          preset: ref,
+          study,
+          dials: { ...dials, [study]: startHistory(ref.dials) },
+          chosen: { ...chosen, [study]: {} },
+          waiting: inputs,
+        }));
+        // Acquisitions already on the shelf take the settings of the input they serve.
+        const info = currentStudy(get());
+        if (info === null) return;
+        const taken = new Set<string>();
+        for (const [input, id] of Object.entries(currentAssignment(get()))) {
+          const setting = inputs[input];
+          const acquisition = get().shelf.find((a) => a.id === id);
+          if (id === null || setting === undefined || acquisition === undefined) continue;
+          patch(id, withSetting(acquisition, setting));
+          chooseFor(input, id);
+          taken.add(input);
+          if (acquisition.file !== null && setting.layout !== null) void look(id);
+        }
+        set({ waiting: Object.fromEntries(Object.entries(inputs).filter(([key]) => !taken.has(key))) });
+      },
+
+      clear() {
+        set(({ studies, studiesProblem }) => ({ ...emptyBench, studies, studiesProblem }));
+      },
+
+      say(text, tone = 'plain') {
+        const line = { id: ++counter, at: new Date(), text, tone };
+        set(({ log }) => ({ log: [...log, line].slice(-MOST_LOG_LINES) }));
+      },
+    };
+  });
+}

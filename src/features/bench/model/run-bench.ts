@@ -1,0 +1,149 @@
+import type { RunEvent } from '../../../../shared/contracts/engine';
+import { durationWords, shortCount } from '../../../components/output/reading-words';
+import type { EngineDoor } from '../../../lib/workers/engine-door';
+import { currentStudy, type Plan, planRun } from './bench-selectors';
+import type { BenchStore } from './bench-store';
+import type { BenchState, Found } from './bench-types';
+
+/** While a hand moves a dial, one run after it rests this long. */
+const DIAL_REST_MS = 150;
+
+export interface Runner {
+  /** Runs again what was cancelled or failed. */
+  again(): void;
+  cancel(): void;
+  detach(): void;
+}
+
+function isSamePlanSource(a: BenchState, b: BenchState): boolean {
+  return (
+    a.shelf === b.shelf &&
+    a.study === b.study &&
+    a.studies === b.studies &&
+    a.chosen === b.chosen &&
+    a.dials === b.dials &&
+    a.seed === b.seed
+  );
+}
+
+/** Runs the study whenever what it needs is there and something changed; the newest request wins. */
+export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
+  let timer: ReturnType<typeof setTimeout> | null = null;
+  let active: { jobId: string; key: string; inputsKey: string } | null = null;
+  let jobs = 0;
+
+  const keep = (found: Found, study: BenchState['study']): void =>
+    store.setState(({ found: all }) => ({ found: { ...all, [study]: found } }));
+
+  const dropActive = (): void => {
+    if (timer !== null) clearTimeout(timer);
+    timer = null;
+    if (active !== null) engine.cancel(active.jobId);
+    active = null;
+  };
+
+  const start = async (plan: Plan): Promise<void> => {
+    const { request, key, inputsKey } = plan;
+    if (request === null) return;
+    dropActive();
+    const jobId = `job-${++jobs}`;
+    active = { jobId, key, inputsKey };
+    const isCurrent = (): boolean => active?.jobId === jobId;
+    store.setState({ run: { status: 'running', jobId, key, progress: null } });
+    const onEvent = (event: RunEvent): void => {
+      if (!isCurrent()) return;
+      if (event.kind === 'progress') {
+        store.setState({ run: { status: 'running', jobId, key, progress: event } });
+      } else {
+        keep({ output: event.output, result: null, fraction: event.fraction, key }, request.study);
+      }
+    };
+    const outcome = await engine.run({ ...request, jobId }, onEvent);
+    if (!isCurrent()) return;
+    active = null;
+    const { say } = store.getState();
+    if (outcome.status === 'ok') {
+      const { output, provenance } = outcome.value;
+      keep({ output, result: outcome.value, fraction: null, key }, request.study);
+      store.setState(({ shelf }) => ({
+        run: { status: 'done', key, seconds: provenance.seconds },
+        shelf: rememberHashes(shelf, provenance.inputs),
+      }));
+      const label = currentStudy(store.getState())?.label ?? request.study;
+      say(`${label} done in ${durationWords(provenance.seconds)}.`);
+    } else if (outcome.status === 'cancelled') {
+      store.setState({ run: { status: 'cancelled', key } });
+      say('Cancelled.');
+    } else {
+      store.setState({ run: { status: 'failed', key, problem: outcome.problem } });
+      const { message, place } = outcome.problem;
+      say(place === null ? message : `${place}: ${message}`, 'problem');
+    }
+  };
+
+  const settle = (): void => {
+    if (timer !== null) clearTimeout(timer);
+    timer = null;
+    const plan = planRun(store.getState());
+    const { run, found, study } = store.getState();
+    if (plan.request === null) {
+      dropActive();
+      if (run.status !== 'idle') store.setState({ run: { status: 'idle' } });
+      return;
+    }
+    if (active?.key === plan.key) return;
+    const known = found[study];
+    if (known?.key === plan.key && known.result !== null) {
+      dropActive();
+      const seconds = known.result.provenance.seconds;
+      store.setState({ run: { status: 'done', key: plan.key, seconds } });
+      return;
+    }
+    if ((run.status === 'failed' || run.status === 'cancelled') && run.key === plan.key) return;
+    const onlyDials = known?.key.startsWith(plan.inputsKey) ?? false;
+    timer = setTimeout(() => void start(planRun(store.getState())), onlyDials ? DIAL_REST_MS : 0);
+  };
+
+  const unsubscribe = store.subscribe((state, before) => {
+    if (!isSamePlanSource(state, before)) settle();
+  });
+  settle();
+  return {
+    again: () => void start(planRun(store.getState())),
+    cancel: () => {
+      if (active === null) return;
+      const { key } = active;
+      dropActive();
+      store.setState({ run: { status: 'cancelled', key } });
+      store.getState().say('Cancelled; what was computed so far is kept.');
+    },
+    detach: () => {
+      unsubscribe();
+      dropActive();
+    },
+  };
+}
+
+function rememberHashes(
+  shelf: BenchState['shelf'],
+  inputs: readonly { fileName: string; bytes: number; sha256: string }[],
+): BenchState['shelf'] {
+  const hashOf = (name: string, bytes: number): string | undefined =>
+    inputs.find((input) => input.fileName === name && input.bytes === bytes)?.sha256;
+  const isNews = shelf.some((a) => (hashOf(a.name, a.bytes) ?? a.sha256) !== a.sha256);
+  if (!isNews) return shelf;
+  return shelf.map((a) => ({ ...a, sha256: hashOf(a.name, a.bytes) ?? a.sha256 }));
+}
+
+export function progressWords({
+  recordsDone,
+  recordsPerSecond,
+  secondsLeft,
+}: {
+  recordsDone: number;
+  recordsPerSecond: number;
+  secondsLeft: number | null;
+}): string {
+  const left = secondsLeft === null ? '' : ` · ${durationWords(secondsLeft)} left`;
+  return `${shortCount(recordsDone)} records · ${shortCount(recordsPerSecond)} records/s${left}`;
+}
