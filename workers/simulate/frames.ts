@@ -5,11 +5,16 @@ import { neighbourOf } from './clicks';
 import { axisLaw, drawPair, type PairPosition } from './pair-source';
 import { binAt } from './receivers';
 
+/** Pixels as the file's type holds them. */
+export interface SimulatedFrameBlock extends FrameBlock {
+  pixels: Uint8Array | Uint16Array;
+}
+
 /**
  * Camera frames of a scenario: per frame a Poisson number of pairs, both photons on the same camera, each turned into an
  * electron with its arm's efficiency; dark electrons; charge that smears to a neighbour; then read noise and read-out.
  */
-export function* simulateFrames(scenario: FrameScenario, blockFrames = 256): Generator<FrameBlock> {
+export function* simulateFrames(scenario: FrameScenario, blockFrames = 256): Generator<SimulatedFrameBlock> {
   const { camera } = scenario;
   const frameSize = camera.width * camera.height;
   const expose = createExposure(scenario);
