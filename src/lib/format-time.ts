@@ -23,12 +23,3 @@ export function formatAgo(iso: string, now: number): string {
   if (past < 24 * HOUR) return `${Math.floor(past / HOUR)} h ago`;
   return formatTime(iso);
 }
-
-const STEPS = ['B', 'kB', 'MB', 'GB', 'TB'];
-
-/** Sizes of files with a decimal prefix: 41.2 MB. */
-export function formatBytes(bytes: number): string {
-  const step = bytes < 1000 ? 0 : Math.min(STEPS.length - 1, Math.floor(Math.log10(bytes) / 3));
-  const value = bytes / 1000 ** step;
-  return `${step === 0 ? value : value.toFixed(value < 100 ? 1 : 0)} ${STEPS[step]}`;
-}

@@ -1,6 +1,6 @@
 import type { ResultSummary } from '../../../shared/contracts/http';
 import { formatQuantity } from '../../lib/format-number';
-import { quantityName } from '../../lib/quantity-name';
+import { quantityLabel, splitVariant, VARIANT_WORDS } from '../output/quantity-words';
 
 /** Up to three numbers of a result on one line, each with its name, uncertainty and unit. */
 export function Headline({ quantities }: { quantities: ResultSummary['headline'] }) {
@@ -9,10 +9,16 @@ export function Headline({ quantities }: { quantities: ResultSummary['headline']
     <span className="flex flex-wrap gap-x-5 gap-y-0.5">
       {quantities.map((quantity) => (
         <span key={quantity.id} className="whitespace-nowrap">
-          <span className="text-xs text-dim">{quantityName(quantity.id)}</span>{' '}
+          <span className="text-xs text-dim">{nameOf(quantity.id)}</span>{' '}
           <span className="font-mono">{formatQuantity(quantity)}</span>
         </span>
       ))}
     </span>
   );
+}
+
+/** In a ledger raw and net are columns; on one line the name has to say it. */
+function nameOf(id: string): string {
+  const { variant } = splitVariant(id);
+  return variant === null ? quantityLabel(id) : `${quantityLabel(id)}, ${VARIANT_WORDS[variant]}`;
 }

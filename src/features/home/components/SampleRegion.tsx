@@ -1,10 +1,10 @@
 import { useQuery } from '@tanstack/react-query';
 import { Link } from 'react-router-dom';
+import { bytesWords } from '../../../components/output/reading-words';
 import { LinkRow } from '../../../components/page/LinkRow';
 import { Loaded } from '../../../components/page/Loaded';
 import { Region } from '../../../components/page/Page';
 import { buttonClass } from '../../../components/ui/Button';
-import { formatBytes } from '../../../lib/format-time';
 import { samplesQuery } from '../../../lib/query/samples';
 import { studyName, studyQuestion } from '../../../lib/study-names';
 import { orderSamples, type SampleEntry } from '../model/sample-order';
@@ -34,7 +34,7 @@ export function SampleRegion() {
                     key={entry.index}
                     to={`/bench?sample=${entry.index}`}
                     name={entry.preset.name}
-                    note={`${studyName(entry.preset.study)} · ${formatBytes(entry.bytes)}`}
+                    note={`${studyName(entry.preset.study)} · ${bytesWords(entry.bytes)}`}
                   >
                     {entry.shows.join(' ')}
                   </LinkRow>
@@ -61,7 +61,7 @@ function FirstSample({ entry, scenario }: { entry: SampleEntry; scenario: string
         <p className="font-semibold">
           {entry.preset.name}
           <span className="pl-3 font-mono text-xs font-normal text-dim">
-            {studyName(entry.preset.study)} · {formatBytes(entry.bytes)}
+            {studyName(entry.preset.study)} · {bytesWords(entry.bytes)}
           </span>
         </p>
         <p className="mt-0.5 max-w-prose text-dim">{studyQuestion(entry.preset.study)}</p>

@@ -1,8 +1,8 @@
-import type { ArrayMap, Detector } from '../../shared/contracts/detector';
-import type { BitField, Column, Layout } from '../../shared/contracts/layout';
-import type { Calibrated, Plane } from '../../shared/contracts/plane';
-import { FS_PER_PS } from '../../shared/units/ticks';
-import { formatPlain, formatQuantity, formatWithSigma } from './format-number';
+import type { ArrayMap, Detector } from '../../../../shared/contracts/detector';
+import type { BitField, Column, Layout } from '../../../../shared/contracts/layout';
+import type { Calibrated, Plane } from '../../../../shared/contracts/plane';
+import { FS_PER_PS } from '../../../../shared/units/ticks';
+import { formatPlain, formatQuantity, formatWithSigma } from '../../../lib/format-number';
 
 /** How an input is read, as sentences of a few words, for pages that show settings without changing them. */
 

@@ -1,0 +1,82 @@
+import { useQuery } from '@tanstack/react-query';
+import { ChevronDown } from 'lucide-react';
+import { useState } from 'react';
+import { Link, useNavigate } from 'react-router-dom';
+import type { ResultRow } from '../../../../shared/contracts/http';
+import type { MapFile } from '../../../../shared/contracts/result';
+import { Button, buttonClass } from '../../../components/ui/Button';
+import { Menu, type MenuItem } from '../../../components/ui/Menu';
+import { type Group, mayUseBench, useMe, useOwnGroup } from '../../../lib/query/me';
+import { presetsQuery } from '../../../lib/query/presets';
+import { fileNameOf, saveJson } from '../../../lib/save-file';
+import { findPreset } from '../model/find-preset';
+import { toPreset, toWholeFile } from '../model/stored-output';
+import { DeleteResult } from './DeleteResult';
+
+export interface ResultActionsProps {
+  row: ResultRow;
+  /** Null until every map is here. */
+  maps: Record<string, MapFile> | null;
+}
+
+export function ResultActions({ row, maps }: ResultActionsProps) {
+  const group = useOwnGroup();
+  const me = useMe();
+  const navigate = useNavigate();
+  const [deleting, setDeleting] = useState(false);
+  const preset = toPreset(row.result, row.name);
+  const mayDelete = group.role === 'lead' || (group.role === 'analyst' && row.byId === me.user.id);
+  const items: MenuItem[] = [
+    {
+      label: maps === null ? 'Result as JSON (maps still on their way)' : 'Result as JSON',
+      disabled: maps === null,
+      onSelect: () => {
+        if (maps !== null) saveJson(toWholeFile(row.result, maps), fileNameOf(row.name, '.result.json'));
+      },
+    },
+    {
+      label: 'Preset that repeats it, as JSON',
+      disabled: preset === null,
+      onSelect: () => saveJson(preset, fileNameOf(row.name, '.preset.json')),
+    },
+  ];
+  return (
+    <span className="flex items-center gap-2">
+      {mayUseBench(group) ? <BenchLink row={row} group={group} /> : null}
+      <Menu
+        align="end"
+        items={items}
+        trigger={
+          <Button size="sm">
+            Download
+            <ChevronDown size={12} aria-hidden="true" />
+          </Button>
+        }
+      />
+      {mayDelete ? (
+        <Button size="sm" variant="danger" onClick={() => setDeleting(true)}>
+          Delete
+        </Button>
+      ) : null}
+      <DeleteResult
+        row={row}
+        open={deleting}
+        onClose={() => setDeleting(false)}
+        onDone={() => void navigate('/results', { replace: true })}
+      />
+    </span>
+  );
+}
+
+/** Only when the group still has the preset the result was made with. */
+function BenchLink({ row, group }: { row: ResultRow; group: Group }) {
+  const presets = useQuery(presetsQuery(group.id));
+  const found = findPreset(row.result, presets.data ?? []);
+  if (found === null) return null;
+  const version = found.version === null ? '' : `&version=${found.version}`;
+  return (
+    <Link to={`/bench?preset=${found.id}${version}`} className={buttonClass('plain', 'sm')}>
+      Open on the bench with this preset
+    </Link>
+  );
+}
