@@ -51,6 +51,8 @@ export interface ReaderEnvironment {
 export interface Hdf5Library {
   /** Opened root group/file object of h5wasm; narrowed inside the hdf5 format. */
   file: unknown;
+  /** The WASM module behind it: rows are read as raw bytes, which the objects of h5wasm do not offer. */
+  module: unknown;
   close(): void;
 }
 

@@ -1,0 +1,59 @@
+import type { PixelArray } from '../../../shared/contracts/blocks';
+import { Problem } from '../../../shared/errors/problem';
+import type { NumberType } from './tree';
+
+/** Little-endian bytes as numbers of up to 32 bits or floats; 64-bit integers have no such view. */
+export function viewNumbers(bytes: Uint8Array, { family, bytes: size }: NumberType): PixelArray {
+  const aligned = bytes.byteOffset % size === 0 ? bytes : bytes.slice();
+  const { buffer, byteOffset } = aligned;
+  const count = aligned.length / size;
+  if (family === 'float') {
+    return size === 4
+      ? new Float32Array(buffer, byteOffset, count)
+      : new Float64Array(buffer, byteOffset, count);
+  }
+  if (size === 1) return family === 'int' ? new Int8Array(buffer, byteOffset, count) : aligned;
+  if (size === 2) {
+    return family === 'int'
+      ? new Int16Array(buffer, byteOffset, count)
+      : new Uint16Array(buffer, byteOffset, count);
+  }
+  return family === 'int'
+    ? new Int32Array(buffer, byteOffset, count)
+    : new Uint32Array(buffer, byteOffset, count);
+}
+
+/** Pairs of words, least significant first: the exact and quick view of 64-bit integers. */
+export function viewWordPairs(bytes: Uint8Array): Uint32Array {
+  const aligned = bytes.byteOffset % 4 === 0 ? bytes : bytes.slice();
+  return new Uint32Array(aligned.buffer, aligned.byteOffset, aligned.length / 4);
+}
+
+/** Doubles from 64-bit integers. Throws when one is at or past 2^53, because it would be rounded in silence. */
+export function exactDoubles(bytes: Uint8Array, family: NumberType['family'], place: string): Float64Array {
+  const words = viewWordPairs(bytes);
+  const limit = 2 ** 21;
+  const doubles = new Float64Array(words.length / 2);
+  for (let i = 0; i < doubles.length; i += 1) {
+    const high = family === 'int' ? words[2 * i + 1]! | 0 : words[2 * i + 1]!;
+    if (!(high < limit && high >= -limit)) {
+      throw new Problem(
+        'wrong-type',
+        `A 64-bit value passes 2^53 and cannot be kept exactly; save smaller values.`,
+        place,
+      );
+    }
+    doubles[i] = high * 2 ** 32 + words[2 * i]!;
+  }
+  return doubles;
+}
+
+/** Any integers as doubles; 64-bit ones past 2^53 are rounded, which is enough to see whether a column rises. */
+export function roundedDoubles(bytes: Uint8Array, number: NumberType): Float64Array {
+  if (number.bytes < 8) return Float64Array.from(viewNumbers(bytes, number));
+  const words = viewWordPairs(bytes);
+  return Float64Array.from({ length: words.length / 2 }, (_, i) => {
+    const high = words[2 * i + 1]!;
+    return (number.family === 'int' ? high | 0 : high) * 2 ** 32 + words[2 * i]!;
+  });
+}
