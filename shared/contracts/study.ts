@@ -11,6 +11,8 @@ export interface InputSpec {
   accepts: readonly ('tags' | 'frames')[];
   /** Arms the detector map must give when the input is tags. */
   arms: readonly Arm[];
+  /** Other sets of arms that serve as well, e.g. the bucket in place of an array. */
+  otherArms?: readonly (readonly Arm[])[];
   /** Plane the input must carry, `any` for either, `none` when no calibration is used. */
   plane: PlaneKind | 'any' | 'none';
 }

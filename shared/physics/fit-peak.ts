@@ -20,8 +20,6 @@ export interface PeakFit {
   sigmaError: number;
   baseError: number;
   centreSigmaCov: number;
-  /** Poisson deviance over degrees of freedom: about 1 when the model holds and bins are well filled. */
-  devianceRatio: number;
 }
 
 export interface PeakStart {
@@ -188,16 +186,5 @@ function finishFit(data: BinnedCounts, p: number[], span: number): PeakFit | nul
     // Without base counts the logarithm's error has no meaning; one count in the range is the scale of what was not seen.
     baseError: base < 1e-8 ? 1 / data.counts.length : base * error(3),
     centreSigmaCov: sigma * covariance[1]![2]!,
-    devianceRatio: devianceRatio(data, { area, centre, sigma, base }),
   };
-}
-
-function devianceRatio(data: BinnedCounts, model: PeakStart): number {
-  let deviance = 0;
-  for (let m = 0; m < data.counts.length; m++) {
-    const y = data.counts[m]!;
-    const lambda = peakModel(model, data.lo, data.step, m);
-    deviance += 2 * (lambda - y + (y > 0 ? y * Math.log(y / lambda) : 0));
-  }
-  return deviance / Math.max(1, data.counts.length - 4);
 }

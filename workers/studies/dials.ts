@@ -191,6 +191,9 @@ export const resamplesDial: DialSpec = {
   auto: false,
 };
 
+/** A look while reading takes few resamples: its errors are good to a tenth. */
+export const LOOK_RESAMPLES = 60;
+
 /** Frames only; tags always have their 65 to 128 slices of time. */
 export const blocksDial: DialSpec = {
   id: 'blocks',

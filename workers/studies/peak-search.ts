@@ -87,7 +87,7 @@ export function histogramPs(tally: Pick<TagTally, 'histogram' | 'tickFs'>): Binn
   };
 }
 
-/** Gaussian on a constant, fitted to +- 6 widths of the stretch that stood out, in at most about 400 bins. */
+/** Gaussian on a constant, fitted to +- 6 widths of the stretch that stood out, in at most about 800 joined bins; the base is per bin of `data`. */
 export function fitAround(data: BinnedCounts, found: FoundPeak): PeakFit | null {
   const first = Math.max(0, Math.floor((found.centre - 6 * found.width - data.lo) / data.step));
   const last = Math.min(
@@ -97,8 +97,9 @@ export function fitAround(data: BinnedCounts, found: FoundPeak): PeakFit | null 
   const join = Math.max(1, Math.floor((last - first) / 400));
   const counts = new Float64Array(Math.floor((last - first) / join));
   for (let m = 0; m < counts.length * join; m++) counts[Math.floor(m / join)]! += data.counts[first + m]!;
-  return fitPeak(
+  const fit = fitPeak(
     { lo: data.lo + first * data.step, step: data.step * join, counts },
     { area: found.excess, centre: found.centre, sigma: found.width / 3, base: found.basePerBin * join },
   );
+  return fit && { ...fit, base: fit.base / join, baseError: fit.baseError / join };
 }

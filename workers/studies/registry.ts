@@ -1,0 +1,21 @@
+import type { StudyId } from '../../shared/contracts/study';
+import { Problem } from '../../shared/errors/problem';
+import { delayStudy } from './delay/study';
+import { ghostImageStudy } from './ghost-image/study';
+import type { Study } from './study';
+
+export const studies: Partial<Record<StudyId, Study>> = {
+  delay: delayStudy,
+  'ghost-image': ghostImageStudy,
+};
+
+/** @throws Problem `bad-preset` for a study that does not exist. */
+export function studyById(id: string): Study {
+  const study = Object.values(studies).find((known) => known.info.id === id);
+  if (study !== undefined) return study;
+  throw new Problem(
+    'bad-preset',
+    `There is no study "${id}"; there are ${Object.keys(studies).join(', ')}.`,
+    'study',
+  );
+}

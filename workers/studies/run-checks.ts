@@ -1,0 +1,176 @@
+import type { Check } from '../../shared/contracts/output';
+import type { ArmTally } from '../../shared/contracts/tally';
+import { g2 } from '../../shared/physics/timing';
+import { formatFigure } from './format-figure';
+import type { ArmPair } from './peak-search';
+import { sum, type TagCount } from './tag-count';
+
+/** Questions about the run as a whole: drift, gaps, order, pixels. */
+
+/** Rates and net pairs of the second half of the run against the first. */
+export function checkDrift(count: TagCount, arms: ArmPair): Check {
+  const { tally, times, shifts } = count;
+  const half = Math.floor(tally.slices / 2);
+  const compare = (name: string, perSlice: Float64Array, extra: Float64Array | null) => {
+    const part = (from: number, to: number) => {
+      const seconds = sum(times.seconds.subarray(from, to));
+      const main = sum(perSlice.subarray(from, to));
+      const off = extra === null ? 0 : sum(extra.subarray(from, to));
+      const m = Math.max(1, shifts);
+      return { rate: (main - off / m) / seconds, variance: (main + off / m ** 2) / seconds ** 2 };
+    };
+    const first = part(0, half);
+    const second = part(half, tally.slices);
+    const error = Math.sqrt(first.variance + second.variance);
+    const change = (second.rate - first.rate) / first.rate;
+    return { name, change, z: Math.abs(second.rate - first.rate) / error };
+  };
+  const unit = '%';
+  if (tally.slices < 4) {
+    const sentence = 'The run is too short to compare its halves.';
+    return { id: 'drift', status: 'caution', figure: null, unit, sentence };
+  }
+  const changes = [
+    compare(`${arms.a} singles`, tally.a.singlesPerSlice, null),
+    compare(`${arms.b} singles`, tally.b.singlesPerSlice, null),
+    compare('net pairs', tally.prompt.pairs, tally.shifted.pairs),
+  ].filter((change) => Number.isFinite(change.change) && change.z > 3);
+  const worst = changes.sort((p, q) => Math.abs(q.change) - Math.abs(p.change))[0];
+  if (worst === undefined) {
+    const sentence = 'Singles and pairs of both halves of the run agree within 3 standard errors.';
+    return { id: 'drift', status: 'pass', figure: 0, unit, sentence };
+  }
+  const percent = worst.change * 100;
+  const status = Math.abs(percent) < 2 ? 'pass' : Math.abs(percent) < 15 ? 'caution' : 'fail';
+  const advice =
+    status === 'pass' ? 'too little to matter.' : 'look at the rates over time and cut what drifted.';
+  const sentence = `The ${worst.name} changed by ${percent.toFixed(1)} % from the first to the second half (${worst.z.toFixed(1)} standard errors): ${advice}`;
+  return { id: 'drift', status, figure: percent, unit, sentence };
+}
+
+/** Baseline of g2 beside the peak, which is 1 for unrelated tags. */
+export function checkBaseline(count: TagCount): Check {
+  const id = 'baseline-flat';
+  const { sideband, seconds, countsA, countsB } = count;
+  const meanTau = (Math.abs(count.histogram.lo) * 1e-12) / 2;
+  const base =
+    sideband === null || sideband.counts === 0
+      ? null
+      : g2({
+          pairs: sideband.counts,
+          countsA,
+          countsB,
+          binS: sideband.widthPs * 1e-12,
+          tauS: meanTau,
+          spanS: seconds,
+        });
+  if (base === null) {
+    const sentence =
+      'No accidentals were counted beside the peak, so the baseline of g2 could not be checked.';
+    return { id, status: 'caution', figure: null, unit: '1', sentence };
+  }
+  const z = Math.abs(base.value - 1) / base.sigma;
+  const off = Math.abs(base.value - 1);
+  const value = `Beside the peak g2 is ${base.value.toFixed(4)} +- ${base.sigma.toFixed(4)}`;
+  if (z <= 3 || off < 0.01) {
+    return { id, status: 'pass', figure: base.value, unit: '1', sentence: `${value}; it should be 1.` };
+  }
+  const status = off < 0.05 ? 'caution' : 'fail';
+  const sentence = `${value} where 1 was expected: the rates drift together, or the tagger lost stretches of time.`;
+  return { id, status, figure: base.value, unit: '1', sentence };
+}
+
+/**
+ * Pixels far from the median of those around them (5 x 5): dead below a twentieth of it where at least 20 counts were
+ * expected, hot above five times it and five sigma. A smooth beam does not do that from one pixel to the next.
+ */
+export function checkPixels(arms: readonly { arm: ArmTally; name: string }[]): Check {
+  const odd: string[] = [];
+  for (const { arm, name } of arms) {
+    const alive = [...arm.singles.keys()].filter((pixel) => arm.masked[pixel] === 0);
+    if (alive.length < 9) continue;
+    for (const pixel of alive) {
+      const n = arm.singles[pixel]!;
+      const at = `${name} (${pixel % arm.width}, ${Math.floor(pixel / arm.width)})`;
+      const around = neighbourMedian(arm, pixel);
+      if (n > 5 * Math.max(around, 1) && n > around + 5 * Math.sqrt(around + 1)) {
+        odd.push(`${at} hot`);
+      } else if (around >= 20 && n < around / 20) odd.push(`${at} dead`);
+    }
+  }
+  const base = { id: 'pixels-sound', figure: odd.length, unit: 'pixels' };
+  if (odd.length === 0) {
+    return { ...base, status: 'pass', sentence: 'No pixel is dead or far brighter than those around it.' };
+  }
+  const named = odd.slice(0, 6).join(', ') + (odd.length > 6 ? ` and ${odd.length - 6} more` : '');
+  const sentence = `Pixels stand apart from those around them: ${named}. Mask them in the detector map.`;
+  return { ...base, status: 'caution', sentence };
+}
+
+export function checkOrder(count: TagCount): Check {
+  const { outOfOrder, tags } = count.tally;
+  const base = { id: 'tags-in-order', figure: outOfOrder, unit: 'tags' };
+  if (outOfOrder === 0) return { ...base, status: 'pass', sentence: 'Every tag came in order of time.' };
+  const status = outOfOrder > tags / 1000 ? 'fail' : 'caution';
+  const sentence = `${outOfOrder} of ${tags} tags came more than 5 ms after a later one and may miss partners; look at the rollover in the layout, and at the recorder.`;
+  return { ...base, status, sentence };
+}
+
+export function checkMapped(count: TagCount): Check {
+  const { unmapped, tags } = count.tally;
+  const share = unmapped / Math.max(1, unmapped + tags);
+  const base = { id: 'tags-mapped', figure: share * 100, unit: '%' };
+  if (share <= 0.1) {
+    const sentence = `${(share * 100).toFixed(1)} % of the tags are on masked channels or on none of the two arms.`;
+    return { ...base, status: 'pass', sentence };
+  }
+  const sentence = `${(share * 100).toFixed(1)} % of the tags are on channels that the detector map masks or does not name for these arms; check first channels and sizes.`;
+  return { ...base, status: 'caution', sentence };
+}
+
+/** Live time is taken as last minus first tag; stretches without a tag make it too long. */
+export function checkLiveTime(count: TagCount): Check {
+  const { tally } = count;
+  const tagsPerSlice = tally.tags / Math.max(1, tally.slices);
+  let empty = 0;
+  for (let k = 0; k < tally.slices; k++) {
+    if (tally.a.singlesPerSlice[k]! + tally.b.singlesPerSlice[k]! === 0) empty += 1;
+  }
+  const base = { id: 'live-time', figure: empty, unit: 'slices' };
+  if (empty === 0 || tagsPerSlice < 20) {
+    const sentence = `Live time is taken from the first to the last tag, ${formatFigure(count.seconds)} s; no stretch of it is empty.`;
+    return tagsPerSlice < 20
+      ? {
+          ...base,
+          status: 'caution',
+          sentence: `Too few tags to see gaps; live time is taken from the first to the last tag, ${formatFigure(count.seconds)} s.`,
+        }
+      : { ...base, status: 'pass', sentence };
+  }
+  const sentence = `${empty} of ${tally.slices} slices of time hold no tag, yet live time is taken from the first to the last tag: rates are too low by about as much. Cut the gap out.`;
+  return { ...base, status: empty > tally.slices / 20 ? 'fail' : 'caution', sentence };
+}
+
+export function checkExcessNoise(excess: readonly { id: string; ratio: number }[]): Check {
+  const worst = [...excess].sort((p, q) => q.ratio - p.ratio)[0];
+  if (worst === undefined) {
+    const sentence = 'Slices of time scatter as counting alone makes them.';
+    return { id: 'excess-noise', status: 'pass', figure: null, unit: '', sentence };
+  }
+  const sentence = `${worst.id} scatters between slices of time ${worst.ratio.toFixed(1)} times as much as counting alone explains (drift or afterpulsing); the larger error is the one reported.`;
+  return { id: 'excess-noise', status: 'caution', figure: worst.ratio, unit: '', sentence };
+}
+
+function neighbourMedian(arm: ArmTally, pixel: number): number {
+  const x = pixel % arm.width;
+  const y = Math.floor(pixel / arm.width);
+  const around: number[] = [];
+  for (let v = Math.max(0, y - 2); v <= Math.min(arm.height - 1, y + 2); v++) {
+    for (let u = Math.max(0, x - 2); u <= Math.min(arm.width - 1, x + 2); u++) {
+      const at = v * arm.width + u;
+      if (at !== pixel && arm.masked[at] === 0) around.push(arm.singles[at]!);
+    }
+  }
+  around.sort((p, q) => p - q);
+  return around[Math.floor(around.length / 2)] ?? 0;
+}
