@@ -5,7 +5,6 @@ import {
   type H5Group,
   type H5Metadata,
   type H5Module,
-  isExternalLink,
   isH5Dataset,
   isH5Group,
   isH5Module,
@@ -60,22 +59,18 @@ function listGroup(
   for (const name of group.keys()) {
     if (datasets.length >= mostDatasets || depth > deepest) return;
     const childPath = `${path}/${name}`;
+    // Asked first: where the other file is at hand, the library would follow the link.
+    const { filename } = module.get_external_link(group.file_id, childPath);
+    if (filename !== undefined) {
+      outside.push({ path: childPath, fileName: filename });
+      continue;
+    }
     const child = group.get(childPath);
-    if (isExternalLink(child)) outside.push({ path: childPath, fileName: child.filename });
-    else if (isH5Dataset(child)) datasets.push(entryOf(childPath, child));
+    if (isH5Dataset(child)) datasets.push(entryOf(childPath, child));
     // A soft link to a group shows the same datasets again, or a cycle.
-    else if (isH5Group(child) && !isSoftLink(module, group.file_id, childPath)) {
+    else if (isH5Group(child) && module.get_symbolic_link(group.file_id, childPath) === null) {
       listGroup(child, childPath, module, datasets, outside, depth + 1);
     }
-  }
-}
-
-function isSoftLink(module: H5Module, fileId: bigint, path: string): boolean {
-  try {
-    return module.get_symbolic_link(fileId, path) !== '';
-  } catch {
-    // The library throws when the path is no symbolic link.
-    return false;
   }
 }
 

@@ -11,7 +11,10 @@ export interface H5Module {
     strides: bigint[],
     pointer: bigint,
   ): number;
-  get_symbolic_link(fileId: bigint, path: string): string;
+  /** Target of a soft link, null for anything else. */
+  get_symbolic_link(fileId: bigint, path: string): string | null;
+  /** An empty object for anything but an external link. */
+  get_external_link(fileId: bigint, path: string): { filename?: string };
 }
 
 export interface H5Metadata {
@@ -45,11 +48,6 @@ export interface H5Dataset extends H5Object {
   filters: { id: number; name: string }[];
 }
 
-export interface H5ExternalLink {
-  type: string;
-  filename: string;
-}
-
 export function isH5Group(value: unknown): value is H5Group {
   return hasAll(value, ['file_id', 'keys', 'get']);
 }
@@ -61,10 +59,6 @@ export function isH5Module(value: unknown): value is H5Module {
 /** By the `type` of the object: the classes are renamed in minified builds. */
 export function isH5Dataset(object: H5Object | null): object is H5Dataset {
   return object?.type === 'Dataset';
-}
-
-export function isExternalLink(object: unknown): object is H5ExternalLink {
-  return hasAll(object, ['type', 'filename']) && (object as { type: unknown }).type === 'ExternalLink';
 }
 
 function hasAll(value: unknown, keys: readonly string[]): boolean {
