@@ -46,7 +46,7 @@ export function PersonMenu() {
             type="button"
             className="flex h-7 items-center gap-2 rounded-sm px-1.5 text-sm text-text hover:bg-shade"
           >
-            {me.user.name}
+            <span className="max-sm:sr-only">{me.user.name}</span>
             {group === null ? null : <span className="font-mono text-xs text-dim">{group.role}</span>}
             <ChevronDown size={14} aria-hidden="true" className="text-dim" />
           </button>

@@ -21,22 +21,22 @@ export function TopBar({ busy }: { busy: boolean }) {
   const group = useGroup();
   const links = LINKS.filter((link) => !link.data || (group !== null && mayUseBench(group)));
   return (
-    <header className="sticky top-0 z-30 flex h-11 shrink-0 items-stretch gap-6 border-b border-line bg-bg px-4">
+    <header className="sticky top-0 z-30 flex h-11 shrink-0 items-stretch gap-6 border-b border-line bg-bg px-4 max-sm:gap-3">
       <Link to="/" className="flex items-center gap-2.5" aria-label="Gemel, home">
         <Mark size={22} />
-        <span className="font-mono text-sm font-semibold">Gemel</span>
+        <span className="font-mono text-sm font-semibold max-sm:hidden">Gemel</span>
       </Link>
       <span className="flex min-w-0 items-center font-mono text-xs text-dim max-md:hidden">
         <span className="truncate">{group?.name ?? 'no group'}</span>
       </span>
-      <nav aria-label="Pages" className="flex items-stretch gap-5">
+      <nav aria-label="Pages" className="flex min-w-0 items-stretch gap-5 overflow-x-auto max-sm:gap-3">
         {links.map((link) => (
           <NavLink key={link.to} to={link.to} end={link.to === '/'} className={linkClass}>
             {link.label}
           </NavLink>
         ))}
       </nav>
-      <span role="status" className="flex flex-1 items-center font-mono text-xs text-dim">
+      <span role="status" className="flex flex-1 items-center font-mono text-xs text-dim max-sm:hidden">
         {busy ? 'opening …' : ''}
       </span>
       <span className="flex items-center gap-2">

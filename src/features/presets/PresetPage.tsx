@@ -1,7 +1,7 @@
 import { keepPreviousData, useQuery } from '@tanstack/react-query';
 import { Link, useParams, useSearchParams } from 'react-router-dom';
 import type { PresetRow } from '../../../shared/contracts/http';
-import { Loaded } from '../../components/page/Loaded';
+import { LoadedPage } from '../../components/page/LoadedPage';
 import { Page, Region } from '../../components/page/Page';
 import { Button, buttonClass } from '../../components/ui/Button';
 import { formatTime } from '../../lib/format-time';
@@ -29,13 +29,13 @@ export function PresetPage() {
     placeholderData: keepPreviousData,
   });
   return (
-    <Loaded query={newest} what="the preset">
+    <LoadedPage query={newest} what="the preset" title="Preset">
       {(last) => (
-        <Loaded query={shown} what="this version">
+        <LoadedPage query={shown} what="this version" title="Preset">
           {(row) => <OnePreset row={row} newest={last.version} />}
-        </Loaded>
+        </LoadedPage>
       )}
-    </Loaded>
+    </LoadedPage>
   );
 }
 

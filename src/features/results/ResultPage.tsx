@@ -4,7 +4,7 @@ import { useParams } from 'react-router-dom';
 import type { ResultRow } from '../../../shared/contracts/http';
 import type { MapFile } from '../../../shared/contracts/result';
 import { decodeMap } from '../../../shared/contracts/result-codec';
-import { Loaded } from '../../components/page/Loaded';
+import { LoadedPage } from '../../components/page/LoadedPage';
 import { Page } from '../../components/page/Page';
 import { formatTime } from '../../lib/format-time';
 import { useOwnGroup } from '../../lib/query/me';
@@ -20,9 +20,9 @@ export function ResultPage() {
   const { id = '' } = useParams();
   const result = useQuery(resultQuery(group.id, id));
   return (
-    <Loaded query={result} what="the result">
+    <LoadedPage query={result} what="the result" title="Result">
       {(row) => <OneResult row={row} />}
-    </Loaded>
+    </LoadedPage>
   );
 }
 

@@ -2,7 +2,7 @@ import { useQuery } from '@tanstack/react-query';
 import { useState } from 'react';
 import { Link, useSearchParams } from 'react-router-dom';
 import type { ResultSummary } from '../../../shared/contracts/http';
-import { Loaded } from '../../components/page/Loaded';
+import { LoadedPage } from '../../components/page/LoadedPage';
 import { Page } from '../../components/page/Page';
 import { TextInput } from '../../components/ui/Field';
 import { textLink } from '../../components/ui/link-class';
@@ -20,9 +20,9 @@ export function ResultsPage() {
   const group = useOwnGroup();
   const results = useQuery(resultsQuery(group.id));
   return (
-    <Loaded query={results} what="the results">
+    <LoadedPage query={results} what="the results" title="Results">
       {(rows) => <ResultList rows={rows} />}
-    </Loaded>
+    </LoadedPage>
   );
 }
 

@@ -1,23 +1,32 @@
-import { type DragEvent, useState } from 'react';
+import { useEffect, useState } from 'react';
 import { Link } from 'react-router-dom';
 import { Region } from '../../../components/page/Page';
 import { buttonClass } from '../../../components/ui/Button';
 
-/** Own files open on the bench; a file dropped here must at least not replace the page. */
-export function FileRegion() {
+/** A file dropped on this page would replace it in the browser; instead the page says where files go. */
+function useStrayDrop(): boolean {
   const [dropped, setDropped] = useState(false);
-  const onDrop = (event: DragEvent): void => {
-    event.preventDefault();
-    setDropped(true);
-  };
+  useEffect(() => {
+    const allow = (event: DragEvent): void => event.preventDefault();
+    const onDrop = (event: DragEvent): void => {
+      event.preventDefault();
+      setDropped(true);
+    };
+    window.addEventListener('dragover', allow);
+    window.addEventListener('drop', onDrop);
+    return () => {
+      window.removeEventListener('dragover', allow);
+      window.removeEventListener('drop', onDrop);
+    };
+  }, []);
+  return dropped;
+}
+
+export function FileRegion() {
+  const dropped = useStrayDrop();
   return (
     <Region name="your own files">
-      <section
-        aria-label="Files"
-        className="flex items-start gap-5 pt-4"
-        onDragOver={(event) => event.preventDefault()}
-        onDrop={onDrop}
-      >
+      <div className="flex items-start gap-5 pt-4">
         <Link to="/bench" className={`${buttonClass('plain', 'md')} h-10 px-5`}>
           Go to the bench
         </Link>
@@ -26,7 +35,7 @@ export function FileRegion() {
             ? 'Files are dropped on the bench: go there and drop them again.'
             : 'Drop HDF5 files or time-tag records there. They are read on this machine and never leave it.'}
         </p>
-      </section>
+      </div>
     </Region>
   );
 }

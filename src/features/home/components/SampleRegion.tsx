@@ -64,8 +64,10 @@ function FirstSample({ entry, scenario }: { entry: SampleEntry; scenario: string
             {studyName(entry.preset.study)} · {bytesWords(entry.bytes)}
           </span>
         </p>
-        <p className="mt-0.5 max-w-prose text-dim">{studyQuestion(entry.preset.study)}</p>
-        {scenario === '' ? null : <p className="mt-0.5 max-w-prose text-xs text-dim">{scenario}</p>}
+        <p className="mt-0.5 max-w-prose text-dim">
+          {studyQuestion(entry.preset.study)} {entry.shows.join(' ')}
+        </p>
+        {scenario === '' ? null : <p className="mt-1.5 max-w-prose text-xs text-dim">{scenario}</p>}
       </div>
     </div>
   );

@@ -20,8 +20,8 @@ export function ResultBody({ row, output, waiting, errors }: ResultBodyProps) {
   const { provenance } = row.result;
   const total = Object.keys(row.result.maps).length;
   return (
-    <div className="grid lg:grid-cols-[minmax(0,3fr)_minmax(0,2fr)]">
-      <section aria-label="Plots" className="min-w-0 px-5 py-3 lg:min-h-[calc(100dvh-6rem)] lg:border-r">
+    <div className="grid xl:grid-cols-[minmax(0,11fr)_minmax(0,9fr)]">
+      <section aria-label="Plots" className="min-w-0 px-5 py-3 xl:min-h-[calc(100dvh-6rem)] xl:border-r">
         <h2 className="sr-only">Plots</h2>
         {errors.map((error) => (
           <ProblemNote key={error.message} error={error} />
@@ -34,7 +34,7 @@ export function ResultBody({ row, output, waiting, errors }: ResultBodyProps) {
           <OutputStage output={output} theme={theme} dials={provenance.dials} />
         )}
       </section>
-      <section aria-label="Numbers" className="min-w-0 px-5 py-3">
+      <section aria-label="Numbers" className="min-w-0 px-5 py-3 max-xl:border-t">
         <h2 className="sr-only">Numbers</h2>
         <OutputLedger output={output} provenance={provenance} />
       </section>

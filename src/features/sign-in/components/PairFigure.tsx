@@ -1,6 +1,8 @@
 import { countInBins, simulatePairs } from '../model/pairs';
 
 const SHOWN = 140;
+/** The drawn pairs leave the ends of the bars to their names. */
+const DRAWN_EDGE = 2.2;
 const COUNTED = 4000;
 const EDGE = 2.8;
 const BINS = 56;
@@ -9,7 +11,9 @@ const BAR = { signal: 150, idler: 410 };
 const TALL = 96;
 
 const pairs = simulatePairs(COUNTED, 0.16, 17);
-const shown = pairs.filter((p) => Math.abs(p.signal) < EDGE && Math.abs(p.idler) < EDGE).slice(0, SHOWN);
+const shown = pairs
+  .filter((p) => Math.abs(p.signal) < DRAWN_EDGE && Math.abs(p.idler) < DRAWN_EDGE)
+  .slice(0, SHOWN);
 const x = (at: number): number => (WIDTH / 2) * (1 + at / EDGE);
 
 /** Steps of a histogram standing on a bar (up is -1) or hanging from it (1). */
@@ -28,8 +32,8 @@ function stepsPath(values: readonly number[], base: number, direction: 1 | -1): 
 export function PairFigure() {
   return (
     <figure>
-      <svg viewBox={`0 0 ${WIDTH} 560`} className="w-full" aria-hidden="true">
-        <g stroke="var(--color-pair)" strokeOpacity="0.2" strokeWidth="0.8">
+      <svg viewBox={`0 44 ${WIDTH} 476`} className="w-full" aria-hidden="true">
+        <g stroke="var(--color-pair)" strokeOpacity="0.2" strokeWidth="calc(var(--plot-hair) * 0.8)">
           {shown.map((pair) => (
             <line key={pair.signal} x1={x(pair.signal)} y1={BAR.signal} x2={x(pair.idler)} y2={BAR.idler} />
           ))}
@@ -37,22 +41,22 @@ export function PairFigure() {
         <path
           d={stepsPath(
             pairs.map((pair) => pair.signal),
-            BAR.signal - 6,
+            BAR.signal,
             -1,
           )}
           fill="none"
           stroke="var(--color-signal)"
-          strokeWidth="1.2"
+          strokeWidth="var(--plot-line)"
         />
         <path
           d={stepsPath(
             pairs.map((pair) => pair.idler),
-            BAR.idler + 6,
+            BAR.idler,
             1,
           )}
           fill="none"
           stroke="var(--color-idler)"
-          strokeWidth="1.2"
+          strokeWidth="var(--plot-line)"
         />
         <rect x="0" y={BAR.signal - 1.5} width={WIDTH} height="3" fill="var(--color-signal)" />
         <rect x="0" y={BAR.idler - 1.5} width={WIDTH} height="3" fill="var(--color-idler)" />
