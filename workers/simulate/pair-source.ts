@@ -1,4 +1,5 @@
 import type { Optics, PairSource } from '../../shared/contracts/scenario';
+import { crystalDeltaUm } from '../../shared/physics/double-gaussian';
 import type { Random } from '../../shared/util/random';
 
 /**
@@ -17,9 +18,7 @@ export interface PairLaw {
 }
 
 export function pairLaw(source: PairSource): PairLaw {
-  const crystalUm = source.crystalMm * 1000;
-  const pumpUm = source.pumpNm / 1000;
-  const birthUm = Math.sqrt((source.alpha * crystalUm * pumpUm) / (2 * Math.PI * source.pumpIndex));
+  const birthUm = crystalDeltaUm(source.crystalMm, source.pumpNm, source.pumpIndex, source.alpha);
   return { birthUm, waistUm: source.pumpWaistUm, ratio: source.pumpWaistUm / birthUm };
 }
 

@@ -1,4 +1,5 @@
 import type { Receiver, Scenario, TagScenario } from '../../shared/contracts/scenario';
+import { manciniProduct, reidProduct, schmidtNumber } from '../../shared/physics/double-gaussian';
 import { axisLaw, pairLaw } from './pair-source';
 import { jointMoments, type PixelLaw, pixelLaw } from './pixel-law';
 import { type Bins, binsOf, columnsOf, evenBins, openCells, rowsOf } from './receivers';
@@ -43,9 +44,9 @@ export function truthOf(scenario: Scenario): PairTruth {
     unit: scenario.optics.kind === 'near' ? 'um' : '1/mm',
     birthUm,
     ratio,
-    reid: ratio ** 2 / (1 + ratio ** 2) ** 2,
-    mancini: 1 / ratio ** 2,
-    schmidt: (ratio + 1 / ratio) / 2,
+    reid: reidProduct(ratio),
+    mancini: manciniProduct(ratio),
+    schmidt: schmidtNumber(ratio),
     x: axisTruth(scenario, 'x'),
     y: axisTruth(scenario, 'y'),
   };
