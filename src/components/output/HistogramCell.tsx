@@ -3,8 +3,14 @@ import { findWindow } from './dial-marks';
 import { type CellProps, HEIGHTS, noteOf } from './MapCell';
 import { splitVariant } from './quantity-words';
 
+export interface HistogramCellProps extends CellProps {
+  /** Pixels, where it does not stand on the stage. */
+  height?: number;
+}
+
 /** A delay histogram with the coincidence window on it; the window is a dial where the bench gives one. */
-export function HistogramCell({ cell, note, specs, dials, onTurn, chosen, logScale }: CellProps) {
+export function HistogramCell(props: HistogramCellProps) {
+  const { cell, note, specs, dials, onTurn, chosen, logScale, height = HEIGHTS.wide } = props;
   const { id, map } = cell;
   const part = splitVariant(id).base.replace(/^delay\.histogram\.?/, '');
   const axis = map.axes[0]!;
@@ -29,7 +35,7 @@ export function HistogramCell({ cell, note, specs, dials, onTurn, chosen, logSca
     <div data-map={id}>
       <LinePlot
         map={map}
-        height={HEIGHTS.wide}
+        height={height}
         note={noteOf(cell, note)}
         style="steps"
         tone="pair"

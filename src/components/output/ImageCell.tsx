@@ -29,8 +29,8 @@ export function ImageCell(props: CellProps) {
         height={HEIGHTS.map}
         note={noteOf(cell, note)}
         logScale={logScale && map.scale === 'counts'}
-        crosshair={cursor.pointFor(map)}
-        onCrosshair={(point) => cursor.move(map, point)}
+        crosshair={cursor?.pointFor(map) ?? null}
+        onCrosshair={(point) => cursor?.move(map, point)}
         regions={marks}
         tool={
           active === undefined || onTurn === undefined

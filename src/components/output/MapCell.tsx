@@ -17,7 +17,7 @@ export interface CellContext {
   specs: readonly DialSpec[];
   dials: DialValues;
   onTurn: ((values: DialValues) => void) | undefined;
-  cursor: LinkedCursor;
+  cursor: LinkedCursor | null;
   logScale: boolean;
   chosen: Record<string, number>;
 }
@@ -67,8 +67,8 @@ function PlainMap({ cell, theme, note, cursor, logScale }: CellProps) {
         height={HEIGHTS.map}
         note={noteOf(cell, note)}
         logScale={logScale && map.scale === 'counts'}
-        crosshair={cursor.pointFor(map)}
-        onCrosshair={(point) => cursor.move(map, point)}
+        crosshair={cursor?.pointFor(map) ?? null}
+        onCrosshair={(point) => cursor?.move(map, point)}
       />
     </div>
   );
@@ -85,8 +85,8 @@ function JointCell({ cell, theme, note, cursor, logScale }: CellProps) {
         height={HEIGHTS.map}
         note={noteOf(cell, note)}
         logScale={logScale && map.scale === 'counts'}
-        crosshair={cursor.pointFor(map)}
-        onCrosshair={(point) => cursor.move(map, point)}
+        crosshair={cursor?.pointFor(map) ?? null}
+        onCrosshair={(point) => cursor?.move(map, point)}
         onPick={(ix, iy) => setPicked({ ix, iy })}
       />
       {picked === null ? (
@@ -112,8 +112,8 @@ function PlainLine({ cell, note, cursor }: CellProps) {
         tone={toneOf(id)}
         showModel={hasModel}
         showResiduals={isProjection && hasModel && map.sigma !== undefined}
-        cursor={cursor.pointFor(map)?.x ?? null}
-        onCursor={(at) => cursor.move(map, at === null ? null : { x: at, y: 0 })}
+        cursor={cursor?.pointFor(map)?.x ?? null}
+        onCursor={(at) => cursor?.move(map, at === null ? null : { x: at, y: 0 })}
       />
     </div>
   );

@@ -5,21 +5,27 @@ import type { BenchState, Found } from './bench-types';
 import { completeDials, type DialHistory, startHistory } from './dial-history';
 import { assignInputs, type Need, readyInputs } from './study-inputs';
 
-export function currentStudy({ studies, study }: BenchState): StudyInfo | null {
+/** What decides what is run; the rest of the bench is what came of it. */
+export type BenchPlan = Pick<
+  BenchState,
+  'study' | 'studies' | 'shelf' | 'chosen' | 'dials' | 'preset' | 'seed'
+>;
+
+export function currentStudy({ studies, study }: BenchPlan): StudyInfo | null {
   return studies.find(({ id }) => id === study) ?? null;
 }
 
-export function currentHistory({ dials, study }: BenchState): DialHistory {
+export function currentHistory({ dials, study }: BenchPlan): DialHistory {
   return dials[study] ?? startHistory({});
 }
 
-export function currentAssignment(state: BenchState): Record<string, string | null> {
+export function currentAssignment(state: BenchPlan): Record<string, string | null> {
   const study = currentStudy(state);
   return study === null ? {} : assignInputs(study, state.shelf, state.chosen[state.study] ?? {});
 }
 
 /** Dials as a preset or the engine takes them: all of them, defaults filled in. */
-export function currentDials(state: BenchState): DialValues {
+export function currentDials(state: BenchPlan): DialValues {
   const study = currentStudy(state);
   return study === null ? {} : completeDials(study.dials, currentHistory(state).present);
 }
@@ -29,7 +35,7 @@ export function currentFound({ found, study }: BenchState): Found | null {
 }
 
 /** What "changed" is measured from: the preset's dials for its own study, the defaults for the others. */
-export function baseDials({ preset, study }: BenchState): DialValues {
+export function baseDials({ preset, study }: BenchPlan): DialValues {
   return preset?.study === study ? preset.dials : {};
 }
 
@@ -44,7 +50,7 @@ export interface Plan {
 }
 
 /** What would be run now. */
-export function planRun(state: BenchState): Plan {
+export function planRun(state: BenchPlan): Plan {
   const study = currentStudy(state);
   if (study === null) return { needs: [], request: null, key: '', inputsKey: '' };
   const assignment = currentAssignment(state);

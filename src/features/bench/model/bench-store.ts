@@ -31,6 +31,13 @@ export interface SampleFile {
   input?: string;
 }
 
+export interface BenchSettings {
+  study: StudyId;
+  dials: DialValues;
+  inputs: Record<string, InputSetting>;
+  seed: number;
+}
+
 export interface BenchActions {
   loadStudies(): Promise<void>;
   addFiles(files: readonly SampleFile[]): void;
@@ -45,7 +52,8 @@ export interface BenchActions {
   undo(): void;
   redo(): void;
   resetDials(): void;
-  openPreset(ref: PresetRef, inputs: Record<string, InputSetting>): void;
+  /** Study, dials and readings at once, from a preset (`ref`) or a session (null). */
+  openSettings(settings: BenchSettings, ref: PresetRef | null): void;
   clear(): void;
   say(text: string, tone?: 'plain' | 'problem'): void;
 }
@@ -218,12 +226,12 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
         set(({ dials }) => ({ dials: { ...dials, [study]: replaceDials(currentHistory(get()), base) } }));
       },
 
-      openPreset(ref, inputs) {
-        const { study } = ref;
+      openSettings({ study, dials: given, inputs, seed }, ref) {
         set(({ dials, chosen }) => ({
           preset: ref,
           study,
-          dials: { ...dials, [study]: startHistory(ref.dials) },
+          seed,
+          dials: { ...dials, [study]: startHistory(given) },
           chosen: { ...chosen, [study]: {} },
           waiting: inputs,
         }));

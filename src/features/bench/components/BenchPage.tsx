@@ -1,0 +1,170 @@
+import { useQuery, useQueryClient } from '@tanstack/react-query';
+import { useEffect, useRef, useState } from 'react';
+import { Group, Panel, Separator, useDefaultLayout } from 'react-resizable-panels';
+import { useSearchParams } from 'react-router-dom';
+import { ProblemNote } from '../../../components/page/ProblemNote';
+import { Button } from '../../../components/ui/Button';
+import { useOwnGroup } from '../../../lib/query/me';
+import { samplesQuery } from '../../../lib/query/samples';
+import { readSetting, writeSetting } from '../../../lib/settings';
+import { openSample, openWanted, readWanted } from '../model/open-bench';
+import { type Bench, BenchProvider, useBench, useBenchState } from './bench-context';
+import { DialsRegion } from './DialsRegion';
+import { DropZone } from './DropZone';
+import { LedgerRegion } from './LedgerRegion';
+import { ReadingDialog } from './ReadingDialog';
+import { ShelfRegion } from './ShelfRegion';
+import { StageRegion } from './StageRegion';
+import { useBenchKeys } from './use-bench-keys';
+
+/** The workbench: shelf, stage, dials and ledger around one engine. `bench` is for tests. */
+export function BenchPage({ bench }: { bench?: Bench }) {
+  return (
+    <BenchProvider bench={bench}>
+      <title>Bench · Gemel</title>
+      <BenchBody />
+    </BenchProvider>
+  );
+}
+
+export { BenchPage as Component };
+
+function BenchBody() {
+  const { store } = useBench();
+  const group = useOwnGroup();
+  const readOnly = group.role === 'runner' || group.role === 'guest';
+  const picker = useRef<HTMLInputElement>(null);
+  const [editing, setEditing] = useState<string | null>(null);
+  const acquisition = useBenchState((state) => state.shelf.find(({ id }) => id === editing) ?? null);
+  const samples = useQuery(samplesQuery).data?.presets ?? [];
+  const opening = useOpening(group.id);
+  const addFiles = (files: readonly File[]): void =>
+    store.getState().addFiles(files.map((file) => ({ file, sample: null })));
+  const open = (): void => picker.current?.click();
+  useBenchKeys({ open, readOnly });
+  return (
+    <DropZone onFiles={addFiles}>
+      <h1 className="sr-only">Bench</h1>
+      <input
+        ref={picker}
+        type="file"
+        multiple
+        hidden
+        aria-label="Open acquisitions"
+        data-testid="bench-files"
+        onChange={(event) => {
+          addFiles([...(event.target.files ?? [])]);
+          // The same file again is a new wish.
+          event.target.value = '';
+        }}
+      />
+      {opening.problem === null ? null : (
+        <div className="border-b border-line px-4 py-2">
+          <ProblemNote error={opening.problem}>
+            <Button size="sm" onClick={opening.retry}>
+              Try again
+            </Button>
+            <Button size="sm" variant="quiet" onClick={opening.dismiss}>
+              Dismiss
+            </Button>
+          </ProblemNote>
+        </div>
+      )}
+      <Regions
+        shelf={
+          <ShelfRegion
+            readOnly={readOnly}
+            samples={samples.map((entry) => ({
+              label: entry.preset.name,
+              open: () => opening.attempt(() => openSample(store, entry)),
+            }))}
+            onOpen={open}
+            onEdit={setEditing}
+          />
+        }
+        stage={<StageRegion readOnly={readOnly} onEdit={setEditing} onOpen={open} />}
+        dials={<DialsRegion readOnly={readOnly} />}
+        ledger={<LedgerRegion group={group} />}
+      />
+      {acquisition === null ? null : (
+        <ReadingDialog key={acquisition.id} acquisition={acquisition} onClose={() => setEditing(null)} />
+      )}
+    </DropZone>
+  );
+}
+
+const storage = { getItem: readSetting, setItem: writeSetting };
+
+interface RegionsProps {
+  shelf: React.ReactNode;
+  stage: React.ReactNode;
+  dials: React.ReactNode;
+  ledger: React.ReactNode;
+}
+
+/** Four regions with borders that move, by hand or by arrow keys, and stay where they were put. */
+function Regions({ shelf, stage, dials, ledger }: RegionsProps) {
+  const rows = useDefaultLayout({ id: 'bench.rows', panelIds: ['top', 'ledger'], storage });
+  const columns = useDefaultLayout({ id: 'bench.columns', panelIds: ['shelf', 'stage', 'dials'], storage });
+  return (
+    <Group
+      orientation="vertical"
+      className="min-h-0 flex-1"
+      defaultLayout={rows.defaultLayout}
+      onLayoutChanged={rows.onLayoutChanged}
+    >
+      <Panel id="top" minSize={180}>
+        <Group
+          orientation="horizontal"
+          defaultLayout={columns.defaultLayout}
+          onLayoutChanged={columns.onLayoutChanged}
+        >
+          <Panel id="shelf" defaultSize="18%" minSize={170}>
+            {shelf}
+          </Panel>
+          <Separator aria-label="Between shelf and stage" className={BORDER_X} />
+          <Panel id="stage" minSize={320}>
+            {stage}
+          </Panel>
+          <Separator aria-label="Between stage and dials" className={BORDER_X} />
+          <Panel id="dials" defaultSize="21%" minSize={210}>
+            {dials}
+          </Panel>
+        </Group>
+      </Panel>
+      <Separator aria-label="Between stage and ledger" className={BORDER_Y} />
+      <Panel id="ledger" defaultSize="30%" minSize={90}>
+        {ledger}
+      </Panel>
+    </Group>
+  );
+}
+
+const BORDER = 'bg-line hover:bg-control focus-visible:bg-focus data-[separator=active]:bg-control';
+const BORDER_X = `${BORDER} w-px`;
+const BORDER_Y = `${BORDER} h-px`;
+
+/** Puts on the bench what the address asks for, once; another visit to the same address changes nothing. */
+function useOpening(groupId: string) {
+  const bench = useBench();
+  const queries = useQueryClient();
+  const [search] = useSearchParams();
+  const [problem, setProblem] = useState<unknown>(null);
+  const [tries, setTries] = useState(0);
+  const address = search.toString();
+  const attempt = (action: () => Promise<void>): void => {
+    setProblem(null);
+    action().catch((thrown: unknown) => setProblem(thrown));
+  };
+  useEffect(() => {
+    const wanted = readWanted(new URLSearchParams(address));
+    const key = `${groupId} ${address} ${tries}`;
+    if (wanted === null || bench.openedFrom.current === key) return;
+    bench.openedFrom.current = key;
+    setProblem(null);
+    openWanted({ store: bench.store, queries, groupId }, wanted).catch((thrown: unknown) =>
+      setProblem(thrown),
+    );
+  }, [address, groupId, tries, bench, queries]);
+  return { problem, attempt, retry: () => setTries(tries + 1), dismiss: () => setProblem(null) };
+}

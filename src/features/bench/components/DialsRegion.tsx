@@ -1,0 +1,102 @@
+import { Redo2, Undo2 } from 'lucide-react';
+import type { DialSpec } from '../../../../shared/contracts/dial';
+import { Button } from '../../../components/ui/Button';
+import { IconButton } from '../../../components/ui/IconButton';
+import { baseDials, currentDials, currentHistory, currentStudy } from '../model/bench-selectors';
+import { changedDials } from '../model/dial-history';
+import { useBench, useBenchPlan, useBenchState } from './bench-context';
+import { DialControl } from './DialControl';
+import { DialHistogram } from './DialHistogram';
+import { Region } from './Region';
+
+export interface DialsRegionProps {
+  readOnly: boolean;
+}
+
+const GROUPS = [
+  { needs: 'finish', title: 'answer at once' },
+  { needs: 'bytes', title: 'count again' },
+] as const;
+
+/** The parameters of the study, grouped by what turning them costs. */
+export function DialsRegion({ readOnly }: DialsRegionProps) {
+  const { store } = useBench();
+  const study = useBenchPlan(currentStudy);
+  const values = useBenchPlan(currentDials);
+  const history = useBenchPlan(currentHistory);
+  const base = useBenchPlan(baseDials);
+  const preset = useBenchState((state) => (state.preset?.study === state.study ? state.preset : null));
+  const chosen = useBenchState((state) => state.found[state.study]?.output.chosen);
+  if (study === null) return <Region title="dials">{null}</Region>;
+  const changed = changedDials(study.dials, values, base);
+  const { turn, undo, redo, resetDials } = store.getState();
+  const presetWords =
+    preset === null ? '' : `${preset.name}${preset.version === null ? '' : ` v${preset.version}`}`;
+  const note = [presetWords, changed.size > 0 ? `${changed.size} changed` : ''].filter(Boolean).join(' · ');
+  return (
+    <Region
+      title="dials"
+      note={note}
+      actions={
+        readOnly ? undefined : (
+          <span className="-mr-2 flex">
+            <IconButton label="Undo" shortcut="Ctrl Z" disabled={history.past.length === 0} onClick={undo}>
+              <Undo2 size={14} aria-hidden="true" />
+            </IconButton>
+            <IconButton
+              label="Redo"
+              shortcut="Ctrl Shift Z"
+              disabled={history.future.length === 0}
+              onClick={redo}
+            >
+              <Redo2 size={14} aria-hidden="true" />
+            </IconButton>
+          </span>
+        )
+      }
+    >
+      {readOnly ? (
+        <p className="mb-3 text-xs text-dim">
+          As a runner you run presets as they are: the inputs can be chosen, the dials stand.
+        </p>
+      ) : null}
+      {GROUPS.map(({ needs, title }) => {
+        const dials = orderDials(study.dials.filter((spec) => spec.needs === needs));
+        if (dials.length === 0) return null;
+        return (
+          <div key={needs} className="mb-5">
+            <h3 className="font-mono text-xs text-dim">{title}</h3>
+            <div className="mt-1 flex flex-col divide-y divide-line border-t border-line">
+              {dials.map((spec) => (
+                <div key={spec.id} className="py-2">
+                  {spec.id === 'window' && study.id !== 'delay' ? (
+                    <DialHistogram readOnly={readOnly} />
+                  ) : null}
+                  <DialControl
+                    spec={spec}
+                    value={values[spec.id] ?? null}
+                    chosen={chosen?.[spec.id] ?? null}
+                    changed={changed.has(spec.id)}
+                    readOnly={readOnly}
+                    onTurn={(value) => turn({ [spec.id]: value })}
+                  />
+                </div>
+              ))}
+            </div>
+          </div>
+        );
+      })}
+      {readOnly || changed.size === 0 ? null : (
+        <Button size="sm" onClick={resetDials}>
+          {preset === null ? 'Reset to defaults' : `Reset to ${presetWords}`}
+        </Button>
+      )}
+    </Region>
+  );
+}
+
+/** The two one turns most come first. */
+function orderDials(dials: readonly DialSpec[]): DialSpec[] {
+  const rank = ({ id }: DialSpec): number => (id === 'window' ? 0 : id === 'delay' ? 1 : 2);
+  return [...dials].sort((a, b) => rank(a) - rank(b));
+}

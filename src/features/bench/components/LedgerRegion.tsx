@@ -1,0 +1,49 @@
+import { LedgerSection } from '../../../components/output/LedgerSection';
+import { OutputLedger } from '../../../components/output/OutputLedger';
+import { planRun } from '../model/bench-selectors';
+import type { LogLine } from '../model/bench-types';
+import { useBenchPlan, useBenchState } from './bench-context';
+import { Region } from './Region';
+import { SaveActions, type SaveActionsProps } from './SaveActions';
+import { noteOfFound } from './StageRegion';
+
+/** The numbers, the checks and the job log. */
+export function LedgerRegion(props: SaveActionsProps) {
+  const found = useBenchState((state) => state.found[state.study] ?? null);
+  const log = useBenchState((state) => state.log);
+  const key = useBenchPlan(planRun).key;
+  const note = found === null ? null : noteOfFound(found, key);
+  return (
+    <Region title="ledger" note={note ?? undefined} actions={<SaveActions {...props} />}>
+      <div className="flex flex-col gap-5">
+        {found === null ? (
+          <p className="text-sm text-dim">
+            Quantities with their uncertainties, verdicts and checks stand here once a study has run.
+          </p>
+        ) : (
+          <OutputLedger output={found.output} provenance={found.result?.provenance ?? null} />
+        )}
+        <LedgerSection title="Job log">
+          <JobLog log={log} />
+        </LedgerSection>
+      </div>
+    </Region>
+  );
+}
+
+function JobLog({ log }: { log: readonly LogLine[] }) {
+  if (log.length === 0) return <p className="text-sm text-dim">Nothing has happened yet.</p>;
+  return (
+    <ol aria-label="Job log" className="flex flex-col font-mono text-xs text-dim">
+      {[...log].reverse().map(({ id, at, text, tone }) => (
+        <li key={id} className="flex gap-3 py-px">
+          <time dateTime={at.toISOString()}>{at.toTimeString().slice(0, 8)}</time>
+          <span className={tone === 'problem' ? 'text-fail' : 'text-text'}>
+            {tone === 'problem' ? '× ' : ''}
+            {text}
+          </span>
+        </li>
+      ))}
+    </ol>
+  );
+}

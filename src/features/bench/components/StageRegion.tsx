@@ -1,0 +1,158 @@
+import { OutputStage } from '../../../components/output/OutputStage';
+import { Button } from '../../../components/ui/Button';
+import { ProgressBar } from '../../../components/ui/ProgressBar';
+import { useTheme } from '../../../lib/theme/theme';
+import { currentDials, currentStudy, planRun } from '../model/bench-selectors';
+import type { Found } from '../model/bench-types';
+import { progressWords } from '../model/run-bench';
+import { useBench, useBenchPlan, useBenchState } from './bench-context';
+import { EmptyStage } from './EmptyStage';
+import { ProblemText } from './ProblemText';
+import { StudyPicker } from './StudyPicker';
+
+export interface StageRegionProps {
+  readOnly: boolean;
+  onEdit(acquisitionId: string): void;
+  onOpen(): void;
+}
+
+/** "41 % read", "from earlier settings": what keeps a number from being final. */
+export function noteOfFound(found: Found, key: string): string | null {
+  if (found.fraction !== null) return `${Math.floor(found.fraction * 100)} % read`;
+  return found.key === key ? null : 'from earlier settings';
+}
+
+/** The plots of the study, with what is missing or under way above them. */
+export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
+  const { store } = useBench();
+  const theme = useTheme();
+  const study = useBenchPlan(currentStudy);
+  const plan = useBenchPlan(planRun);
+  const dials = useBenchPlan(currentDials);
+  const found = useBenchState((state) => state.found[state.study] ?? null);
+  return (
+    <section aria-label="stage" className="flex h-full min-h-0 flex-col">
+      <header className="flex min-h-9 shrink-0 items-stretch justify-between gap-4 border-b border-line px-4">
+        <h2 className="sr-only">stage</h2>
+        <StudyPicker />
+        <RunLine />
+      </header>
+      <div
+        id="bench-stage"
+        role="tabpanel"
+        aria-label={study?.label ?? 'Study'}
+        className="min-h-0 flex-1 overflow-auto px-4 py-3 focus-visible:-outline-offset-2"
+        // biome-ignore lint/a11y/noNoninteractiveTabindex: a region that scrolls must be reachable by keyboard
+        tabIndex={0}
+      >
+        <RunProblem />
+        {study !== null && plan.needs.length > 0 ? (
+          <EmptyStage study={study} needs={plan.needs} onEdit={onEdit} onOpen={onOpen} />
+        ) : null}
+        {found === null ? null : (
+          <OutputStage
+            output={found.output}
+            theme={theme}
+            note={noteOfFound(found, plan.key)}
+            specs={study?.dials}
+            dials={dials}
+            onTurn={readOnly ? undefined : store.getState().turn}
+          >
+            <p className="max-w-prose text-sm text-dim">{study?.answers}</p>
+          </OutputStage>
+        )}
+        {found === null && plan.needs.length === 0 ? <Waiting /> : null}
+      </div>
+    </section>
+  );
+}
+
+function Waiting() {
+  const run = useBenchState((state) => state.run);
+  if (run.status === 'failed') return null;
+  return (
+    <p className="py-6 text-dim">
+      {run.status === 'cancelled'
+        ? 'Cancelled before the first picture.'
+        : 'The first picture is on its way.'}
+    </p>
+  );
+}
+
+/** Progress with its cancel, at the right of the studies. */
+function RunLine() {
+  const { runner } = useBench();
+  const run = useBenchState((state) => state.run);
+  if (run.status === 'cancelled') {
+    return (
+      <span className="flex items-center gap-3 font-mono text-xs text-dim" role="status">
+        cancelled
+        <Button size="sm" onClick={runner.again}>
+          Run again
+        </Button>
+      </span>
+    );
+  }
+  if (run.status === 'done') {
+    return (
+      <span className="flex items-center font-mono text-xs text-dim" role="status">
+        done in {run.seconds.toFixed(1)} s
+      </span>
+    );
+  }
+  if (run.status !== 'running') return null;
+  const { progress } = run;
+  const share =
+    progress === null || progress.bytesTotal === 0 ? null : progress.bytesDone / progress.bytesTotal;
+  return (
+    <span className="flex min-w-0 items-center gap-3 font-mono text-xs text-dim">
+      <span className="min-w-0 truncate" data-testid="run-progress">
+        {progress === null ? 'starting' : `${progress.stage} · ${progressWords(progress)}`}
+      </span>
+      <span className="w-24 shrink-0">
+        <ProgressBar value={share} label="Reading" />
+      </span>
+      <Button size="sm" onClick={runner.cancel}>
+        Cancel
+      </Button>
+    </span>
+  );
+}
+
+function RunProblem() {
+  const { runner, engine, store } = useBench();
+  const run = useBenchState((state) => state.run);
+  const studiesProblem = useBenchState((state) => state.studiesProblem);
+  if (studiesProblem !== null) {
+    return (
+      <ProblemText problem={studiesProblem}>
+        <Button
+          size="sm"
+          onClick={() => {
+            engine.restart();
+            void store.getState().loadStudies();
+          }}
+        >
+          Start the engine again
+        </Button>
+      </ProblemText>
+    );
+  }
+  if (run.status !== 'failed') return null;
+  const isInternal = run.problem.code === 'internal';
+  return (
+    <div className="mb-4">
+      <ProblemText problem={run.problem}>
+        <Button
+          size="sm"
+          onClick={() => {
+            if (isInternal) engine.restart();
+            runner.again();
+          }}
+        >
+          {isInternal ? 'Start the engine again' : 'Try again'}
+        </Button>
+      </ProblemText>
+    </div>
+  );
+}

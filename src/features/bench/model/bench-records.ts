@@ -1,0 +1,52 @@
+import type { BenchState as SavedBench } from '../../../../shared/contracts/http';
+import type { InputSetting, Preset } from '../../../../shared/contracts/preset';
+import { currentAssignment, currentDials, currentStudy } from './bench-selectors';
+import type { BenchState } from './bench-types';
+
+/** What is stored of the bench: presets and sessions. The bytes of acquisitions never leave the machine. */
+
+export function presetOfBench(state: BenchState, name: string): Preset {
+  const assignment = currentAssignment(state);
+  const study = currentStudy(state);
+  const inputs: Record<string, InputSetting> = {};
+  for (const { name: input } of study?.inputs ?? []) {
+    const acquisition = state.shelf.find(({ id }) => id === assignment[input]);
+    const waiting = state.waiting[input];
+    if (acquisition !== undefined) {
+      const { layout, detector, detectorGiven, plane } = acquisition;
+      // A proposed map carries a pitch nobody gave; it is proposed anew from the next file.
+      inputs[input] = { layout, detector: detectorGiven ? detector : null, plane };
+    } else if (waiting !== undefined) inputs[input] = waiting;
+  }
+  return { gemel: 1, kind: 'preset', name, study: state.study, dials: currentDials(state), inputs };
+}
+
+export function sessionOfBench(state: BenchState, name: string, resultId: string | null): SavedBench {
+  const assignment = currentAssignment(state);
+  const inputOf = (id: string): string | null =>
+    Object.entries(assignment).find(([, held]) => held === id)?.[0] ?? null;
+  return {
+    version: 1,
+    study: state.study,
+    preset: presetOfBench(state, name),
+    shelf: state.shelf.map(({ id, name: file, bytes, sha256, sample }) => ({
+      name: file,
+      bytes,
+      sha256,
+      input: inputOf(id),
+      sample,
+    })),
+    seed: state.seed,
+    resultId,
+  };
+}
+
+/** The preset a result names: only while nothing was changed against it. */
+export function presetOfResult(
+  state: BenchState,
+  changed: number,
+): { name: string; version: number | null } | null {
+  const { preset, study } = state;
+  if (preset === null || preset.study !== study || changed > 0) return null;
+  return { name: preset.name, version: preset.version };
+}

@@ -1,0 +1,102 @@
+import type { QueryClient } from '@tanstack/react-query';
+import type { Samples } from '../../../../shared/contracts/http';
+import { Problem } from '../../../../shared/errors/problem';
+import { presetQuery } from '../../../lib/query/presets';
+import { samplesQuery } from '../../../lib/query/samples';
+import { sessionQuery } from '../../../lib/query/sessions';
+import { fetchSample } from '../api/sample-file';
+import type { BenchStore } from './bench-store';
+import { DEFAULT_SEED } from './bench-types';
+
+/** What the address asks to be put on the bench. */
+export type Wanted =
+  | { kind: 'session'; id: string }
+  | { kind: 'preset'; id: string; version: number | null }
+  | { kind: 'sample'; index: number };
+
+export function readWanted(search: URLSearchParams): Wanted | null {
+  const session = search.get('session');
+  if (session !== null) return { kind: 'session', id: session };
+  const preset = search.get('preset');
+  if (preset !== null) {
+    const version = Number(search.get('version'));
+    return { kind: 'preset', id: preset, version: Number.isInteger(version) && version > 0 ? version : null };
+  }
+  const sample = search.get('sample');
+  return sample === null ? null : { kind: 'sample', index: Number(sample) };
+}
+
+export interface Opener {
+  store: BenchStore;
+  queries: QueryClient;
+  groupId: string;
+}
+
+export function openWanted(opener: Opener, wanted: Wanted): Promise<void> {
+  if (wanted.kind === 'session') return openSession(opener, wanted.id);
+  if (wanted.kind === 'preset') return openPreset(opener, wanted.id, wanted.version);
+  return openSampleAt(opener, wanted.index);
+}
+
+async function openSession({ store, queries, groupId }: Opener, id: string): Promise<void> {
+  const { name, state } = await queries.fetchQuery(sessionQuery(groupId, id));
+  const actions = store.getState();
+  actions.clear();
+  const { study, dials, inputs } = state.preset;
+  actions.openSettings({ study, dials, inputs, seed: state.seed }, null);
+  const own = state.shelf.filter(({ sample }) => sample === null);
+  actions.awaitFiles(own);
+  actions.say(`Session ${name} opened.`);
+  for (const { name: file } of own) actions.say(`Drop ${file} again: its bytes stayed on your machine.`);
+  await Promise.all(
+    state.shelf.map(async ({ sample, input }) => {
+      if (sample === null) return;
+      actions.addFiles([{ file: await fetchSample(sample), sample, ...(input === null ? {} : { input }) }]);
+    }),
+  );
+}
+
+async function openPreset(
+  { store, queries, groupId }: Opener,
+  id: string,
+  version: number | null,
+): Promise<void> {
+  const row = await queries.fetchQuery(presetQuery(groupId, id, version));
+  const { study, dials, inputs, name } = row.preset;
+  const actions = store.getState();
+  actions.openSettings(
+    { study, dials, inputs, seed: DEFAULT_SEED },
+    { id: row.id, name, version: row.version, study, dials },
+  );
+  actions.say(`Preset ${name} v${row.version} opened.`);
+}
+
+async function openSampleAt(opener: Opener, index: number): Promise<void> {
+  const { presets } = await opener.queries.ensureQueryData(samplesQuery);
+  const entry = presets[index];
+  if (entry === undefined) {
+    throw new Problem(
+      'bad-input',
+      `There is no sample ${Number.isNaN(index) ? 'of that number' : index}; there are ${presets.length}. Choose one under Open samples on the shelf.`,
+    );
+  }
+  await openSample(opener.store, entry);
+}
+
+/** A sample preset with its acquisitions, in place of what is on the bench. */
+export async function openSample(store: BenchStore, entry: Samples['presets'][number]): Promise<void> {
+  const { preset, files } = entry;
+  const { study, dials, inputs, name } = preset;
+  const actions = store.getState();
+  actions.clear();
+  actions.openSettings(
+    { study, dials, inputs, seed: DEFAULT_SEED },
+    { id: null, name, version: null, study, dials },
+  );
+  actions.say(`Sample preset ${name} opened.`);
+  await Promise.all(
+    Object.entries(files).map(async ([input, sample]) =>
+      actions.addFiles([{ file: await fetchSample(sample), sample, input }]),
+    ),
+  );
+}
