@@ -2,20 +2,20 @@ import { useQuery, useQueryClient } from '@tanstack/react-query';
 import { useEffect, useRef, useState } from 'react';
 import { Group, Panel, Separator, useDefaultLayout } from 'react-resizable-panels';
 import { useSearchParams } from 'react-router-dom';
-import { ProblemNote } from '../../../components/page/ProblemNote';
-import { Button } from '../../../components/ui/Button';
-import { useOwnGroup } from '../../../lib/query/me';
-import { samplesQuery } from '../../../lib/query/samples';
-import { readSetting, writeSetting } from '../../../lib/settings';
-import { openSample, openWanted, readWanted } from '../model/open-bench';
-import { type Bench, BenchProvider, useBench, useBenchState } from './bench-context';
-import { DialsRegion } from './DialsRegion';
-import { DropZone } from './DropZone';
-import { LedgerRegion } from './LedgerRegion';
-import { ReadingDialog } from './ReadingDialog';
-import { ShelfRegion } from './ShelfRegion';
-import { StageRegion } from './StageRegion';
-import { useBenchKeys } from './use-bench-keys';
+import { ProblemNote } from '../../components/page/ProblemNote';
+import { Button } from '../../components/ui/Button';
+import { useOwnGroup } from '../../lib/query/me';
+import { samplesQuery } from '../../lib/query/samples';
+import { readSetting, writeSetting } from '../../lib/settings';
+import { type Bench, BenchProvider, useBench, useBenchState } from './components/bench-context';
+import { DialsRegion } from './components/DialsRegion';
+import { DropZone } from './components/DropZone';
+import { LedgerRegion } from './components/LedgerRegion';
+import { ReadingDialog } from './components/ReadingDialog';
+import { ShelfRegion } from './components/ShelfRegion';
+import { StageRegion } from './components/StageRegion';
+import { useBenchKeys } from './components/use-bench-keys';
+import { openSample, openWanted, readWanted } from './model/open-bench';
 
 /** The workbench: shelf, stage, dials and ledger around one engine. `bench` is for tests. */
 export function BenchPage({ bench }: { bench?: Bench }) {
@@ -26,8 +26,6 @@ export function BenchPage({ bench }: { bench?: Bench }) {
     </BenchProvider>
   );
 }
-
-export { BenchPage as Component };
 
 function BenchBody() {
   const { store } = useBench();
