@@ -1,4 +1,13 @@
-import type { Plane } from '../contracts/plane';
+interface Calibrated {
+  value: number;
+  /** 1-sigma. */
+  sigma: number;
+}
+
+/** The plane's calibration: image over object size; effective focal length in mm and vacuum wavelengths in nm. */
+export type PlaneCalibration =
+  | { kind: 'near'; magnification: Calibrated }
+  | { kind: 'far'; focalLengthMm: Calibrated; signalNm: Calibrated; idlerNm: Calibrated };
 
 /**
  * Detector pixels to crystal units. Near field x = X / M in um; far field k = 2 pi X / (lambda f) in rad/mm with the
@@ -21,7 +30,7 @@ export function farFieldK(positionUm: number, wavelengthNm: number, focalLengthM
   return (2 * Math.PI * positionUm * 1e3) / (wavelengthNm * focalLengthMm);
 }
 
-export function planeScale(plane: Plane): PlaneScale {
+export function planeScale(plane: PlaneCalibration): PlaneScale {
   if (plane.kind === 'near') {
     const { value, sigma } = plane.magnification;
     return { unit: 'um', symbol: 'x', signal: 1 / value, idler: 1 / value, relative: sigma / value };

@@ -88,10 +88,7 @@ export function fitPair(input: PairFitInput): PairFit | null {
   }
   const { shape } = fit;
   const { chi2, ndf } = pearson(total, fit.model, use, 6);
-  const inside = fit.peak.reduce(
-    (part, v, c) => part + (use[c] === 1 && (envelope[c] as number) > 0 ? v / (envelope[c] as number) : 0),
-    0,
-  );
+  const inside = fit.bare.reduce((part, v) => part + v, 0);
   const influence = blockInfluence(
     fit,
     slices,

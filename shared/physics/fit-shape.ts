@@ -41,8 +41,9 @@ export interface ShapeFit {
   shape: PeakShape;
   background: number;
   model: Float64Array;
-  /** A e g of every cell, without the background. */
+  /** A e g of every cell without the background, and A g. */
   peak: Float64Array;
+  bare: Float64Array;
   /** Indices of the free parameters, and the inverse Fisher matrix over them (row-major). */
   free: number[];
   covariance: Float64Array;
@@ -69,7 +70,7 @@ interface State {
 
 export function fitShape(problem: ShapeProblem): ShapeFit {
   const { start } = problem;
-  const free = [INDEX.amplitude, INDEX.xx, INDEX.xy, INDEX.yy];
+  const free: number[] = [INDEX.amplitude, INDEX.xx, INDEX.xy, INDEX.yy];
   if (problem.freeCentre) free.push(INDEX.mx, INDEX.my);
   if (problem.freeBackground) free.push(INDEX.background);
   free.sort((a, b) => a - b);
@@ -100,8 +101,8 @@ export function fitShape(problem: ShapeProblem): ShapeFit {
         next[p] = (next[p] as number) + (delta[k] as number);
       });
       keepPossible(next, problem);
-      const trial = evaluateAt(problem, next, spare);
-      if (trial.objective <= state.objective) {
+      const trial = withinReach(next, problem.grid) ? evaluateAt(problem, next, spare) : null;
+      if (trial !== null && trial.objective <= state.objective) {
         const gain = state.objective - trial.objective;
         spare = state.values;
         state = trial;
@@ -117,7 +118,7 @@ export function fitShape(problem: ShapeProblem): ShapeFit {
 }
 
 function evaluateAt(problem: ShapeProblem, params: Float64Array, values: CellValues): State {
-  evaluateCells(shapeOf(params), problem.grid, problem.nodes, problem.use, values);
+  evaluateCells(shapeOf(params), problem.grid, problem.nodes, values);
   const { data, use, variance } = problem;
   let objective = 0;
   for (let c = 0; c < data.length; c += 1) {
@@ -153,15 +154,42 @@ function shapeOf(p: Float64Array): PeakShape {
   };
 }
 
-/** Derivative of the model by parameter p at cell c. */
-function slope(problem: ShapeProblem, state: State, p: number, c: number): number {
-  if (p === INDEX.background) return problem.background[c] as number;
-  const e = problem.envelope === null ? 1 : (problem.envelope[c] as number);
-  if (p === INDEX.amplitude) return e * (state.values.value[c] as number);
-  const cells = problem.data.length;
-  return (
-    (state.params[INDEX.amplitude] as number) * e * (state.values.derivative[(p - 1) * cells + c] as number)
-  );
+/** Derivatives of the model by the free parameters, one column each; zero where the cell does not count. */
+function slopeColumns(problem: ShapeProblem, state: State, free: readonly number[]): Float64Array[] {
+  const { background, envelope, use } = problem;
+  const { value, derivative } = state.values;
+  const cells = use.length;
+  const amplitude = state.params[INDEX.amplitude] as number;
+  return free.map((p) => {
+    const column = new Float64Array(cells);
+    for (let c = 0; c < cells; c += 1) {
+      if (use[c] !== 1) continue;
+      if (p === INDEX.background) {
+        column[c] = background[c] as number;
+        continue;
+      }
+      const e = envelope === null ? 1 : (envelope[c] as number);
+      column[c] =
+        p === INDEX.amplitude
+          ? e * (value[c] as number)
+          : amplitude * e * (derivative[(p - 1) * cells + c] as number);
+    }
+    return column;
+  });
+}
+
+/** 1 / variance of every cell that counts (1 / model for counts), and data - model. */
+function weightsOf(problem: ShapeProblem, state: State): { weight: Float64Array; residual: Float64Array } {
+  const { data, use, variance } = problem;
+  const weight = new Float64Array(data.length);
+  const residual = new Float64Array(data.length);
+  for (let c = 0; c < data.length; c += 1) {
+    if (use[c] !== 1) continue;
+    const model = modelAt(problem, state.params, state.values, c);
+    weight[c] = 1 / (variance === null ? model : (variance[c] as number));
+    residual[c] = (data[c] as number) - model;
+  }
+  return { weight, residual };
 }
 
 function normalEquations(
@@ -169,25 +197,27 @@ function normalEquations(
   state: State,
   free: readonly number[],
 ): { fisher: Matrix; score: Float64Array } {
-  const { data, use, variance } = problem;
+  const columns = slopeColumns(problem, state, free);
+  const { weight, residual } = weightsOf(problem, state);
   const k = free.length;
   const fisher = Matrix.zeros(k, k);
   const score = new Float64Array(k);
-  const row = new Float64Array(k);
-  for (let c = 0; c < data.length; c += 1) {
-    if (use[c] !== 1) continue;
-    const model = modelAt(problem, state.params, state.values, c);
-    const weight = 1 / (variance === null ? model : (variance[c] as number));
-    const residual = (data[c] as number) - model;
-    for (let a = 0; a < k; a += 1) row[a] = slope(problem, state, free[a] as number, c);
-    for (let a = 0; a < k; a += 1) {
-      const wa = weight * (row[a] as number);
-      score[a] = (score[a] as number) + wa * residual;
-      for (let b = 0; b <= a; b += 1) fisher.set(a, b, fisher.get(a, b) + wa * (row[b] as number));
+  for (let a = 0; a < k; a += 1) {
+    const weighted = (columns[a] as Float64Array).map((v, c) => v * (weight[c] as number));
+    score[a] = dot(weighted, residual);
+    for (let b = 0; b <= a; b += 1) {
+      const value = dot(weighted, columns[b] as Float64Array);
+      fisher.set(a, b, value);
+      fisher.set(b, a, value);
     }
   }
-  for (let a = 0; a < k; a += 1) for (let b = 0; b < a; b += 1) fisher.set(b, a, fisher.get(a, b));
   return { fisher, score };
+}
+
+function dot(a: Float64Array, b: Float64Array): number {
+  let out = 0;
+  for (let c = 0; c < a.length; c += 1) out += (a[c] as number) * (b[c] as number);
+  return out;
 }
 
 /** Scaled to a unit diagonal first: amplitude and widths differ by orders of magnitude. */
@@ -232,8 +262,19 @@ function keepPossible(p: Float64Array, problem: ShapeProblem): void {
   p[INDEX.xy] = ((high - low) / 2) * sin;
 }
 
+/** A centre off the map or a width beyond twice its size means the step was too long, not that the peak is there. */
+function withinReach(p: Float64Array, grid: CellGrid): boolean {
+  const { mx, my, xx, yy } = shapeOf(p);
+  return (
+    Math.abs(mx - grid.x0 - grid.nx / 2) < grid.nx &&
+    Math.abs(my - grid.y0 - grid.ny / 2) < grid.ny &&
+    xx < 4 * grid.nx * grid.nx &&
+    yy < 4 * grid.ny * grid.ny
+  );
+}
+
 function report(problem: ShapeProblem, state: State, free: number[], converged: boolean): ShapeFit {
-  const { data, use, variance, background } = problem;
+  const { data, background } = problem;
   const k = free.length;
   const { fisher } = normalEquations(problem, state, free);
   const inverted = invertScaled(fisher, 0);
@@ -241,28 +282,28 @@ function report(problem: ShapeProblem, state: State, free: number[], converged: 
   for (let a = 0; a < k; a += 1) for (let b = 0; b < k; b += 1) covariance[a * k + b] = inverted.get(a, b);
   const model = new Float64Array(data.length);
   const peak = new Float64Array(data.length);
-  const scoreRows = free.map(() => new Float64Array(data.length));
-  const backgroundCoupling = new Float64Array(k);
+  const amplitude = state.params[INDEX.amplitude] as number;
+  const bare = state.values.value.map((g) => amplitude * g);
   for (let c = 0; c < data.length; c += 1) {
-    const value = modelAt(problem, state.params, state.values, c);
-    model[c] = value;
-    peak[c] = value - (state.params[INDEX.background] as number) * (background[c] as number);
-    if (use[c] !== 1) continue;
-    const weight = 1 / (variance === null ? value : (variance[c] as number));
-    for (let a = 0; a < k; a += 1) {
-      const row = weight * slope(problem, state, free[a] as number, c);
-      (scoreRows[a] as Float64Array)[c] = row;
-      backgroundCoupling[a] = (backgroundCoupling[a] as number) + row * (background[c] as number);
-    }
+    model[c] = modelAt(problem, state.params, state.values, c);
+    peak[c] = (bare[c] as number) * (problem.envelope === null ? 1 : (problem.envelope[c] as number));
   }
+  const { weight } = weightsOf(problem, state);
+  const scoreRows = slopeColumns(problem, state, free);
+  for (const row of scoreRows)
+    row.forEach((v, c) => {
+      row[c] = v * (weight[c] as number);
+    });
+  const backgroundCoupling = Float64Array.from(scoreRows, (row) => dot(row, background));
   const shape = shapeOf(state.params);
   const narrow = (shape.xx + shape.yy) / 2 - Math.hypot((shape.xx - shape.yy) / 2, shape.xy);
   return {
-    amplitude: state.params[INDEX.amplitude] as number,
+    amplitude,
     shape,
     background: state.params[INDEX.background] as number,
     model,
     peak,
+    bare,
     free,
     covariance,
     scoreRows,

@@ -46,6 +46,9 @@ export const triangleNodes: CellNodes = {
   weight: [5 / 24, 7 / 12, 5 / 24],
 };
 
+/** The centre alone, for peaks several cells wide: the shape then is that of the averaged peak itself. */
+export const centreNode: CellNodes = { offset: [0], weight: [1] };
+
 function halved(nodes: readonly number[], weights: readonly number[]): CellNodes {
   return {
     offset: [...nodes.map((v) => -v / 2), ...nodes.map((v) => v / 2)],
@@ -67,14 +70,8 @@ export function createCellValues(grid: CellGrid): CellValues {
 /** exp(-36) = 2e-16 of the peak: nothing further out changes a double. */
 const FAR = 72;
 
-/** O(cells * nodes^2). `use` skips cells. Determinant must be positive. */
-export function evaluateCells(
-  shape: PeakShape,
-  grid: CellGrid,
-  nodes: CellNodes,
-  use: Uint8Array,
-  out: CellValues,
-): void {
+/** O(cells * nodes^2). The determinant must be positive. */
+export function evaluateCells(shape: PeakShape, grid: CellGrid, nodes: CellNodes, out: CellValues): void {
   const { mx, my, xx, xy, yy } = shape;
   const det = xx * yy - xy * xy;
   const pxx = yy / det;
@@ -93,24 +90,22 @@ export function evaluateCells(
       let gxx = 0;
       let gxy = 0;
       let gyy = 0;
-      if (use[cell] === 1) {
-        for (let b = 0; b < count; b += 1) {
-          const ry = grid.y0 + iy + (nodes.offset[b] as number) - my;
-          const wb = nodes.weight[b] as number;
-          for (let a = 0; a < count; a += 1) {
-            const rx = grid.x0 + ix + (nodes.offset[a] as number) - mx;
-            const tx = pxx * rx + pxy * ry;
-            const ty = pxy * rx + pyy * ry;
-            const q = rx * tx + ry * ty;
-            if (!(q < FAR)) continue;
-            const v = wb * (nodes.weight[a] as number) * norm * Math.exp(-q / 2);
-            g += v;
-            gx += v * tx;
-            gy += v * ty;
-            gxx += (v * (tx * tx - pxx)) / 2;
-            gxy += v * (tx * ty - pxy);
-            gyy += (v * (ty * ty - pyy)) / 2;
-          }
+      for (let b = 0; b < count; b += 1) {
+        const ry = grid.y0 + iy + (nodes.offset[b] as number) - my;
+        const wb = nodes.weight[b] as number;
+        for (let a = 0; a < count; a += 1) {
+          const rx = grid.x0 + ix + (nodes.offset[a] as number) - mx;
+          const tx = pxx * rx + pxy * ry;
+          const ty = pxy * rx + pyy * ry;
+          const q = rx * tx + ry * ty;
+          if (!(q < FAR)) continue;
+          const v = wb * (nodes.weight[a] as number) * norm * Math.exp(-q / 2);
+          g += v;
+          gx += v * tx;
+          gy += v * ty;
+          gxx += (v * (tx * tx - pxx)) / 2;
+          gxy += v * (tx * ty - pxy);
+          gyy += (v * (ty * ty - pyy)) / 2;
         }
       }
       value[cell] = g;

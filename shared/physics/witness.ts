@@ -1,4 +1,3 @@
-import type { Verdict, VerdictLevel } from '../contracts/output';
 import type { Spread } from './bootstrap';
 
 /**
@@ -38,6 +37,8 @@ export function significanceOf(value: number, sigma: number, bound: number): Sig
   return { log: Math.log(bound / value) / (sigma / value), linear: (bound - value) / sigma };
 }
 
+export type VerdictLevel = 'violated' | 'indicated' | 'inconclusive' | 'not-violated';
+
 /**
  * violated: at least 5 sigma on the log scale and the 95 % interval below the bound; indicated: at least 3 sigma;
  * not-violated: the whole interval above the bound; otherwise inconclusive.
@@ -60,7 +61,18 @@ export interface VerdictRequest {
   assumptions: string;
 }
 
-export function judge(request: VerdictRequest): Verdict {
+/** Fits the contract of a verdict. */
+export interface Judgement {
+  bound: number;
+  side: 'below';
+  significance: number;
+  significanceLinear: number;
+  interval: [number, number];
+  level: VerdictLevel;
+  sentence: string;
+}
+
+export function judge(request: VerdictRequest): Judgement {
   const { witness, axis, value, spread, resampled, assumptions } = request;
   const { bound } = witness;
   const z = significanceOf(value, spread.sigma, bound);

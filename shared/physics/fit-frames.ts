@@ -1,0 +1,294 @@
+import { blockInfluence, FIT_PARAMETERS, fitShape, type ShapeFit } from './fit-shape';
+import type { FrameMap, FrameMapKind } from './frame-maps';
+import { type CellGrid, centreNode, type PeakShape, triangleNodes } from './gaussian-cells';
+
+/**
+ * Chi^2 fit of a two-dimensional Gaussian on a pedestal to a sum or difference map, averaged over the triangle law of two
+ * pixels. The pedestal follows the number of pairs per bin. The peak follows an envelope: how many pairs of the array
+ * can have this sum (difference), given the width of the other coordinate; where that width is not known, the plain
+ * overlap, which leaves the width slightly too large and so on the safe side of a bound.
+ */
+export interface FramePeak {
+  kind: FrameMapKind;
+  fit: ShapeFit;
+  /** Marginal variances with the two pixels' a^2/6 left in, pixel^2. */
+  xx: number;
+  yy: number;
+  xy: number;
+  mx: number;
+  my: number;
+  /** Cut-out of the map that was fitted: first bin and size. */
+  region: { x: number; y: number; nx: number; ny: number };
+  /** Share of the peak on bins that were left out (own pairs, crosstalk). */
+  hidden: number;
+  chi2: number;
+  ndf: number;
+  /** Whether the envelope of the other coordinate was used. */
+  enveloped: boolean;
+  /** blocks * FIT_PARAMETERS. */
+  influence: Float64Array;
+}
+
+export const DIFFERENCE_PIXEL_VARIANCE = 1 / 6;
+const LEAST_VARIANCE = 0.02;
+/** Fit window in standard deviations, and its least half width in bins. */
+const REACH = 5;
+const LEAST_REACH = 6;
+
+/** Both peaks of one camera plane; the narrow one is fitted again with the envelope that the wide one gives. */
+export function fitFramePeaks(
+  maps: Record<FrameMapKind, FrameMap>,
+  narrow: FrameMapKind,
+): Record<FrameMapKind, FramePeak | null> {
+  const wide: FrameMapKind = narrow === 'plus' ? 'minus' : 'plus';
+  const first = fitFramePeak(maps[narrow], null, null);
+  if (first === null) return { plus: null, minus: null, [narrow]: null };
+  // A peak as wide as the array looks like its pedestal, so the wide fit takes the pedestal that the narrow one found.
+  const other = fitFramePeak(maps[wide], first, pedestalPerPair(maps[narrow], first));
+  // `>` also refuses a peak without a finite error.
+  const trusted = other?.fit.converged === true && other.fit.amplitude / amplitudeSigma(other) > 5;
+  const second = trusted ? fitFramePeak(maps[narrow], other, null) : first;
+  return { plus: null, minus: null, [narrow]: second ?? first, [wide]: trusted ? other : null };
+}
+
+/** Standard error of the amplitude from the blocks. */
+export function amplitudeSigma(peak: FramePeak): number {
+  return blockSigma(peak.influence, 0);
+}
+
+/** Block standard error of parameter p: the bootstrap's limit for many resamples. */
+export function blockSigma(influence: Float64Array, p: number): number {
+  const blocks = influence.length / FIT_PARAMETERS;
+  let mean = 0;
+  for (let b = 0; b < blocks; b += 1) mean += (influence[b * FIT_PARAMETERS + p] as number) / blocks;
+  let squares = 0;
+  for (let b = 0; b < blocks; b += 1) squares += ((influence[b * FIT_PARAMETERS + p] as number) - mean) ** 2;
+  return Math.sqrt(squares);
+}
+
+function pedestalPerPair(map: FrameMap, peak: FramePeak): number {
+  return peak.fit.background / mostPairs(map);
+}
+
+function mostPairs(map: FrameMap): number {
+  return map.pairs.reduce((a, b) => Math.max(a, b), 1);
+}
+
+/** @param pedestal covariance per pair of pixels where it is known, null where it is fitted. */
+function fitFramePeak(map: FrameMap, other: FramePeak | null, pedestal: number | null): FramePeak | null {
+  let start = findStart(map);
+  if (start === null) return null;
+  let peak: FramePeak | null = null;
+  // The window follows the width; three rounds settle it from any of the starting boxes.
+  for (let round = 0; round < 4; round += 1) {
+    const next = fitWindow(map, other, pedestal, start);
+    if (next === null) return peak;
+    const settled =
+      peak !== null &&
+      Math.abs(peak.region.nx - next.region.nx) <= 0.1 * next.region.nx &&
+      Math.abs(peak.region.ny - next.region.ny) <= 0.1 * next.region.ny;
+    peak = next;
+    if (settled) break;
+    start = { amplitude: next.fit.amplitude, shape: next.fit.shape };
+  }
+  return peak;
+}
+
+interface Start {
+  amplitude: number;
+  shape: PeakShape;
+}
+
+/** Box of the largest signal-to-noise over a few sizes; difference maps are centred on zero. */
+function findStart(map: FrameMap): Start | null {
+  const value = integralOf(map, map.value);
+  const noise = integralOf(map, map.variance);
+  const copies = map.kind === 'minus' ? 2 : 1;
+  let best = 3;
+  let found: Start | null = null;
+  const limit = Math.max(map.width, map.height) / 2;
+  for (let half = 1; half <= limit; half *= 2) {
+    const centres = map.kind === 'minus' ? [[map.width - 1, map.height - 1]] : gridOf(map, half);
+    for (const [cx, cy] of centres as [number, number][]) {
+      const signal = boxSum(value, map, cx, cy, half);
+      const spread = Math.sqrt(copies * boxSum(noise, map, cx, cy, half));
+      if (!(spread > 0) || !(signal / spread > best)) continue;
+      best = signal / spread;
+      const variance = Math.max((half / 1.5) ** 2, 0.3);
+      const x = map.kind === 'minus' ? 0 : cx;
+      const y = map.kind === 'minus' ? 0 : cy;
+      found = { amplitude: signal, shape: { mx: x, my: y, xx: variance, xy: 0, yy: variance } };
+    }
+  }
+  return found;
+}
+
+function gridOf(map: FrameMap, half: number): [number, number][] {
+  const step = Math.max(1, Math.floor(half / 2));
+  const out: [number, number][] = [];
+  for (let y = 0; y < map.ny; y += step) for (let x = 0; x < map.nx; x += step) out.push([x, y]);
+  return out;
+}
+
+/** Summed-area table of the bins that are not blocked, (ny+1)*(nx+1). */
+function integralOf(map: FrameMap, values: Float64Array): Float64Array {
+  const { nx, ny, blocked } = map;
+  const out = new Float64Array((nx + 1) * (ny + 1));
+  for (let y = 0; y < ny; y += 1) {
+    let row = 0;
+    for (let x = 0; x < nx; x += 1) {
+      const c = y * nx + x;
+      if (blocked[c] === 0) row += values[c] as number;
+      out[(y + 1) * (nx + 1) + x + 1] = (out[y * (nx + 1) + x + 1] as number) + row;
+    }
+  }
+  return out;
+}
+
+function boxSum(table: Float64Array, map: FrameMap, cx: number, cy: number, half: number): number {
+  const x0 = Math.max(cx - half, 0);
+  const y0 = Math.max(cy - half, 0);
+  const x1 = Math.min(cx + half + 1, map.nx);
+  const y1 = Math.min(cy + half + 1, map.ny);
+  const at = (x: number, y: number): number => table[y * (map.nx + 1) + x] as number;
+  return at(x1, y1) - at(x0, y1) - at(x1, y0) + at(x0, y0);
+}
+
+function fitWindow(
+  map: FrameMap,
+  other: FramePeak | null,
+  pedestal: number | null,
+  start: Start,
+): FramePeak | null {
+  const minus = map.kind === 'minus';
+  const origin = minus ? { x: map.width - 1, y: map.height - 1 } : { x: 0, y: 0 };
+  const region = regionAround(map, origin, start.shape);
+  const cells = region.nx * region.ny;
+  const cellOf = (c: number): number =>
+    (region.y + Math.floor(c / region.nx)) * map.nx + region.x + (c % region.nx);
+  const pick = (values: Float64Array): Float64Array =>
+    Float64Array.from({ length: cells }, (_, c) => values[cellOf(c)] as number);
+  const variance = pick(map.variance);
+  const use = Uint8Array.from({ length: cells }, (_, c) =>
+    map.blocked[cellOf(c)] === 0 && (variance[c] as number) > 0 ? 1 : 0,
+  );
+  if (use.reduce((n, u) => n + u, 0) < 12) return null;
+  const pairs = pick(map.pairs);
+  const most = mostPairs(map);
+  const envelope = envelopeOf(
+    map,
+    other,
+    Array.from({ length: cells }, (_, c) => cellOf(c)),
+  );
+  const grid: CellGrid = { nx: region.nx, ny: region.ny, x0: region.x - origin.x, y0: region.y - origin.y };
+  const data = pick(map.value);
+  // Three pixels wide and more, the triangle law only adds its variance; that is then in the fitted shape already.
+  const broad = Math.min(start.shape.xx, start.shape.yy) > 9;
+  const blur = broad ? 0 : DIFFERENCE_PIXEL_VARIANCE;
+  const fit = fitShape({
+    grid,
+    nodes: broad ? centreNode : triangleNodes,
+    data,
+    use,
+    envelope,
+    background: pairs.map((n) => n / most),
+    backgroundAmplitude: (pedestal ?? 0) * most,
+    freeBackground: pedestal === null,
+    freeCentre: !minus,
+    variance,
+    start,
+    leastVariance: LEAST_VARIANCE,
+  });
+  const { shape } = fit;
+  if (!Number.isFinite(fit.objective) || !(fit.amplitude > 0)) return null;
+  const used = use.reduce((n, u) => n + u, 0);
+  // Difference bins d and -d are copies: half of the chi^2 and half of the bins.
+  const share = minus ? 0.5 : 1;
+  return {
+    kind: map.kind,
+    fit,
+    xx: shape.xx + blur,
+    yy: shape.yy + blur,
+    xy: shape.xy,
+    mx: shape.mx,
+    my: shape.my,
+    region,
+    hidden: hiddenShare(fit, use),
+    chi2: share * fit.objective,
+    ndf: Math.max(Math.round(share * used) - fit.free.length, 0),
+    enveloped: other !== null,
+    influence: blockInfluence(
+      fit,
+      map.blocks,
+      (b, c) => (use[c] === 1 ? map.blockValue(b, cellOf(c)) : 0),
+      () => 0,
+    ),
+  };
+}
+
+function regionAround(
+  map: FrameMap,
+  origin: { x: number; y: number },
+  shape: PeakShape,
+): FramePeak['region'] {
+  const halfX = Math.max(LEAST_REACH, Math.ceil(REACH * Math.sqrt(shape.xx)));
+  const halfY = Math.max(LEAST_REACH, Math.ceil(REACH * Math.sqrt(shape.yy)));
+  const cx = origin.x + Math.round(shape.mx);
+  const cy = origin.y + Math.round(shape.my);
+  const x = Math.min(Math.max(cx - halfX, 0), map.nx - 1);
+  const y = Math.min(Math.max(cy - halfY, 0), map.ny - 1);
+  return {
+    x,
+    y,
+    nx: Math.max(Math.min(cx + halfX + 1, map.nx) - x, 1),
+    ny: Math.max(Math.min(cy + halfY + 1, map.ny) - y, 1),
+  };
+}
+
+function hiddenShare(fit: ShapeFit, use: Uint8Array): number {
+  let all = 0;
+  let hidden = 0;
+  fit.bare.forEach((v, c) => {
+    all += v;
+    if (use[c] !== 1) hidden += v;
+  });
+  return all > 0 ? hidden / all : 1;
+}
+
+/**
+ * Share of the pairs with this sum (difference) that the array can hold. With the other coordinate Gaussian:
+ * E(s) = 2 sum_i phi(s - 2i) per axis, E(d) = 2 sum_i phi(2i + d); own pairs are taken out, masked pixels thin it by
+ * pairs / full pairs.
+ */
+function envelopeOf(map: FrameMap, other: FramePeak | null, cells: readonly number[]): Float64Array {
+  if (other === null) {
+    const most = mostPairs(map);
+    return Float64Array.from(cells, (c) => (map.pairs[c] as number) / most);
+  }
+  const ex = axisEnvelope(map.kind, map.width, other.mx, other.xx);
+  const ey = axisEnvelope(map.kind, map.height, other.my, other.yy);
+  const own = (2 / Math.sqrt(2 * Math.PI * other.xx)) * (2 / Math.sqrt(2 * Math.PI * other.yy));
+  return Float64Array.from(cells, (c) => {
+    const x = c % map.nx;
+    const y = Math.floor(c / map.nx);
+    const full = map.fullPairs[c] as number;
+    const removed = map.kind === 'plus' && x % 2 === 0 && y % 2 === 0 ? own : 0;
+    const value = (ex[x] as number) * (ey[y] as number) - removed;
+    return full > 0 ? Math.max((value * (map.pairs[c] as number)) / full, 0) : 0;
+  });
+}
+
+function axisEnvelope(kind: FrameMapKind, n: number, mean: number, variance: number): Float64Array {
+  const norm = 2 / Math.sqrt(2 * Math.PI * variance);
+  return Float64Array.from({ length: 2 * n - 1 }, (_, k) => {
+    let sum = 0;
+    const lag = kind === 'plus' ? k : k - (n - 1);
+    for (let i = 0; i < n; i += 1) {
+      const j = kind === 'plus' ? lag - i : i + lag;
+      if (j < 0 || j >= n) continue;
+      const u = (kind === 'plus' ? j - i : i + j) - mean;
+      sum += norm * Math.exp((-u * u) / (2 * variance));
+    }
+    return sum;
+  });
+}
