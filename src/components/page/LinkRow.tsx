@@ -17,7 +17,7 @@ const FILL =
 /** One line of a list that leads somewhere; the whole line is the link. */
 export function LinkRow({ to, name, note, children }: LinkRowProps) {
   return (
-    <li className={`relative isolate border-b border-line py-2 last:border-b-0 ${FILL}`}>
+    <li className={`relative isolate border-b border-line py-2 ${FILL}`}>
       <div className="flex items-baseline justify-between gap-4">
         <Link
           to={to}

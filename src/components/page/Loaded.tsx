@@ -1,5 +1,6 @@
 import type { UseQueryResult } from '@tanstack/react-query';
 import type { ReactNode } from 'react';
+import { isMissing } from '../../lib/errors/request-problem';
 import { Button } from '../ui/Button';
 import { ProblemNote } from './ProblemNote';
 
@@ -7,18 +8,24 @@ export interface LoadedProps<T> {
   query: UseQueryResult<T>;
   /** What is being fetched, in words: "your sessions". */
   what: string;
+  /** Where to go when there is no such thing: a link. */
+  otherwise?: ReactNode;
   children(data: T): ReactNode;
 }
 
 /** What a query found; while it is on its way a quiet line, when it failed the sentence and a second try. */
-export function Loaded<T>({ query, what, children }: LoadedProps<T>): ReactNode {
+export function Loaded<T>({ query, what, otherwise, children }: LoadedProps<T>): ReactNode {
   if (query.data !== undefined) return children(query.data);
   if (query.error !== null) {
     return (
       <ProblemNote error={query.error}>
-        <Button size="sm" onClick={() => void query.refetch()}>
-          Try again
-        </Button>
+        {isMissing(query.error) && otherwise !== undefined ? (
+          otherwise
+        ) : (
+          <Button size="sm" onClick={() => void query.refetch()}>
+            Try again
+          </Button>
+        )}
       </ProblemNote>
     );
   }

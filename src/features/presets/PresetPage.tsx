@@ -4,6 +4,7 @@ import type { PresetRow } from '../../../shared/contracts/http';
 import { LoadedPage } from '../../components/page/LoadedPage';
 import { Page, Region } from '../../components/page/Page';
 import { Button, buttonClass } from '../../components/ui/Button';
+import { textLink } from '../../components/ui/link-class';
 import { formatTime } from '../../lib/format-time';
 import { useOwnGroup } from '../../lib/query/me';
 import { presetQuery } from '../../lib/query/presets';
@@ -12,6 +13,12 @@ import { studyName, studyQuestion } from '../../lib/study-names';
 import { PresetDials } from './components/PresetDials';
 import { PresetInputs } from './components/PresetInputs';
 import { VersionList } from './components/VersionList';
+
+const ALL = (
+  <Link to="/presets" className={textLink}>
+    All presets
+  </Link>
+);
 
 function readVersion(search: URLSearchParams): number | null {
   const text = search.get('version');
@@ -29,9 +36,9 @@ export function PresetPage() {
     placeholderData: keepPreviousData,
   });
   return (
-    <LoadedPage query={newest} what="the preset" title="Preset">
+    <LoadedPage query={newest} what="the preset" title="Preset" otherwise={ALL}>
       {(last) => (
-        <LoadedPage query={shown} what="this version" title="Preset">
+        <LoadedPage query={shown} what="this version" title="Preset" otherwise={ALL}>
           {(row) => <OnePreset row={row} newest={last.version} />}
         </LoadedPage>
       )}

@@ -1,11 +1,12 @@
 import { useQueries, useQuery } from '@tanstack/react-query';
 import { useMemo } from 'react';
-import { useParams } from 'react-router-dom';
+import { Link, useParams } from 'react-router-dom';
 import type { ResultRow } from '../../../shared/contracts/http';
 import type { MapFile } from '../../../shared/contracts/result';
 import { decodeMap } from '../../../shared/contracts/result-codec';
 import { LoadedPage } from '../../components/page/LoadedPage';
 import { Page } from '../../components/page/Page';
+import { textLink } from '../../components/ui/link-class';
 import { formatTime } from '../../lib/format-time';
 import { useOwnGroup } from '../../lib/query/me';
 import { resultQuery } from '../../lib/query/results';
@@ -20,7 +21,16 @@ export function ResultPage() {
   const { id = '' } = useParams();
   const result = useQuery(resultQuery(group.id, id));
   return (
-    <LoadedPage query={result} what="the result" title="Result">
+    <LoadedPage
+      query={result}
+      what="the result"
+      title="Result"
+      otherwise={
+        <Link to="/results" className={textLink}>
+          All results
+        </Link>
+      }
+    >
       {(row) => <OneResult row={row} />}
     </LoadedPage>
   );

@@ -30,3 +30,7 @@ export class RequestProblem extends Error {
 export function isSignedOut(thrown: unknown): boolean {
   return thrown instanceof RequestProblem && thrown.code === 'not-signed-in';
 }
+
+export function isMissing(thrown: unknown): boolean {
+  return thrown instanceof RequestProblem && thrown.code === 'not-found';
+}

@@ -28,7 +28,7 @@ export function SampleRegion() {
           return (
             <>
               <FirstSample entry={first} scenario={data.scenario} />
-              <ul aria-label="Other samples" className="mt-2 border-t">
+              <ul aria-label="Other samples" className="mt-2 grid gap-x-8 border-t xl:grid-cols-2">
                 {others.map((entry) => (
                   <LinkRow
                     key={entry.index}

@@ -1,12 +1,12 @@
 import type { DialSpec, DialValue } from '../../../../shared/contracts/dial';
-import { displayUnit, formatPlain } from '../../../lib/format-number';
+import { formatQuantity } from '../../../lib/format-number';
 
 /** A dial's value for reading; with its specification also the unit and the name of a choice. */
 export function describeDialValue(value: DialValue, spec?: DialSpec): string {
   if (value === null) return spec?.type === 'region' ? 'not drawn' : 'chosen by the study';
   if (typeof value === 'number') {
-    const unit = spec !== undefined && 'unit' in spec ? displayUnit(spec.unit) : '';
-    return unit === '' ? formatPlain(value) : `${formatPlain(value)} ${unit}`;
+    const unit = spec !== undefined && 'unit' in spec ? spec.unit : '1';
+    return formatQuantity({ value, sigma: null, unit });
   }
   if (typeof value === 'string') {
     const options = spec?.type === 'choice' ? spec.options : [];

@@ -19,7 +19,8 @@ export function listDifferences(before: Preset, after: Preset, specs: readonly D
   const specOf = new Map(specs.map((spec) => [spec.id, spec]));
   const say = (id: string, value: DialValue | undefined): string => {
     const spec = specOf.get(id);
-    return value === undefined ? 'the study’s own' : describeDialValue(value, spec);
+    const shown = value === undefined ? spec?.default : value;
+    return shown === undefined ? 'not set' : describeDialValue(shown, spec);
   };
   const differences: Difference[] = [];
   if (before.name !== after.name) differences.push({ what: 'Name', before: before.name, after: after.name });

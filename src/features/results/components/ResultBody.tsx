@@ -14,13 +14,19 @@ export interface ResultBodyProps {
   errors: readonly Error[];
 }
 
+/** Two maps side by side in either text size. */
+const COLUMNS = {
+  bench: 'xl:grid-cols-[minmax(0,11fr)_minmax(0,9fr)]',
+  projector: 'xl:grid-cols-[minmax(0,7fr)_minmax(0,5fr)]',
+};
+
 /** What the bench showed when the result was saved: plots beside numbers, nothing to turn. */
 export function ResultBody({ row, output, waiting, errors }: ResultBodyProps) {
   const theme = useTheme();
   const { provenance } = row.result;
   const total = Object.keys(row.result.maps).length;
   return (
-    <div className="grid xl:grid-cols-[minmax(0,11fr)_minmax(0,9fr)]">
+    <div className={`grid ${COLUMNS[theme]}`}>
       <section aria-label="Plots" className="min-w-0 px-5 py-3 xl:min-h-[calc(100dvh-6rem)] xl:border-r">
         <h2 className="sr-only">Plots</h2>
         {errors.map((error) => (
