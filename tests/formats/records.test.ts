@@ -199,6 +199,45 @@ describe('time past its limits', () => {
     expect(read.ticks.at(-1)! > 2n ** 56n).toBe(true);
   });
 
+  it('goes on over the borders of blocks', async () => {
+    const layout = layouts['4 bytes, wrapping 24 bits']!;
+    const records = 2 ** 21 + 3;
+    const step = 5_000_001;
+    const words = Uint32Array.from(
+      { length: records },
+      (_, i) => ((i * step) % 2 ** 24) + (i % 200) * 2 ** 24,
+    );
+    const reader = openRecords(memorySource(new Uint8Array(words.buffer)), layout);
+    let blocks = 0;
+    let bytes = 0;
+    let wrong = 0;
+    for await (const block of reader.read({ start: 0, end: records }, 0n, never)) {
+      if (block.kind !== 'tags') continue;
+      const base = Number(block.baseTick);
+      for (let i = 0; i < block.count; i += 1) {
+        const record = block.firstRecord + i;
+        if (base + block.deltaTick[i]! !== record * step || block.channel[i] !== record % 200) wrong += 1;
+      }
+      blocks += 1;
+      bytes += block.bytes;
+    }
+    expect({ wrong, bytes }).toEqual({ wrong: 0, bytes: 4 * records });
+    expect(blocks).toBeGreaterThan(2);
+    const start = 2 ** 20 + 77;
+    const known = BigInt(start * step) - (BigInt(start * step) % 2n ** 24n);
+    // What was scanned before is not read again, and the answer is the same.
+    let scanned = 0;
+    const count = (scannedBytes: number): void => {
+      scanned += scannedBytes;
+    };
+    const before = (BigInt((start - 1) * step) / 2n ** 24n) * 2n ** 24n;
+    expect(await reader.tickOffsetAt(start, never, count)).toBe(before);
+    expect(scanned).toBe(4 * start);
+    expect(await reader.tickOffsetAt(start, never, count)).toBe(before);
+    expect(scanned).toBe(4 * start);
+    expect(known - before === 0n || known - before === 2n ** 24n).toBe(true);
+  });
+
   it('jumps by rollovers larger than a double holds', async () => {
     const layout = recordsLayout({
       ...layouts['8 bytes, markers'],

@@ -108,13 +108,16 @@ function scoresOf(
         (isChannelNamed ? 0.5 : 0)
       : 0;
   const isChannel = lowest >= 0 && highest <= 65535;
-  const repeats = 1 - distinct.size / values.length;
+  // A column that never changes is more likely a flag than a channel.
+  const isConstant = distinct.size === 1 && values.length > 1;
+  const repeats = isConstant ? 0 : 1 - distinct.size / values.length;
   const channelScore = isChannel
     ? 0.5 +
       0.5 * repeats +
       (number.bytes <= 2 ? 0.2 : 0) +
       (isChannelNamed ? 0.3 : 0) -
       (isTimeNamed ? 0.5 : 0) -
+      (isConstant ? 0.3 : 0) -
       (ordered === 1 && distinct.size > 2 ? 0.4 : 0)
     : 0;
   return { timeScore, channelScore };

@@ -1,3 +1,4 @@
+/// <reference path="./jsfive.d.ts" />
 import type { Dataset } from 'jsfive';
 import type { NumberType } from './tree';
 

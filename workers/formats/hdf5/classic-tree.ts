@@ -1,3 +1,4 @@
+/// <reference path="./jsfive.d.ts" />
 import type { Dataset, File, Group } from 'jsfive';
 import type { ByteSource } from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';

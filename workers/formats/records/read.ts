@@ -72,7 +72,7 @@ export async function scanOffset(
   const from = known.start <= start ? known : { start: 0, offsetTick: 0n };
   const decode = compileDecode(plan);
   const state = await stateBefore(source, plan, from.start, from.offsetTick);
-  const out = createColumns(recordsPerBlock);
+  const out = createColumns(Math.max(0, Math.min(recordsPerBlock, start - from.start)));
   for (let first = from.start; first < start; first += recordsPerBlock) {
     await passTurn(token);
     const bytes = await readRecordBytes(source, plan, first, Math.min(first + recordsPerBlock, start));
