@@ -12,6 +12,8 @@ export interface Measured {
   n: number;
   /** What was counted and how, to follow the word on the error. */
   method: string;
+  /** How its counting error was got, when not by propagating Poisson counts. */
+  error?: string;
   /** The same number from the totals of a resample; without it the counting error stands alone. */
   statistic?: (totals: readonly number[]) => number | null;
 }
@@ -32,7 +34,7 @@ export function listQuantities(
   slices: number,
 ): QuantityList {
   const list: QuantityList = { quantities: {}, excess: [] };
-  for (const { id, estimate, unit, n, method, statistic } of measured) {
+  for (const { id, estimate, unit, n, method, error, statistic } of measured) {
     if (estimate === null || !Number.isFinite(estimate.value) || !Number.isFinite(estimate.sigma)) continue;
     const spread = draws === null || statistic === undefined ? null : spreadOver(draws, statistic);
     const ratio = spread === null ? 0 : spread / estimate.sigma;
@@ -44,7 +46,7 @@ export function listQuantities(
       unit,
       method: bootstrapped
         ? `${method}; block bootstrap, ${slices} slices of time`
-        : `${method}; Poisson counts, propagated`,
+        : `${method}; ${error ?? 'Poisson counts, propagated'}`,
       n,
     };
   }

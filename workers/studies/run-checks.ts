@@ -41,7 +41,7 @@ export function checkDrift(count: TagCount, arms: ArmPair): Check {
     return { id: 'drift', status: 'pass', figure: 0, unit, sentence };
   }
   const percent = worst.change * 100;
-  const status = Math.abs(percent) < 2 ? 'pass' : Math.abs(percent) < 15 ? 'caution' : 'fail';
+  const status = Math.abs(percent) < 2 ? 'pass' : Math.abs(percent) < 15 || worst.z < 5 ? 'caution' : 'fail';
   const advice =
     status === 'pass' ? 'too little to matter.' : 'look at the rates over time and cut what drifted.';
   const sentence = `The ${worst.name} changed by ${percent.toFixed(1)} % from the first to the second half (${worst.z.toFixed(1)} standard errors): ${advice}`;

@@ -104,11 +104,11 @@ function checkCut(count: TagCount, net: Float64Array, { open, closed }: GhostCon
     ring += net[p]!;
     pixels += 1;
   }
-  const percent = (100 * (ring / Math.max(1, pixels) - closed)) / (open - closed);
+  const percent = Math.round((100 * (ring / Math.max(1, pixels) - closed)) / (open - closed)) + 0;
   if (percent < 20) {
-    const sentence = `Pixels along the edge of the array hold ${percent.toFixed(0)} % of the open level: the image lies inside.`;
+    const sentence = `Pixels along the edge of the array hold ${percent} % of the open level: the image lies inside.`;
     return { ...base, status: 'pass', figure: percent, sentence };
   }
-  const sentence = `Pixels along the edge of the array hold ${percent.toFixed(0)} % of the open level: part of the image may lie outside. Move the image or lower the magnification.`;
+  const sentence = `Pixels along the edge of the array hold ${percent} % of the open level: part of the image may lie outside. Move the image or lower the magnification.`;
   return { ...base, status: 'caution', figure: percent, sentence };
 }
