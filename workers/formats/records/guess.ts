@@ -93,15 +93,18 @@ function judge(
   const ordered = 1 - time.backward / steps;
   const moves = time.rises >= Math.max(3, steps / 100);
   const few = channel.values <= Math.max(2, Math.min(4096, records / 4));
-  if (ordered < leastOrdered || !moves || !few || time.wraps > steps / 8 || channel.isShifted) return null;
+  if (ordered < leastOrdered || !moves || !few || time.wraps > steps / 8) return null;
+  if (channel.isShifted || channel.isRising) return null;
   const score =
     ordered +
     (split.restZero ? 0.2 : 0) +
     (size % recordBytes === 0 ? 0.1 : 0) -
-    (time.isShifted ? 0.3 : 0) -
+    (time.hasGap ? 0.3 : 0) -
     (channel.values === 1 ? 0.2 : 0.02 * Math.log2(channel.values)) -
     0.04 * Math.log2(1 + time.wraps) -
-    0.002 * order;
+    // Two short records read as one long record look credible; the other way round never does.
+    0.025 * recordBytes -
+    0.0005 * order;
   return {
     ...split,
     byteOrder,
@@ -120,13 +123,14 @@ function timeFacts(
   stride: RecordPlan['stride'],
   records: number,
   { firstBit, bits }: BitField,
-): { rises: number; wraps: number; backward: number; isShifted: boolean } {
+): { rises: number; wraps: number; backward: number; hasGap: boolean } {
   const lowBits = Math.min(bits, 32);
   const half = 2 ** (bits - 1);
   let rises = 0;
   let wraps = 0;
   let backward = 0;
   let lowUnion = 0;
+  let highUnion = 0;
   let previous = -1;
   for (let i = 0; i < records; i += 1) {
     const at = i * stride;
@@ -134,6 +138,7 @@ function timeFacts(
     const high = bits > 32 ? bitsOf(words, at, stride, firstBit + 32, bits - 32) : 0;
     const value = high * 2 ** 32 + low;
     lowUnion |= low;
+    highUnion |= high;
     if (previous >= 0) {
       if (value > previous) rises += 1;
       else if (previous - value > half) wraps += 1;
@@ -141,7 +146,13 @@ function timeFacts(
     }
     previous = value;
   }
-  return { rises, wraps, backward, isShifted: (lowUnion & 1) === 0 };
+  return { rises, wraps, backward, hasGap: hasGap(lowUnion, highUnion) };
+}
+
+/** Bits that are never set below bits that are: true times use all, so channel bits were taken along or left out. */
+function hasGap(lowUnion: number, highUnion: number): boolean {
+  const union = (BigInt(highUnion >>> 0) << 32n) | BigInt(lowUnion >>> 0);
+  return (union & (union + 1n)) !== 0n;
 }
 
 function channelFacts(
@@ -149,18 +160,28 @@ function channelFacts(
   stride: RecordPlan['stride'],
   records: number,
   { firstBit, bits }: BitField,
-): { values: number; last: number; isShifted: boolean } {
+): { values: number; last: number; isShifted: boolean; isRising: boolean } {
   const seen = new Set<number>();
   let union = 0;
   let last = 0;
+  let falls = 0;
+  let previous = 0;
   for (let i = 0; i < records; i += 1) {
     const value = bitsOf(words, i * stride, stride, firstBit, bits);
+    if (value < previous) falls += 1;
+    previous = value;
     seen.add(value);
     union |= value;
     last = Math.max(last, value);
   }
   // Only multiples of four or more: the channel lies higher up and other bits were taken along.
-  return { values: seen.size, last, isShifted: seen.size > 1 && (union & 3) === 0 };
+  return {
+    values: seen.size,
+    last,
+    isShifted: seen.size > 1 && (union & 3) === 0,
+    // The upper part of a time, not a channel.
+    isRising: seen.size > 1 && falls === 0,
+  };
 }
 
 function isRestZero(
