@@ -1,3 +1,4 @@
+import type { ReactNode } from 'react';
 import type { RunResult } from '../../../shared/contracts/engine';
 import type { StudyOutput } from '../../../shared/contracts/output';
 import type { ResultFile } from '../../../shared/contracts/result';
@@ -14,35 +15,42 @@ export interface OutputLedgerProps {
   provenance?: RunResult['provenance'] | ResultFile['provenance'] | null;
   /** Said beside the heading, e.g. "41 % read". */
   note?: string | null;
+  /** More at the foot of the last column, e.g. the job log. */
+  children?: ReactNode;
 }
 
 /** Everything a study found that is read: quantities, verdicts, checks, the statement and where it came from. */
-export function OutputLedger({ output, provenance = null, note = null }: OutputLedgerProps) {
+export function OutputLedger({ output, provenance = null, note = null, children }: OutputLedgerProps) {
   const verdicts = Object.keys(output.verdicts).length;
   return (
-    <div className="grid grid-cols-[repeat(auto-fit,minmax(min(100%,26rem),1fr))] gap-x-8 gap-y-5">
-      <LedgerSection title="Quantities" note={note}>
-        <QuantityTable quantities={output.quantities} verdicts={output.verdicts} />
-      </LedgerSection>
-      <div className="flex min-w-0 flex-col gap-5">
-        {verdicts > 0 ? (
-          <LedgerSection title="Verdicts">
-            <VerdictList verdicts={output.verdicts} />
-          </LedgerSection>
-        ) : null}
-        <LedgerSection title="Checks" note={checksNote(output)}>
-          <CheckList checks={output.checks} />
+    <div className="@container">
+      <div className="grid grid-cols-1 gap-x-8 gap-y-5 @3xl:grid-cols-[minmax(0,1.35fr)_minmax(0,1fr)] @6xl:grid-cols-[minmax(0,1.5fr)_minmax(0,1fr)_minmax(0,1fr)]">
+        <LedgerSection title="Quantities" note={note}>
+          <QuantityTable quantities={output.quantities} verdicts={output.verdicts} />
         </LedgerSection>
-        {output.statement === '' ? null : (
-          <LedgerSection title="Statement">
-            <StatementText text={output.statement} />
+        <div className="flex min-w-0 flex-col gap-5">
+          {verdicts > 0 ? (
+            <LedgerSection title="Verdicts">
+              <VerdictList verdicts={output.verdicts} />
+            </LedgerSection>
+          ) : null}
+          <LedgerSection title="Checks" note={checksNote(output)}>
+            <CheckList checks={output.checks} />
           </LedgerSection>
-        )}
-        {provenance === null ? null : (
-          <LedgerSection title="Provenance">
-            <ProvenanceText provenance={provenance} />
-          </LedgerSection>
-        )}
+        </div>
+        <div className="flex min-w-0 flex-col gap-5 @3xl:max-@6xl:col-span-2">
+          {output.statement === '' ? null : (
+            <LedgerSection title="Statement">
+              <StatementText text={output.statement} />
+            </LedgerSection>
+          )}
+          {provenance === null ? null : (
+            <LedgerSection title="Provenance">
+              <ProvenanceText provenance={provenance} />
+            </LedgerSection>
+          )}
+          {children}
+        </div>
       </div>
     </div>
   );

@@ -1,5 +1,7 @@
+import { useState } from 'react';
 import type { Quantity, Verdict } from '../../../shared/contracts/output';
 import { displayUnit, formatCount, formatQuantity, formatWithSigma } from '../../lib/format-number';
+import { Button } from '../ui/Button';
 import { Table, Td, Th, Tr } from '../ui/Table';
 import { pairVariants, type QuantityRow, VARIANT_WORDS } from './quantity-words';
 
@@ -24,13 +26,49 @@ function howWords({ method, n, sigma }: Quantity): string {
   return [how, count].filter((part) => part !== '').join(' · ');
 }
 
+/** Quantities that come raw and net stand in a table of their own, so that no number stands under a heading it is not. */
 export function QuantityTable({ quantities, verdicts }: QuantityTableProps) {
+  const [isWhole, setWhole] = useState(false);
   const rows = pairVariants(quantities);
   if (rows.length === 0) return <p className="text-sm text-dim">Nothing yet.</p>;
-  const isPaired = rows.some((row) => row.raw !== null || row.net !== null);
-  const isJudged = Object.keys(verdicts).length > 0;
+  const paired = rows.filter((row) => row.only === null);
+  const single = rows.filter((row) => row.only !== null);
+  const shared = { verdicts, isWhole };
+  const tables = [
+    <Rows
+      key="paired"
+      label="Quantities, raw and with accidentals removed"
+      rows={paired}
+      isPaired
+      {...shared}
+    />,
+    <Rows key="single" label="Quantities" rows={single} isPaired={false} {...shared} />,
+  ];
   return (
-    <Table label="Quantities">
+    <div className="flex flex-col gap-3">
+      {rows[0]?.only === null ? tables : tables.reverse()}
+      <span>
+        <Button size="sm" variant="quiet" aria-expanded={isWhole} onClick={() => setWhole(!isWhole)}>
+          {isWhole ? 'Shorten how they were got' : 'Show how they were got in full'}
+        </Button>
+      </span>
+    </div>
+  );
+}
+
+interface RowsProps {
+  label: string;
+  rows: readonly QuantityRow<Quantity>[];
+  isPaired: boolean;
+  verdicts: Record<string, Verdict>;
+  isWhole: boolean;
+}
+
+function Rows({ label, rows, isPaired, verdicts, isWhole }: RowsProps) {
+  if (rows.length === 0) return null;
+  const isJudged = rows.some((row) => verdictOf(row, verdicts) !== undefined);
+  return (
+    <Table label={label}>
       <thead>
         <tr>
           <Th>quantity</Th>
@@ -44,40 +82,52 @@ export function QuantityTable({ quantities, verdicts }: QuantityTableProps) {
           )}
           <Th>unit</Th>
           {isJudged ? <Th numeric>significance</Th> : null}
-          <Th>how</Th>
+          <Th className="w-full">how</Th>
         </tr>
       </thead>
       <tbody>
         {rows.map((row) => (
-          <Row key={row.base} row={row} isPaired={isPaired} isJudged={isJudged} verdicts={verdicts} />
+          <Row
+            key={row.base}
+            row={row}
+            isPaired={isPaired}
+            isJudged={isJudged}
+            verdict={verdictOf(row, verdicts)}
+            isWhole={isWhole}
+          />
         ))}
       </tbody>
     </Table>
   );
 }
 
+function verdictOf({ base }: QuantityRow<Quantity>, verdicts: Record<string, Verdict>): Verdict | undefined {
+  return verdicts[`${base}.net`] ?? verdicts[base] ?? verdicts[`${base}.raw`];
+}
+
 interface RowProps {
   row: QuantityRow<Quantity>;
   isPaired: boolean;
   isJudged: boolean;
-  verdicts: Record<string, Verdict>;
+  verdict: Verdict | undefined;
+  isWhole: boolean;
 }
 
-function Row({ row, isPaired, isJudged, verdicts }: RowProps) {
+function Row({ row, isPaired, isJudged, verdict, isWhole }: RowProps) {
   const main = row.net ?? row.only ?? row.raw;
   if (main === null) return null;
   const { unit } = splitQuantity(main);
-  const verdict = verdicts[`${row.base}.net`] ?? verdicts[row.base] ?? verdicts[`${row.base}.raw`];
+  const how = howWords(main);
   return (
     <Tr data-quantity={row.base}>
-      <Td>{row.label}</Td>
-      {isPaired && row.only === null ? (
+      <Td className="whitespace-nowrap">{row.label}</Td>
+      {isPaired ? (
         <>
           <ValueCell quantity={row.raw} mainUnit={unit} id={`${row.base}.raw`} dim />
           <ValueCell quantity={row.net} mainUnit={unit} id={`${row.base}.net`} />
         </>
       ) : (
-        <ValueCell quantity={main} mainUnit={unit} id={row.base} span={isPaired ? 2 : 1} />
+        <ValueCell quantity={main} mainUnit={unit} id={row.base} />
       )}
       <Td mono className="text-dim">
         {unit}
@@ -85,7 +135,9 @@ function Row({ row, isPaired, isJudged, verdicts }: RowProps) {
       {isJudged ? (
         <Td numeric>{verdict === undefined ? '' : `${verdict.significance.toFixed(1)} σ`}</Td>
       ) : null}
-      <Td className="text-xs text-dim">{howWords(main)}</Td>
+      <Td className={`text-xs text-dim ${isWhole ? '' : 'max-w-0 truncate'}`} title={how}>
+        {how}
+      </Td>
     </Tr>
   );
 }
@@ -94,14 +146,13 @@ interface ValueCellProps {
   quantity: Quantity | null;
   mainUnit: string;
   id: string;
-  span?: number;
   dim?: boolean;
 }
 
-function ValueCell({ quantity, mainUnit, id, span = 1, dim = false }: ValueCellProps) {
+function ValueCell({ quantity, mainUnit, id, dim = false }: ValueCellProps) {
   if (quantity === null)
     return (
-      <Td numeric colSpan={span} className="text-dim">
+      <Td numeric className="text-dim">
         none
       </Td>
     );
@@ -109,7 +160,6 @@ function ValueCell({ quantity, mainUnit, id, span = 1, dim = false }: ValueCellP
   return (
     <Td
       numeric
-      colSpan={span}
       className={dim ? 'text-dim' : ''}
       title={howWords(quantity)}
       data-value={quantity.value}

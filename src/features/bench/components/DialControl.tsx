@@ -5,7 +5,7 @@ import { Field } from '../../../components/ui/Field';
 import { NumberField } from '../../../components/ui/NumberField';
 import { Select } from '../../../components/ui/Select';
 import { Toggle } from '../../../components/ui/Toggle';
-import { displayUnit, formatPlain } from '../../../lib/format-number';
+import { formatPlain } from '../../../lib/format-number';
 
 export interface DialControlProps {
   spec: DialSpec;
@@ -60,8 +60,6 @@ function NumberDial({
 }: DialControlProps & { spec: NumberSpec }) {
   const isAuto = spec.auto && value === null;
   const number = typeof value === 'number' ? value : null;
-  const chosenWords =
-    chosen === null ? 'chosen when run' : `${formatPlain(chosen, 5)} ${displayUnit(spec.unit)}`.trim();
   return (
     <div data-dial={spec.id}>
       <NumberField
@@ -79,14 +77,19 @@ function NumberDial({
         onChange={onTurn}
       />
       {spec.auto ? (
-        <div className="mt-1.5 flex items-center justify-between gap-2">
+        <div className="mt-1.5 flex items-center justify-between gap-2 text-dim">
           <Toggle
-            label={<span className="text-xs">{`${spec.label}: study chooses`}</span>}
+            label={
+              <>
+                <span className="sr-only">{spec.label}: </span>
+                <span className="text-xs">study chooses</span>
+              </>
+            }
             checked={isAuto}
             disabled={readOnly || (isAuto && chosen === null)}
             onChange={(auto) => onTurn(auto ? null : chosen)}
           />
-          <span className="font-mono text-xs text-dim">{isAuto ? chosenWords : 'set by hand'}</span>
+          {isAuto ? null : <span className="font-mono text-xs">set by hand</span>}
         </div>
       ) : null}
     </div>

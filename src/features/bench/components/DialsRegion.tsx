@@ -14,8 +14,8 @@ export interface DialsRegionProps {
 }
 
 const GROUPS = [
-  { needs: 'finish', title: 'answer at once' },
-  { needs: 'bytes', title: 'count again' },
+  { needs: 'bytes', title: 'counted again when turned' },
+  { needs: 'finish', title: 'answered at once' },
 ] as const;
 
 /** The parameters of the study, grouped by what turning them costs. */

@@ -10,24 +10,32 @@ import { noteOfFound } from './StageRegion';
 /** The numbers, the checks and the job log. */
 export function LedgerRegion(props: SaveActionsProps) {
   const found = useBenchState((state) => state.found[state.study] ?? null);
-  const log = useBenchState((state) => state.log);
   const key = useBenchPlan(planRun).key;
   const note = found === null ? null : noteOfFound(found, key);
   return (
     <Region title="ledger" note={note ?? undefined} actions={<SaveActions {...props} />}>
-      <div className="flex flex-col gap-5">
-        {found === null ? (
+      {found === null ? (
+        <div className="flex flex-col gap-5">
           <p className="text-sm text-dim">
             Quantities with their uncertainties, verdicts and checks stand here once a study has run.
           </p>
-        ) : (
-          <OutputLedger output={found.output} provenance={found.result?.provenance ?? null} />
-        )}
-        <LedgerSection title="Job log">
-          <JobLog log={log} />
-        </LedgerSection>
-      </div>
+          <LogSection />
+        </div>
+      ) : (
+        <OutputLedger output={found.output} provenance={found.result?.provenance ?? null}>
+          <LogSection />
+        </OutputLedger>
+      )}
     </Region>
+  );
+}
+
+function LogSection() {
+  const log = useBenchState((state) => state.log);
+  return (
+    <LedgerSection title="Job log">
+      <JobLog log={log} />
+    </LedgerSection>
   );
 }
 

@@ -78,11 +78,11 @@ function Inputs({ shelf }: { shelf: readonly Acquisition[] }) {
     <div className="mb-4 flex flex-col gap-1.5">
       <h3 className="font-mono text-xs text-dim">inputs of {study.label}</h3>
       {study.inputs.map((spec) => (
-        <Field key={spec.name} layout="row" label={spec.label}>
+        <Field key={spec.name} label={spec.label}>
           {(control) => (
             <Select
               {...control}
-              className="min-w-0"
+              className="w-full"
               value={assignment[spec.name] ?? NOTHING}
               options={[
                 { value: NOTHING, label: 'nothing' },
