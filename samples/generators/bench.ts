@@ -116,9 +116,10 @@ interface FrameRun {
   frames: number;
   side: number;
   optics: FrameScenario['optics'];
+  file?: Partial<FrameScenario['file']>;
 }
 
-export function frameRun({ name, seed, frames, side, optics }: FrameRun): FrameScenario {
+export function frameRun({ name, seed, frames, side, optics, file = {} }: FrameRun): FrameScenario {
   return parsed('frames', {
     version: 1,
     kind: 'frames',
@@ -138,6 +139,7 @@ export function frameRun({ name, seed, frames, side, optics }: FrameRun): FrameS
       smear: 0.01,
       readout: { kind: 'clicks', readNoise: 0.08, threshold: 0.5 },
     },
+    file,
   });
 }
 
