@@ -7,6 +7,14 @@ import { createTagAccumulator } from '../../workers/accumulators/tag-accumulator
 import { fillDials } from '../../workers/studies/dials';
 import type { Chosen, Study, StudyInput } from '../../workers/studies/study';
 
+export interface StudyRun {
+  output: StudyOutput;
+  tally: TagTally;
+  chosen: Chosen;
+  /** Once more from the same counts, with other dials that need no bytes. */
+  finish(given: DialValues): StudyOutput;
+}
+
 /** A study over one block of tags, by the same steps as the engine: search, choose, count, finish. */
 export function runTagStudy(
   study: Study,
@@ -14,7 +22,7 @@ export function runTagStudy(
   detector: TagDetector,
   given: DialValues = {},
   tickFs = 1000,
-): { output: StudyOutput; tally: TagTally; chosen: Chosen } {
+): StudyRun {
   const input = tagInput(detector, block.count, tickFs);
   const name = study.info.inputs[0]!.name;
   const dials = fillDials(study.info, given);
@@ -32,7 +40,9 @@ export function runTagStudy(
   counted.push(block);
   const tally = counted.tally();
   const inputs = { [name]: { ...input, tally, chosen } };
-  return { output: study.finish({ inputs, dials, seed: 1, partial: false }), tally, chosen };
+  const finish = (again: DialValues): StudyOutput =>
+    study.finish({ inputs, dials: fillDials(study.info, again), seed: 1, partial: false });
+  return { output: finish(given), tally, chosen, finish };
 }
 
 export function tagInput(detector: TagDetector, records: number, tickFs: number): StudyInput {
