@@ -1,6 +1,6 @@
 import type { PairCovariance } from './double-gaussian';
 import { blockInfluence, FIT_PARAMETERS, fitShape, type ShapeFit, type ShapeProblem } from './fit-shape';
-import { type CellGrid, pixelNodes } from './gaussian-cells';
+import { type PeakShape, pixelNodes } from './gaussian-cells';
 import { addMomentSums, covarianceOfSums, MOMENT_SUMS } from './moments';
 
 /**
@@ -62,10 +62,9 @@ export function fitPair(input: PairFitInput): PairFit | null {
   const amplitude = Math.max(accidentals, windows > 0 ? 0.5 / windows : 0.5);
   const start = startingPoint(total, background, accidentals, n1, n2);
   if (start === null) return null;
-  const grid: CellGrid = { nx: n1, ny: n2, x0: 0, y0: 0 };
   const problem: ShapeProblem = {
-    grid,
-    nodes: pixelNodes[4],
+    grid: { nx: n1, ny: n2, x0: 0, y0: 0 },
+    nodes: pixelNodes[nodesFor(start)],
     data: total,
     use,
     envelope,
@@ -78,13 +77,10 @@ export function fitPair(input: PairFitInput): PairFit | null {
     leastVariance: LEAST_VARIANCE,
   };
   let fit = fitShape(problem);
-  // Four nodes suffice down to half a pixel across the ridge.
-  if (narrowVariance(fit) < 0.25) {
-    fit = fitShape({
-      ...problem,
-      nodes: pixelNodes[8],
-      start: { amplitude: fit.amplitude, shape: fit.shape },
-    });
+  const wanted = nodesFor(fit.shape);
+  if (wanted > nodesFor(start)) {
+    const refined = { amplitude: fit.amplitude, shape: fit.shape };
+    fit = fitShape({ ...problem, nodes: pixelNodes[wanted], start: refined });
   }
   const { shape } = fit;
   const { chi2, ndf } = pearson(total, fit.model, use, 6);
@@ -190,9 +186,11 @@ function startingPoint(
   return null;
 }
 
-function narrowVariance(fit: ShapeFit): number {
-  const { xx, xy, yy } = fit.shape;
-  return (xx + yy) / 2 - Math.hypot((xx - yy) / 2, xy);
+/** Nodes per pixel and axis for the width across the ridge, pixel^2. */
+function nodesFor({ xx, xy, yy }: PeakShape): 2 | 4 | 8 {
+  const narrow = (xx + yy) / 2 - Math.hypot((xx - yy) / 2, xy);
+  if (narrow > 2.25) return 2;
+  return narrow > 0.25 ? 4 : 8;
 }
 
 /** Pearson chi^2; cells that expect fewer than 5 counts share pooled bins of at least 5. */
