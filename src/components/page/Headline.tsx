@@ -8,7 +8,7 @@ export function Headline({ quantities }: { quantities: ResultSummary['headline']
   return (
     <span className="flex flex-wrap gap-x-5 gap-y-0.5">
       {quantities.map((quantity) => (
-        <span key={quantity.id} className="whitespace-nowrap">
+        <span key={quantity.id} className="sm:whitespace-nowrap">
           <span className="text-xs text-dim">{nameOf(quantity.id)}</span>{' '}
           <span className="font-mono">{formatQuantity(quantity)}</span>
         </span>

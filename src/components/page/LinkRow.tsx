@@ -18,10 +18,10 @@ const FILL =
 export function LinkRow({ to, name, note, children }: LinkRowProps) {
   return (
     <li className={`relative isolate border-b border-line py-2 ${FILL}`}>
-      <div className="flex items-baseline justify-between gap-4">
+      <div className="flex items-baseline justify-between gap-x-4 max-sm:flex-wrap">
         <Link
           to={to}
-          className="min-w-0 truncate font-semibold outline-offset-0 after:absolute after:inset-0"
+          className="max-w-full min-w-0 truncate font-semibold outline-offset-0 after:absolute after:inset-0"
         >
           {name}
         </Link>

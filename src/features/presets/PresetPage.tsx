@@ -54,7 +54,7 @@ function OnePreset({ row, newest }: { row: PresetRow; newest: number }) {
       heading={row.name}
       note={`${studyName(row.study)} · v${row.version} · ${row.by} · ${formatTime(row.updatedAt)}`}
       actions={
-        <span className="flex items-center gap-2">
+        <span className="flex flex-wrap items-center gap-2">
           <Link to={`/bench?preset=${row.id}${version}`} className={buttonClass('plain', 'sm')}>
             Open on the bench
           </Link>

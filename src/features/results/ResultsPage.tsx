@@ -45,7 +45,7 @@ function ResultList({ rows }: { rows: ResultSummary[] }) {
     );
   const filters =
     rows.length === 0 ? null : (
-      <search className="flex items-center gap-4">
+      <search className="flex flex-wrap items-center gap-4">
         <TextInput
           type="search"
           aria-label="Words in the name, maker or study"
@@ -72,7 +72,7 @@ function ResultList({ rows }: { rows: ResultSummary[] }) {
       note={found.length === rows.length ? String(rows.length) : `${found.length} of ${rows.length}`}
       actions={filters}
     >
-      <div className="px-5 py-3">
+      <div className="overflow-x-auto px-5 py-3">
         {rows.length === 0 ? (
           <NoResults />
         ) : (

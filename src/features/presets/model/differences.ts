@@ -26,9 +26,9 @@ export function listDifferences(before: Preset, after: Preset, specs: readonly D
   if (before.name !== after.name) differences.push({ what: 'Name', before: before.name, after: after.name });
   const dialIds = new Set([...Object.keys(before.dials), ...Object.keys(after.dials)]);
   for (const id of dialIds) {
-    const [was, is] = [before.dials[id], after.dials[id]];
-    if (!same(was, is))
-      differences.push({ what: specOf.get(id)?.label ?? id, before: say(id, was), after: say(id, is) });
+    const [was, is] = [say(id, before.dials[id]), say(id, after.dials[id])];
+    // A default said or left unsaid is the same dial.
+    if (was !== is) differences.push({ what: specOf.get(id)?.label ?? id, before: was, after: is });
   }
   const names = new Set([...Object.keys(before.inputs), ...Object.keys(after.inputs)]);
   for (const name of names) {
@@ -36,7 +36,8 @@ export function listDifferences(before: Preset, after: Preset, specs: readonly D
     for (const setting of SETTINGS) {
       const [a, b] = [was?.[setting] ?? null, is?.[setting] ?? null];
       if (!same(a, b)) {
-        const word = (value: unknown): string => (value === null ? 'proposed from the bytes' : 'given');
+        const none = setting === 'plane' ? 'none' : 'proposed from the bytes';
+        const word = (value: unknown): string => (value === null ? none : 'given');
         differences.push({
           what: `${name}: ${setting}`,
           before: word(a),

@@ -41,7 +41,7 @@ export function ResultActions({ row, maps }: ResultActionsProps) {
     },
   ];
   return (
-    <span className="flex items-center gap-2">
+    <span className="flex flex-wrap items-center gap-2">
       {mayUseBench(group) ? <BenchLink row={row} group={group} /> : null}
       <Menu
         align="end"
