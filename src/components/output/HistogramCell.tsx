@@ -12,7 +12,7 @@ export interface HistogramCellProps extends CellProps {
 }
 
 /** Window widths shown to either side of the window, unless the whole histogram is asked for. */
-const WIDTHS_SHOWN = 6;
+const WIDTHS_SHOWN = 4;
 
 type Span = readonly [number, number];
 

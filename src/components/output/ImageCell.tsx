@@ -6,6 +6,9 @@ import { Button } from '../ui/Button';
 import { isRegion, plotToRegion, regionToPlot } from './dial-marks';
 import { type CellProps, HEIGHTS, noteOf } from './MapCell';
 
+/** The image itself, not what it was made from: regions are drawn on it. */
+const IS_RESULT = /^image(\.(raw|net))?$/;
+
 type RegionDial = Extract<DialSpec, { type: 'region' }>;
 
 /** An image with its regions; with dials at hand they are drawn on it. */
@@ -44,7 +47,7 @@ export function ImageCell(props: CellProps) {
               }
         }
       />
-      {onTurn === undefined || regionDials.length === 0 ? null : (
+      {onTurn === undefined || regionDials.length === 0 || !IS_RESULT.test(id) ? null : (
         <div className="flex flex-wrap gap-2">
           {regionDials.map((spec) => (
             <Button

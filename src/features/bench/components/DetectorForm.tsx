@@ -92,7 +92,7 @@ function ArmFields({ arm, array, errors, onChange }: ArmFieldsProps) {
           {arm}
         </span>
         <Toggle
-          label={`${arm} array present`}
+          label={<Present of={`${arm} array`} />}
           checked={array !== null}
           onChange={(on) => onChange(on ? emptyArray(null) : null)}
         />
@@ -177,6 +177,15 @@ function ArmFields({ arm, array, errors, onChange }: ArmFieldsProps) {
   );
 }
 
+/** The name stands at the left; only who listens needs it again. */
+function Present({ of }: { of: string }) {
+  return (
+    <>
+      <span className="sr-only">{of} </span>present
+    </>
+  );
+}
+
 function BucketFields({ draft, errors, onChange }: Omit<DetectorFormProps, 'onPropose'>) {
   const { bucket } = draft;
   return (
@@ -187,7 +196,7 @@ function BucketFields({ draft, errors, onChange }: Omit<DetectorFormProps, 'onPr
           bucket
         </span>
         <Toggle
-          label="bucket present"
+          label={<Present of="bucket" />}
           checked={bucket !== null}
           onChange={(on) => onChange({ bucket: on ? { channel: null, delayPs: 0 } : null })}
         />

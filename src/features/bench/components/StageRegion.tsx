@@ -61,22 +61,25 @@ export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
             <p className="max-w-prose text-sm text-dim">{study?.answers}</p>
           </OutputStage>
         )}
-        {found === null && plan.needs.length === 0 ? <Waiting /> : null}
+        {found === null && plan.needs.length === 0 ? <Waiting isKnown={study !== null} /> : null}
       </div>
     </section>
   );
 }
 
-function Waiting() {
+/** Why there is no picture yet, while nothing is missing. */
+function Waiting({ isKnown }: { isKnown: boolean }) {
   const run = useBenchState((state) => state.run);
+  const isStarted = useBenchState((state) => state.studies.length > 0 || state.studiesProblem !== null);
   if (run.status === 'failed') return null;
-  return (
-    <p className="py-6 text-dim">
-      {run.status === 'cancelled'
+  const words = !isStarted
+    ? 'Starting the engine.'
+    : !isKnown
+      ? 'This version of Gemel does not have the study that was asked for. Choose another above.'
+      : run.status === 'cancelled'
         ? 'Cancelled before the first picture.'
-        : 'The first picture is on its way.'}
-    </p>
-  );
+        : 'The first picture is on its way.';
+  return <p className="py-6 text-dim">{words}</p>;
 }
 
 /** Progress with its cancel, at the right of the studies. */

@@ -1,0 +1,158 @@
+import { describe, expect, it } from 'vitest';
+import { benchStateSchema } from '../../../../shared/contracts/http';
+import type { Plane } from '../../../../shared/contracts/plane';
+import { presetSchema } from '../../../../shared/contracts/preset';
+import { presetOfBench, sessionOfBench } from '../../../../src/features/bench/model/bench-records';
+import {
+  currentAssignment,
+  currentDials,
+  planRun,
+} from '../../../../src/features/bench/model/bench-selectors';
+import { createBenchStore } from '../../../../src/features/bench/model/bench-store';
+import { fakeEngine, fileOf, inspectionOf, settle, tagsLayout } from './fake-engine';
+
+const near: Plane = { version: 1, kind: 'near', magnification: { value: 4, sigma: 0.04 } };
+
+async function freshBench() {
+  const engine = fakeEngine();
+  const store = createBenchStore(engine);
+  await store.getState().loadStudies();
+  return { engine, store };
+}
+
+describe('the shelf', () => {
+  it('says in a sentence what a study still needs', async () => {
+    const { store } = await freshBench();
+    expect(planRun(store.getState()).needs[0]?.sentence).toBe(
+      'Time tags needs an acquisition with time tags.',
+    );
+    store.getState().chooseStudy('witness');
+    store.getState().addFiles([{ file: fileOf('near.h5'), sample: null }]);
+    await settle();
+    const sentences = planRun(store.getState()).needs.map(({ sentence }) => sentence);
+    expect(sentences[0]).toBe('near.h5 needs its plane, the near field, with the calibration.');
+    expect(sentences[1]).toContain('The far field needs an acquisition');
+  });
+
+  it('leaves the others alone when one file cannot be read', async () => {
+    const { engine, store } = await freshBench();
+    engine.inspection = (name) =>
+      name === 'bad.h5'
+        ? {
+            status: 'error',
+            problem: { code: 'not-this-format', message: 'This is text.', place: 'bad.h5, byte 0' },
+          }
+        : { status: 'ok', value: inspectionOf(name) };
+    store.getState().addFiles([
+      { file: fileOf('bad.h5'), sample: null },
+      { file: fileOf('good.h5'), sample: null },
+    ]);
+    await settle();
+    const { shelf, log } = store.getState();
+    expect(shelf[0]?.reading).toMatchObject({ status: 'failed', problem: { message: 'This is text.' } });
+    expect(shelf[1]?.layout).toEqual(tagsLayout);
+    expect(currentAssignment(store.getState()).tags).toBe(shelf[1]?.id);
+    expect(log.some(({ tone, text }) => tone === 'problem' && text.includes('This is text.'))).toBe(true);
+  });
+
+  it('assigns near and far by calibration and name, and swaps on request', async () => {
+    const { store } = await freshBench();
+    store.getState().chooseStudy('witness');
+    store.getState().addFiles([
+      { file: fileOf('far-2.h5'), sample: null },
+      { file: fileOf('near-1.h5'), sample: null },
+    ]);
+    await settle();
+    const [far, close] = store.getState().shelf;
+    expect(currentAssignment(store.getState())).toEqual({ near: close?.id, far: far?.id });
+    store.getState().assign('near', far!.id);
+    expect(currentAssignment(store.getState())).toEqual({ near: far?.id, far: close?.id });
+  });
+
+  it('does not run a calibrated study on a pitch nobody gave', async () => {
+    const { store } = await freshBench();
+    store.getState().chooseStudy('witness');
+    store.getState().addFiles([{ file: fileOf('near.h5'), sample: null }]);
+    await settle();
+    const { id, detector, reading } = store.getState().shelf[0]!;
+    if (reading.status !== 'read') throw new Error('not read');
+    const change = { layout: tagsLayout, detector, plane: near, inspection: reading.inspection };
+    store.getState().changeReading(id, { ...change, detectorGiven: false });
+    expect(planRun(store.getState()).needs[0]?.sentence).toContain('pixel pitch');
+    store.getState().changeReading(id, { ...change, detectorGiven: true });
+    expect(planRun(store.getState()).needs.map(({ sentence }) => sentence)).toEqual([
+      'The far field needs an acquisition with time tags or frames.',
+    ]);
+  });
+});
+
+describe('presets and sessions', () => {
+  it('give their readings to the acquisitions that come, by the name of the input', async () => {
+    const { engine, store } = await freshBench();
+    const setting = { layout: tagsLayout, detector: null, plane: near };
+    store.getState().openSettings(
+      {
+        study: 'witness',
+        dials: {},
+        inputs: { near: setting, far: { ...setting, plane: null } },
+        seed: 7,
+      },
+      null,
+    );
+    store.getState().addFiles([{ file: fileOf('monday-near.h5'), sample: null }]);
+    await settle();
+    expect(engine.looks).toEqual([{ name: 'monday-near.h5', layout: tagsLayout }]);
+    expect(store.getState().shelf[0]).toMatchObject({ plane: near, layoutGiven: true });
+    expect(Object.keys(store.getState().waiting)).toEqual(['far']);
+    expect(planRun(store.getState()).request).toBeNull();
+  });
+
+  it('ask for files of one’s own again, by name and size', async () => {
+    const { store } = await freshBench();
+    const { awaitFiles, addFiles, openSettings } = store.getState();
+    openSettings({ study: 'delay', dials: { window: 200 }, inputs: {}, seed: 1 }, null);
+    awaitFiles([{ name: 'near.h5', bytes: 80, input: 'tags' }]);
+    expect(planRun(store.getState()).needs[0]?.sentence).toBe(
+      'Drop near.h5 again: its bytes stay on your machine.',
+    );
+    addFiles([{ file: fileOf('near.h5', 81), sample: null }]);
+    await settle();
+    expect(store.getState().shelf).toHaveLength(2);
+    expect(store.getState().log.some(({ text }) => text.includes('81 bytes'))).toBe(true);
+    addFiles([{ file: fileOf('near.h5', 80), sample: null }]);
+    await settle();
+    expect(store.getState().shelf[0]?.reading.status).toBe('read');
+    expect(planRun(store.getState()).request?.dials).toEqual({ window: 200, delay: null });
+  });
+
+  it('are stored in the shape of their contracts, without a proposed pitch', async () => {
+    const { store } = await freshBench();
+    store.getState().addFiles([{ file: fileOf('run.h5'), sample: 'run.h5' }]);
+    await settle();
+    store.getState().turn({ window: 300 });
+    const preset = presetSchema.parse(presetOfBench(store.getState(), 'Monday'));
+    expect(preset.inputs.tags).toEqual({ layout: tagsLayout, detector: null, plane: null });
+    expect(preset.dials.window).toBe(300);
+    const session = benchStateSchema.parse(sessionOfBench(store.getState(), 'Monday', null));
+    expect(session.shelf).toEqual([
+      { name: 'run.h5', bytes: 80, sha256: null, input: 'tags', sample: 'run.h5' },
+    ]);
+  });
+
+  it('keep each study’s dials, with one undo a turn', async () => {
+    const { store } = await freshBench();
+    const { turn, undo, redo, chooseStudy } = store.getState();
+    turn({ window: 100 });
+    turn({ window: 110 });
+    turn({ delay: 40 });
+    undo();
+    expect(currentDials(store.getState())).toEqual({ window: 110, delay: null });
+    undo();
+    expect(currentDials(store.getState())).toEqual({ window: null, delay: null });
+    redo();
+    chooseStudy('witness');
+    expect(currentDials(store.getState())).toEqual({});
+    chooseStudy('delay');
+    expect(currentDials(store.getState()).window).toBe(110);
+  });
+});

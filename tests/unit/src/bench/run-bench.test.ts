@@ -1,0 +1,112 @@
+import { afterEach, beforeEach, describe, expect, it, vi } from 'vitest';
+import { planRun } from '../../../../src/features/bench/model/bench-selectors';
+import { createBenchStore } from '../../../../src/features/bench/model/bench-store';
+import { attachRunner } from '../../../../src/features/bench/model/run-bench';
+import { fakeEngine, fileOf, outputOf, resultOf, settle } from './fake-engine';
+
+beforeEach(() => {
+  vi.useFakeTimers();
+});
+afterEach(() => {
+  vi.useRealTimers();
+});
+
+async function benchWithTags() {
+  const engine = fakeEngine();
+  const store = createBenchStore(engine);
+  const runner = attachRunner(store, engine);
+  await store.getState().loadStudies();
+  store.getState().addFiles([{ file: fileOf('run.h5'), sample: null }]);
+  await settle();
+  await vi.advanceTimersByTimeAsync(1);
+  return { engine, store, runner };
+}
+
+describe('a run', () => {
+  it('starts at once when a file is dropped and the study has all it needs', async () => {
+    const { engine, store } = await benchWithTags();
+    expect(engine.runs).toHaveLength(1);
+    const { request } = engine.runs[0]!;
+    expect(request.study).toBe('delay');
+    expect(request.dials).toEqual({ window: null, delay: null });
+    expect(request.inputs.tags?.detector).toMatchObject({
+      kind: 'tags',
+      signal: { width: 2, firstChannel: 0 },
+    });
+    expect(store.getState().run).toMatchObject({ status: 'running', progress: null });
+  });
+
+  it('shows partial output, then the final one with its provenance and the fingerprint of the file', async () => {
+    const { engine, store } = await benchWithTags();
+    const run = engine.runs[0]!;
+    run.tell({ kind: 'partial', jobId: run.request.jobId, output: outputOf(), fraction: 0.4 });
+    expect(store.getState().found.delay).toMatchObject({ fraction: 0.4, result: null });
+    run.answer({ status: 'ok', value: resultOf(outputOf(), run.request) });
+    await settle();
+    expect(store.getState().found.delay?.fraction).toBeNull();
+    expect(store.getState().run).toMatchObject({ status: 'done', seconds: 1.5 });
+    expect(store.getState().shelf[0]?.sha256).toBe('ab'.repeat(32));
+    await vi.advanceTimersByTimeAsync(1000);
+    expect(engine.runs).toHaveLength(1);
+  });
+
+  it('waits while a dial is being turned, and the newest request wins', async () => {
+    const { engine, store } = await benchWithTags();
+    const first = engine.runs[0]!;
+    first.answer({ status: 'ok', value: resultOf(outputOf(), first.request) });
+    await settle();
+    for (const window of [100, 200, 300]) {
+      store.getState().turn({ window });
+      await vi.advanceTimersByTimeAsync(60);
+    }
+    expect(engine.runs).toHaveLength(1);
+    await vi.advanceTimersByTimeAsync(200);
+    expect(engine.runs).toHaveLength(2);
+    expect(engine.runs[1]?.request.dials.window).toBe(300);
+
+    store.getState().turn({ window: 400 });
+    await vi.advanceTimersByTimeAsync(200);
+    expect(engine.runs).toHaveLength(3);
+    expect(engine.cancelled).toEqual([engine.runs[1]?.request.jobId]);
+    // The older answer comes late and changes nothing.
+    const late = outputOf({ statement: 'late' });
+    engine.runs[1]!.answer({ status: 'ok', value: resultOf(late, engine.runs[1]!.request) });
+    await settle();
+    expect(store.getState().found.delay?.output.statement).toBe('Counted in a window.');
+  });
+
+  it('keeps what was found when the run fails or is cancelled, and does not start again by itself', async () => {
+    const { engine, store, runner } = await benchWithTags();
+    const first = engine.runs[0]!;
+    first.answer({ status: 'ok', value: resultOf(outputOf(), first.request) });
+    await settle();
+    store.getState().turn({ window: 50 });
+    await vi.advanceTimersByTimeAsync(200);
+    const problem = { code: 'truncated' as const, message: 'The file ends early.', place: 'run.h5, byte 80' };
+    engine.runs[1]!.answer({ status: 'error', problem });
+    await settle();
+    expect(store.getState().run).toMatchObject({ status: 'failed', problem });
+    expect(store.getState().found.delay?.output.statement).toBe('Counted in a window.');
+    expect(store.getState().found.delay?.key).not.toBe(planRun(store.getState()).key);
+    await vi.advanceTimersByTimeAsync(1000);
+    expect(engine.runs).toHaveLength(2);
+    runner.again();
+    expect(engine.runs).toHaveLength(3);
+    runner.cancel();
+    expect(store.getState().run.status).toBe('cancelled');
+    expect(engine.cancelled).toContain(engine.runs[2]!.request.jobId);
+    expect(store.getState().log.at(-1)?.text).toContain('kept');
+  });
+
+  it('is not repeated when an undo leads back to what is already known', async () => {
+    const { engine, store } = await benchWithTags();
+    const first = engine.runs[0]!;
+    first.answer({ status: 'ok', value: resultOf(outputOf(), first.request) });
+    await settle();
+    store.getState().turn({ window: 50 });
+    store.getState().undo();
+    await vi.advanceTimersByTimeAsync(1000);
+    expect(engine.runs).toHaveLength(1);
+    expect(store.getState().run.status).toBe('done');
+  });
+});
