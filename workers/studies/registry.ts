@@ -2,10 +2,14 @@ import type { StudyId } from '../../shared/contracts/study';
 import { Problem } from '../../shared/errors/problem';
 import { delayStudy } from './delay/study';
 import { ghostImageStudy } from './ghost-image/study';
+import { jointMapStudy } from './joint-map/study';
 import type { Study } from './study';
+import { witnessStudy } from './witness/study';
 
 export const studies: Partial<Record<StudyId, Study>> = {
   delay: delayStudy,
+  'joint-map': jointMapStudy,
+  witness: witnessStudy,
   'ghost-image': ghostImageStudy,
 };
 
