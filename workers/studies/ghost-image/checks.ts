@@ -86,7 +86,7 @@ function checkRegions(dials: DialValues, { regions }: GhostContrast): Check {
   return { ...base, status: 'pass', sentence: 'The open and closed regions share no pixel.' };
 }
 
-/** Light in the outermost ring of pixels means that the image goes on outside the array. */
+/** Light along one edge of the array means that the image goes on outside it. */
 function checkCut(count: TagCount, net: Float64Array, { open, closed }: GhostContrast): Check {
   const { width, height, masked } = count.tally.b;
   const base = { id: 'image-inside', unit: '%' };
@@ -94,21 +94,24 @@ function checkCut(count: TagCount, net: Float64Array, { open, closed }: GhostCon
     const sentence = 'The array or the image is too small to see whether its edge cuts the image.';
     return { ...base, status: 'caution', figure: null, sentence };
   }
-  let ring = 0;
-  let pixels = 0;
-  for (let p = 0; p < net.length; p++) {
-    const x = p % width;
-    const y = Math.floor(p / width);
-    const edge = x === 0 || y === 0 || x === width - 1 || y === height - 1;
-    if (!edge || masked[p] === 1) continue;
-    ring += net[p]!;
-    pixels += 1;
-  }
-  const percent = Math.round((100 * (ring / Math.max(1, pixels) - closed)) / (open - closed)) + 0;
+  const level = Math.max(...sidesOf(width, height).map((side) => meanOver(side, net, masked)));
+  const percent = Math.round((100 * (level - closed)) / (open - closed)) + 0;
   if (percent < 20) {
-    const sentence = `Pixels along the edge of the array hold ${percent} % of the open level: the image lies inside.`;
+    const sentence = `The brightest edge of the array holds ${percent} % of the open level: the image lies inside.`;
     return { ...base, status: 'pass', figure: percent, sentence };
   }
-  const sentence = `Pixels along the edge of the array hold ${percent} % of the open level: part of the image may lie outside. Move the image or lower the magnification.`;
+  const sentence = `The brightest edge of the array holds ${percent} % of the open level: part of the image may lie outside. Move the image or lower the magnification.`;
   return { ...base, status: 'caution', figure: percent, sentence };
+}
+
+/** Pixels of the first and last column and row. */
+function sidesOf(width: number, height: number): number[][] {
+  const column = (x: number): number[] => Array.from({ length: height }, (_, y) => y * width + x);
+  const row = (y: number): number[] => Array.from({ length: width }, (_, x) => y * width + x);
+  return [column(0), column(width - 1), row(0), row(height - 1)];
+}
+
+function meanOver(pixels: readonly number[], values: Float64Array, masked: Uint8Array): number {
+  const good = pixels.filter((pixel) => masked[pixel] === 0);
+  return good.reduce((sum, pixel) => sum + values[pixel]!, 0) / Math.max(1, good.length);
 }
