@@ -15,7 +15,7 @@ export function PresetsPage() {
   const presets = useQuery(presetsQuery(group.id));
   return (
     <Page title="Presets" heading="Presets" note={presets.data ? String(presets.data.length) : undefined}>
-      <div className="overflow-x-auto px-5 py-3">
+      <div className="relative overflow-x-auto px-5 py-3">
         <Loaded query={presets} what="the presets">
           {(rows) => (rows.length === 0 ? <NoPresets /> : <PresetTable rows={rows} />)}
         </Loaded>

@@ -72,7 +72,7 @@ function ResultList({ rows }: { rows: ResultSummary[] }) {
       note={found.length === rows.length ? String(rows.length) : `${found.length} of ${rows.length}`}
       actions={filters}
     >
-      <div className="overflow-x-auto px-5 py-3">
+      <div className="relative overflow-x-auto px-5 py-3">
         {rows.length === 0 ? (
           <NoResults />
         ) : (
