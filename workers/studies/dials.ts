@@ -177,6 +177,21 @@ export const shiftCountDial: DialSpec = {
   auto: false,
 };
 
+export const deadTimeDial: DialSpec = {
+  id: 'dead.time',
+  label: 'Dead time of a pixel',
+  reason:
+    'How long a pixel is blind after a click, from its data sheet; only the check for saturated pixels uses it, counts are not corrected.',
+  needs: 'finish',
+  type: 'number',
+  unit: 'ns',
+  default: 50,
+  min: 0,
+  max: 1e6,
+  step: 5,
+  auto: false,
+};
+
 export const resamplesDial: DialSpec = {
   id: 'resamples',
   label: 'Bootstrap resamples',

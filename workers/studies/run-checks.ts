@@ -1,5 +1,6 @@
 import type { Check } from '../../shared/contracts/output';
 import type { ArmTally } from '../../shared/contracts/tally';
+import { trueRateNonParalysable } from '../../shared/physics/dead-time';
 import { g2 } from '../../shared/physics/timing';
 import { formatFigure } from './format-figure';
 import type { ArmPair } from './peak-search';
@@ -104,6 +105,37 @@ export function checkPixels(arms: readonly { arm: ArmTally; name: string }[]): C
   const named = odd.slice(0, 6).join(', ') + (odd.length > 6 ? ` and ${odd.length - 6} more` : '');
   const sentence = `Pixels stand apart from those around them: ${named}. Mask them in the detector map.`;
   return { ...base, status: 'caution', sentence };
+}
+
+/** Share of photons that the busiest pixel loses to its dead time, m t_d for a non-paralysable one. */
+export function checkSaturation(
+  arms: readonly { arm: ArmTally; name: string }[],
+  seconds: number,
+  deadNs: number,
+): Check {
+  const id = 'pixels-saturated';
+  const unit = '%';
+  let busiest = { rate: 0, at: '' };
+  for (const { arm, name } of arms) {
+    for (const [pixel, n] of arm.singles.entries()) {
+      if (!(n / seconds > busiest.rate)) continue;
+      busiest = { rate: n / seconds, at: `${name} (${pixel % arm.width}, ${Math.floor(pixel / arm.width)})` };
+    }
+  }
+  if (busiest.at === '') {
+    return { id, status: 'caution', figure: null, unit, sentence: 'No tags, so no pixel could saturate.' };
+  }
+  const truth = trueRateNonParalysable(busiest.rate, deadNs * 1e-9);
+  const lost = truth === null ? 100 : 100 * (1 - busiest.rate / truth);
+  const what = `The busiest pixel, ${busiest.at}, counts ${formatFigure(busiest.rate)} tags/s`;
+  if (truth === null) {
+    const sentence = `${what}, more than a dead time of ${deadNs} ns allows; correct the dead time or the map.`;
+    return { id, status: 'fail', figure: lost, unit, sentence };
+  }
+  const loses = `${what} and loses ${formatFigure(lost)} % of its light to a dead time of ${deadNs} ns`;
+  if (lost < 2) return { id, status: 'pass', figure: lost, unit, sentence: `${loses}.` };
+  const sentence = `${loses}; attenuate, or the singles, heralding efficiencies and image are too low there.`;
+  return { id, status: lost < 10 ? 'caution' : 'fail', figure: lost, unit, sentence };
 }
 
 export function checkOrder(count: TagCount): Check {

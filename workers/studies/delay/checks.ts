@@ -15,6 +15,7 @@ import {
   checkMapped,
   checkOrder,
   checkPixels,
+  checkSaturation,
 } from '../run-checks';
 import type { TagCount } from '../tag-count';
 
@@ -25,8 +26,13 @@ const LEAST_PAIRS = 100;
 export function checkDelay(
   count: TagCount,
   arms: ArmPair,
+  deadNs: number,
   excess: readonly { id: string; ratio: number }[],
 ): Check[] {
+  const arrays = [
+    { arm: count.tally.a, name: arms.a },
+    { arm: count.tally.b, name: arms.b },
+  ];
   return [
     checkPeakFound(count),
     checkPairsEnough(count, LEAST_PAIRS, GOOD_PAIRS),
@@ -36,10 +42,8 @@ export function checkDelay(
     checkBaseline(count),
     checkDrift(count, arms),
     checkExcessNoise(excess),
-    checkPixels([
-      { arm: count.tally.a, name: arms.a },
-      { arm: count.tally.b, name: arms.b },
-    ]),
+    checkPixels(arrays),
+    checkSaturation(arrays, count.seconds, deadNs),
     checkOrder(count),
     checkMapped(count),
     checkLiveTime(count),

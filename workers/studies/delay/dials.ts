@@ -1,5 +1,6 @@
 import type { DialSpec } from '../../../shared/contracts/dial';
 import {
+  deadTimeDial,
   delayDial,
   histogramBinDial,
   histogramRangeDial,
@@ -33,5 +34,6 @@ export const delayDials: readonly DialSpec[] = [
   darkDial('signal'),
   darkDial('idler'),
   darkDial('bucket'),
+  deadTimeDial,
   resamplesDial,
 ];

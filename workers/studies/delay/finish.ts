@@ -62,7 +62,7 @@ export function finishDelay(request: DelayRequest): StudyOutput {
       ),
     },
     verdicts: {},
-    checks: checkDelay(count, arms, list.excess),
+    checks: checkDelay(count, arms, numberDial(dials, 'dead.time'), list.excess),
     maps: {
       'delay.histogram': histogramMap(count),
       [`rates.${arms.a}`]: rateMap(count, 'a', arms.a),

@@ -1,5 +1,6 @@
 import type { DialValues } from '../../../shared/contracts/dial';
 import type { Check } from '../../../shared/contracts/output';
+import { numberDial } from '../dials';
 import {
   checkAccidentalsAgree,
   checkPairsEnough,
@@ -16,6 +17,7 @@ import {
   checkMapped,
   checkOrder,
   checkPixels,
+  checkSaturation,
 } from '../run-checks';
 import type { TagCount } from '../tag-count';
 import { overlapOf, type Regions } from './regions';
@@ -52,6 +54,14 @@ export function checkGhostImage(
     checkDrift(count, arms),
     checkExcessNoise(excess),
     checkPixels([{ arm: count.tally.b, name: arms.b }]),
+    checkSaturation(
+      [
+        { arm: count.tally.a, name: arms.a },
+        { arm: count.tally.b, name: arms.b },
+      ],
+      count.seconds,
+      numberDial(dials, 'dead.time'),
+    ),
     checkOrder(count),
     checkMapped(count),
     checkLiveTime(count),

@@ -1,5 +1,6 @@
 import type { DialSpec } from '../../../shared/contracts/dial';
 import {
+  deadTimeDial,
   delayDial,
   histogramBinDial,
   histogramRangeDial,
@@ -54,5 +55,6 @@ export const ghostImageDials: readonly DialSpec[] = [
   openDial,
   closedDial,
   bucketDarkDial,
+  deadTimeDial,
   resamplesDial,
 ];

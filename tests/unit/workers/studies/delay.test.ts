@@ -138,6 +138,17 @@ describe('Delay', () => {
     expect(statusOf(output, 'tags-mapped')).toBe('caution');
   });
 
+  it('keeps what a person has set and chooses the rest', () => {
+    const delaySet = runTagStudy(delayStudy, block, detector, { delay: 3300 });
+    expect(Object.keys(delaySet.output.chosen).sort()).toEqual(['histogram.bin', 'window']);
+    expect(delaySet.chosen.delay).toBe(3300);
+    expect(delaySet.chosen.window! / run.chosen.window!).toBeCloseTo(1, 1);
+    const windowSet = runTagStudy(delayStudy, block, detector, { window: 600, 'histogram.bin': 50 });
+    expect(Object.keys(windowSet.output.chosen)).toEqual(['delay']);
+    expect(windowSet.output.quantities['window.width']?.value).toBe(600);
+    expect(windowSet.output.maps['delay.histogram']?.axes[0]?.step).toBeCloseTo(0.05, 12);
+  });
+
   it('needs no search when delay and window are set', () => {
     const set = { delay: 3210, window: 1000 };
     const { output, chosen } = runTagStudy(delayStudy, block, detector, set);
@@ -192,6 +203,17 @@ describe('Delay says what is wrong', () => {
     expect(check?.status).toBe('caution');
     expect(check?.sentence).toContain('signal (1, 1) dead');
     expect(check?.sentence).toContain('idler (2, 2) hot');
+  });
+
+  it('when a pixel is faster than its dead time bears', () => {
+    const status = (ns: number) => statusOf(withDials({ 'dead.time': ns }), 'pixels-saturated');
+    // The busiest of 16 pixels counts about 5000 tags/s: 10 us lose 5 %, 30 us 15 %, 1 ms cannot be.
+    expect([status(50), status(10_000), status(30_000), status(1_000_000)]).toEqual([
+      'pass',
+      'caution',
+      'fail',
+      'fail',
+    ]);
   });
 
   it('when a stretch of the run is empty', () => {
