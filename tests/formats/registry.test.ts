@@ -2,7 +2,7 @@ import { describe, expect, it } from 'vitest';
 import type { Layout } from '../../shared/contracts/layout';
 import { formatById, formats, inspectSource, openReader } from '../../workers/formats/registry';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
-import { recordsLayout, writeTags } from './support/record-writer';
+import { place, recordsLayout, writeRecords, writeTags } from './support/record-writer';
 import { memorySource, problemOf, readTags } from './support/sources';
 
 const hdf5: Layout = { version: 1, format: 'hdf5', kind: 'frames', dataset: '/x' };
@@ -76,6 +76,39 @@ describe('the layout of records is proposed from bytes alone', () => {
     const reader = await openReader(source, inspection.layout!, nodeEnvironment);
     expect(await readTags(reader)).toEqual(tags);
   });
+
+  it.each([
+    ['4 bytes, counted', 4, 'little', 21, 10, 'time-field', 900, 1n],
+    ['4 bytes, big-endian, one by one', 4, 'big', 24, 7, 'one', 400_000, 1n],
+    ['8 bytes, one by one', 8, 'little', 47, 16, 'one', 10 ** 9, 1001n],
+  ] as const)(
+    'with markers: %s',
+    async (_name, recordBytes, byteOrder, timeBits, channelBits, wraps, step, stretch) => {
+      const flag = field(8 * recordBytes - 1, 1);
+      const period = 2n ** BigInt(timeBits);
+      const layout = recordsLayout({
+        recordBytes,
+        byteOrder,
+        time: field(0, timeBits),
+        channel: field(timeBits, channelBits),
+        rollover: { in: 'marker', when: [{ field: flag, equals: 1 }], advanceTick: Number(period), wraps },
+      });
+      const tags = clicks(30_000, 90, step);
+      tags.ticks = tags.ticks.map((tick) => tick * stretch);
+      const values: bigint[] = [];
+      let turn = 0n;
+      tags.ticks.forEach((tick, i) => {
+        for (; turn < tick / period; turn += 1n)
+          values.push(place(1n, flag) | place(wraps === 'one' ? 0n : 1n, layout.time));
+        values.push(place(tick, layout.time) | place(BigInt(tags.channels[i]!), layout.channel));
+      });
+      const source = memorySource(writeRecords(layout, values));
+      const inspection = await inspectSource(source, null, nodeEnvironment);
+      expect(inspection.layout).toEqual(layout);
+      const reader = await openReader(source, inspection.layout!, nodeEnvironment);
+      expect(await readTags(reader, [7777])).toEqual(tags);
+    },
+  );
 
   it('is not proposed for noise', async () => {
     const next = sequence(99);

@@ -1,6 +1,7 @@
 import type { RecordsLayout } from '../../../shared/contracts/layout';
 import { FS_PER_PS } from '../../../shared/units/ticks';
 import { type Guess, guessRecords } from './guess';
+import { guessMarkers, type MarkerGuess } from './guess-markers';
 
 export interface RecordsProposal {
   layout: RecordsLayout;
@@ -9,11 +10,19 @@ export interface RecordsProposal {
 }
 
 /** Bytes from the start of a file that a proposal is made from. */
-export const proposalBytes = 2 ** 16;
+export const proposalBytes = 2 ** 18;
+
+/** Splits without markers are many, and tell themselves apart sooner. */
+const plainBytes = 2 ** 16;
+
+const tickWarning =
+  'The length of a tick cannot be known from such bytes: 1 ps is proposed, set the one of your time tagger.';
 
 /** A layout for the bytes, or null. What bytes cannot tell (tick length, markers) is said in `warnings`. */
 export function proposeRecords(sample: Uint8Array, size: number): RecordsProposal | null {
-  const guess = guessRecords(sample, size);
+  const marked = guessMarkers(sample);
+  if (marked !== null) return markedProposal(marked);
+  const guess = guessRecords(sample.subarray(0, plainBytes), size);
   if (guess === null) return null;
   const { recordBytes, byteOrder, time, channel } = guess;
   // Shorter fields may wrap after the sampled part: in ordered tags `wrap` is right whether they do or not.
@@ -34,7 +43,7 @@ export function proposeRecords(sample: Uint8Array, size: number): RecordsProposa
     },
     because: because(guess),
     warnings: [
-      'The length of a tick cannot be known from such bytes: 1 ps is proposed, set the one of your time tagger.',
+      tickWarning,
       ...(time.bits < 64
         ? [
             'Records that announce rollovers or states cannot be told from tags: set their conditions if your time tagger writes them.',
@@ -42,6 +51,36 @@ export function proposeRecords(sample: Uint8Array, size: number): RecordsProposa
         : []),
     ],
   };
+}
+
+function markedProposal(guess: MarkerGuess): RecordsProposal {
+  const { recordBytes, byteOrder, time, channel, flag, wraps, records, markers, channels, lastChannel } =
+    guess;
+  const counted = wraps === 'time-field' ? 'holds how many periods passed' : 'stands for one period';
+  return {
+    layout: {
+      version: 1,
+      format: 'records',
+      kind: 'tags',
+      recordBytes,
+      byteOrder,
+      headerBytes: 0,
+      time,
+      channel,
+      rollover: { in: 'marker', when: [{ field: flag, equals: 1 }], advanceTick: 2 ** time.bits, wraps },
+      skip: [],
+      tickFs: FS_PER_PS,
+    },
+    because: `Read as ${orderName(byteOrder)} records of ${recordBytes} bytes, bits ${bitRange(time)} fall only across the ${markers} of the first ${records} records whose bit ${flag.firstBit} is set, and bits ${bitRange(channel)} hold ${channels} values up to ${lastChannel}.`,
+    warnings: [
+      tickWarning,
+      `Each record with bit ${flag.firstBit} set is taken to announce a rollover of ${2 ** time.bits} ticks and ${counted}: compare the length of the run with the clock.`,
+    ],
+  };
+}
+
+function orderName(byteOrder: 'little' | 'big'): string {
+  return byteOrder === 'little' ? 'little-endian' : 'big-endian';
 }
 
 function because({
@@ -61,10 +100,9 @@ function because({
       : wraps > 0
         ? 'fall only where they wrap'
         : 'never fall';
-  const order = byteOrder === 'little' ? 'little-endian' : 'big-endian';
   const values =
     channels === 1 ? `hold one value, ${lastChannel}` : `hold ${channels} values up to ${lastChannel}`;
-  return `Read as ${order} records of ${recordBytes} bytes, bits ${bitRange(time)} ${falls} over the first ${records} records and bits ${bitRange(channel)} ${values}.`;
+  return `Read as ${orderName(byteOrder)} records of ${recordBytes} bytes, bits ${bitRange(time)} ${falls} over the first ${records} records and bits ${bitRange(channel)} ${values}.`;
 }
 
 function bitRange({ firstBit, bits }: { firstBit: number; bits: number }): string {
