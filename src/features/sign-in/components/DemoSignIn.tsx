@@ -5,8 +5,16 @@ import type { Credentials } from '../api/sign-in';
 
 /** On a server only this machine reaches: one click into the demo group. */
 export function DemoSignIn({ pending, onUse }: { pending: boolean; onUse(credentials: Credentials): void }) {
-  const { data, error } = useServerInfo();
-  if (error !== null) return <ProblemNote error={error} />;
+  const { data, error, refetch } = useServerInfo();
+  if (error !== null) {
+    return (
+      <ProblemNote error={error}>
+        <Button size="sm" onClick={() => void refetch()}>
+          Try again
+        </Button>
+      </ProblemNote>
+    );
+  }
   const demo = data?.demo ?? null;
   if (demo === null) return null;
   return (
