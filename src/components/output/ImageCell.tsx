@@ -1,10 +1,10 @@
 import { useState } from 'react';
 import type { DialSpec } from '../../../shared/contracts/dial';
-import { HeatMap } from '../../viz/HeatMap';
 import type { RegionMark } from '../../viz/types';
 import { Button } from '../ui/Button';
 import { isRegion, plotToRegion, regionToPlot } from './dial-marks';
-import { type CellProps, HEIGHTS, noteOf } from './MapCell';
+import { type CellProps, noteOf } from './MapCell';
+import { StageMap, usePresentable } from './StageMap';
 
 /** The image itself, not what it was made from: regions are drawn on it. */
 const IS_RESULT = /^image(\.(raw|net))?$/;
@@ -14,7 +14,8 @@ type RegionDial = Extract<DialSpec, { type: 'region' }>;
 /** An image with its regions; with dials at hand they are drawn on it. */
 export function ImageCell(props: CellProps) {
   const { cell, theme, note, specs, dials, onTurn, cursor, logScale } = props;
-  const { id, map } = cell;
+  const { id } = cell;
+  const map = usePresentable(cell.map);
   const [drawing, setDrawing] = useState<string | null>(null);
   const regionDials = specs.filter((spec): spec is RegionDial => spec.type === 'region');
   const active = regionDials.find((spec) => spec.id === drawing);
@@ -26,12 +27,11 @@ export function ImageCell(props: CellProps) {
   });
   return (
     <div data-map={id} className="flex flex-col gap-2">
-      <HeatMap
+      <StageMap
         map={map}
         theme={theme}
-        height={HEIGHTS.map}
         note={noteOf(cell, note)}
-        logScale={logScale && map.scale === 'counts'}
+        logScale={logScale}
         crosshair={cursor?.pointFor(map) ?? null}
         onCrosshair={(point) => cursor?.move(map, point)}
         regions={marks}

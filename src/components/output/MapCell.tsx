@@ -1,7 +1,6 @@
 import { useState } from 'react';
 import type { DialSpec, DialValues } from '../../../shared/contracts/dial';
 import { displayUnit } from '../../lib/format-number';
-import { HeatMap } from '../../viz/HeatMap';
 import { LinePlot } from '../../viz/LinePlot';
 import type { Theme, Tone } from '../../viz/types';
 import type { Cell } from './arrange-maps';
@@ -9,6 +8,7 @@ import { HistogramCell } from './HistogramCell';
 import { ImageCell } from './ImageCell';
 import { splitVariant, VARIANT_WORDS } from './quantity-words';
 import { SliceOfMap } from './SliceOfMap';
+import { StageMap, usePresentable } from './StageMap';
 import type { LinkedCursor } from './use-linked-cursor';
 
 export interface CellContext {
@@ -25,7 +25,7 @@ export interface CellContext {
 export type CellProps = CellContext & { cell: Cell };
 
 /** Heights in pixels of the plots, by what one reads from them. */
-export const HEIGHTS = { map: 380, wide: 300, line: 210, projection: 250 } as const;
+export const HEIGHTS = { wide: 300, line: 210, projection: 250 } as const;
 
 export function noteOf({ id, map }: Cell, note: string | null): string {
   const { variant } = splitVariant(id);
@@ -58,15 +58,14 @@ export function MapCell(props: CellProps) {
 }
 
 function PlainMap({ cell, theme, note, cursor, logScale }: CellProps) {
-  const { map } = cell;
+  const map = usePresentable(cell.map);
   return (
     <div data-map={cell.id}>
-      <HeatMap
+      <StageMap
         map={map}
         theme={theme}
-        height={HEIGHTS.map}
         note={noteOf(cell, note)}
-        logScale={logScale && map.scale === 'counts'}
+        logScale={logScale}
         crosshair={cursor?.pointFor(map) ?? null}
         onCrosshair={(point) => cursor?.move(map, point)}
       />
@@ -75,16 +74,15 @@ function PlainMap({ cell, theme, note, cursor, logScale }: CellProps) {
 }
 
 function JointCell({ cell, theme, note, cursor, logScale }: CellProps) {
-  const { map } = cell;
+  const map = usePresentable(cell.map);
   const [picked, setPicked] = useState<{ ix: number; iy: number } | null>(null);
   return (
     <div data-map={cell.id} className="flex flex-col gap-3">
-      <HeatMap
+      <StageMap
         map={map}
         theme={theme}
-        height={HEIGHTS.map}
         note={noteOf(cell, note)}
-        logScale={logScale && map.scale === 'counts'}
+        logScale={logScale}
         crosshair={cursor?.pointFor(map) ?? null}
         onCrosshair={(point) => cursor?.move(map, point)}
         onPick={(ix, iy) => setPicked({ ix, iy })}
@@ -92,7 +90,7 @@ function JointCell({ cell, theme, note, cursor, logScale }: CellProps) {
       {picked === null ? (
         <p className="text-xs text-dim">Click the map, or press Enter on it, for the conditional slice.</p>
       ) : (
-        <SliceOfMap map={map} {...picked} onClose={() => setPicked(null)} />
+        <SliceOfMap map={cell.map} {...picked} onClose={() => setPicked(null)} />
       )}
     </div>
   );

@@ -29,14 +29,14 @@ export function OutputLedger({ output, provenance = null, note = null, children 
           <QuantityTable quantities={output.quantities} verdicts={output.verdicts} />
         </LedgerSection>
         <div className="flex min-w-0 flex-col gap-5">
+          <LedgerSection title="Checks" note={checksNote(output)}>
+            <CheckList checks={output.checks} />
+          </LedgerSection>
           {verdicts > 0 ? (
             <LedgerSection title="Verdicts">
               <VerdictList verdicts={output.verdicts} />
             </LedgerSection>
           ) : null}
-          <LedgerSection title="Checks" note={checksNote(output)}>
-            <CheckList checks={output.checks} />
-          </LedgerSection>
         </div>
         <div className="flex min-w-0 flex-col gap-5 @3xl:max-@6xl:col-span-2">
           {output.statement === '' ? null : (

@@ -31,7 +31,9 @@ export function QuantityTable({ quantities, verdicts }: QuantityTableProps) {
   const [isWhole, setWhole] = useState(false);
   const rows = pairVariants(quantities);
   if (rows.length === 0) return <p className="text-sm text-dim">Nothing yet.</p>;
-  const paired = rows.filter((row) => row.only === null);
+  // What is judged comes first: it is what the study was run for.
+  const rank = (row: QuantityRow<Quantity>): number => (verdictOf(row, verdicts) === undefined ? 1 : 0);
+  const paired = rows.filter((row) => row.only === null).sort((a, b) => rank(a) - rank(b));
   const single = rows.filter((row) => row.only !== null);
   const shared = { verdicts, isWhole };
   const tables = [

@@ -1,17 +1,10 @@
-import type { Verdict, VerdictLevel } from '../../../shared/contracts/output';
-import { pairVariants, VARIANT_WORDS } from './quantity-words';
-
-const LEVEL_WORDS: Record<VerdictLevel, string> = {
-  violated: 'violated',
-  indicated: 'indicated',
-  inconclusive: 'inconclusive',
-  'not-violated': 'not violated',
-};
+import type { Verdict } from '../../../shared/contracts/output';
+import { LEVEL_WORDS, pairVariants, VARIANT_WORDS } from './quantity-words';
 
 /** The verdicts as sentences, each with its level in words and its number of standard deviations. */
 export function VerdictList({ verdicts }: { verdicts: Record<string, Verdict> }) {
   return (
-    <ul className="flex flex-col gap-2">
+    <ul className="flex flex-col gap-0.5">
       {pairVariants(verdicts).flatMap((row) =>
         (
           [
@@ -24,16 +17,20 @@ export function VerdictList({ verdicts }: { verdicts: Record<string, Verdict> })
             ? []
             : [
                 <li key={`${row.base}.${variant}`} className="text-sm">
-                  <span className="flex items-baseline justify-between gap-3">
-                    <span className="text-text">
-                      {row.label}
-                      {variant === null ? '' : `, ${VARIANT_WORDS[variant]}`}
-                    </span>
-                    <span className="font-mono text-xs text-dim whitespace-nowrap">
-                      {LEVEL_WORDS[verdict.level]} · {verdict.significance.toFixed(1)} σ
-                    </span>
-                  </span>
-                  <span className="block text-dim">{verdict.sentence}</span>
+                  <details>
+                    <summary className="flex cursor-pointer items-baseline justify-between gap-3 hover:bg-raised">
+                      <span>
+                        {row.label}
+                        {variant === null ? '' : `, ${VARIANT_WORDS[variant]}`}
+                      </span>
+                      <span className="font-mono text-xs text-dim whitespace-nowrap">
+                        {LEVEL_WORDS[verdict.level]} · {verdict.significance.toFixed(1)} σ
+                      </span>
+                    </summary>
+                    <p className="py-1 text-dim">
+                      {verdict.sentence} Linear: {verdict.significanceLinear.toFixed(1)} σ.
+                    </p>
+                  </details>
                 </li>,
               ],
         ),

@@ -2,7 +2,7 @@ import type { Quantity, Verdict } from '../../../shared/contracts/output';
 import { displayUnit } from '../../lib/format-number';
 import { BoundRuler } from '../../viz/BoundRuler';
 import type { RulerEntry } from '../../viz/types';
-import { pairVariants, type QuantityRow } from './quantity-words';
+import { LEVEL_WORDS, pairVariants, type QuantityRow } from './quantity-words';
 
 export interface VerdictRulersProps {
   verdicts: Record<string, Verdict>;
@@ -59,7 +59,12 @@ function Ruler({ row }: { row: QuantityRow<Measured> }) {
   const first = row.net ?? raw;
   if (first === null) return null;
   const { verdict, quantity } = first;
-  const rawSentence = row.net !== null && raw !== null ? raw.verdict.sentence : undefined;
+  // Both sentences in full stand in the ledger.
+  const rawWords =
+    row.net !== null && raw !== null
+      ? `Raw: ${LEVEL_WORDS[raw.verdict.level]}, ${raw.verdict.significance.toFixed(1)} σ.`
+      : '';
+  const [claim, conditions] = splitSentence(verdict.sentence);
   return (
     <div data-verdict={row.base}>
       <BoundRuler
@@ -67,9 +72,15 @@ function Ruler({ row }: { row: QuantityRow<Measured> }) {
         entries={[...entryOf('accidentals removed', row.net), ...entryOf('raw', raw)]}
         bounds={[{ name: boundName(row.base), value: verdict.bound, unit: displayUnit(quantity.unit) }]}
         side={verdict.side}
-        sentence={verdict.sentence}
-        assumption={rawSentence}
+        sentence={claim}
+        assumption={[conditions, rawWords].filter((words) => words !== '').join(' ')}
       />
     </div>
   );
+}
+
+/** The claim, and the conditions it rests on, which a verdict states after it. */
+export function splitSentence(text: string): [claim: string, conditions: string] {
+  const end = text.search(/[.] (?=[A-Z])/);
+  return end < 0 ? [text, ''] : [text.slice(0, end + 1), text.slice(end + 2)];
 }

@@ -74,15 +74,21 @@ export function hasVariants(maps: Record<string, MapData>): boolean {
 }
 
 /** Of maps that come raw and net, the wanted one; a map that knows no such difference is always shown. */
-function isWanted(id: string, maps: Record<string, MapData>, variant: Variant): boolean {
+function isWanted(id: string, all: ReadonlySet<string>, variant: Variant): boolean {
   const { base, variant: own } = splitVariant(id);
-  const wanted = `${base}.${variant}`;
-  if (own === null) return !(wanted in maps);
-  return own === variant || !(wanted in maps || base in maps);
+  const isThere = all.has(`${base} ${variant}`);
+  if (own === null) return !isThere;
+  return own === variant || !(isThere || all.has(`${base} null`));
 }
 
 export function arrangeMaps(study: string, maps: Record<string, MapData>, variant: Variant): Section[] {
-  const left = new Map(Object.entries(maps).filter(([id]) => isWanted(id, maps, variant)));
+  const all = new Set(
+    Object.keys(maps).map((id) => {
+      const { base, variant: own } = splitVariant(id);
+      return `${base} ${own}`;
+    }),
+  );
+  const left = new Map(Object.entries(maps).filter(([id]) => isWanted(id, all, variant)));
   const sections: Section[] = [];
   const take = (id: string, matches: (mapId: string) => boolean, wide: boolean): void => {
     const cells: Cell[] = [];

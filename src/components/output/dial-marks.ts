@@ -51,7 +51,9 @@ export function findWindow(
   const ids = (name: string): string[] => (part === '' ? [name] : [`${name}.${part}`, name]);
   const pick = (name: string) => {
     const spec = findNumberDial(specs, ids(name));
-    const id = ids(name).find((candidate) => candidate in chosen || typeof dials[candidate] === 'number');
+    // A dial set by hand leads at once; what the study chose belongs to the last run.
+    const byHand = ids(name).find((id) => typeof dials[id] === 'number');
+    const id = byHand ?? ids(name).find((candidate) => candidate in chosen);
     const value = id === undefined ? null : numberOf(dials[id], chosen[id]);
     const factor = timeFactor(spec?.unit ?? 'ps', axis.unit);
     return { spec, value: value === null || factor === null ? null : value * factor, factor };

@@ -1,3 +1,5 @@
+import type { VerdictLevel } from '../../../shared/contracts/output';
+
 /** Quantity and map ids in words: "reid.x.net" is "Reid product, x". The id's last part, raw or net, is the column. */
 
 const WHAT: Record<string, string> = {
@@ -43,15 +45,25 @@ export type Variant = 'raw' | 'net';
 
 export const VARIANT_WORDS: Record<Variant, string> = { raw: 'raw', net: 'accidentals removed' };
 
+export const LEVEL_WORDS: Record<VerdictLevel, string> = {
+  violated: 'violated',
+  indicated: 'indicated',
+  inconclusive: 'inconclusive',
+  'not-violated': 'not violated',
+};
+
 export interface SplitId {
   base: string;
   variant: Variant | null;
 }
 
+/** "reid.x.net" and "joint.x.raw.near" alike: the part raw or net may stand before the acquisition's name. */
 export function splitVariant(id: string): SplitId {
-  const match = /^(.*)\.(raw|net)$/.exec(id);
-  if (match === null) return { base: id, variant: null };
-  return { base: match[1]!, variant: match[2] === 'raw' ? 'raw' : 'net' };
+  const parts = id.split('.');
+  const at = parts.findLastIndex((part) => part === 'raw' || part === 'net');
+  if (at < 1) return { base: id, variant: null };
+  const variant = parts[at] === 'raw' ? 'raw' : 'net';
+  return { base: parts.filter((_, i) => i !== at).join('.'), variant };
 }
 
 /** Ids the page does not know are shown as they are, spelled out; nothing is hidden. */

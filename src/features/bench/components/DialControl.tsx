@@ -7,11 +7,17 @@ import { Select } from '../../../components/ui/Select';
 import { Toggle } from '../../../components/ui/Toggle';
 import { formatPlain } from '../../../lib/format-number';
 
+export interface ChosenValue {
+  /** Acquisition it was chosen for; empty where there is one only. */
+  part: string;
+  value: number;
+}
+
 export interface DialControlProps {
   spec: DialSpec;
   value: DialValue;
-  /** What the study chose where the dial is left to it. */
-  chosen: number | null;
+  /** What the study chose where the dial is left to it; empty before it ran. */
+  chosen: readonly ChosenValue[];
   changed: boolean;
   readOnly: boolean;
   onTurn(value: DialValue): void;
@@ -60,6 +66,9 @@ function NumberDial({
 }: DialControlProps & { spec: NumberSpec }) {
   const isAuto = spec.auto && value === null;
   const number = typeof value === 'number' ? value : null;
+  const first = chosen[0]?.value ?? null;
+  const isOne = chosen.every((entry) => entry.value === first);
+  const partWords = chosen.map((entry) => `${entry.part} ${formatPlain(entry.value, 5)}`).join(' · ');
   return (
     <div data-dial={spec.id}>
       <NumberField
@@ -72,7 +81,7 @@ function NumberDial({
         integer={spec.type === 'integer'}
         changed={changed}
         disabled={readOnly}
-        placeholder={isAuto && chosen !== null ? formatPlain(chosen, 5) : 'auto'}
+        placeholder={first !== null && isOne ? formatPlain(first, 5) : 'auto'}
         hint={spec.reason}
         onChange={onTurn}
       />
@@ -86,10 +95,10 @@ function NumberDial({
               </>
             }
             checked={isAuto}
-            disabled={readOnly || (isAuto && chosen === null)}
-            onChange={(auto) => onTurn(auto ? null : chosen)}
+            disabled={readOnly || (isAuto && first === null)}
+            onChange={(auto) => onTurn(auto ? null : first)}
           />
-          {isAuto ? null : <span className="font-mono text-xs">set by hand</span>}
+          <span className="font-mono text-xs">{isAuto ? (isOne ? '' : partWords) : 'set by hand'}</span>
         </div>
       ) : null}
     </div>

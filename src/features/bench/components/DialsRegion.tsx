@@ -5,7 +5,7 @@ import { IconButton } from '../../../components/ui/IconButton';
 import { baseDials, currentDials, currentHistory, currentStudy } from '../model/bench-selectors';
 import { changedDials } from '../model/dial-history';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
-import { DialControl } from './DialControl';
+import { type ChosenValue, DialControl } from './DialControl';
 import { DialHistogram } from './DialHistogram';
 import { Region } from './Region';
 
@@ -75,7 +75,7 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
                   <DialControl
                     spec={spec}
                     value={values[spec.id] ?? null}
-                    chosen={chosen?.[spec.id] ?? null}
+                    chosen={chosenFor(spec.id, chosen ?? {})}
                     changed={changed.has(spec.id)}
                     readOnly={readOnly}
                     onTurn={(value) => turn({ [spec.id]: value })}
@@ -93,6 +93,16 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
       )}
     </Region>
   );
+}
+
+/** What the study chose for a dial: one value, or one for each acquisition ("window.near", "window.far"). */
+function chosenFor(id: string, chosen: Record<string, number>): ChosenValue[] {
+  const own = chosen[id];
+  if (own !== undefined) return [{ part: '', value: own }];
+  return Object.entries(chosen).flatMap(([key, value]) => {
+    const part = key.startsWith(`${id}.`) ? key.slice(id.length + 1) : '';
+    return part === '' || part.includes('.') ? [] : [{ part, value }];
+  });
 }
 
 /** The two one turns most come first. */

@@ -17,6 +17,7 @@ export function StudyPicker() {
     <Tabs.Root
       value={study}
       activationMode="manual"
+      className="flex items-stretch"
       onValueChange={(value) => {
         const next = studies.find(({ id }) => id === value);
         if (next !== undefined) store.getState().chooseStudy(next.id);

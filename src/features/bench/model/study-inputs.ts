@@ -32,7 +32,8 @@ function score(acquisition: Acquisition, spec: InputSpec): number {
     if (acquisition.plane !== null) points += acquisition.plane.kind === spec.plane ? 8 : -4;
   } else if (spec.plane === 'any' && acquisition.plane !== null) points += 1;
   if (acquisition.name.toLowerCase().includes(spec.name.toLowerCase())) points += 4;
-  if (kindOf(acquisition) === 'tags') points += hasArms(acquisition.detector, spec) ? 2 : -3;
+  if (kindOf(acquisition) === 'tags' && acquisition.detector !== null)
+    points += hasArms(acquisition.detector, spec) ? 2 : -3;
   return points;
 }
 
@@ -74,7 +75,7 @@ const KIND_WORDS = { tags: 'time tags', frames: 'frames' };
 export function needOf(spec: InputSpec, acquisition: Acquisition | undefined): Need | null {
   const kinds = spec.accepts.map((kind) => KIND_WORDS[kind]).join(' or ');
   if (acquisition === undefined)
-    return { sentence: `${spec.label} needs an acquisition with ${kinds}.`, acquisitionId: null };
+    return { sentence: `${spec.label}: an acquisition with ${kinds} is needed.`, acquisitionId: null };
   const at = { acquisitionId: acquisition.id };
   const { name, reading } = acquisition;
   if (reading.status === 'awaited')

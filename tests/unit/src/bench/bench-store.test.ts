@@ -24,14 +24,14 @@ describe('the shelf', () => {
   it('says in a sentence what a study still needs', async () => {
     const { store } = await freshBench();
     expect(planRun(store.getState()).needs[0]?.sentence).toBe(
-      'Time tags needs an acquisition with time tags.',
+      'Time tags: an acquisition with time tags is needed.',
     );
     store.getState().chooseStudy('witness');
     store.getState().addFiles([{ file: fileOf('near.h5'), sample: null }]);
     await settle();
     const sentences = planRun(store.getState()).needs.map(({ sentence }) => sentence);
     expect(sentences[0]).toBe('near.h5 needs its plane, the near field, with the calibration.');
-    expect(sentences[1]).toContain('The far field needs an acquisition');
+    expect(sentences[1]).toContain('The far field: an acquisition');
   });
 
   it('leaves the others alone when one file cannot be read', async () => {
@@ -81,7 +81,7 @@ describe('the shelf', () => {
     expect(planRun(store.getState()).needs[0]?.sentence).toContain('pixel pitch');
     store.getState().changeReading(id, { ...change, detectorGiven: true });
     expect(planRun(store.getState()).needs.map(({ sentence }) => sentence)).toEqual([
-      'The far field needs an acquisition with time tags or frames.',
+      'The far field: an acquisition with time tags or frames is needed.',
     ]);
   });
 });
