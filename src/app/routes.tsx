@@ -1,5 +1,6 @@
 import { createBrowserRouter, type LoaderFunctionArgs, type RouteObject, redirect } from 'react-router-dom';
 import { NotFound } from '../components/page/NotFound';
+import { RootProblem } from '../components/page/RootProblem';
 import { RouteProblem } from '../components/page/RouteProblem';
 import { isSignedOut } from '../lib/errors/request-problem';
 import { meQuery } from '../lib/query/me';
@@ -68,7 +69,7 @@ export const routes: RouteObject[] = [
     path: '/sign-in',
     handle: { title: 'Sign in' } satisfies RouteTraits,
     HydrateFallback: Opening,
-    ErrorBoundary: RouteProblem,
+    ErrorBoundary: RootProblem,
     lazy: async () => ({ Component: (await import('../features/sign-in/SignInPage')).SignInPage }),
   },
   {
@@ -78,7 +79,7 @@ export const routes: RouteObject[] = [
     shouldRevalidate: () => false,
     Component: Shell,
     HydrateFallback: Opening,
-    ErrorBoundary: RouteProblem,
+    ErrorBoundary: RootProblem,
     children: pages.map((page) => ({ ...page, ErrorBoundary: RouteProblem }) as RouteObject),
   },
 ];

@@ -150,6 +150,13 @@ describe('result', () => {
 });
 
 describe('the shell', () => {
+  it('says when the server cannot tell who is there', async () => {
+    stubServer({ 'GET /api/me': () => refusal(503, 'not-ready', 'The database does not answer.') });
+    open('/');
+    await screen.findByText('The database does not answer.');
+    expect(screen.getByRole('button', { name: 'Reload the page' })).toBeTruthy();
+  });
+
   it('has a page for addresses that lead nowhere', async () => {
     stubServer(signedIn());
     open('/nowhere');
