@@ -26,14 +26,14 @@ const crosstalkDial: DialSpec = {
   id: 'crosstalk',
   label: 'Crosstalk radius',
   reason:
-    'Frames only: difference bins up to this many pixels are left out, because charge smear and optical crosstalk of neighbours land there. 0 leaves out a pixel with itself alone.',
+    'Frames only: difference bins up to this many pixels are left out, because charge smear and optical crosstalk of neighbours land there and feign a narrow peak. 0 leaves out a pixel with itself alone.',
   needs: 'finish',
   type: 'number',
   unit: 'pixels',
-  default: 0,
+  default: 1,
   min: 0,
   max: 20,
-  step: 1,
+  step: 0.5,
   auto: false,
 };
 
