@@ -5,7 +5,7 @@ import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import type { Hdf5TagsLayout, Layout } from '../../shared/contracts/layout';
 import { inspectSource, openReader } from '../../workers/formats/registry';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
-import { fileSource, makeFolder, problemOf, readPixels, readTags } from './support/sources';
+import { fileSource, makeFolder, openFile, problemOf, readPixels, readTags } from './support/sources';
 
 /** Debian's, whose h5py comes as a package of the system. */
 const python = '/usr/bin/python3';
@@ -58,8 +58,8 @@ describe.each(['earliest', 'latest'])('files of h5py, file version %s', (version
     await source.close();
     return inspection;
   };
-  const open = async (name: string, layout: Layout) =>
-    openReader(await fileSource(folder.path(`${name}-${version}`), 'unknown'), layout, nodeEnvironment);
+  const open = (name: string, layout: Layout) =>
+    openFile(folder.path(`${name}-${version}`), layout, 'unknown');
 
   it.each(tagFiles)('%s: the layout is proposed from the bytes and gives every tag', async (name, layout) => {
     expect((await inspect(name)).layout).toEqual(layout);

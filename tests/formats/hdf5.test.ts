@@ -1,15 +1,15 @@
+import { statSync } from 'node:fs';
 import fc from 'fast-check';
 import h5wasm from 'h5wasm/node';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { type Hdf5FramesLayout, type Hdf5TagsLayout, layoutSchema } from '../../shared/contracts/layout';
-import type { Reader } from '../../shared/contracts/reader';
 import { openClassicTree } from '../../workers/formats/hdf5/classic-tree';
 import { openLibraryTree } from '../../workers/formats/hdf5/library-tree';
 import { readSuperblock } from '../../workers/formats/hdf5/superblock';
-import { inspectSource, openReader } from '../../workers/formats/registry';
+import { inspectSource } from '../../workers/formats/registry';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
 import { type DatasetToWrite, writeHdf5 } from './support/hdf5-writer';
-import { fileSource, makeFolder, problemOf, readPixels, readTags } from './support/sources';
+import { fileSource, makeFolder, openFile, problemOf, readPixels, readTags } from './support/sources';
 
 fc.configureGlobal({ seed: 1 });
 
@@ -38,10 +38,6 @@ function framesLayout(dataset: string): Hdf5FramesLayout {
   return { version: 1, format: 'hdf5', kind: 'frames', dataset };
 }
 
-async function open(path: string, layout: Hdf5TagsLayout | Hdf5FramesLayout): Promise<Reader> {
-  return openReader(await fileSource(path), layout, nodeEnvironment);
-}
-
 async function inspect(path: string, layout: Hdf5TagsLayout | Hdf5FramesLayout | null = null) {
   const source = await fileSource(path);
   try {
@@ -66,7 +62,7 @@ describe('time tags of HDF5', () => {
       { name: 'beam/photon_times', data: BigUint64Array.from(ticks) },
       { name: 'beam/photon_pixels', data: Uint16Array.from(channels), chunks: [700], gzip: true },
     ]);
-    const reader = await open(
+    const reader = await openFile(
       path,
       tagsLayout({ dataset: 'beam/photon_times' }, { dataset: '/beam/photon_pixels' }),
     );
@@ -98,7 +94,7 @@ describe('time tags of HDF5', () => {
       },
     ]);
     const layout = tagsLayout({ dataset: '/events', field: 'when' }, { dataset: '/events', field: 'who' });
-    const reader = await open(path, layout);
+    const reader = await openFile(path, layout);
     expect(await readTags(reader, [1000])).toEqual(expected);
     await reader.close();
     expect((await inspect(path)).layout).toEqual(layout);
@@ -111,7 +107,7 @@ describe('time tags of HDF5', () => {
       { name: 'table', data: table, shape: [count, 3], chunks: [512, 3], gzip: true },
     ]);
     const layout = tagsLayout({ dataset: '/table', field: 1 }, { dataset: '/table', field: 0 });
-    const reader = await open(path, layout);
+    const reader = await openFile(path, layout);
     expect(await readTags(reader, [513, 1600])).toEqual({ ticks: shifted, channels });
     await reader.close();
     expect((await inspect(path)).layout).toEqual(layout);
@@ -124,7 +120,7 @@ describe('time tags of HDF5', () => {
       { name: 't', data: BigUint64Array.from(times) },
       { name: 'c', data: Uint8Array.from([1, 2, 3, 4, 5]) },
     ]);
-    const reader = await open(path, tagsLayout({ dataset: 't' }, { dataset: 'c' }));
+    const reader = await openFile(path, tagsLayout({ dataset: 't' }, { dataset: 'c' }));
     expect((await readTags(reader)).ticks).toEqual(times);
     await reader.close();
   });
@@ -135,7 +131,7 @@ describe('time tags of HDF5', () => {
       { name: 't', data: BigUint64Array.from(times) },
       { name: 'c', data: BigUint64Array.from([0n, 65535n, 1n, 2n]) },
     ]);
-    const reader = await open(path, tagsLayout({ dataset: 't' }, { dataset: 'c' }));
+    const reader = await openFile(path, tagsLayout({ dataset: 't' }, { dataset: 'c' }));
     expect(await readTags(reader)).toEqual({ ticks: times, channels: [0, 65535, 1, 2] });
     await reader.close();
   });
@@ -201,7 +197,7 @@ describe('frames of HDF5', () => {
       const path = await write([
         { name: 'cam/raw', data: make(pixels), shape, ...(chunks ? { chunks, gzip: true } : {}) },
       ]);
-      const reader = await open(path, framesLayout('/cam/raw'));
+      const reader = await openFile(path, framesLayout('/cam/raw'));
       expect(reader.facts).toMatchObject({ kind: 'frames', frames: 23, height: 6, width: 10, type });
       expect(await readPixels(reader)).toEqual(pixels);
       expect(await readPixels(reader, [1, 2, 17])).toEqual(pixels);
@@ -226,7 +222,7 @@ describe('frames of HDF5', () => {
     const path = await write([
       { name: 'f', data: new Uint8Array(24 * 2 ** 20), shape: big, chunks: [3, 1024, 1024] },
     ]);
-    const reader = await open(path, framesLayout('f'));
+    const reader = await openFile(path, framesLayout('f'));
     const blocks: number[] = [];
     let bytes = 0;
     for await (const block of reader.read({ start: 0, end: 24 }, 0n, { cancelled: false })) {
@@ -234,8 +230,7 @@ describe('frames of HDF5', () => {
       bytes += block.bytes;
     }
     expect(blocks).toEqual([6, 6, 6, 6]);
-    const { size } = await fileSource(path);
-    expect(bytes).toBe(size);
+    expect(bytes).toBe(statSync(path).size);
     await reader.close();
   });
 
@@ -243,7 +238,7 @@ describe('frames of HDF5', () => {
     const path = await write([
       { name: 'f', data: BigUint64Array.from([0n, 1n, 2n ** 53n, 3n]), shape: [1, 2, 2] },
     ]);
-    const reader = await open(path, framesLayout('f'));
+    const reader = await openFile(path, framesLayout('f'));
     expect((await problemOf(() => readPixels(reader), 'wrong-type')).place).toContain('/f');
     await reader.close();
   });
@@ -341,7 +336,7 @@ describe('what is wrong with an HDF5 file', () => {
 
   it('names the datasets that exist when one is missing', async () => {
     const layout = at({ dataset: 'tim' }, { dataset: 'short' });
-    for (const work of [() => open(path, layout), () => inspect(path, layout)]) {
+    for (const work of [() => openFile(path, layout), () => inspect(path, layout)]) {
       const problem = await problemOf(work, 'missing-dataset');
       expect(problem.message).toContain('/time');
       expect(problem.place).toContain('/tim');
@@ -360,24 +355,24 @@ describe('what is wrong with an HDF5 file', () => {
       [{ dataset: 'short' }, 'wrong-length', '9 channels'],
     ];
     for (const [channel, code, said] of cases) {
-      const problem = await problemOf(() => open(path, at(time, channel)), code);
+      const problem = await problemOf(() => openFile(path, at(time, channel)), code);
       expect(problem.message).toContain(said);
       expect(problem.place).toContain(channel.dataset);
     }
   });
 
   it('names the record whose channel is none', async () => {
-    const reader = await open(path, at({ dataset: 'time' }, { dataset: 'minus' }));
+    const reader = await openFile(path, at({ dataset: 'time' }, { dataset: 'minus' }));
     const problem = await problemOf(() => readTags(reader), 'wrong-type');
     expect(problem.place).toMatch(/\/minus, record 1234$/);
     await reader.close();
   });
 
   it('refuses frames that are none', async () => {
-    expect((await problemOf(() => open(path, framesLayout('time')), 'wrong-type')).message).toContain(
+    expect((await problemOf(() => openFile(path, framesLayout('time')), 'wrong-type')).message).toContain(
       'three dimensions',
     );
-    await problemOf(() => open(path, framesLayout('nothing')), 'missing-dataset');
+    await problemOf(() => openFile(path, framesLayout('nothing')), 'missing-dataset');
   });
 
   it('names the filters when the bytes of a chunk are damaged', async () => {
@@ -393,7 +388,7 @@ describe('what is wrong with an HDF5 file', () => {
     bytes.fill(0xff, start + 20, start + 200);
     const damaged = folder.path('damaged');
     await writeFile(damaged, bytes);
-    const reader = await open(damaged, at({ dataset: 't' }, { dataset: 'c' }));
+    const reader = await openFile(damaged, at({ dataset: 't' }, { dataset: 'c' }));
     expect((await problemOf(() => readTags(reader), 'unreadable')).message).toContain('deflate');
     await reader.close();
   });

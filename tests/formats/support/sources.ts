@@ -3,8 +3,11 @@ import { mkdtemp, rm } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { basename, join } from 'node:path';
 import { expect } from 'vitest';
+import type { Layout } from '../../../shared/contracts/layout';
 import type { ByteSource, Reader } from '../../../shared/contracts/reader';
 import { Problem, type ProblemCode, type ProblemData } from '../../../shared/errors/problem';
+import { openReader } from '../../../workers/formats/registry';
+import { nodeEnvironment } from '../../../workers/pipeline/hdf5-node';
 import { openPathSource } from '../../../workers/pipeline/node-source';
 import { openBlobSource } from '../../../workers/pipeline/sources';
 
@@ -17,6 +20,17 @@ export function memorySource(bytes: Uint8Array, name = 'unknown'): ByteSource {
 
 export async function fileSource(path: string, name = basename(path)): Promise<ByteSource> {
   return openPathSource({ name, size: statSync(path).size, path });
+}
+
+/** Opens a file of HDF5 by a layout; what fails to open leaves no handle behind. */
+export async function openFile(path: string, layout: Layout, name?: string): Promise<Reader> {
+  const source = await fileSource(path, name);
+  try {
+    return await openReader(source, layout, nodeEnvironment);
+  } catch (thrown) {
+    await source.close();
+    throw thrown;
+  }
 }
 
 export async function makeFolder(): Promise<{ path(name: string): string; remove(): Promise<void> }> {
