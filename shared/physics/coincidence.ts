@@ -1,4 +1,4 @@
-import type { Estimate } from './estimate';
+import { countVariance, type Estimate } from './estimate';
 
 /**
  * Accidentals from the singles, A = R_A R_B w T = N_A N_B w / T with the full window w. Eckart & Shonka, Phys. Rev. 53,
@@ -20,15 +20,18 @@ export function accidentalsFromSingles(
 
 /**
  * Accidentals from counts in windows that hold no pairs, together `ratio` times as wide as the prompt one: A = N/r,
- * SE = sqrt(N)/r. Serves shifted windows (ratio = their number) and sidebands of the histogram alike.
+ * SE = sqrt(N)/r, that of one count when there is none. Serves shifted windows (ratio = their number) and sidebands of the histogram alike.
  */
 export function accidentalsFromWindows(counts: number, ratio: number): Estimate {
-  return { value: counts / ratio, sigma: Math.sqrt(counts) / ratio };
+  return { value: counts / ratio, sigma: Math.sqrt(countVariance(counts)) / ratio };
 }
 
 /** Net coincidences N_w - A with SE sqrt(N_w + var A). */
 export function netCoincidences(inWindow: number, accidentals: Estimate): Estimate {
-  return { value: inWindow - accidentals.value, sigma: Math.sqrt(inWindow + accidentals.sigma ** 2) };
+  return {
+    value: inWindow - accidentals.value,
+    sigma: Math.sqrt(countVariance(inWindow) + accidentals.sigma ** 2),
+  };
 }
 
 /**
@@ -38,7 +41,7 @@ export function netCoincidences(inWindow: number, accidentals: Estimate): Estima
 export function coincidencesToAccidentals(inWindow: number, accidentals: Estimate): Estimate | null {
   const { value: a, sigma } = accidentals;
   if (!(a > 0)) return null;
-  const variance = inWindow / a ** 2 + (inWindow / a ** 2) ** 2 * sigma ** 2;
+  const variance = countVariance(inWindow) / a ** 2 + (inWindow / a ** 2) ** 2 * sigma ** 2;
   return { value: (inWindow - a) / a, sigma: Math.sqrt(variance) };
 }
 

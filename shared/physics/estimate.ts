@@ -5,6 +5,14 @@ export interface Estimate {
 }
 
 /**
+ * Variance of a Poisson count as read from the count itself, N; none seen still leaves the error of one count, because
+ * a rate of up to about one would have been missed.
+ */
+export function countVariance(counts: number): number {
+  return Math.max(1, counts);
+}
+
+/**
  * First-order propagation for a function of independent counts: sigma^2 = sum (df/dx_i)^2 var_i, derivatives by central
  * differences of a thousandth of a standard deviation.
  */

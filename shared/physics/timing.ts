@@ -1,12 +1,12 @@
-import type { Estimate } from './estimate';
+import { countVariance, type Estimate } from './estimate';
 import { erf, normalPdf } from './special';
 
 /** FWHM of a Gaussian over its sigma. */
 export const FWHM_PER_SIGMA = 2 * Math.sqrt(2 * Math.LN2);
 
-/** Counts per second and its Poisson error: R = N/T, SE = sqrt(N)/T. */
+/** Counts per second and its Poisson error: R = N/T, SE = sqrt(N)/T, that of one count when there is none. */
 export function countRate(counts: number, seconds: number): Estimate {
-  return { value: counts / seconds, sigma: Math.sqrt(counts) / seconds };
+  return { value: counts / seconds, sigma: Math.sqrt(countVariance(counts)) / seconds };
 }
 
 /**

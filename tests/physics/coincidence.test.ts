@@ -40,6 +40,8 @@ describe('accidentals', () => {
 
   it('gives no number where there is none', () => {
     expect(accidentalsFromSingles(0, 10, 1e-9, 1).value).toBe(0);
+    // None seen is not none with certainty: one count is the scale of the error.
+    expect(accidentalsFromWindows(0, 10)).toEqual({ value: 0, sigma: 0.1 });
     expect(coincidencesToAccidentals(10, { value: 0, sigma: 0 })).toBeNull();
   });
 

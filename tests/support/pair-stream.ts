@@ -1,6 +1,9 @@
 import type { TagBlock } from '../../shared/contracts/blocks';
 import { createRandom, type Random } from '../../shared/util/random';
 
+/** More channels than any test uses; keeps tick * CHANNELS below 2^53 for a run of seconds. */
+const CHANNELS = 1024;
+
 /** A plain Poisson stream of pairs with everything known, written apart from the simulator so that both can be wrong alone. */
 export interface PairStream {
   seconds: number;
@@ -25,13 +28,12 @@ export function pairStream(stream: PairStream, seed: number): TagBlock {
   const psPerTick = stream.tickFs / 1000;
   const lengthPs = stream.seconds * 1e12;
   const bright = stream.brightness ?? (() => 1);
-  const ticks: number[] = [];
-  const channels: number[] = [];
+  // Tick and channel in one double, so that the plain numeric sort orders them.
+  const keys: number[] = [];
   const put = (timePs: number, channel: number): void => {
     const tick = Math.floor(timePs / psPerTick);
     if (channel < 0 || tick < 0 || timePs >= lengthPs) return;
-    ticks.push(tick);
-    channels.push(channel);
+    keys.push(tick * CHANNELS + channel);
   };
   const events = (rate: number, happen: (timePs: number) => void): void => {
     if (!(rate > 0)) return;
@@ -49,15 +51,15 @@ export function pairStream(stream: PairStream, seed: number): TagBlock {
   for (const arm of [0, 1] as const) {
     events(stream.darks[arm], (t) => put(t, stream.darkChannel(arm, random)));
   }
-  const order = Uint32Array.from(ticks.keys()).sort((p, q) => ticks[p]! - ticks[q]!);
+  const sorted = Float64Array.from(keys).sort();
   return {
     kind: 'tags',
     firstRecord: 0,
-    records: ticks.length,
+    records: keys.length,
     baseTick: 0n,
-    deltaTick: Float64Array.from(order, (i) => ticks[i]!),
-    channel: Uint16Array.from(order, (i) => channels[i]!),
-    count: ticks.length,
-    bytes: ticks.length * 8,
+    deltaTick: sorted.map((key) => Math.floor(key / CHANNELS)),
+    channel: Uint16Array.from(sorted, (key) => key % CHANNELS),
+    count: keys.length,
+    bytes: keys.length * 8,
   };
 }

@@ -37,7 +37,7 @@ export function listQuantities(
   for (const { id, estimate, unit, n, method, error, statistic } of measured) {
     if (estimate === null || !Number.isFinite(estimate.value) || !Number.isFinite(estimate.sigma)) continue;
     const spread = draws === null || statistic === undefined ? null : spreadOver(draws, statistic);
-    const ratio = spread === null ? 0 : spread / estimate.sigma;
+    const ratio = spread === null || estimate.sigma === 0 ? 0 : spread / estimate.sigma;
     const bootstrapped = spread !== null && ratio > EXCESS;
     if (bootstrapped) list.excess.push({ id, ratio });
     list.quantities[id] = {

@@ -116,14 +116,20 @@ export function checkSaturation(
   const id = 'pixels-saturated';
   const unit = '%';
   let busiest = { rate: 0, at: '' };
-  for (const { arm, name } of arms) {
+  for (const { arm, name } of seconds > 0 ? arms : []) {
     for (const [pixel, n] of arm.singles.entries()) {
       if (!(n / seconds > busiest.rate)) continue;
       busiest = { rate: n / seconds, at: `${name} (${pixel % arm.width}, ${Math.floor(pixel / arm.width)})` };
     }
   }
   if (busiest.at === '') {
-    return { id, status: 'caution', figure: null, unit, sentence: 'No tags, so no pixel could saturate.' };
+    return {
+      id,
+      status: 'caution',
+      figure: null,
+      unit,
+      sentence: 'Fewer than two tags, so no pixel could saturate.',
+    };
   }
   const truth = trueRateNonParalysable(busiest.rate, deadNs * 1e-9);
   const lost = truth === null ? 100 : 100 * (1 - busiest.rate / truth);

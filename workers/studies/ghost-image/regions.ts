@@ -1,6 +1,7 @@
 import type { DialValues, Region } from '../../../shared/contracts/dial';
 import type { TagTally } from '../../../shared/contracts/tally';
 import { Problem } from '../../../shared/errors/problem';
+import { countVariance } from '../../../shared/physics/estimate';
 import { otsuThreshold, type RegionMean } from '../../../shared/physics/ghost-image';
 import { regionDial } from '../dials';
 
@@ -92,16 +93,23 @@ export function regionSlices(tally: TagTally, regions: Regions, side: 'open' | '
   for (const fold of regions.folds) {
     const inside = [...fold[side].keys()].filter((pixel) => fold[side][pixel] === 1);
     const n = inside.length;
+    if (n === 0) continue;
     result.pixels += n / regions.folds.length;
+    let [raw, shifted] = [0, 0];
     for (let k = 0; k < tally.slices; k++) {
-      if (fold.slices[k] === 0 || n === 0) continue;
+      if (fold.slices[k] === 0) continue;
+      let [rawHere, shiftedHere] = [0, 0];
       for (const pixel of inside) {
-        result.raw[k]! += tally.prompt.imageB[k * pixels + pixel]! / n;
-        result.shifted[k]! += tally.shifted.imageB[k * pixels + pixel]! / n;
+        rawHere += tally.prompt.imageB[k * pixels + pixel]!;
+        shiftedHere += tally.shifted.imageB[k * pixels + pixel]!;
       }
-      result.rawVariance += result.raw[k]! / n;
-      result.shiftedVariance += result.shifted[k]! / n;
+      result.raw[k] = rawHere / n;
+      result.shifted[k] = shiftedHere / n;
+      raw += rawHere;
+      shifted += shiftedHere;
     }
+    result.rawVariance += countVariance(raw) / n ** 2;
+    result.shiftedVariance += countVariance(shifted) / n ** 2;
   }
   return result;
 }

@@ -12,7 +12,7 @@ const DARKS = [2e4, 3e4] as const;
 const SECONDS = 0.2;
 const PEAK_SIGMA = 150 * Math.SQRT2;
 const DELAY = 3210;
-const SEEDS = 80;
+const SEEDS = 100;
 
 const stream: PairStream = {
   seconds: SECONDS,

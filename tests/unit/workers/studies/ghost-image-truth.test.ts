@@ -17,10 +17,10 @@ const isOpen = (pixel: number): boolean => {
 const PAIRS = 6e5;
 const ETA = { bucket: 0.3, array: 0.2 };
 const DARKS = { bucket: 4e4, array: 1e6 };
-const SECONDS = 0.15;
+const SECONDS = 0.1;
 const JITTER = 900;
 const DELAY = -5000;
-const SEEDS = 50;
+const SEEDS = 100;
 const BUCKET = 99;
 
 const stream: PairStream = {
@@ -49,7 +49,7 @@ const drawn: DialValues = {
   'region.open': { x0: 2, y0: 2, x1: 5, y1: 4 },
   'region.closed': { x0: 0, y0: 6, x1: 7, y1: 7 },
 };
-const dials: DialValues = { 'dark.bucket': DARKS.bucket, resamples: 200, 'histogram.range': 100 };
+const dials: DialValues = { 'dark.bucket': DARKS.bucket, resamples: 200, 'histogram.range': 60 };
 
 const counted = Array.from({ length: SEEDS }, (_, n) =>
   runTagStudy(ghostImageStudy, pairStream(stream, n + 1), detector, dials),
