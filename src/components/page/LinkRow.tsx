@@ -21,7 +21,7 @@ export function LinkRow({ to, name, note, children }: LinkRowProps) {
       <div className="flex items-baseline justify-between gap-x-4 max-sm:flex-wrap">
         <Link
           to={to}
-          className="max-w-full min-w-0 truncate font-semibold outline-offset-0 after:absolute after:inset-0"
+          className="min-w-0 font-semibold wrap-anywhere outline-offset-0 after:absolute after:inset-0"
         >
           {name}
         </Link>
