@@ -156,13 +156,22 @@ function useOpening(groupId: string) {
   };
   useEffect(() => {
     const wanted = readWanted(new URLSearchParams(address));
-    const key = `${groupId} ${address} ${tries}`;
+    const key = `${groupId} ${address}`;
     if (wanted === null || bench.openedFrom.current === key) return;
     bench.openedFrom.current = key;
     setProblem(null);
     openWanted({ store: bench.store, queries, groupId }, wanted).catch((thrown: unknown) =>
       setProblem(thrown),
     );
+    // `tries` starts it again.
   }, [address, groupId, tries, bench, queries]);
-  return { problem, attempt, retry: () => setTries(tries + 1), dismiss: () => setProblem(null) };
+  return {
+    problem,
+    attempt,
+    retry: () => {
+      bench.openedFrom.current = null;
+      setTries(tries + 1);
+    },
+    dismiss: () => setProblem(null),
+  };
 }

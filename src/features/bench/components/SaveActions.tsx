@@ -36,7 +36,7 @@ const EXPLANATIONS: Record<Kind, string> = {
 
 /** Keeping what was found: result, preset, session, each with a link to where it is. */
 export function SaveActions({ group }: SaveActionsProps) {
-  const { store } = useBench();
+  const { store, openedFrom } = useBench();
   const queries = useQueryClient();
   const [kind, setKind] = useState<Kind | null>(null);
   const [said, setSaid] = useState<ReactNode>(null);
@@ -57,13 +57,16 @@ export function SaveActions({ group }: SaveActionsProps) {
       setSaid(<SavedLink what="Result" name={name} to={`/results/${saved.id}`} />);
     } else if (kind === 'preset' || kind === 'version') {
       const versionOf = kind === 'version' ? (preset?.id ?? null) : null;
-      const row = await savePreset(group.id, presetOfBench(state, name), versionOf);
+      const row = await savePreset(group.id, presetOfBench(state, name, { fixProposals: true }), versionOf);
       const { study: id, dials } = row.preset;
       store.setState({ preset: { id: row.id, name, version: row.version, study: id, dials } });
       setSaid(<SavedLink what={`Preset v${row.version}`} name={name} to={`/presets/${row.id}`} />);
     } else if (kind === 'session') {
       const row = await saveSession(group.id, name, sessionOfBench(state, name, resultId));
-      setSaid(<SavedLink what="Session" name={name} to={`/bench?session=${row.id}`} />);
+      const address = `session=${row.id}`;
+      // The bench is what was saved: following the link must not empty it.
+      openedFrom.current = `${group.id} ${address}`;
+      setSaid(<SavedLink what="Session" name={name} to={`/bench?${address}`} />);
     }
     store.getState().say(`Saved: ${name}.`);
     await queries.invalidateQueries({ queryKey: ['groups', group.id] });

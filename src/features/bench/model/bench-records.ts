@@ -5,7 +5,15 @@ import type { BenchState } from './bench-types';
 
 /** What is stored of the bench: presets and sessions. The bytes of acquisitions never leave the machine. */
 
-export function presetOfBench(state: BenchState, name: string): Preset {
+export interface PresetOptions {
+  /**
+   * true for a preset: what was used is fixed, also where the engine proposed it. false for a session: a proposal stays
+   * one, with its warnings, because nobody has confirmed it.
+   */
+  fixProposals: boolean;
+}
+
+export function presetOfBench(state: BenchState, name: string, { fixProposals }: PresetOptions): Preset {
   const assignment = currentAssignment(state);
   const study = currentStudy(state);
   const inputs: Record<string, InputSetting> = {};
@@ -13,9 +21,13 @@ export function presetOfBench(state: BenchState, name: string): Preset {
     const acquisition = state.shelf.find(({ id }) => id === assignment[input]);
     const waiting = state.waiting[input];
     if (acquisition !== undefined) {
-      const { layout, detector, detectorGiven, plane } = acquisition;
+      const { layout, layoutGiven, detector, detectorGiven, plane } = acquisition;
       // A proposed map carries a pitch nobody gave; it is proposed anew from the next file.
-      inputs[input] = { layout, detector: detectorGiven ? detector : null, plane };
+      inputs[input] = {
+        layout: layoutGiven || fixProposals ? layout : null,
+        detector: detectorGiven ? detector : null,
+        plane,
+      };
     } else if (waiting !== undefined) inputs[input] = waiting;
   }
   return { gemel: 1, kind: 'preset', name, study: state.study, dials: currentDials(state), inputs };
@@ -28,7 +40,7 @@ export function sessionOfBench(state: BenchState, name: string, resultId: string
   return {
     version: 1,
     study: state.study,
-    preset: presetOfBench(state, name),
+    preset: presetOfBench(state, name, { fixProposals: false }),
     shelf: state.shelf.map(({ id, name: file, bytes, sha256, sample }) => ({
       name: file,
       bytes,

@@ -41,13 +41,19 @@ export function openWanted(opener: Opener, wanted: Wanted): Promise<void> {
 async function openSession({ store, queries, groupId }: Opener, id: string): Promise<void> {
   const { name, state } = await queries.fetchQuery(sessionQuery(groupId, id));
   const actions = store.getState();
+  // Files of the session that are still at hand need not be asked for again.
+  const held = actions.shelf.flatMap(({ file, sample }) => (file === null || sample !== null ? [] : [file]));
   actions.clear();
   const { study, dials, inputs } = state.preset;
   actions.openSettings({ study, dials, inputs, seed: state.seed }, null);
   const own = state.shelf.filter(({ sample }) => sample === null);
   actions.awaitFiles(own);
   actions.say(`Session ${name} opened.`);
-  for (const { name: file } of own) actions.say(`Drop ${file} again: its bytes stayed on your machine.`);
+  for (const { name: ownName, bytes } of own) {
+    const file = held.find((candidate) => candidate.name === ownName && candidate.size === bytes);
+    if (file !== undefined) actions.addFiles([{ file, sample: null }]);
+    else actions.say(`Drop ${ownName} again: its bytes stayed on your machine.`);
+  }
   await Promise.all(
     state.shelf.map(async ({ sample, input }) => {
       if (sample === null) return;

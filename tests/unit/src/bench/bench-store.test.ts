@@ -130,10 +130,11 @@ describe('presets and sessions', () => {
     store.getState().addFiles([{ file: fileOf('run.h5'), sample: 'run.h5' }]);
     await settle();
     store.getState().turn({ window: 300 });
-    const preset = presetSchema.parse(presetOfBench(store.getState(), 'Monday'));
+    const preset = presetSchema.parse(presetOfBench(store.getState(), 'Monday', { fixProposals: true }));
     expect(preset.inputs.tags).toEqual({ layout: tagsLayout, detector: null, plane: null });
     expect(preset.dials.window).toBe(300);
     const session = benchStateSchema.parse(sessionOfBench(store.getState(), 'Monday', null));
+    expect(session.preset.inputs.tags?.layout).toBeNull();
     expect(session.shelf).toEqual([
       { name: 'run.h5', bytes: 80, sha256: null, input: 'tags', sample: 'run.h5' },
     ]);
