@@ -3,7 +3,7 @@ import type { Quantity, Verdict } from '../../../shared/contracts/output';
 import { displayUnit, formatCount, formatQuantity, formatWithSigma } from '../../lib/format-number';
 import { Button } from '../ui/Button';
 import { Table, Td, Th, Tr } from '../ui/Table';
-import { pairVariants, type QuantityRow, VARIANT_WORDS } from './quantity-words';
+import { pairVariants, type QuantityRow, VARIANT_WORDS, type Variant } from './quantity-words';
 
 export interface QuantityTableProps {
   quantities: Record<string, Quantity>;
@@ -69,16 +69,18 @@ interface RowsProps {
 function Rows({ label, rows, isPaired, verdicts, isWhole }: RowsProps) {
   if (rows.length === 0) return null;
   const isJudged = rows.some((row) => verdictOf(row, verdicts) !== undefined);
+  const variants = (['raw', 'net'] as const).filter((variant) => rows.some((row) => row[variant] !== null));
   return (
     <Table label={label}>
       <thead>
         <tr>
           <Th>quantity</Th>
           {isPaired ? (
-            <>
-              <Th numeric>{VARIANT_WORDS.raw}</Th>
-              <Th numeric>{VARIANT_WORDS.net}</Th>
-            </>
+            variants.map((variant) => (
+              <Th key={variant} numeric>
+                {VARIANT_WORDS[variant]}
+              </Th>
+            ))
           ) : (
             <Th numeric>value</Th>
           )}
@@ -92,7 +94,7 @@ function Rows({ label, rows, isPaired, verdicts, isWhole }: RowsProps) {
           <Row
             key={row.base}
             row={row}
-            isPaired={isPaired}
+            variants={isPaired ? variants : null}
             isJudged={isJudged}
             verdict={verdictOf(row, verdicts)}
             isWhole={isWhole}
@@ -109,13 +111,14 @@ function verdictOf({ base }: QuantityRow<Quantity>, verdicts: Record<string, Ver
 
 interface RowProps {
   row: QuantityRow<Quantity>;
-  isPaired: boolean;
+  /** Columns; null for quantities that know no raw and net. */
+  variants: readonly Variant[] | null;
   isJudged: boolean;
   verdict: Verdict | undefined;
   isWhole: boolean;
 }
 
-function Row({ row, isPaired, isJudged, verdict, isWhole }: RowProps) {
+function Row({ row, variants, isJudged, verdict, isWhole }: RowProps) {
   const main = row.net ?? row.only ?? row.raw;
   if (main === null) return null;
   const { unit } = splitQuantity(main);
@@ -123,11 +126,16 @@ function Row({ row, isPaired, isJudged, verdict, isWhole }: RowProps) {
   return (
     <Tr data-quantity={row.base}>
       <Td className="whitespace-nowrap">{row.label}</Td>
-      {isPaired ? (
-        <>
-          <ValueCell quantity={row.raw} mainUnit={unit} id={`${row.base}.raw`} dim />
-          <ValueCell quantity={row.net} mainUnit={unit} id={`${row.base}.net`} />
-        </>
+      {variants !== null ? (
+        variants.map((variant) => (
+          <ValueCell
+            key={variant}
+            quantity={row[variant]}
+            mainUnit={unit}
+            id={`${row.base}.${variant}`}
+            dim={variant === 'raw' && variants.length > 1}
+          />
+        ))
       ) : (
         <ValueCell quantity={main} mainUnit={unit} id={row.base} />
       )}

@@ -1,12 +1,12 @@
 import { X } from 'lucide-react';
 import { useMemo, useState } from 'react';
 import type { MapData } from '../../../shared/contracts/output';
-import { displayUnit, formatPlain, formatWithSigma } from '../../lib/format-number';
+import { displayUnit, formatWithSigma } from '../../lib/format-number';
 import { formatPosition } from '../../viz/format-tick';
 import { LinePlot } from '../../viz/LinePlot';
 import { Button } from '../ui/Button';
 import { IconButton } from '../ui/IconButton';
-import { computeSlice, type Estimate } from './conditional-slice';
+import { type ConditionalSlice, computeSlice, type Estimate } from './conditional-slice';
 import { HEIGHTS } from './MapCell';
 
 interface SliceOfMapProps {
@@ -19,6 +19,10 @@ interface SliceOfMapProps {
 function estimateWords(name: string, estimate: Estimate | null, unit: string): string {
   if (estimate === null) return `${name} not defined here`;
   return `${name} ${formatWithSigma(estimate.value, estimate.sigma)} ${displayUnit(unit)}`;
+}
+
+function sumWords({ total, totalSigma }: ConditionalSlice, unit: string): string {
+  return `sum ${formatWithSigma(total, totalSigma)} ${displayUnit(unit)}`;
 }
 
 /** The conditional distribution through a clicked bin: where the partner is, given where this photon is. */
@@ -41,10 +45,10 @@ export function SliceOfMap({ map, ix, iy, onClose }: SliceOfMapProps) {
           <X size={14} aria-hidden="true" />
         </IconButton>
       </div>
-      {slice.mean === null ? (
+      {!slice.carries ? (
         <p className="py-2 text-sm text-dim">
-          {formatPlain(slice.pairs, 4)} pairs at {where}: too few against their noise to normalise. Click
-          nearer to the ridge.
+          {sumWords(slice, map.unit)} at {where}: too little against its noise to normalise. Click nearer to
+          the ridge.
         </p>
       ) : (
         <>
@@ -56,12 +60,14 @@ export function SliceOfMap({ map, ix, iy, onClose }: SliceOfMapProps) {
             note="probability"
           />
           <p className="font-mono text-xs text-dim" data-slice="">
-            {[
-              estimateWords('mean', slice.mean, unit),
-              estimateWords('σ', slice.width, unit),
-              `${formatPlain(slice.pairs, 5)} pairs`,
-              'moments of the whole slice',
-            ].join(' · ')}
+            {slice.mean === null
+              ? `${sumWords(slice, map.unit)} · this map carries no errors, so no width is given`
+              : [
+                  estimateWords('mean', slice.mean, unit),
+                  estimateWords('σ', slice.width, unit),
+                  sumWords(slice, map.unit),
+                  'moments of the whole slice',
+                ].join(' · ')}
           </p>
         </>
       )}

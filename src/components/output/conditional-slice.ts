@@ -9,9 +9,13 @@ export interface ConditionalSlice {
   /** P(other | given), normalised to one over the bins not masked; empty when there are too few pairs. */
   map: MapData;
   given: { axis: Axis; at: number };
-  /** Pairs in the slice. */
-  pairs: number;
-  /** Moments over the whole slice; null when the pairs do not carry them. */
+  /** Sum over the slice, in the unit of the map. */
+  total: number;
+  /** Standard error of the sum; null where the map tells none and does not count anything. */
+  totalSigma: number | null;
+  /** Whether the sum stands out of its error, so that dividing by it means something. */
+  carries: boolean;
+  /** Moments over the whole slice; null when the sum does not carry them or their errors are not known. */
   mean: Estimate | null;
   width: Estimate | null;
 }
@@ -23,7 +27,7 @@ const LEAST_SIGNIFICANCE = 5;
  * The column (`given` "x") or row (`given` "y") of a joint map through a bin, as a conditional distribution.
  *
  * m = sum(w u)/W, V = sum(w (u - m)^2)/W, W = sum(w). Standard errors to first order from the bins' own errors s_i
- * (Poisson, s_i^2 = w_i, where the map carries none): SE_m = sqrt(sum s_i^2 (u_i - m)^2)/W,
+ * (Poisson, s_i^2 = w_i, where a map of counts carries none; no moments for other maps without errors): SE_m = sqrt(sum s_i^2 (u_i - m)^2)/W,
  * SE_V = sqrt(sum s_i^2 ((u_i - m)^2 - V)^2)/W, SE_sigma = SE_V/(2 sigma). Moments of the whole slice: a background left
  * in it widens them, so the fitted widths of the study are the ones to quote. A map that carries its own errors may hold
  * negative bins; when these make V negative there is no width.
@@ -39,6 +43,9 @@ export function computeSlice(map: MapData, given: 'x' | 'y', ix: number, iy: num
       ? { axis: axisX, at: axisX.start + ix * axisX.step }
       : { axis: axisY, at: axisY.start + iy * axisY.step };
 
+  const isCounted = map.unit === 'pairs' || map.unit === 'counts';
+  const hasErrors = map.sigma !== undefined || isCounted;
+
   const weights = new Float64Array(count);
   const errors = new Float64Array(count);
   const masked = new Uint8Array(count);
@@ -52,11 +59,12 @@ export function computeSlice(map: MapData, given: 'x' | 'y', ix: number, iy: num
       continue;
     }
     weights[k] = weight;
-    errors[k] = map.sigma ? map.sigma[index]! : Math.sqrt(Math.max(0, weight));
+    errors[k] = map.sigma ? map.sigma[index]! : isCounted ? Math.sqrt(Math.max(0, weight)) : 0;
     total += weight;
     totalVariance += errors[k]! ** 2;
   }
-  const carries = total > LEAST_SIGNIFICANCE * Math.sqrt(totalVariance);
+  const totalSigma = hasErrors ? Math.sqrt(totalVariance) : null;
+  const carries = total > LEAST_SIGNIFICANCE * (totalSigma ?? 0);
   const scale = carries ? 1 / total : 0;
   const slice: MapData = {
     label: `${axis.label}, given ${fixed.axis.label}`,
@@ -65,11 +73,12 @@ export function computeSlice(map: MapData, given: 'x' | 'y', ix: number, iy: num
     unit: '1',
     scale: 'counts',
     data: weights.map((w) => w * scale),
-    sigma: errors.map((e) => e * scale),
+    ...(hasErrors ? { sigma: errors.map((e) => e * scale) } : {}),
     masked,
   };
-  const moments = carries ? computeMoments(weights, errors, axis, total) : { mean: null, width: null };
-  return { map: slice, given: fixed, pairs: total, ...moments };
+  const moments =
+    carries && hasErrors ? computeMoments(weights, errors, axis, total) : { mean: null, width: null };
+  return { map: slice, given: fixed, total, totalSigma, carries, ...moments };
 }
 
 function computeMoments(

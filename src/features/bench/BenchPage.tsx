@@ -1,5 +1,5 @@
 import { useQuery, useQueryClient } from '@tanstack/react-query';
-import { useEffect, useRef, useState } from 'react';
+import { useCallback, useEffect, useRef, useState } from 'react';
 import { Group, Panel, Separator, useDefaultLayout } from 'react-resizable-panels';
 import { useSearchParams } from 'react-router-dom';
 import { ProblemNote } from '../../components/page/ProblemNote';
@@ -148,30 +148,24 @@ function useOpening(groupId: string) {
   const queries = useQueryClient();
   const [search] = useSearchParams();
   const [problem, setProblem] = useState<unknown>(null);
-  const [tries, setTries] = useState(0);
   const address = search.toString();
   const attempt = (action: () => Promise<void>): void => {
     setProblem(null);
     action().catch((thrown: unknown) => setProblem(thrown));
   };
-  useEffect(() => {
+  const openAddress = useCallback(() => {
     const wanted = readWanted(new URLSearchParams(address));
-    const key = `${groupId} ${address}`;
-    if (wanted === null || bench.openedFrom.current === key) return;
-    bench.openedFrom.current = key;
+    if (wanted === null) return;
     setProblem(null);
     openWanted({ store: bench.store, queries, groupId }, wanted).catch((thrown: unknown) =>
       setProblem(thrown),
     );
-    // `tries` starts it again.
-  }, [address, groupId, tries, bench, queries]);
-  return {
-    problem,
-    attempt,
-    retry: () => {
-      bench.openedFrom.current = null;
-      setTries(tries + 1);
-    },
-    dismiss: () => setProblem(null),
-  };
+  }, [address, groupId, bench, queries]);
+  useEffect(() => {
+    const key = `${groupId} ${address}`;
+    if (bench.openedFrom.current === key) return;
+    bench.openedFrom.current = key;
+    openAddress();
+  }, [address, groupId, bench, openAddress]);
+  return { problem, attempt, retry: openAddress, dismiss: () => setProblem(null) };
 }

@@ -45,6 +45,14 @@ describe('the stage', () => {
     expect(arrangeMaps('unheard-of', maps, 'net').flatMap(({ cells }) => cells)).toHaveLength(5);
   });
 
+  it('knows raw and net also where the acquisition is named last', () => {
+    const maps = { 'joint.x.near': grid(2, 2), 'joint.x.raw.near': grid(2, 2), 'joint.x.far': grid(2, 2) };
+    const ids = (variant: 'raw' | 'net') =>
+      arrangeMaps('witness', maps, variant).flatMap(({ cells }) => cells.map(({ id }) => id));
+    expect(ids('net')).toEqual(['joint.x.near', 'joint.x.far']);
+    expect(ids('raw')).toEqual(['joint.x.raw.near', 'joint.x.far']);
+  });
+
   it('shows near beside far in a witness, position difference beside momentum sum', () => {
     const maps = Object.fromEntries(
       ['joint.x.near', 'joint.x.far', 'joint.y.near', 'joint.y.far'].map((id) => [id, grid(2, 2)]),
@@ -80,13 +88,17 @@ describe('the conditional slice', () => {
   it('is the column or row through the bin, normalised, in the other arm’s coordinate', () => {
     const map = grid(3, 4, Float64Array.from([1, 9, 0, 0, 30, 0, 0, 60, 0, 0, 1, 900]));
     const slice = computeSlice(map, 'x', 1, 2);
-    expect(slice.pairs).toBe(100);
+    expect(slice).toMatchObject({ total: 100, totalSigma: 10, carries: true });
     expect([...slice.map.data]).toEqual([0.09, 0.3, 0.6, 0.01]);
     expect(slice.map.axes[0]?.label).toBe('x idler');
     expect(slice.given.at).toBe(-8);
     expect(slice.mean?.value).toBeCloseTo(-20 + 4 * (0.3 + 1.2 + 0.03), 12);
     expect(computeSlice(map, 'y', 0, 3).given.axis.label).toBe('x idler');
-    expect(computeSlice(map, 'x', 0, 0).mean).toBeNull();
+    expect(computeSlice(map, 'x', 0, 0)).toMatchObject({ carries: false, mean: null });
+    // A covariance map without errors: the shape may be shown, no moment may.
+    const bare = computeSlice({ ...map, unit: 'counts^2', scale: 'signed' }, 'x', 1, 2);
+    expect(bare).toMatchObject({ carries: true, totalSigma: null, mean: null, width: null });
+    expect(bare.map.sigma).toBeUndefined();
   });
 
   it('finds the truth, with errors that cover it: 200 seeded slices of 400 pairs', () => {
