@@ -134,7 +134,7 @@ function stateGhostImage(count: TagCount, arms: ArmPair, regions: Regions | null
       ? 'There were no counts to compare open with closed pixels.'
       : regions.drawn
         ? 'Visibility and CNR compare the two regions that were drawn.'
-        : 'Visibility and CNR compare pixels above and below the Otsu threshold of the net image, chosen on half of the slices of time and measured on the other half, so that the choice does not flatter them.';
+        : 'Visibility and CNR compare pixels above and below the Otsu threshold of the net image, chosen on half of the slices of time and measured on the other half, so that the choice does not flatter them; a pixel sorted wrongly lowers them.';
   return [
     `Ghost image of what the bucket saw, from tags of the ${describeArms(arms)} arms over ${formatFigure(seconds)} s: array tags paired with a bucket tag inside a window of ${formatFigure(windowPs)} ps full width centred on ${formatFigure(windowCentrePs)} ps.`,
     `Net numbers have the mean image of ${shifts} shifted windows subtracted; raw ones are given beside them.`,
