@@ -35,23 +35,68 @@ const LEAST_VARIANCE = 0.02;
 const REACH = 5;
 const LEAST_REACH = 6;
 
-/** Both peaks of one camera plane; the narrow one is fitted again with the envelope that the wide one gives. */
+/** Both peaks of one camera plane; the narrow one is fitted again with the envelope that the wide one gives. A peak is null
+ * where nothing stands out of its map. */
 export function fitFramePeaks(
   maps: Record<FrameMapKind, FrameMap>,
   narrow: FrameMapKind,
 ): Record<FrameMapKind, FramePeak | null> {
   const wide: FrameMapKind = narrow === 'plus' ? 'minus' : 'plus';
-  const first = fitFramePeak(maps[narrow], null, null);
-  if (first === null) return { plus: null, minus: null, [narrow]: null };
-  // A peak as wide as the array looks like its pedestal, so the wide fit takes the pedestal that the narrow one found.
-  const other = fitFramePeak(maps[wide], first, pedestalPerPair(maps[narrow], first));
-  // `>` also refuses a peak without a finite error.
-  const trusted = other?.fit.converged === true && other.fit.amplitude / amplitudeSigma(other) > 5;
-  const second = trusted ? fitFramePeak(maps[narrow], other, null) : first;
-  return { plus: null, minus: null, [narrow]: second ?? first, [wide]: trusted ? other : null };
+  const first = fitFramePeak(maps[narrow], FREE);
+  if (first === null) return { plus: null, minus: null };
+  const guide = fitFramePeak(maps[wide], { other: first, held: heldBy(maps, narrow, wide, first) });
+  // The envelope only tilts the narrow peak by a few percent: its width need not be known well.
+  const known =
+    guide?.fit.converged === true &&
+    blockSigma(guide.influence, 3) < guide.xx &&
+    blockSigma(guide.influence, 5) < guide.yy;
+  if (!known) return { plus: null, minus: null, [narrow]: first };
+  const found = fitFramePeak(maps[narrow], { other: guide, held: null }) ?? first;
+  const other = fitFramePeak(maps[wide], { other: found, held: heldBy(maps, narrow, wide, found) });
+  return { plus: null, minus: null, [narrow]: found, [wide]: other };
 }
 
-/** Standard error of the amplitude from the blocks. */
+/**
+ * Both maps hold the same pairs, and a peak as wide as the array looks like its own pedestal: the wide fit takes
+ * amplitude and pedestal, with their errors, from the narrow one.
+ */
+interface Held {
+  amplitude: number;
+  background: number;
+  share(block: number): { amplitude: number; background: number };
+}
+
+interface Given {
+  /** Peak of the other coordinate, for the envelope; null: the plain overlap. */
+  other: FramePeak | null;
+  /** Null: amplitude and pedestal are fitted. */
+  held: Held | null;
+}
+const FREE: Given = { other: null, held: null };
+
+function heldBy(
+  maps: Record<FrameMapKind, FrameMap>,
+  narrow: FrameMapKind,
+  wide: FrameMapKind,
+  peak: FramePeak,
+): Held {
+  // Pedestals are kept for the bin of most pairs.
+  const ratio = mostPairs(maps[wide]) / mostPairs(maps[narrow]);
+  return {
+    amplitude: peak.fit.amplitude,
+    background: peak.fit.background * ratio,
+    share: (block) => ({
+      amplitude: peak.influence[block * FIT_PARAMETERS] as number,
+      background: ratio * (peak.influence[block * FIT_PARAMETERS + 6] as number),
+    }),
+  };
+}
+
+function mostPairs(map: FrameMap): number {
+  return map.pairs.reduce((a, b) => Math.max(a, b), 1);
+}
+
+/** Standard error of the amplitude from the blocks; 0 where it was held. */
 export function amplitudeSigma(peak: FramePeak): number {
   return blockSigma(peak.influence, 0);
 }
@@ -66,22 +111,13 @@ export function blockSigma(influence: Float64Array, p: number): number {
   return Math.sqrt(squares);
 }
 
-function pedestalPerPair(map: FrameMap, peak: FramePeak): number {
-  return peak.fit.background / mostPairs(map);
-}
-
-function mostPairs(map: FrameMap): number {
-  return map.pairs.reduce((a, b) => Math.max(a, b), 1);
-}
-
-/** @param pedestal covariance per pair of pixels where it is known, null where it is fitted. */
-function fitFramePeak(map: FrameMap, other: FramePeak | null, pedestal: number | null): FramePeak | null {
+function fitFramePeak(map: FrameMap, given: Given): FramePeak | null {
   let start = findStart(map);
   if (start === null) return null;
   let peak: FramePeak | null = null;
   // The window follows the width; three rounds settle it from any of the starting boxes.
   for (let round = 0; round < 4; round += 1) {
-    const next = fitWindow(map, other, pedestal, start);
+    const next = fitWindow(map, given, start);
     if (next === null) return peak;
     const settled =
       peak !== null &&
@@ -154,12 +190,8 @@ function boxSum(table: Float64Array, map: FrameMap, cx: number, cy: number, half
   return at(x1, y1) - at(x0, y1) - at(x1, y0) + at(x0, y0);
 }
 
-function fitWindow(
-  map: FrameMap,
-  other: FramePeak | null,
-  pedestal: number | null,
-  start: Start,
-): FramePeak | null {
+function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null {
+  const { other, held } = given;
   const minus = map.kind === 'minus';
   const origin = minus ? { x: map.width - 1, y: map.height - 1 } : { x: 0, y: 0 };
   const region = regionAround(map, origin, start.shape);
@@ -192,11 +224,12 @@ function fitWindow(
     use,
     envelope,
     background: pairs.map((n) => n / most),
-    backgroundAmplitude: (pedestal ?? 0) * most,
-    freeBackground: pedestal === null,
+    backgroundAmplitude: held?.background ?? 0,
+    freeAmplitude: held === null,
+    freeBackground: held === null,
     freeCentre: !minus,
     variance,
-    start,
+    start: held === null ? start : { ...start, amplitude: held.amplitude },
     leastVariance: LEAST_VARIANCE,
   });
   const { shape } = fit;
@@ -221,7 +254,7 @@ function fitWindow(
       fit,
       map.blocks,
       (b, c) => (use[c] === 1 ? map.blockValue(b, cellOf(c)) : 0),
-      () => 0,
+      held === null ? () => ({ amplitude: 0, background: 0 }) : held.share,
     ),
   };
 }

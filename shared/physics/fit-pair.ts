@@ -70,6 +70,7 @@ export function fitPair(input: PairFitInput): PairFit | null {
     envelope,
     background,
     backgroundAmplitude: amplitude,
+    freeAmplitude: true,
     freeBackground: false,
     freeCentre: true,
     variance: null,
@@ -89,7 +90,10 @@ export function fitPair(input: PairFitInput): PairFit | null {
     fit,
     slices,
     (s, c) => input.prompt[s * cells + c] as number,
-    (s) => (windows > 0 ? sumRange(input.shifted, s * cells, (s + 1) * cells) / windows : 0),
+    (s) => ({
+      amplitude: 0,
+      background: windows > 0 ? sumRange(input.shifted, s * cells, (s + 1) * cells) / windows : 0,
+    }),
   );
   return {
     fit,

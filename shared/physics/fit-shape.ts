@@ -24,6 +24,8 @@ export interface ShapeProblem {
   envelope: Float64Array | null;
   /** b. */
   background: Float64Array;
+  /** False holds A at its start. */
+  freeAmplitude: boolean;
   /** Held when `freeBackground` is false. */
   backgroundAmplitude: number;
   freeBackground: boolean;
@@ -49,8 +51,9 @@ export interface ShapeFit {
   covariance: Float64Array;
   /** Row p: derivative of the model by free parameter p over its variance; the score is linear in the data. */
   scoreRows: Float64Array[];
-  /** Derivative of the scores by the held background amplitude. */
+  /** Fall of the scores per unit of a held background amplitude, and of a held A. */
   backgroundCoupling: Float64Array;
+  amplitudeCoupling: Float64Array;
   converged: boolean;
   /** The narrow axis ended at `leastVariance`. */
   atFloor: boolean;
@@ -70,7 +73,8 @@ interface State {
 
 export function fitShape(problem: ShapeProblem): ShapeFit {
   const { start } = problem;
-  const free: number[] = [INDEX.amplitude, INDEX.xx, INDEX.xy, INDEX.yy];
+  const free: number[] = [INDEX.xx, INDEX.xy, INDEX.yy];
+  if (problem.freeAmplitude) free.push(INDEX.amplitude);
   if (problem.freeCentre) free.push(INDEX.mx, INDEX.my);
   if (problem.freeBackground) free.push(INDEX.background);
   free.sort((a, b) => a - b);
@@ -295,6 +299,7 @@ function report(problem: ShapeProblem, state: State, free: number[], converged: 
       row[c] = v * (weight[c] as number);
     });
   const backgroundCoupling = Float64Array.from(scoreRows, (row) => dot(row, background));
+  const amplitudeCoupling = Float64Array.from(scoreRows, (row) => dot(row, peak) / amplitude);
   const shape = shapeOf(state.params);
   const narrow = (shape.xx + shape.yy) / 2 - Math.hypot((shape.xx - shape.yy) / 2, shape.xy);
   return {
@@ -308,6 +313,7 @@ function report(problem: ShapeProblem, state: State, free: number[], converged: 
     covariance,
     scoreRows,
     backgroundCoupling,
+    amplitudeCoupling,
     converged,
     atFloor: narrow <= problem.leastVariance * 1.001,
     objective: state.objective,
@@ -316,22 +322,26 @@ function report(problem: ShapeProblem, state: State, free: number[], converged: 
 
 /**
  * How each block moves the free parameters: row s = covariance * (scores of the block's data - coupling * its share of
- * the held background). A reweighted data set then has parameters theta + sum_s (w_s - 1) row_s: one Fisher step from
+ * what is held). A reweighted data set then has parameters theta + sum_s (w_s - 1) row_s: one Fisher step from
  * the full fit, exact to first order. blocks * FIT_PARAMETERS, zero for held parameters. O(blocks * cells).
  */
 export function blockInfluence(
   fit: ShapeFit,
   blocks: number,
   blockValue: (block: number, cell: number) => number,
-  blockBackground: (block: number) => number,
+  heldShare: (block: number) => { amplitude: number; background: number },
 ): Float64Array {
   const k = fit.free.length;
   const out = new Float64Array(blocks * FIT_PARAMETERS);
   const cells = fit.model.length;
   const scores = new Float64Array(k);
   for (let s = 0; s < blocks; s += 1) {
-    const b = blockBackground(s);
-    for (let a = 0; a < k; a += 1) scores[a] = -b * (fit.backgroundCoupling[a] as number);
+    const held = heldShare(s);
+    for (let a = 0; a < k; a += 1) {
+      scores[a] =
+        -held.background * (fit.backgroundCoupling[a] as number) -
+        held.amplitude * (fit.amplitudeCoupling[a] as number);
+    }
     for (let c = 0; c < cells; c += 1) {
       const n = blockValue(s, c);
       if (n === 0) continue;

@@ -1,4 +1,4 @@
-import { amplitudeSigma, type FramePeak } from '../../../shared/physics/fit-frames';
+import { amplitudeSigma, blockSigma, type FramePeak } from '../../../shared/physics/fit-frames';
 
 /** More of the peak than this on bins that had to be left out, and its width would be invented. */
 export const MOST_HIDDEN = 0.7;
@@ -10,6 +10,9 @@ export function isTrusted(peak: FramePeak | null): peak is FramePeak {
   return (
     peak?.fit.converged === true &&
     peak.hidden < MOST_HIDDEN &&
-    peak.fit.amplitude / amplitudeSigma(peak) >= LEAST_SNR
+    // A wide peak takes its amplitude from the narrow one; then its width has to be known.
+    peak.fit.amplitude / amplitudeSigma(peak) >= LEAST_SNR &&
+    blockSigma(peak.influence, 3) < 0.3 * peak.xx &&
+    blockSigma(peak.influence, 5) < 0.3 * peak.yy
   );
 }
