@@ -33,7 +33,7 @@ export function StageMap({ map, logScale = false, ...rest }: HeatMapProps) {
   const [ref, { width }] = useBox<HTMLDivElement>();
   const height = Math.round(Math.min(MOST, Math.max(LEAST, width * ASPECT)));
   return (
-    <div ref={ref} style={{ minHeight: height }}>
+    <div ref={ref} className="select-none" style={{ minHeight: height }}>
       {width === 0 ? null : (
         <HeatMap map={map} logScale={logScale && map.scale === 'counts'} height={height} {...rest} />
       )}

@@ -2,6 +2,7 @@ import { LedgerSection } from '../../../components/output/LedgerSection';
 import { OutputLedger } from '../../../components/output/OutputLedger';
 import { planRun } from '../model/bench-selectors';
 import type { LogLine } from '../model/bench-types';
+import { stageWords } from '../model/run-bench';
 import { useBenchPlan, useBenchState } from './bench-context';
 import { Region } from './Region';
 import { SaveActions, type SaveActionsProps } from './SaveActions';
@@ -32,8 +33,11 @@ export function LedgerRegion(props: SaveActionsProps) {
 
 function LogSection() {
   const log = useBenchState((state) => state.log);
+  const run = useBenchState((state) => state.run);
+  const progress = run.status === 'running' ? run.progress : null;
   return (
     <LedgerSection title="Job log">
+      {progress === null ? null : <p className="pb-1 font-mono text-xs text-text">{stageWords(progress)}</p>}
       <JobLog log={log} />
     </LedgerSection>
   );

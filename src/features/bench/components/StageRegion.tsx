@@ -4,7 +4,7 @@ import { ProgressBar } from '../../../components/ui/ProgressBar';
 import { useTheme } from '../../../lib/theme/theme';
 import { currentDials, currentStudy, planRun } from '../model/bench-selectors';
 import type { Found } from '../model/bench-types';
-import { progressWords } from '../model/run-bench';
+import { progressWords, stageWords } from '../model/run-bench';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
 import { EmptyStage } from './EmptyStage';
 import { ProblemText } from './ProblemText';
@@ -109,8 +109,12 @@ function RunLine() {
     progress === null || progress.bytesTotal === 0 ? null : progress.bytesDone / progress.bytesTotal;
   return (
     <span className="flex min-w-0 items-center gap-3 font-mono text-xs text-dim">
-      <span className="min-w-0 truncate" data-testid="run-progress">
-        {progress === null ? 'starting' : `${progress.stage} · ${progressWords(progress)}`}
+      <span
+        className="min-w-0 truncate"
+        data-testid="run-progress"
+        title={progress === null ? undefined : stageWords(progress)}
+      >
+        {progress === null ? 'starting' : progressWords(progress)}
       </span>
       <span className="w-24 shrink-0">
         <ProgressBar value={share} label="Reading" />

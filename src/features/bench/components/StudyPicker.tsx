@@ -17,7 +17,7 @@ export function StudyPicker() {
     <Tabs.Root
       value={study}
       activationMode="manual"
-      className="flex items-stretch"
+      className="flex shrink-0 items-stretch"
       onValueChange={(value) => {
         const next = studies.find(({ id }) => id === value);
         if (next !== undefined) store.getState().chooseStudy(next.id);
@@ -29,7 +29,7 @@ export function StudyPicker() {
             key={id}
             value={id}
             aria-controls="bench-stage"
-            className="-mb-px border-b-2 border-transparent px-0.5 py-1.5 text-sm text-dim hover:text-text data-[state=active]:border-text data-[state=active]:text-text"
+            className="-mb-px border-b-2 border-transparent px-0.5 py-1.5 text-sm whitespace-nowrap text-dim hover:text-text data-[state=active]:border-text data-[state=active]:text-text"
           >
             {label}
           </Tabs.Trigger>

@@ -1,9 +1,9 @@
 import type { RunEvent } from '../../../../shared/contracts/engine';
-import { durationWords, shortCount } from '../../../components/output/reading-words';
+import { bytesWords, durationWords, shortCount } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
 import { currentStudy, type Plan, planRun } from './bench-selectors';
 import type { BenchStore } from './bench-store';
-import type { BenchState, Found } from './bench-types';
+import type { BenchState, Found, Progress } from './bench-types';
 
 /** While a hand moves a dial, one run after it rests this long. */
 const DIAL_REST_MS = 150;
@@ -135,15 +135,15 @@ function rememberHashes(
   return shelf.map((a) => ({ ...a, sha256: hashOf(a.name, a.bytes) ?? a.sha256 }));
 }
 
-export function progressWords({
-  recordsDone,
-  recordsPerSecond,
-  secondsLeft,
-}: {
-  recordsDone: number;
-  recordsPerSecond: number;
-  secondsLeft: number | null;
-}): string {
-  const left = secondsLeft === null ? '' : ` · ${durationWords(secondsLeft)} left`;
-  return `${shortCount(recordsDone)} records · ${shortCount(recordsPerSecond)} records/s${left}`;
+/** Short, for the line beside the studies: how far, how fast, how long. */
+export function progressWords({ bytesDone, bytesTotal, recordsPerSecond, secondsLeft }: Progress): string {
+  const share = bytesTotal > 0 ? `${Math.floor((100 * bytesDone) / bytesTotal)} %` : '';
+  const rate = recordsPerSecond > 0 ? `${shortCount(recordsPerSecond)} records/s` : '';
+  const left = secondsLeft === null ? '' : `${durationWords(secondsLeft)} left`;
+  return [share, rate, left].filter((part) => part !== '').join(' · ');
+}
+
+/** Long, for the ledger: what is going on and how much was read. */
+export function stageWords({ stage, recordsDone, bytesDone, bytesTotal }: Progress): string {
+  return `${stage} · ${shortCount(recordsDone)} records · ${bytesWords(bytesDone)} of ${bytesWords(bytesTotal)}`;
 }

@@ -106,7 +106,7 @@ export function outputOf(change: Partial<StudyOutput> = {}): StudyOutput {
   return {
     study: 'delay',
     quantities: {
-      'coincidences.raw': { value: 1234.5, sigma: 6, unit: '1/s', method: 'Poisson', n: 40_000 },
+      'coincidences.raw': { value: 1234.8, sigma: 6, unit: '1/s', method: 'Poisson', n: 40_000 },
       'coincidences.net': { value: 1200.2, sigma: 7, unit: '1/s', method: 'Poisson', n: 40_000 },
       'delay.peak': { value: 23_702.3, sigma: 1.6, unit: 'ps', method: 'Gaussian fit', n: 24_765 },
     },
