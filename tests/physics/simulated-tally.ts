@@ -80,7 +80,10 @@ export function simulateTally(scene: TallyScene, random: Random): TagTally {
   };
   const a = arm(s1);
   const b = arm(s2);
-  const sliceTick = 2 ** 20;
+  // As long a run as makes the product of the singles agree with the accidentals.
+  const found = shifted.pairs.reduce((sum, v) => sum + v, 0) / windows;
+  const product = sumOf(a.singles) * sumOf(b.singles) * (2 * WINDOW_HALF + 1);
+  const sliceTick = found > 0 ? Math.ceil(product / found / slices) : 2 ** 20;
   return {
     kind: 'tags',
     tickFs: 1e5,
@@ -104,6 +107,10 @@ export function simulateTally(scene: TallyScene, random: Random): TagTally {
     prompt,
     shifted,
   };
+}
+
+function sumOf(values: Float64Array): number {
+  return values.reduce((sum, v) => sum + v, 0);
 }
 
 function emptyPairs(size: number, slices: number): PairTally {
