@@ -1,13 +1,14 @@
 import { type ReactNode, useMemo, useState } from 'react';
 import type { DialSpec, DialValues } from '../../../shared/contracts/dial';
-import type { StudyOutput } from '../../../shared/contracts/output';
+import type { Check, StudyOutput } from '../../../shared/contracts/output';
 import type { Theme } from '../../viz/types';
+import { CheckMark } from '../ui/CheckMark';
 import { Toggle } from '../ui/Toggle';
 import { arrangeMaps, hasVariants, type Section } from './arrange-maps';
 import { MapCell } from './MapCell';
 import { VARIANT_WORDS, type Variant } from './quantity-words';
 import { useLinkedCursor } from './use-linked-cursor';
-import { VerdictRulers } from './VerdictRulers';
+import { type JudgedRow, judgedRows, VerdictRulers } from './VerdictRulers';
 
 export interface OutputStageProps {
   output: StudyOutput;
@@ -22,7 +23,7 @@ export interface OutputStageProps {
   children?: ReactNode;
 }
 
-/** Everything a study found that is drawn: bounds first, then the maps in the order one reads them. */
+/** Everything a study found that is drawn: verdicts on their rulers over the maps they rest on, then the rest. */
 export function OutputStage(props: OutputStageProps) {
   const { output, theme, note = null, specs = [], dials = {}, onTurn, children } = props;
   const [variant, setVariant] = useState<Variant>('net');
@@ -32,12 +33,16 @@ export function OutputStage(props: OutputStageProps) {
     () => arrangeMaps(output.study, output.maps, variant),
     [output.study, output.maps, variant],
   );
+  const blocks = useMemo(
+    () => interleave(sections, judgedRows(output.verdicts, output.quantities)),
+    [sections, output.verdicts, output.quantities],
+  );
   const shared = { theme, note, specs, dials, onTurn, cursor, logScale, chosen: output.chosen };
   return (
     <div className="flex flex-col gap-5">
-      <div className="flex flex-wrap items-center justify-between gap-x-5 gap-y-2">
-        <div className="min-w-0">{children}</div>
-        <div className="flex items-center gap-5">
+      <div className="flex items-start justify-between gap-x-5">
+        <div className="min-w-0 flex-1">{children}</div>
+        <div className="flex shrink-0 items-center gap-5">
           {hasVariants(output.maps) ? (
             <Toggle
               label={`Maps with ${VARIANT_WORDS.net}`}
@@ -48,21 +53,60 @@ export function OutputStage(props: OutputStageProps) {
           <Toggle label="Log scale" checked={logScale} onChange={setLogScale} />
         </div>
       </div>
-      <VerdictRulers verdicts={output.verdicts} quantities={output.quantities} />
-      {sections.map((section) => (
-        <div
-          key={section.id}
-          className={`grid gap-x-6 gap-y-5 ${columnsOf(section)}`}
-          data-section={section.id}
-        >
-          {section.cells.map((cell) => (
-            <MapCell key={cell.id} cell={cell} {...shared} />
-          ))}
-        </div>
-      ))}
+      <FailedChecks checks={output.checks} />
+      {blocks.map((block) =>
+        block.kind === 'rulers' ? (
+          <VerdictRulers key={block.id} rows={block.rows} />
+        ) : (
+          <div
+            key={block.section.id}
+            className={`grid gap-x-6 gap-y-5 ${columnsOf(block.section)}`}
+            data-section={block.section.id}
+          >
+            {block.section.cells.map((cell) => (
+              <MapCell key={cell.id} cell={cell} {...shared} />
+            ))}
+          </div>
+        ),
+      )}
       {sections.length === 0 ? <p className="text-dim">This study drew no maps.</p> : null}
     </div>
   );
+}
+
+/** What failed stands over the pictures too: no verdict is read without it. */
+function FailedChecks({ checks }: { checks: readonly Check[] }) {
+  const failed = checks.filter(({ status }) => status === 'fail');
+  if (failed.length === 0) return null;
+  return (
+    <ul className="flex flex-col gap-1" aria-label="Failed checks">
+      {failed.map(({ id, sentence }) => (
+        <li key={id} className="flex items-baseline gap-2 text-sm">
+          <CheckMark status="fail" />
+          {sentence}
+        </li>
+      ))}
+    </ul>
+  );
+}
+
+type Block = { kind: 'rulers'; id: string; rows: JudgedRow[] } | { kind: 'maps'; section: Section };
+
+/** The verdicts on an axis stand over the maps of that axis; those on both axes follow them. */
+function interleave(sections: readonly Section[], rows: readonly JudgedRow[]): Block[] {
+  const blocks: Block[] = [];
+  const left = new Set(rows);
+  let end = 0;
+  for (const section of sections) {
+    const [, part, axis] = /^(joint|width)-(.)$/.exec(section.id) ?? [];
+    const own = part === 'joint' ? [...left].filter(({ base }) => base.endsWith(`.${axis}`)) : [];
+    for (const row of own) left.delete(row);
+    if (own.length > 0) blocks.push({ kind: 'rulers', id: `rulers-${axis}`, rows: own });
+    blocks.push({ kind: 'maps', section });
+    if (part !== undefined) end = blocks.length;
+  }
+  if (left.size > 0) blocks.splice(end, 0, { kind: 'rulers', id: 'rulers', rows: [...left] });
+  return blocks;
 }
 
 function columnsOf({ wide, cells }: Section): string {

@@ -4,12 +4,7 @@ import { BoundRuler } from '../../viz/BoundRuler';
 import type { RulerEntry } from '../../viz/types';
 import { LEVEL_WORDS, pairVariants, type QuantityRow } from './quantity-words';
 
-export interface VerdictRulersProps {
-  verdicts: Record<string, Verdict>;
-  quantities: Record<string, Quantity>;
-}
-
-interface Measured {
+export interface Measured {
   verdict: Verdict;
   quantity: Quantity;
 }
@@ -33,15 +28,23 @@ function entryOf(label: RulerEntry['label'], measured: Measured | null): RulerEn
   ];
 }
 
-/** Verdict sentences first, each with its value on a ruler of its bound. */
-export function VerdictRulers({ verdicts, quantities }: VerdictRulersProps) {
+export type JudgedRow = QuantityRow<Measured>;
+
+/** Quantities that carry a verdict, raw and net together. */
+export function judgedRows(
+  verdicts: Record<string, Verdict>,
+  quantities: Record<string, Quantity>,
+): JudgedRow[] {
   const measured: Record<string, Measured> = {};
   for (const [id, verdict] of Object.entries(verdicts)) {
     const quantity = quantities[id];
     if (quantity !== undefined) measured[id] = { verdict, quantity };
   }
-  const rows = pairVariants(measured);
-  if (rows.length === 0) return null;
+  return pairVariants(measured);
+}
+
+/** Each value on a ruler of its bound, with the claim in a sentence. */
+export function VerdictRulers({ rows }: { rows: readonly JudgedRow[] }) {
   return (
     <div
       className="grid grid-cols-[repeat(auto-fit,minmax(min(100%,24rem),1fr))] gap-x-8 gap-y-6"

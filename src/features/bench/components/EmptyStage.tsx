@@ -5,7 +5,8 @@ import type { Need } from '../model/study-inputs';
 export interface EmptyStageProps {
   study: StudyInfo;
   needs: readonly Need[];
-  onEdit(acquisitionId: string): void;
+  /** null where the reading may not be changed. */
+  onEdit: ((acquisitionId: string) => void) | null;
   onOpen(): void;
 }
 
@@ -20,7 +21,7 @@ export function EmptyStage({ study, needs, onEdit, onOpen }: EmptyStageProps) {
         {needs.map(({ sentence, acquisitionId }) => (
           <li key={sentence} className="flex min-h-10 items-center justify-between gap-4 py-1">
             <span>{sentence}</span>
-            {acquisitionId === null ? null : (
+            {acquisitionId === null || onEdit === null ? null : (
               <Button size="sm" onClick={() => onEdit(acquisitionId)}>
                 Open its reading
               </Button>

@@ -7,8 +7,7 @@ import { explain } from '../../../lib/errors/explain';
 import type { Group } from '../../../lib/query/me';
 import { savePreset, saveResult, saveSession } from '../api/save';
 import { presetOfBench, presetOfResult, sessionOfBench } from '../model/bench-records';
-import { baseDials, currentDials, currentStudy } from '../model/bench-selectors';
-import { changedDials } from '../model/dial-history';
+import { currentStudy } from '../model/bench-selectors';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
 import { NameDialog } from './NameDialog';
 
@@ -50,9 +49,7 @@ export function SaveActions({ group }: SaveActionsProps) {
   const save = async (name: string): Promise<void> => {
     const state = store.getState();
     if (kind === 'result' && result !== null) {
-      const specs = study?.dials ?? [];
-      const changed = changedDials(specs, currentDials(state), baseDials(state));
-      const saved = await saveResult(group.id, name, result, presetOfResult(state, changed.size));
+      const saved = await saveResult(group.id, name, result, presetOfResult(state, result));
       setResultId(saved.id);
       setSaid(<SavedLink what="Result" name={name} to={`/results/${saved.id}`} />);
     } else if (kind === 'preset' || kind === 'version') {

@@ -1,6 +1,7 @@
 import { FolderOpen } from 'lucide-react';
 import { Button } from '../../../components/ui/Button';
 import { Field } from '../../../components/ui/Field';
+import { Kbd } from '../../../components/ui/Kbd';
 import { Menu } from '../../../components/ui/Menu';
 import { Select } from '../../../components/ui/Select';
 import type { Acquisition } from '../model/acquisition';
@@ -29,7 +30,7 @@ export function ShelfRegion({ readOnly, samples, onOpen, onEdit }: ShelfRegionPr
       title="shelf"
       note={shelf.length === 0 ? undefined : String(shelf.length)}
       actions={
-        <Button size="sm" onClick={onOpen}>
+        <Button size="sm" onClick={onOpen} aria-keyshortcuts="Control+O">
           <FolderOpen size={13} aria-hidden="true" />
           Open files
         </Button>
@@ -38,7 +39,7 @@ export function ShelfRegion({ readOnly, samples, onOpen, onEdit }: ShelfRegionPr
       <Inputs shelf={shelf} />
       {shelf.length === 0 ? (
         <p className="text-sm text-dim">
-          Nothing on the shelf. Drop files anywhere on the bench, or open them.
+          Nothing on the shelf. Drop files anywhere on the bench, or press <Kbd>Ctrl O</Kbd>
         </p>
       ) : (
         <ul className="flex flex-col divide-y divide-line border-y border-line">

@@ -47,7 +47,7 @@ export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
       >
         <RunProblem />
         {study !== null && plan.needs.length > 0 ? (
-          <EmptyStage study={study} needs={plan.needs} onEdit={onEdit} onOpen={onOpen} />
+          <EmptyStage study={study} needs={plan.needs} onEdit={readOnly ? null : onEdit} onOpen={onOpen} />
         ) : null}
         {found === null ? null : (
           <OutputStage

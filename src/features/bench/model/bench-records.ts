@@ -1,7 +1,9 @@
+import type { RunResult } from '../../../../shared/contracts/engine';
 import type { BenchState as SavedBench } from '../../../../shared/contracts/http';
 import type { InputSetting, Preset } from '../../../../shared/contracts/preset';
 import { currentAssignment, currentDials, currentStudy } from './bench-selectors';
 import type { BenchState } from './bench-types';
+import { changedDials } from './dial-history';
 
 /** What is stored of the bench: presets and sessions. The bytes of acquisitions never leave the machine. */
 
@@ -53,12 +55,14 @@ export function sessionOfBench(state: BenchState, name: string, resultId: string
   };
 }
 
-/** The preset a result names: only while nothing was changed against it. */
+/** The preset a result names: only when it was run with exactly the dials of that preset. */
 export function presetOfResult(
   state: BenchState,
-  changed: number,
+  run: RunResult,
 ): { name: string; version: number | null } | null {
-  const { preset, study } = state;
-  if (preset === null || preset.study !== study || changed > 0) return null;
+  const { preset } = state;
+  const study = state.studies.find(({ id }) => id === run.output.study);
+  if (preset === null || study === undefined || preset.study !== study.id) return null;
+  if (changedDials(study.dials, run.provenance.dials, preset.dials).size > 0) return null;
   return { name: preset.name, version: preset.version };
 }

@@ -5,7 +5,7 @@ import { presetQuery } from '../../../lib/query/presets';
 import { samplesQuery } from '../../../lib/query/samples';
 import { sessionQuery } from '../../../lib/query/sessions';
 import { fetchSample } from '../api/sample-file';
-import type { BenchStore } from './bench-store';
+import type { BenchStore, SampleFile } from './bench-store';
 import { DEFAULT_SEED } from './bench-types';
 
 /** What the address asks to be put on the bench. */
@@ -54,12 +54,12 @@ async function openSession({ store, queries, groupId }: Opener, id: string): Pro
     if (file !== undefined) actions.addFiles([{ file, sample: null }]);
     else actions.say(`Drop ${ownName} again: its bytes stayed on your machine.`);
   }
-  await Promise.all(
-    state.shelf.map(async ({ sample, input }) => {
-      if (sample === null) return;
-      actions.addFiles([{ file: await fetchSample(sample), sample, ...(input === null ? {} : { input }) }]);
-    }),
+  const samples = await Promise.all(
+    state.shelf.flatMap(({ sample, input }) =>
+      sample === null ? [] : [fetchInOrder(sample, input ?? undefined)],
+    ),
   );
+  actions.addFiles(samples);
 }
 
 async function openPreset(
@@ -100,9 +100,13 @@ export async function openSample(store: BenchStore, entry: Samples['presets'][nu
     { id: null, name, version: null, study, dials },
   );
   actions.say(`Sample preset ${name} opened.`);
-  await Promise.all(
-    Object.entries(files).map(async ([input, sample]) =>
-      actions.addFiles([{ file: await fetchSample(sample), sample, input }]),
-    ),
+  actions.addFiles(
+    await Promise.all(Object.entries(files).map(([input, sample]) => fetchInOrder(sample, input))),
   );
+}
+
+/** All samples are fetched before the first goes on the shelf, so that they stand there in their order. */
+async function fetchInOrder(sample: string, input: string | undefined): Promise<SampleFile> {
+  const file = await fetchSample(sample);
+  return input === undefined ? { file, sample } : { file, sample, input };
 }
