@@ -206,8 +206,10 @@ function normalEquations(
   const k = free.length;
   const fisher = Matrix.zeros(k, k);
   const score = new Float64Array(k);
+  const weighted = new Float64Array(weight.length);
   for (let a = 0; a < k; a += 1) {
-    const weighted = (columns[a] as Float64Array).map((v, c) => v * (weight[c] as number));
+    const column = columns[a] as Float64Array;
+    for (let c = 0; c < weighted.length; c += 1) weighted[c] = (column[c] as number) * (weight[c] as number);
     score[a] = dot(weighted, residual);
     for (let b = 0; b <= a; b += 1) {
       const value = dot(weighted, columns[b] as Float64Array);

@@ -7,7 +7,13 @@ import {
   weightedVariance,
 } from '../../../shared/physics/conditional';
 import { type PairCovariance, pairVariances } from '../../../shared/physics/double-gaussian';
-import { fitPair, movedCovariance, type PairFit, totalInfluence } from '../../../shared/physics/fit-pair';
+import {
+  fitPair,
+  movedCovariance,
+  type PairFit,
+  sumSlices,
+  totalInfluence,
+} from '../../../shared/physics/fit-pair';
 import { FIT_PARAMETERS } from '../../../shared/physics/fit-shape';
 import { addMomentSums, covarianceOfSums, MOMENT_SUMS } from '../../../shared/physics/moments';
 import { type AxisName, type AxisResult, type AxisVariances, noVariances } from './plane-result';
@@ -24,6 +30,9 @@ export interface TagAxis {
   fit: PairFit | null;
   /** Raw columns with too few counts to have a variance. */
   rawColumns: ConditionalVariance;
+  /** Joint counts over all slices, [x2][x1]; those of all shifted windows together. */
+  prompt: Float64Array;
+  shifted: Float64Array;
   n1: number;
   n2: number;
 }
@@ -62,9 +71,17 @@ export function analyseTagAxis(
     x2: columnRows(prompt, slices, n1, n2, 'x2'),
   };
   const rawColumns = conditionalVariance(columns.x1.total);
+  const counted = {
+    fit,
+    rawColumns,
+    prompt: sumSlices(prompt, slices, n1 * n2),
+    shifted: sumSlices(shifted, slices, n1 * n2),
+    n1,
+    n2,
+  };
   if (weights === null) {
     const result: AxisResult = { net: noVariances, moment: noVariances, raw: noVariances };
-    return { result, fit, rawColumns, n1, n2 };
+    return { ...counted, result };
   }
   const how = `block bootstrap, ${slices} slices of time`;
   const raw = momentVariances(
@@ -88,10 +105,7 @@ export function analyseTagAxis(
         conditionalIdler: rawConditional(columns.x2, scales.idler ** 2, weights, how),
       },
     },
-    fit,
-    rawColumns,
-    n1,
-    n2,
+    ...counted,
   };
 }
 

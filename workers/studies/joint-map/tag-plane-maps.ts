@@ -1,7 +1,5 @@
 import type { Axis, MapData } from '../../../shared/contracts/output';
-import type { PairTally } from '../../../shared/contracts/tally';
 import type { PlaneScale } from '../../../shared/physics/calibration';
-import { sumSlices } from '../../../shared/physics/fit-pair';
 import { pairedImage, type TagCount } from '../tag-count';
 import { histogramMap } from '../tag-maps';
 import type { AxisName } from './plane-result';
@@ -55,12 +53,8 @@ function armAxis(request: TagMapsRequest, arm: 'signal' | 'idler', axis: AxisNam
 
 function jointMap(request: TagMapsRequest, found: TagAxis, axis: AxisName, what: 'net' | 'raw'): MapData {
   const { count, scales } = request;
-  const { fit, n1, n2 } = found;
+  const { fit, n1, n2, prompt, shifted } = found;
   const { tally } = count;
-  const cells = n1 * n2;
-  const pick = (pairs: PairTally): Float64Array => (axis === 'x' ? pairs.jointX : pairs.jointY);
-  const prompt = sumSlices(pick(tally.prompt), tally.slices, cells);
-  const shifted = sumSlices(pick(tally.shifted), tally.slices, cells);
   const net = netOf(prompt, shifted, tally.window.shiftsTick.length);
   const axes = [armAxis(request, 'signal', axis, n1), armAxis(request, 'idler', axis, n2)] as const;
   const map: MapData = {
@@ -106,7 +100,6 @@ function projection(
   const { fit, n1, n2 } = found;
   const { tally } = request.count;
   const cells = n1 * n2;
-  const pick = (pairs: PairTally): Float64Array => (axis === 'x' ? pairs.jointX : pairs.jointY);
   const bins = n1 + n2 - 1;
   const fold = (map: Float64Array): Float64Array => {
     const out = new Float64Array(bins);
@@ -118,11 +111,7 @@ function projection(
     }
     return out;
   };
-  const net = netOf(
-    fold(sumSlices(pick(tally.prompt), tally.slices, cells)),
-    fold(sumSlices(pick(tally.shifted), tally.slices, cells)),
-    tally.window.shiftsTick.length,
-  );
+  const net = netOf(fold(found.prompt), fold(found.shifted), tally.window.shiftsTick.length);
   const symbol = request.scale.symbol === 'x' ? axis : `k_${axis}`;
   const label =
     what === 'minus' ? `${symbol} signal - ${symbol} idler` : `${symbol} signal + ${symbol} idler`;
