@@ -7,6 +7,7 @@ import { fillDials } from '../../workers/studies/dials';
 import { jointMapStudy } from '../../workers/studies/joint-map/study';
 import type { CountedInput } from '../../workers/studies/study';
 import { witnessStudy } from '../../workers/studies/witness/study';
+import { type SeedStatistics, seedStatistics } from '../support/seed-statistics';
 import { runScenarios } from './run-scenarios';
 
 /** Small near- and far-field runs with every number known: about 9000 pairs and 1.4 % accidentals each. */
@@ -212,6 +213,19 @@ function windowOf(input: CountedInput | undefined): number {
   if (input?.tally.kind !== 'tags') throw new Error('a tag tally was expected');
   const { window, tickFs } = input.tally;
   return ((window.hiTick - window.loTick + 1) * tickFs) / 1000;
+}
+
+/**
+ * Bias and coverage of one quantity of `findPairTruths`. Both axes of a run share its accidentals, so the standard error
+ * of the mean is taken over runs, of the mean of x and y; every interval counts for the coverage.
+ */
+export function pairStatistics(found: readonly Found[]): SeedStatistics {
+  const runs: Found[] = [];
+  for (let k = 0; k + 1 < found.length; k += 2) {
+    const [x, y] = [found[k]!, found[k + 1]!];
+    runs.push({ value: (x.value + y.value) / 2, sigma: null, truth: (x.truth + y.truth) / 2 });
+  }
+  return { bias: seedStatistics(runs).bias, coverage: seedStatistics(found).coverage };
 }
 
 /** What every estimate has to fulfil over many seeds. Intervals of one sigma hold the truth in 68 % of runs. */

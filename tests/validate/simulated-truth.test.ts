@@ -1,6 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { criterion, findPairTruths } from '../physics/simulated-pairs';
-import { seedStatistics } from '../support/seed-statistics';
+import { criterion, findPairTruths, pairStatistics } from '../physics/simulated-pairs';
 
 const SEEDS = 200;
 
@@ -9,7 +8,7 @@ describe(`witness and joint maps over ${SEEDS} simulated runs of each plane`, ()
 
   it.each([...found.keys()])('find %s without bias, and the interval covers it', (name) => {
     const list = found.get(name) ?? [];
-    const { bias, coverage } = seedStatistics(list);
+    const { bias, coverage } = pairStatistics(list);
     const mean = list.reduce((sum, { value }) => sum + value, 0) / list.length;
     const truth = list.reduce((sum, one) => sum + one.truth, 0) / list.length;
     console.log(
