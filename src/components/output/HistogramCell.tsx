@@ -1,9 +1,9 @@
 import { useMemo, useRef, useState } from 'react';
 import { LinePlot } from '../../viz/LinePlot';
 import { Button } from '../ui/Button';
+import { type CellProps, HEIGHTS, noteOf } from './cell-context';
 import { cropLine } from './crop-line';
 import { findWindow, type WindowMark } from './dial-marks';
-import { type CellProps, HEIGHTS, noteOf } from './MapCell';
 import { splitVariant } from './quantity-words';
 
 export interface HistogramCellProps extends CellProps {

@@ -2,8 +2,8 @@ import { useState } from 'react';
 import type { DialSpec } from '../../../shared/contracts/dial';
 import type { RegionMark } from '../../viz/types';
 import { Button } from '../ui/Button';
+import { type CellProps, noteOf } from './cell-context';
 import { isRegion, plotToRegion, regionToPlot } from './dial-marks';
-import { type CellProps, noteOf } from './MapCell';
 import { StageMap, usePresentable } from './StageMap';
 
 /** The image itself, not what it was made from: regions are drawn on it. */

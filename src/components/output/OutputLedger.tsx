@@ -1,10 +1,8 @@
 import type { ReactNode } from 'react';
-import type { RunResult } from '../../../shared/contracts/engine';
 import type { StudyOutput } from '../../../shared/contracts/output';
-import type { ResultFile } from '../../../shared/contracts/result';
 import { CheckList } from './CheckList';
 import { LedgerSection } from './LedgerSection';
-import { ProvenanceText } from './ProvenanceText';
+import { type Provenance, ProvenanceText } from './ProvenanceText';
 import { QuantityTable } from './QuantityTable';
 import { StatementText } from './StatementText';
 import { VerdictList } from './VerdictList';
@@ -12,7 +10,7 @@ import { VerdictList } from './VerdictList';
 export interface OutputLedgerProps {
   output: StudyOutput;
   /** Of a finished run or a stored result. */
-  provenance?: RunResult['provenance'] | ResultFile['provenance'] | null;
+  provenance?: Provenance | null;
   /** Said beside the heading, e.g. "41 % read". */
   note?: string | null;
   /** More at the foot of the last column, e.g. the job log. */

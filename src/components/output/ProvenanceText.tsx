@@ -1,9 +1,12 @@
 import type { DialValue } from '../../../shared/contracts/dial';
-import type { InputProvenance } from '../../../shared/contracts/engine';
+import type { InputProvenance, RunResult } from '../../../shared/contracts/engine';
+import type { ResultFile } from '../../../shared/contracts/result';
 import { formatPlain } from '../../lib/format-number';
 import { isRegion } from './dial-marks';
-import type { OutputLedgerProps } from './OutputLedger';
 import { bytesWords, detectorWords, durationWords, layoutWords, planeWords } from './reading-words';
+
+/** Of a finished run or a stored result. */
+export type Provenance = RunResult['provenance'] | ResultFile['provenance'];
 
 function dialWords(value: DialValue): string {
   if (value === null) return 'left to the study';
@@ -12,7 +15,7 @@ function dialWords(value: DialValue): string {
 }
 
 /** Where the numbers came from: files by fingerprint, how they were read, dials, engine, seed. */
-export function ProvenanceText({ provenance }: { provenance: NonNullable<OutputLedgerProps['provenance']> }) {
+export function ProvenanceText({ provenance }: { provenance: Provenance }) {
   const { inputs, dials, engine, seed, startedAt, seconds } = provenance;
   const preset = 'preset' in provenance ? provenance.preset : null;
   return (

@@ -6,8 +6,8 @@ import { formatPosition } from '../../viz/format-tick';
 import { LinePlot } from '../../viz/LinePlot';
 import { Button } from '../ui/Button';
 import { IconButton } from '../ui/IconButton';
+import { HEIGHTS } from './cell-context';
 import { type ConditionalSlice, computeSlice, type Estimate } from './conditional-slice';
-import { HEIGHTS } from './MapCell';
 
 interface SliceOfMapProps {
   map: MapData;

@@ -3,7 +3,8 @@ import { Field, TextInput } from '../../../components/ui/Field';
 import { NumberField } from '../../../components/ui/NumberField';
 import { Select } from '../../../components/ui/Select';
 import { Toggle } from '../../../components/ui/Toggle';
-import { type ArrayDraft, type DraftErrors, emptyArray, type ReadingDraft } from '../model/reading-draft';
+import type { DraftErrors } from '../model/draft-errors';
+import { type ArrayDraft, emptyArray, type ReadingDraft } from '../model/reading-draft';
 import { FormPart } from './FormPart';
 
 export interface DetectorFormProps {

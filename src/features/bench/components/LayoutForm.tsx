@@ -3,7 +3,9 @@ import type { Column } from '../../../../shared/contracts/layout';
 import { Field } from '../../../components/ui/Field';
 import { NumberField } from '../../../components/ui/NumberField';
 import { Select } from '../../../components/ui/Select';
-import { columnOptions, type DraftErrors, frameOptions, type ReadingDraft } from '../model/reading-draft';
+import { columnOptions, frameOptions } from '../model/column-options';
+import type { DraftErrors } from '../model/draft-errors';
+import type { ReadingDraft } from '../model/reading-draft';
 import { BitsField } from './BitsField';
 import { FormPart } from './FormPart';
 

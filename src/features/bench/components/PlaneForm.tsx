@@ -1,7 +1,8 @@
 import { Field } from '../../../components/ui/Field';
 import { NumberField } from '../../../components/ui/NumberField';
 import { Select } from '../../../components/ui/Select';
-import type { DraftErrors, NumberDraft, PlaneDraft, ReadingDraft } from '../model/reading-draft';
+import type { DraftErrors } from '../model/draft-errors';
+import type { NumberDraft, PlaneDraft, ReadingDraft } from '../model/reading-draft';
 import { FormPart } from './FormPart';
 
 export interface PlaneFormProps {

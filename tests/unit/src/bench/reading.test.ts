@@ -1,15 +1,10 @@
 import { describe, expect, it } from 'vitest';
 import type { RecordsLayout } from '../../../../shared/contracts/layout';
+import { columnOptions, frameOptions } from '../../../../src/features/bench/model/column-options';
 import { proposeDetector } from '../../../../src/features/bench/model/propose-detector';
-import {
-  columnOptions,
-  draftReading,
-  frameOptions,
-  readDetector,
-  readLayout,
-  readPixels,
-  readPlane,
-} from '../../../../src/features/bench/model/reading-draft';
+import { readDetector, readPixels, readPlane } from '../../../../src/features/bench/model/read-detector';
+import { readLayout } from '../../../../src/features/bench/model/read-layout';
+import { draftReading } from '../../../../src/features/bench/model/reading-draft';
 import { inspectionOf } from './fake-engine';
 
 const records: RecordsLayout = {
