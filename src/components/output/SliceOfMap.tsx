@@ -22,7 +22,8 @@ function estimateWords(name: string, estimate: Estimate | null, unit: string): s
 }
 
 function sumWords({ total, totalSigma }: ConditionalSlice, unit: string): string {
-  return `sum ${formatWithSigma(total, totalSigma)} ${displayUnit(unit)}`;
+  // An unknown error is no error of zero: two digits and a question mark.
+  return `sum ${formatWithSigma(total, totalSigma ?? Number.POSITIVE_INFINITY)} ${displayUnit(unit)}`;
 }
 
 /** The conditional distribution through a clicked bin: where the partner is, given where this photon is. */
