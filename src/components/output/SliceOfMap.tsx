@@ -31,7 +31,7 @@ export function SliceOfMap({ map, ix, iy, onClose }: SliceOfMapProps) {
   const [given, setGiven] = useState<'x' | 'y'>('x');
   const slice = useMemo(() => computeSlice(map, given, ix, iy), [map, given, ix, iy]);
   const { axis, at } = slice.given;
-  const where = `${axis.label} = ${formatPosition(at, axis.step / 10)} ${displayUnit(axis.unit)}`;
+  const where = `${axis.label} = ${formatPosition(at, Number((axis.step / 10).toPrecision(1)))} ${displayUnit(axis.unit)}`;
   const unit = slice.map.axes[0]!.unit;
   const other = map.axes[given === 'x' ? 1 : 0]!.label;
   return (
@@ -58,7 +58,7 @@ export function SliceOfMap({ map, ix, iy, onClose }: SliceOfMapProps) {
             height={HEIGHTS.line}
             style="points"
             tone={slice.map.axes[0]!.arm ?? 'pair'}
-            note="probability"
+            note={map.unit === 'pairs' ? 'probability' : 'share of the slice'}
           />
           <p className="font-mono text-xs text-dim" data-slice="">
             {slice.mean === null
