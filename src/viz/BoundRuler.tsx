@@ -1,6 +1,12 @@
-import { displayUnit, formatInterval, formatPlain, formatQuantity } from '../lib/format-number';
+import {
+  displayUnit,
+  formatInterval,
+  formatPlain,
+  formatQuantity,
+  formatWithSigma,
+} from '../lib/format-number';
 import { labelRows } from './LineMarks';
-import { fitRulerAxis, type RulerAxis } from './ruler-layout';
+import { fitRulerAxis, placeRulerLabel, type RulerAxis } from './ruler-layout';
 import type { BoundRulerProps, RulerEntry } from './types';
 import { useBox } from './use-box';
 
@@ -27,6 +33,7 @@ export function BoundRuler(props: BoundRulerProps) {
   const base = Math.round(boundsHeight + (above.length * ROW.entry + 0.5) * em);
   const foot = base + Math.max(1, below.length) * ROW.entry * em;
   const height = foot + em * 1.8;
+  const walls = [...sorted.map((bound) => axis.x(bound.value)), width];
   const strictest = (side === 'below' ? sorted[0] : sorted[sorted.length - 1])?.value;
   return (
     <figure className="min-w-0" aria-label={title ?? 'Values against their bounds'}>
@@ -68,6 +75,7 @@ export function BoundRuler(props: BoundRulerProps) {
                 key={entry.label}
                 entry={entry}
                 axis={axis}
+                walls={walls}
                 y={base - (i + 0.65) * ROW.entry * em}
                 em={em}
               />
@@ -77,6 +85,7 @@ export function BoundRuler(props: BoundRulerProps) {
                 key={entry.label}
                 entry={entry}
                 axis={axis}
+                walls={walls}
                 y={base + (i + 0.6) * ROW.entry * em}
                 em={em}
               />
@@ -151,18 +160,30 @@ function RulerLine({ axis, base, foot, em }: { axis: RulerAxis; base: number; fo
   );
 }
 
-function EntryMark({ entry, axis, y, em }: { entry: RulerEntry; axis: RulerAxis; y: number; em: number }) {
+interface EntryMarkProps {
+  entry: RulerEntry;
+  axis: RulerAxis;
+  /** Bounds and the edge of the plot, in pixels: no label may run across one. */
+  walls: readonly number[];
+  y: number;
+  em: number;
+}
+
+/** Short on the ruler, where the caption gives the unit; in full for who points at it. */
+const SHORT = { raw: 'raw', 'accidentals removed': 'removed' } as const;
+
+function EntryMark({ entry, axis, walls, y, em }: EntryMarkProps) {
   const isRaw = entry.label === 'raw';
   const colour = isRaw ? 'var(--color-dim)' : 'var(--color-pair)';
   const at = axis.x(entry.value);
   const [lo, hi] = [axis.x(entry.interval[0]), axis.x(entry.interval[1])];
-  const text = `${entry.label} ${formatQuantity(entry)}`;
+  const text = `${SHORT[entry.label]} ${formatWithSigma(entry.value, entry.sigma)}`;
   const size = em * 0.42;
-  const start = Math.min(lo, at - size);
-  const fitsLeft = start - text.length * em * CHAR > axis.x(axis.domain[0]) - em * MARGIN.left;
+  const mark = { from: Math.min(lo, at - size) - em * 0.7, to: Math.max(hi, at + size) + em * 0.7 };
+  const label = placeRulerLabel(mark, text.length * em * CHAR, walls);
   return (
     <g data-entry={entry.label}>
-      <title>{`${text}, 95 % interval ${formatInterval(entry.interval)}`}</title>
+      <title>{`${entry.label} ${formatQuantity(entry)}, 95 % interval ${formatInterval(entry.interval)}`}</title>
       <path
         d={`M${lo} ${y}H${hi}M${lo} ${y - size}v${2 * size}M${hi} ${y - size}v${2 * size}`}
         stroke={colour}
@@ -185,9 +206,12 @@ function EntryMark({ entry, axis, y, em }: { entry: RulerEntry; axis: RulerAxis;
         />
       )}
       <text
-        x={fitsLeft ? start - em * 0.7 : Math.max(hi, at + size) + em * 0.7}
+        x={label.x}
         y={y + em * 0.34}
-        textAnchor={fitsLeft ? 'end' : 'start'}
+        textAnchor={label.anchor}
+        stroke="var(--color-bg)"
+        strokeWidth={3}
+        paintOrder="stroke"
         fill={isRaw ? 'var(--color-dim)' : 'var(--color-text)'}
       >
         {text}

@@ -77,3 +77,16 @@ export function fitRulerAxis(
   const length = Math.max(whole / 2, Math.min(whole, ...fits));
   return length === whole ? axis : buildRulerAxis(props, left, length);
 }
+
+/** A label beside its mark, where it crosses neither a bound nor the edge: at the right if it fits, else at the left. */
+export function placeRulerLabel(
+  mark: { from: number; to: number },
+  width: number,
+  walls: readonly number[],
+): { x: number; anchor: 'start' | 'end' } {
+  const crosses = (from: number, to: number): boolean => walls.some((wall) => wall > from && wall < to);
+  const right = { x: mark.to, anchor: 'start' } as const;
+  if (!crosses(mark.to, mark.to + width)) return right;
+  const fitsLeft = mark.from - width >= 0 && !crosses(mark.from - width, mark.from);
+  return fitsLeft ? { x: mark.from, anchor: 'end' } : right;
+}

@@ -19,7 +19,13 @@ const sizes = [
 
 async function setTheme(page: Page, theme: 'bench' | 'projector'): Promise<void> {
   const now = await page.evaluate(() => document.documentElement.dataset.theme);
-  if (now !== theme) await page.getByRole('button', { name: /theme/i }).first().click();
+  const toggle = page.getByRole('button', { name: /theme/i }).first();
+  // Behind an open dialog the toggle cannot be reached; its colours follow the attribute alone.
+  if (now !== theme && (await page.getByRole('dialog').isVisible())) {
+    await page.evaluate((wanted) => {
+      document.documentElement.dataset.theme = wanted;
+    }, theme);
+  } else if (now !== theme) await toggle.click();
   await page.waitForFunction((wanted) => document.documentElement.dataset.theme === wanted, theme);
 }
 

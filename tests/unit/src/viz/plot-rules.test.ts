@@ -13,7 +13,7 @@ import { computeExtremes, describeMap, describePoint } from '../../../../src/viz
 import { getPalette } from '../../../../src/viz/palettes';
 import { stripPath } from '../../../../src/viz/RateStrip';
 import { paintPixels } from '../../../../src/viz/raster';
-import { buildRulerAxis, fitRulerAxis } from '../../../../src/viz/ruler-layout';
+import { buildRulerAxis, fitRulerAxis, placeRulerLabel } from '../../../../src/viz/ruler-layout';
 import { smallHistogram, smallMap } from './maps';
 
 describe('axes', () => {
@@ -213,6 +213,14 @@ describe('line plots', () => {
 });
 
 describe('bound ruler', () => {
+  it('keeps a label off the bounds and inside the plot', () => {
+    const mark = { from: 100, to: 120 };
+    expect(placeRulerLabel(mark, 60, [300, 400])).toEqual({ x: 120, anchor: 'start' });
+    expect(placeRulerLabel(mark, 60, [150, 400])).toEqual({ x: 100, anchor: 'end' });
+    // No side is free: the right, over a halo.
+    expect(placeRulerLabel(mark, 110, [150, 400])).toEqual({ x: 120, anchor: 'start' });
+  });
+
   const entry = {
     label: 'raw' as const,
     value: 0.03,
