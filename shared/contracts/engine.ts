@@ -21,8 +21,11 @@ export interface SourceRef {
   size: number;
   file?: SliceableBytes;
   path?: string;
-  /** When the file was last changed, ms since 1970: with name and size it tells whether counts can be used again. */
-  modified?: number;
+  /**
+   * The same key means the same bytes as long as the engine runs: counts and opened readers are then used again. Without
+   * one nothing is.
+   */
+  key?: string;
 }
 
 export interface RunInput {
@@ -70,6 +73,8 @@ export type RunEvent =
       stage: string;
       bytesDone: number;
       bytesTotal: number;
+      /** What `recordsDone` and `recordsPerSecond` count. */
+      counted: 'records' | 'frames';
       recordsDone: number;
       recordsPerSecond: number;
       secondsLeft: number | null;

@@ -1,8 +1,8 @@
 /** Base64 of raw bytes (RFC 4648), without DOM or Node so that every room can use it. */
 
 const alphabet = 'ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789+/';
-const valueOf = new Int16Array(128).fill(-1);
-for (let i = 0; i < 64; i++) valueOf[alphabet.charCodeAt(i)] = i;
+const sextets = new Int16Array(128).fill(-1);
+for (let i = 0; i < 64; i++) sextets[alphabet.charCodeAt(i)] = i;
 
 export function encodeBase64(bytes: Uint8Array): string {
   const parts: string[] = [];
@@ -42,7 +42,7 @@ export function decodeBase64(text: string): Uint8Array<ArrayBuffer> {
     let word = 0;
     for (let k = 0; k < 4; k++) {
       const code = text.charCodeAt(i + k);
-      const value = code === 61 && i + k >= text.length - padding ? 0 : code < 128 ? valueOf[code]! : -1;
+      const value = code === 61 && i + k >= text.length - padding ? 0 : code < 128 ? sextets[code]! : -1;
       if (value < 0) throw new RangeError(`Not base64 at character ${i + k}.`);
       word = (word << 6) | value;
     }

@@ -64,7 +64,7 @@ export function ColourBar({ scale, palette, rect, em, unit }: ColourBarProps) {
       })}
       <Clipped show={scale.clipsHigh} x={x} width={width} y={rect.top - 1} up />
       <Clipped show={scale.clipsLow} x={x} width={width} y={rect.top + rect.height + 1} up={false} />
-      <text x={x} y={rect.top + rect.height + em * 1.6} fill="var(--color-dim)">
+      <text x={right + em * 0.55} y={rect.top + rect.height + em * 1.6} fill="var(--color-dim)">
         {displayUnit(unit)}
         {scale.log ? ' log' : ''}
       </text>

@@ -17,9 +17,10 @@ function group(text: string): string {
   return (fraction === undefined ? grouped : `${grouped}.${fraction}`).replace('-', MINUS);
 }
 
-/** A position to a tenth of its bin at most, so that the read-out does not promise more than the binning. */
+/** A position to the places of its bin's first three digits, so that the read-out promises no more than the binning. */
 export function formatPosition(value: number, step: number): string {
-  const text = value.toFixed(Math.min(12, decimalsFor(Math.abs(step) || 1)));
+  const places = decimalsFor(Number((Math.abs(step) || 1).toPrecision(3)));
+  const text = value.toFixed(Math.min(12, places));
   return group(Number(text) === 0 ? text.replace('-', '') : text);
 }
 

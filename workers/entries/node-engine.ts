@@ -50,7 +50,7 @@ export async function sourceOfPath(path: string): Promise<SourceRef> {
         path,
       );
     }
-    return { name: basename(full), size: facts.size, path: full, modified: facts.mtimeMs };
+    return { name: basename(full), size: facts.size, path: full, key: `${full} ${facts.mtimeMs}` };
   } catch (thrown) {
     if (thrown instanceof Problem) throw thrown;
     const why =

@@ -6,7 +6,7 @@ import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
  * file order: floating sums come out bit by bit the same on one worker, on many, and on another machine.
  */
 const FIRST_RECORDS = 2 ** 20;
-const RECORDS = 2 ** 23;
+const RECORDS = 2 ** 22;
 const PIXELS = 2 ** 23;
 const LEAST_FRAMES = 16;
 

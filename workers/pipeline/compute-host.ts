@@ -21,7 +21,7 @@ const HASH_BYTES = 8 * 2 ** 20;
 const REPORT_EVERY_MS = 100;
 
 interface OpenReader {
-  key: string;
+  key: string | null;
   reader: Reader;
   source: ByteSource;
 }
@@ -40,9 +40,9 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
   }
 
   async function readerFor(ref: SourceRef, layout: Layout): Promise<Reader> {
-    const key = JSON.stringify([ref.path ?? ref.name, ref.size, ref.modified ?? null, layout]);
+    const key = ref.key === undefined ? null : JSON.stringify([ref.key, layout]);
     const at = open.findIndex((kept) => kept.key === key);
-    if (at >= 0 && ref.modified !== undefined) {
+    if (at >= 0 && key !== null) {
       const [kept] = open.splice(at, 1);
       open.push(kept!);
       return kept!.reader;

@@ -73,12 +73,9 @@ export async function countInputs(
   }
   if (countings.length === 0) return done;
   const bytes = countings.reduce((sum, counting) => sum + counting.request.input.source.size, 0);
-  const stage = createStage(
-    job.id,
-    `${countings.map((c) => c.request.name).join(', ')}: reading`,
-    bytes,
-    job.emit,
-  );
+  const names = countings.map((counting) => counting.request.name).join(', ');
+  const isFrames = countings.every((counting) => counting.request.studyInput.facts.kind === 'frames');
+  const stage = createStage(job.id, `${names}: reading`, bytes, job.emit, isFrames ? 'frames' : 'records');
   const tasks = countings.flatMap((counting) =>
     counting.chunks.map((range, index) => ({ counting, range, index, at: index / counting.chunks.length })),
   );

@@ -16,6 +16,7 @@ export function createStage(
   stage: string,
   bytesTotal: number,
   emit: (event: RunEvent) => void,
+  counted: 'records' | 'frames' = 'records',
   now: () => number = () => performance.now(),
 ): StageProgress {
   const startedAt = now();
@@ -32,6 +33,7 @@ export function createStage(
       stage,
       bytesDone,
       bytesTotal,
+      counted,
       recordsDone,
       recordsPerSecond: elapsedMs > 0 ? (recordsDone / elapsedMs) * 1000 : 0,
       secondsLeft: steady ? Math.max(0, ((bytesTotal - bytesDone) / bytesDone) * (elapsedMs / 1000)) : null,

@@ -5,7 +5,7 @@ import type { Tally, TallySpec } from '../../shared/contracts/tally';
 
 /**
  * Counts of the last runs. Turning a dial that leaves the specification as it was then needs no byte again. Only whole
- * counts are kept, of sources whose time of change is known.
+ * counts are kept, of sources that have a key.
  */
 export interface MemoKey {
   source: SourceRef;
@@ -29,7 +29,7 @@ export class TallyMemo {
   }
 
   keep(key: MemoKey, tally: Tally): void {
-    if (key.source.modified === undefined) return;
+    if (key.source.key === undefined) return;
     const bytes = countBytes(tally);
     if (bytes > BYTES) return;
     this.#entries.push({ key, tally, bytes });
@@ -39,13 +39,7 @@ export class TallyMemo {
 }
 
 export function isSameSource(a: SourceRef, b: SourceRef): boolean {
-  return (
-    a.modified !== undefined &&
-    a.name === b.name &&
-    a.size === b.size &&
-    a.path === b.path &&
-    a.modified === b.modified
-  );
+  return a.key !== undefined && a.key === b.key && a.size === b.size;
 }
 
 function isSameKey(a: MemoKey, b: MemoKey): boolean {

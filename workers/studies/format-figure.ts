@@ -2,3 +2,10 @@
 export function formatFigure(value: number): string {
   return Number(value.toPrecision(4)).toString();
 }
+
+/** A value and its 1-sigma error to two digits of the error: "0.0357 ± 0.0011". */
+export function formatMeasured(value: number, sigma: number): string {
+  if (!(sigma > 0)) return formatFigure(value);
+  const places = Math.min(12, Math.max(0, 1 - Math.floor(Math.log10(sigma))));
+  return `${value.toFixed(places)} ± ${sigma.toFixed(places)}`;
+}

@@ -71,7 +71,7 @@ export function checkBaseline(count: TagCount): Check {
   const off = Math.abs(base.value - 1);
   // The error that a g2 of 1 would have: with few counts the measured one is too small when the value is low.
   const z = off / Math.sqrt(base.value / request.pairs + 1 / countsA + 1 / countsB);
-  const value = `Beside the peak g2 is ${base.value.toFixed(4)} +- ${base.sigma.toFixed(4)}`;
+  const value = `Beside the peak g2 is ${base.value.toFixed(4)} ± ${base.sigma.toFixed(4)}`;
   if (z <= 3 || off < 0.01) {
     return { id, status: 'pass', figure: base.value, unit, sentence: `${value}; it should be 1.` };
   }

@@ -31,7 +31,7 @@ export function SliceOfMap({ map, ix, iy, onClose }: SliceOfMapProps) {
   const [given, setGiven] = useState<'x' | 'y'>('x');
   const slice = useMemo(() => computeSlice(map, given, ix, iy), [map, given, ix, iy]);
   const { axis, at } = slice.given;
-  const where = `${axis.label} = ${formatPosition(at, Number((axis.step / 10).toPrecision(1)))} ${displayUnit(axis.unit)}`;
+  const where = `${axis.label} = ${formatPosition(at, axis.step / 10)} ${displayUnit(axis.unit)}`;
   const unit = slice.map.axes[0]!.unit;
   const other = map.axes[given === 'x' ? 1 : 0]!.label;
   return (

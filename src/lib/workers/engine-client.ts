@@ -4,7 +4,7 @@ import type { Outcome } from '../../../shared/contracts/outcome';
 import { toProblemData } from '../../../shared/errors/problem';
 import type { EngineDoor } from './engine-door';
 
-/** One core stays free for the page; beyond four the reading of the file is the limit, not the counting. */
+/** Beyond four the reading of the file is the limit, not the counting. */
 const MOST_WORKERS = 4;
 
 interface Link {
@@ -19,7 +19,7 @@ function startLink(): Link {
     type: 'module',
     name: 'gemel engine',
   });
-  const count = Math.max(1, Math.min(MOST_WORKERS, navigator.hardwareConcurrency - 1));
+  const count = Math.max(1, Math.min(MOST_WORKERS, navigator.hardwareConcurrency));
   const hands = Array.from(
     { length: count },
     (_, i) =>

@@ -41,7 +41,11 @@ export function createProgressLine(): { show(event: RunEvent): void; end(): void
 
 function describe(event: Extract<RunEvent, { kind: 'progress' }>): string {
   const percent = event.bytesTotal > 0 ? Math.floor((100 * event.bytesDone) / event.bytesTotal) : 100;
-  const rate = event.recordsPerSecond > 0 ? `, ${(event.recordsPerSecond / 1e6).toFixed(2)} M records/s` : '';
+  const rate = event.recordsPerSecond > 0 ? `, ${shortRate(event.recordsPerSecond)} ${event.counted}/s` : '';
   const left = event.secondsLeft === null ? '' : `, ${Math.ceil(event.secondsLeft)} s left`;
   return `${event.stage}: ${percent} %${rate}${left}`;
+}
+
+function shortRate(perSecond: number): string {
+  return perSecond >= 1e5 ? `${(perSecond / 1e6).toFixed(2)} M` : perSecond.toFixed(0);
 }

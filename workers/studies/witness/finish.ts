@@ -1,5 +1,6 @@
 import type { MapData, Quantity, StudyOutput, Verdict } from '../../../shared/contracts/output';
 import { LOOK_RESAMPLES, numberDial } from '../dials';
+import { formatMeasured } from '../format-figure';
 import { analysePlane } from '../joint-map/inputs';
 import { axisNames, type PlaneRequest, type PlaneResult } from '../joint-map/plane-result';
 import { addQuantities, type Resampled, widthOf } from '../joint-map/resampled';
@@ -175,12 +176,16 @@ function stateWitness(
   verdicts: Record<string, Verdict>,
   quantities: Record<string, Quantity>,
 ): string {
-  const sentences = ['reid.x.raw', 'reid.x.net', 'mancini.x.net'].flatMap((id) => {
+  const stated = [
+    ['reid.x.raw', 'Reid product in x, raw'],
+    ['reid.x.net', 'Reid product in x, accidentals subtracted'],
+    ['mancini.x.net', 'Mancini product in x, accidentals subtracted'],
+  ] as const;
+  const sentences = stated.flatMap(([id, words]) => {
     const verdict = verdicts[id];
     const quantity = quantities[id];
-    if (verdict === undefined || quantity === undefined) return [];
-    const value = `${quantity.value.toPrecision(3)} +- ${(quantity.sigma ?? 0).toPrecision(1)} hbar^2`;
-    return [`${id} = ${value}. ${verdict.sentence}`];
+    if (verdict === undefined || quantity === undefined || quantity.sigma === null) return [];
+    return [`${words}: ${formatMeasured(quantity.value, quantity.sigma)} ħ². ${verdict.sentence}`];
   });
   const systematic = (100 * productSystematic(near, far)).toFixed(1);
   return [

@@ -136,14 +136,20 @@ function rememberHashes(
 }
 
 /** Short, for the line beside the studies: how far, how fast, how long. */
-export function progressWords({ bytesDone, bytesTotal, recordsPerSecond, secondsLeft }: Progress): string {
+export function progressWords({
+  bytesDone,
+  bytesTotal,
+  counted,
+  recordsPerSecond,
+  secondsLeft,
+}: Progress): string {
   const share = bytesTotal > 0 ? `${Math.floor((100 * bytesDone) / bytesTotal)} %` : '';
-  const rate = recordsPerSecond > 0 ? `${shortCount(recordsPerSecond)} records/s` : '';
+  const rate = recordsPerSecond > 0 ? `${shortCount(recordsPerSecond)} ${counted}/s` : '';
   const left = secondsLeft === null ? '' : `${durationWords(secondsLeft)} left`;
   return [share, rate, left].filter((part) => part !== '').join(' · ');
 }
 
 /** Long, for the ledger: what is going on and how much was read. */
-export function stageWords({ stage, recordsDone, bytesDone, bytesTotal }: Progress): string {
-  return `${stage} · ${shortCount(recordsDone)} records · ${bytesWords(bytesDone)} of ${bytesWords(bytesTotal)}`;
+export function stageWords({ stage, counted, recordsDone, bytesDone, bytesTotal }: Progress): string {
+  return `${stage} · ${shortCount(recordsDone)} ${counted} · ${bytesWords(bytesDone)} of ${bytesWords(bytesTotal)}`;
 }

@@ -15,7 +15,9 @@ export interface Need {
 
 function hasArms(detector: Detector | null, spec: InputSpec): boolean {
   if (detector === null || detector.kind === 'frames') return true;
-  return spec.arms.every((arm) => detector[arm] !== undefined);
+  return [spec.arms, ...(spec.otherArms ?? [])].some((arms) =>
+    arms.every((arm) => detector[arm] !== undefined),
+  );
 }
 
 /** Could this acquisition serve this input, as far as is known now? */
@@ -71,6 +73,10 @@ export function assignInputs(
 
 const KIND_WORDS = { tags: 'time tags', frames: 'frames' };
 
+function armsWords({ arms, otherArms = [] }: InputSpec): string {
+  return [arms, ...otherArms].map((set) => set.join(' and ')).join(', or ');
+}
+
 /** What is missing before this input can be read; null when it is complete. */
 export function needOf(spec: InputSpec, acquisition: Acquisition | undefined): Need | null {
   const kinds = spec.accepts.map((kind) => KIND_WORDS[kind]).join(' or ');
@@ -89,7 +95,7 @@ export function needOf(spec: InputSpec, acquisition: Acquisition | undefined): N
   if (detector === null || detector.kind !== acquisition.layout.kind)
     return { sentence: `${name} has no detector map yet.`, ...at };
   if (!hasArms(detector, spec))
-    return { sentence: `The detector map of ${name} must name ${spec.arms.join(' and ')}.`, ...at };
+    return { sentence: `The detector map of ${name} must name ${armsWords(spec)}.`, ...at };
   if (spec.plane === 'none') return null;
   if (plane === null)
     return {
@@ -127,7 +133,12 @@ export function readyInputs(
       continue;
     }
     inputs[spec.name] = {
-      source: { name: acquisition.name, size: acquisition.bytes, file: acquisition.file },
+      source: {
+        name: acquisition.name,
+        size: acquisition.bytes,
+        file: acquisition.file,
+        key: `${acquisition.id} ${acquisition.file.lastModified}`,
+      },
       layout: acquisition.layout,
       detector: acquisition.detector,
       plane: spec.plane === 'none' ? null : acquisition.plane,

@@ -35,7 +35,7 @@ afterEach(() => {
 const source = { name: 'run.h5', size: 80, file: fileOf('run.h5') };
 
 describe('the engine of the page', () => {
-  it('starts at the first call: one coordinator and a compute worker a spare core, joined by ports', async () => {
+  it('starts at the first call: one coordinator and a compute worker a core, joined by ports', async () => {
     const door = createEngineDoor();
     expect(SilentWorker.all).toHaveLength(0);
     void door.inspect(source, null);
@@ -44,11 +44,12 @@ describe('the engine of the page', () => {
       'gemel engine',
       'gemel compute 1',
       'gemel compute 2',
+      'gemel compute 3',
     ]);
     expect(SilentWorker.all[1]!.posted[0]).toMatchObject({ kind: 'port' });
     void door.studies();
     await settle();
-    expect(SilentWorker.all).toHaveLength(3);
+    expect(SilentWorker.all).toHaveLength(4);
     door.restart();
   });
 
@@ -69,7 +70,7 @@ describe('the engine of the page', () => {
     door.restart();
     void door.studies();
     await settle();
-    expect(SilentWorker.all).toHaveLength(6);
+    expect(SilentWorker.all).toHaveLength(8);
     door.restart();
   });
 });

@@ -145,6 +145,7 @@ describe('progress', () => {
       'reading',
       1000,
       (event) => events.push(event),
+      'records',
       () => now,
     );
     now = 50;
@@ -168,7 +169,7 @@ describe('memo of counts', () => {
     blocks: 20,
     masked: new Uint8Array(4),
   };
-  const source: SourceRef = { name: 'a.h5', size: 10, modified: 5 };
+  const source: SourceRef = { name: 'a.h5', size: 10, key: 'a 5' };
   const layout = { version: 1, format: 'hdf5', kind: 'frames', dataset: '/f' } as const;
   const range = { start: 0, end: 3 };
   const tally = createAccumulator(spec).tally() as FrameTally;
@@ -182,11 +183,11 @@ describe('memo of counts', () => {
       tally,
     );
     expect(memo.find({ ...key, spec: { ...spec, masked: Uint8Array.of(0, 0, 0, 1) } })).toBeNull();
-    expect(memo.find({ ...key, source: { ...source, modified: 6 } })).toBeNull();
+    expect(memo.find({ ...key, source: { ...source, key: 'a 6' } })).toBeNull();
     expect(memo.find({ ...key, range: { start: 0, end: 2 } })).toBeNull();
   });
 
-  it('keeps nothing of a source whose time of change is unknown', () => {
+  it('keeps nothing of a source without a key', () => {
     const memo = new TallyMemo();
     const key = { source: { name: 'a.h5', size: 10 }, layout, spec, range };
     memo.keep(key, tally);
