@@ -45,7 +45,17 @@ const base64 = z.string().regex(/^[A-Za-z0-9+/]*={0,2}$/);
 
 export const mapFileSchema = z.strictObject({
   label: z.string().max(200),
-  shape: z.array(z.int().min(1).max(4096)).min(1).max(2),
+  /** At most 2^22 numbers: a delay histogram may have many bins, a map many pixels. */
+  shape: z
+    .array(
+      z
+        .int()
+        .min(1)
+        .max(2 ** 22),
+    )
+    .min(1)
+    .max(2)
+    .refine((shape) => shape.reduce((product, length) => product * length, 1) <= 2 ** 22, 'too many numbers'),
   axes: z.array(axisSchema).min(1).max(2),
   unit: z.string().max(40),
   scale: z.enum(['counts', 'signed']),

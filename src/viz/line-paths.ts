@@ -18,14 +18,15 @@ export function visibleBins(map: MapData, view: Span): { from: number; to: numbe
 /** Range of values in view, error bars and model included; from zero for what is nowhere below zero. */
 export function valueSpan(map: MapData, bins: { from: number; to: number }, log: boolean): Span {
   let [lo, hi, least] = [Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY, Number.POSITIVE_INFINITY];
-  const take = (value: number): void => {
+  const take = (value: number, isData = true): void => {
     if (!Number.isFinite(value)) return;
     if (value < lo) lo = value;
     if (value > hi) hi = value;
-    if (value > 0 && value < least) least = value;
+    // A model falls to 1e-300 in its wings; the foot of a logarithmic axis is where the data end.
+    if (isData && value > 0 && value < least) least = value;
   };
   for (let i = bins.from; i < bins.to; i++) {
-    if (map.model) take(map.model[i]!);
+    if (map.model) take(map.model[i]!, false);
     if (isBlank(map, i)) continue;
     const [value, sigma] = [map.data[i]!, map.sigma?.[i] ?? 0];
     take(value);

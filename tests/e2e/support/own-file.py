@@ -28,7 +28,7 @@ jitter = np.rint(rng.normal(0, 6, PAIRS)).astype(np.int64)
 time = np.concatenate([start, start + DELAY_TICKS + jitter])
 line = np.concatenate([100 + ys * SIDE + xs, 300 + yi * SIDE + xi])
 order = np.argsort(time, kind="stable")
-clicks = np.zeros(2 * PAIRS, dtype=[("stamp", ">u8"), ("line", "<u2")])
+clicks = np.zeros(2 * PAIRS, dtype=[("stamp", "<u8"), ("line", "<u2")])
 clicks["stamp"] = time[order]
 clicks["line"] = line[order]
 

@@ -73,7 +73,12 @@ function checkFit(request: TagChecksRequest): Check {
 }
 
 function checkTruncation(request: TagChecksRequest): Check {
-  const percent = Math.max(...axesOf(request).map(({ axis }) => 100 * (axis.fit?.outside ?? 0)));
+  const outside = axesOf(request).flatMap(({ axis }) => (axis.fit === null ? [] : [100 * axis.fit.outside]));
+  if (outside.length === 0) {
+    const sentence = 'Without a fitted Gaussian it is not known how many pairs lie outside the arrays.';
+    return { id: 'map-truncated', status: 'caution', figure: null, unit: '%', sentence };
+  }
+  const percent = Math.max(...outside);
   const base = { id: 'map-truncated', figure: percent, unit: '%' };
   const part = `${percent.toFixed(1)} % of the fitted pairs lie outside the arrays`;
   if (percent <= 5) return { ...base, status: 'pass', sentence: `${part}.` };

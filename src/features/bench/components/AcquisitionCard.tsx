@@ -37,7 +37,7 @@ export function AcquisitionCard(props: AcquisitionCardProps) {
           {name}
         </span>
         <span className="-mr-1.5 flex shrink-0">
-          {reading.status === 'awaited' || readOnly ? null : (
+          {reading.status === 'awaited' || reading.status === 'looking' || readOnly ? null : (
             <IconButton label={`Edit the reading of ${name}`} onClick={onEdit}>
               <SlidersHorizontal size={14} aria-hidden="true" />
             </IconButton>
