@@ -2,7 +2,13 @@ import { Redo2, Undo2 } from 'lucide-react';
 import type { DialSpec } from '../../../../shared/contracts/dial';
 import { Button } from '../../../components/ui/Button';
 import { IconButton } from '../../../components/ui/IconButton';
-import { baseDials, currentDials, currentHistory, currentStudy } from '../model/bench-selectors';
+import {
+  baseDials,
+  currentDials,
+  currentHistory,
+  currentStudy,
+  isReadingChanged,
+} from '../model/bench-selectors';
 import { changedDials } from '../model/dial-history';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
 import { type ChosenValue, DialControl } from './DialControl';
@@ -25,6 +31,7 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
   const values = useBenchPlan(currentDials);
   const history = useBenchPlan(currentHistory);
   const base = useBenchPlan(baseDials);
+  const isReadOtherwise = useBenchPlan(isReadingChanged);
   const preset = useBenchState((state) => (state.preset?.study === state.study ? state.preset : null));
   const chosen = useBenchState((state) => state.found[state.study]?.output.chosen);
   if (study === null) return <Region title="dials">{null}</Region>;
@@ -32,7 +39,13 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
   const { turn, undo, redo, resetDials } = store.getState();
   const presetWords =
     preset === null ? '' : `${preset.name}${preset.version === null ? '' : ` v${preset.version}`}`;
-  const note = [presetWords, changed.size > 0 ? `${changed.size} changed` : ''].filter(Boolean).join(' · ');
+  const note = [
+    presetWords,
+    changed.size > 0 ? `${changed.size} changed` : '',
+    isReadOtherwise ? 'reading changed' : '',
+  ]
+    .filter(Boolean)
+    .join(' · ');
   return (
     <Region
       title="dials"

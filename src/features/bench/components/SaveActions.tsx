@@ -55,8 +55,8 @@ export function SaveActions({ group }: SaveActionsProps) {
     } else if (kind === 'preset' || kind === 'version') {
       const versionOf = kind === 'version' ? (preset?.id ?? null) : null;
       const row = await savePreset(group.id, presetOfBench(state, name, { fixProposals: true }), versionOf);
-      const { study: id, dials } = row.preset;
-      store.setState({ preset: { id: row.id, name, version: row.version, study: id, dials } });
+      const { study: id, dials, inputs } = row.preset;
+      store.setState({ preset: { id: row.id, name, version: row.version, study: id, dials, inputs } });
       setSaid(<SavedLink what={`Preset v${row.version}`} name={name} to={`/presets/${row.id}`} />);
     } else if (kind === 'session') {
       const row = await saveSession(group.id, name, sessionOfBench(state, name, resultId));

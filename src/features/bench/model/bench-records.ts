@@ -4,6 +4,7 @@ import type { InputSetting, Preset } from '../../../../shared/contracts/preset';
 import { currentAssignment, currentDials, currentStudy } from './bench-selectors';
 import type { BenchState } from './bench-types';
 import { changedDials } from './dial-history';
+import { isReadAs } from './same-reading';
 
 /** What is stored of the bench: presets and sessions. The bytes of acquisitions never leave the machine. */
 
@@ -55,7 +56,7 @@ export function sessionOfBench(state: BenchState, name: string, resultId: string
   };
 }
 
-/** The preset a result names: only when it was run with exactly the dials of that preset. */
+/** The preset a result names: only when it was run with exactly the dials and the readings of that preset. */
 export function presetOfResult(
   state: BenchState,
   run: RunResult,
@@ -64,5 +65,11 @@ export function presetOfResult(
   const study = state.studies.find(({ id }) => id === run.output.study);
   if (preset === null || study === undefined || preset.study !== study.id) return null;
   if (changedDials(study.dials, run.provenance.dials, preset.dials).size > 0) return null;
+  const isRead = study.inputs.every((spec) => {
+    const given = preset.inputs[spec.name];
+    const read = run.provenance.inputs.find(({ name }) => name === spec.name);
+    return given === undefined || (read !== undefined && isReadAs(spec, given, read));
+  });
+  if (!isRead) return null;
   return { name: preset.name, version: preset.version };
 }

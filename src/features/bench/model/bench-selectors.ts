@@ -1,8 +1,9 @@
 import type { DialValues } from '../../../../shared/contracts/dial';
 import type { RunRequest } from '../../../../shared/contracts/engine';
 import type { StudyInfo } from '../../../../shared/contracts/study';
-import type { BenchState, Found } from './bench-types';
+import type { BenchState } from './bench-types';
 import { completeDials, type DialHistory, startHistory } from './dial-history';
+import { isReadAs } from './same-reading';
 import { assignInputs, type Need, readyInputs } from './study-inputs';
 
 /** What decides what is run; the rest of the bench is what came of it. */
@@ -30,13 +31,22 @@ export function currentDials(state: BenchPlan): DialValues {
   return study === null ? {} : completeDials(study.dials, currentHistory(state).present);
 }
 
-export function currentFound({ found, study }: BenchState): Found | null {
-  return found[study] ?? null;
-}
-
 /** What "changed" is measured from: the preset's dials for its own study, the defaults for the others. */
 export function baseDials({ preset, study }: BenchPlan): DialValues {
   return preset?.study === study ? preset.dials : {};
+}
+
+/** Is an acquisition read otherwise than the preset says? */
+export function isReadingChanged(plan: BenchPlan): boolean {
+  const study = currentStudy(plan);
+  const { preset, shelf } = plan;
+  if (study === null || preset?.study !== study.id) return false;
+  const assignment = currentAssignment(plan);
+  return study.inputs.some((spec) => {
+    const given = preset.inputs[spec.name];
+    const read = shelf.find(({ id }) => id === assignment[spec.name]);
+    return given !== undefined && read !== undefined && !isReadAs(spec, given, read);
+  });
 }
 
 export interface Plan {

@@ -42,6 +42,7 @@ export interface PresetRef {
   version: number | null;
   study: StudyId;
   dials: DialValues;
+  inputs: Record<string, InputSetting>;
 }
 
 export interface BenchState {

@@ -72,7 +72,7 @@ async function openPreset(
   const actions = store.getState();
   actions.openSettings(
     { study, dials, inputs, seed: DEFAULT_SEED },
-    { id: row.id, name, version: row.version, study, dials },
+    { id: row.id, name, version: row.version, study, dials, inputs },
   );
   actions.say(`Preset ${name} v${row.version} opened.`);
 }
@@ -97,7 +97,7 @@ export async function openSample(store: BenchStore, entry: Samples['presets'][nu
   actions.clear();
   actions.openSettings(
     { study, dials, inputs, seed: DEFAULT_SEED },
-    { id: null, name, version: null, study, dials },
+    { id: null, name, version: null, study, dials, inputs },
   );
   actions.say(`Sample preset ${name} opened.`);
   actions.addFiles(

@@ -2,14 +2,19 @@ import { describe, expect, it } from 'vitest';
 import { benchStateSchema } from '../../../../shared/contracts/http';
 import type { Plane } from '../../../../shared/contracts/plane';
 import { presetSchema } from '../../../../shared/contracts/preset';
-import { presetOfBench, sessionOfBench } from '../../../../src/features/bench/model/bench-records';
+import {
+  presetOfBench,
+  presetOfResult,
+  sessionOfBench,
+} from '../../../../src/features/bench/model/bench-records';
 import {
   currentAssignment,
   currentDials,
+  isReadingChanged,
   planRun,
 } from '../../../../src/features/bench/model/bench-selectors';
 import { createBenchStore } from '../../../../src/features/bench/model/bench-store';
-import { fakeEngine, fileOf, inspectionOf, settle, tagsLayout } from './fake-engine';
+import { fakeEngine, fileOf, inspectionOf, outputOf, resultOf, settle, tagsLayout } from './fake-engine';
 
 const near: Plane = { version: 1, kind: 'near', magnification: { value: 4, sigma: 0.04 } };
 
@@ -138,6 +143,42 @@ describe('presets and sessions', () => {
     expect(session.shelf).toEqual([
       { name: 'run.h5', bytes: 80, sha256: null, input: 'tags', sample: 'run.h5' },
     ]);
+  });
+
+  it('are named by a result only when dials and reading are theirs', async () => {
+    const { store } = await freshBench();
+    store.getState().addFiles([{ file: fileOf('run.h5'), sample: null }]);
+    await settle();
+    const run = () => resultOf(outputOf(), { ...planRun(store.getState()).request!, jobId: 'job' });
+    const { id, detector, reading } = store.getState().shelf[0]!;
+    if (reading.status !== 'read' || detector?.kind !== 'tags') throw new Error('not read');
+    const claim = () => presetOfResult(store.getState(), run());
+    const inputs = { tags: { layout: { ...tagsLayout }, detector, plane: near } };
+    const ref = { id: 'p', name: 'Monday', version: 1, study: 'delay' as const, dials: {}, inputs };
+    store.setState({ preset: ref });
+    // The delay study is handed no plane: the preset's says nothing about its result.
+    store.setState(({ shelf }) => ({ shelf: shelf.map((a) => ({ ...a, plane: near })) }));
+    expect(claim()).toEqual({ name: 'Monday', version: 1 });
+    expect(isReadingChanged(store.getState())).toBe(false);
+    const change = { layout: tagsLayout, detector, plane: near, inspection: reading.inspection };
+    const { signal } = detector;
+    store.getState().changeReading(id, {
+      ...change,
+      detector: { ...detector, signal: { ...signal!, delayPs: 5 } },
+      detectorGiven: true,
+    });
+    expect(claim()).toBeNull();
+    expect(isReadingChanged(store.getState())).toBe(true);
+    // The same settings in another order of keys are the same.
+    const turned = Object.fromEntries(Object.entries(signal!).reverse()) as typeof signal;
+    store.getState().changeReading(id, {
+      ...change,
+      detector: { ...detector, signal: turned },
+      detectorGiven: true,
+    });
+    expect(claim()).toEqual({ name: 'Monday', version: 1 });
+    store.getState().turn({ window: 300 });
+    expect(claim()).toBeNull();
   });
 
   it('keep each study’s dials, with one undo a turn', async () => {
