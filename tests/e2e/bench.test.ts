@@ -7,6 +7,7 @@ import { openBrowser, openPage, type Visit } from './support/browser';
 import {
   chooseStudy,
   openFiles,
+  openSample,
   openSamples,
   quantityRow,
   signIn,
@@ -123,23 +124,13 @@ describe('the plots are instruments', () => {
   });
 
   it('shows the stencil in the ghost image of its sample', async () => {
-    await page.goto('/');
-    await page
-      .getByRole('link', { name: /ghost image/ })
-      .first()
-      .click();
-    await waitUntilDone(page);
+    await openSample(page, /ghost image/);
     await page.locator('[data-map^="image"]').first().waitFor();
     expect(await quantityRow(page, 'visibility')).toMatch(/0\.\d+\(\d+\)/);
   });
 
   it('reads camera frames as well', async () => {
-    await page.goto('/');
-    await page
-      .getByRole('link', { name: /witness from frames/ })
-      .first()
-      .click();
-    await waitUntilDone(page);
+    await openSample(page, /witness from frames/);
     expect(await quantityRow(page, 'reid.x')).toMatch(/0\.0\d+\(\d+\)/);
   });
 });

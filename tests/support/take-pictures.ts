@@ -2,7 +2,7 @@ import { mkdirSync } from 'node:fs';
 import { join } from 'node:path';
 import type { Page } from 'playwright-core';
 import { openBrowser, openPage } from '../e2e/support/browser';
-import { chooseStudy, openSamples, saveAs, signIn, waitUntilDone } from '../e2e/support/person';
+import { chooseStudy, openSample, openSamples, saveAs, signIn, waitUntilDone } from '../e2e/support/person';
 import { root, startBuiltServer } from '../e2e/support/server';
 
 /**
@@ -51,12 +51,6 @@ async function keep(page: Page, name: string): Promise<void> {
   await page.waitForTimeout(500);
   await page.screenshot({ path: join(folder, `${name}.png`) });
   console.log(`samples/pictures/${name}.png`);
-}
-
-async function openSample(page: Page, name: RegExp): Promise<void> {
-  await page.goto('/');
-  await page.getByRole('link', { name }).first().click();
-  await waitUntilDone(page);
 }
 
 async function tour(page: Page): Promise<void> {

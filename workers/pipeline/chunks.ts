@@ -1,23 +1,20 @@
-import type { Layout } from '../../shared/contracts/layout';
 import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
 
 /**
  * The tasks a file is cut into. They depend on the file alone, never on the number of workers, and parts are merged in
- * file order: floating sums come out bit by bit the same on one worker, on many, and on another machine.
+ * file order: floating sums come out bit by bit the same on one worker, on many, and on another machine. Where a counter
+ * rolls over, each worker's reader goes on from the rollovers it knows and scans only what another worker read.
  */
 const FIRST_RECORDS = 2 ** 20;
 const RECORDS = 2 ** 22;
 const PIXELS = 2 ** 23;
 const LEAST_FRAMES = 16;
 
-export function planChunks(facts: ReaderFacts, layout: Layout): ReadRange[] {
+export function planChunks(facts: ReaderFacts): ReadRange[] {
   if (facts.kind === 'frames') {
     const frames = Math.max(LEAST_FRAMES, Math.floor(PIXELS / (facts.width * facts.height)));
     return cut(facts.frames, frames, frames);
   }
-  // Counting rollovers means reading all that comes before; one task in file order does it once.
-  if (layout.format === 'records' && layout.rollover.in !== 'none')
-    return cut(facts.records, facts.records, 1);
   return cut(facts.records, FIRST_RECORDS, RECORDS);
 }
 

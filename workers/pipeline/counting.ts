@@ -30,7 +30,7 @@ class Counting {
 
   constructor(request: CountRequest) {
     this.request = request;
-    this.chunks = planChunks(request.studyInput.facts, request.input.layout);
+    this.chunks = planChunks(request.studyInput.facts);
     this.#accumulator = createAccumulator(request.spec);
   }
 

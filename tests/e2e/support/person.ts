@@ -13,6 +13,13 @@ export async function openSamples(page: Page): Promise<void> {
   await page.getByText('Open the samples').click();
 }
 
+/** One of the samples below the first; presets of the same name stand beside them and open without files. */
+export async function openSample(page: Page, name: RegExp): Promise<void> {
+  await page.goto('/');
+  await page.getByRole('list', { name: 'Other samples' }).getByRole('link', { name }).click();
+  await waitUntilDone(page);
+}
+
 /** Opens files of one's own through the button on the shelf. */
 export async function openFiles(page: Page, paths: readonly string[]): Promise<void> {
   const chooser = page.waitForEvent('filechooser');

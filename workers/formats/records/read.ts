@@ -36,7 +36,7 @@ export async function readRecordBytes(
 }
 
 /**
- * Blocks of the range, in file order. `tickOffset` is `scanOffset` of its start. Memory is bounded by one block,
+ * Blocks of the range, in file order. `tickOffset` is `scanOffset` of its start; `onEnd` hears that of its end. Memory is bounded by one block,
  * whatever the range.
  */
 export async function* readRecords(
@@ -45,6 +45,7 @@ export async function* readRecords(
   range: ReadRange,
   tickOffset: bigint,
   token: CancelToken,
+  onEnd?: (offsetTick: bigint) => void,
 ): AsyncGenerator<TagBlock> {
   const decode = compileDecode(plan);
   const state = await stateBefore(source, plan, range.start, tickOffset);
@@ -54,6 +55,7 @@ export async function* readRecords(
     const bytes = await readRecordBytes(source, plan, first, end);
     yield* decodeChunk(bytes, first, plan, decode, state, source.name);
   }
+  onEnd?.(state.offsetTick + BigInt(state.epochTick));
 }
 
 /**

@@ -12,18 +12,27 @@ export function openRecords(source: ByteSource, layout: RecordsLayout): Reader {
 
 /** Reader over the first `records` records, whatever follows them. */
 export function recordsReader(source: ByteSource, plan: RecordPlan, records: number, tickFs: number): Reader {
-  // Ranges are mostly asked for in rising order: each scan goes on from the last one.
+  // Ranges are mostly asked for in rising order: each scan goes on from where the last scan or range ended.
   let known = { start: 0, offsetTick: 0n };
   return {
     facts: { kind: 'tags', records, tickFs, reader: 'records' },
     tickOffsetAt: async (start, token, onBytes) => {
       assertRange({ start, end: records }, records, 'records', source.name);
       const offsetTick = await scanOffset(source, plan, start, token, known, onBytes);
-      if (start >= known.start) known = { start, offsetTick };
+      known = { start, offsetTick };
       return offsetTick;
     },
     read: (range, tickOffset, token) =>
-      readRecords(source, plan, assertRange(range, records, 'records', source.name), tickOffset, token),
+      readRecords(
+        source,
+        plan,
+        assertRange(range, records, 'records', source.name),
+        tickOffset,
+        token,
+        (offsetTick) => {
+          known = { start: range.end, offsetTick };
+        },
+      ),
     close: () => source.close(),
   };
 }

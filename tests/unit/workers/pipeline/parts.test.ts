@@ -1,7 +1,6 @@
 import { readFileSync } from 'node:fs';
 import { describe, expect, it } from 'vitest';
 import type { RunEvent, SourceRef } from '../../../../shared/contracts/engine';
-import type { RecordsLayout } from '../../../../shared/contracts/layout';
 import type { ReaderFacts } from '../../../../shared/contracts/reader';
 import type { FrameSpec, FrameTally } from '../../../../shared/contracts/tally';
 import { Cancelled, Problem } from '../../../../shared/errors/problem';
@@ -15,20 +14,6 @@ import { createPool } from '../../../../workers/pipeline/pool';
 import { createStage } from '../../../../workers/pipeline/progress';
 import { TallyMemo } from '../../../../workers/pipeline/tally-memo';
 import { ENGINE_VERSION } from '../../../../workers/pipeline/version';
-
-const records: RecordsLayout = {
-  version: 1,
-  format: 'records',
-  kind: 'tags',
-  recordBytes: 8,
-  byteOrder: 'little',
-  headerBytes: 0,
-  time: { firstBit: 0, bits: 48 },
-  channel: { firstBit: 48, bits: 16 },
-  rollover: { in: 'none' },
-  skip: [],
-  tickFs: 1000,
-};
 
 function idleHost(): ComputeHost {
   const nothing = async (): Promise<never> => {
@@ -46,18 +31,14 @@ function idleHost(): ComputeHost {
 describe('chunks', () => {
   it('cover every record once, the first one short', () => {
     const facts: ReaderFacts = { kind: 'tags', records: 20_000_001, tickFs: 1000, reader: 'records' };
-    const chunks = planChunks(facts, records);
+    const chunks = planChunks(facts);
     expect(chunks[0]).toEqual({ start: 0, end: 2 ** 20 });
     expect(chunks.at(-1)?.end).toBe(20_000_001);
     for (let i = 1; i < chunks.length; i++) expect(chunks[i]!.start).toBe(chunks[i - 1]!.end);
   });
 
-  it('are one where rollovers must be counted in file order, none where there is nothing', () => {
-    const facts: ReaderFacts = { kind: 'tags', records: 20_000_001, tickFs: 1000, reader: 'records' };
-    expect(planChunks(facts, { ...records, rollover: { in: 'wrap' } })).toEqual([
-      { start: 0, end: 20_000_001 },
-    ]);
-    expect(planChunks({ ...facts, records: 0 }, records)).toEqual([]);
+  it('are none where there is nothing', () => {
+    expect(planChunks({ kind: 'tags', records: 0, tickFs: 1000, reader: 'records' })).toEqual([]);
   });
 
   it('hold at least sixteen frames', () => {
@@ -69,7 +50,7 @@ describe('chunks', () => {
       type: 'uint16',
       reader: 'h5wasm',
     };
-    expect(planChunks(facts, records)).toEqual([
+    expect(planChunks(facts)).toEqual([
       { start: 0, end: 16 },
       { start: 16, end: 32 },
       { start: 32, end: 40 },
