@@ -3,8 +3,6 @@ import type { DialValues } from '../../shared/contracts/dial';
 import type {
   Engine,
   InputProvenance,
-  OnRunEvent,
-  RunEvent,
   RunInput,
   RunRequest,
   RunResult,
@@ -19,6 +17,7 @@ import { answer } from './answer';
 import type { ComputeHost } from './compute';
 import { type CountRequest, countInputs, countRange } from './counting';
 import { Job } from './job';
+import { assertFitsMemory } from './memory';
 import { createPool } from './pool';
 import { createStage } from './progress';
 import { isSameSource, TallyMemo } from './tally-memo';
@@ -40,7 +39,10 @@ export function createEngine(hosts: readonly ComputeHost[]): Engine {
   return {
     inspect: (source, layout) => pool.run((host) => host.inspect(source, layout), { cancelled: false }),
     async run(request, onEvent) {
-      const job = new Job(request.jobId, pool, forward(onEvent));
+      const job: Job = new Job(request.jobId, pool, (event) => {
+        // Told, not awaited. One that cannot be delivered means that nobody listens any more.
+        Promise.resolve(onEvent(event)).catch(() => job.cancel());
+      });
       jobs.set(request.jobId, job);
       try {
         const outcome = await answer(() => runStudy(job, request, memo, fingerprints));
@@ -54,11 +56,6 @@ export function createEngine(hosts: readonly ComputeHost[]): Engine {
       jobs.get(jobId)?.cancel();
     },
   };
-}
-
-/** Events are told, not awaited; one that cannot be delivered means that nobody listens any more. */
-function forward(onEvent: OnRunEvent): (event: RunEvent) => void {
-  return (event) => void onEvent(event);
 }
 
 async function runStudy(
@@ -78,7 +75,9 @@ async function runStudy(
   for (const input of inputs) {
     const found = await findChosen(job, study, input, dials, memo);
     chosen.set(input.name, found);
-    requests.push({ ...input, spec: study.spec(input.studyInput, dials, found) });
+    const spec = study.spec(input.studyInput, dials, found);
+    assertFitsMemory(input.name, spec);
+    requests.push({ ...input, spec });
   }
   const finish = (tallies: Map<string, Tally>, partial: boolean): FinishRequest => ({
     inputs: countedInputs(requests, tallies, chosen),

@@ -10,6 +10,7 @@ import { answer } from '../../../../workers/pipeline/answer';
 import { planChunks } from '../../../../workers/pipeline/chunks';
 import type { ComputeHost } from '../../../../workers/pipeline/compute';
 import { Job } from '../../../../workers/pipeline/job';
+import { assertFitsMemory, estimateBytes } from '../../../../workers/pipeline/memory';
 import { createPool } from '../../../../workers/pipeline/pool';
 import { createStage } from '../../../../workers/pipeline/progress';
 import { TallyMemo } from '../../../../workers/pipeline/tally-memo';
@@ -173,6 +174,24 @@ describe('memo of counts', () => {
     const key = { source: { name: 'a.h5', size: 10 }, layout, spec, range };
     memo.keep(key, tally);
     expect(memo.find(key)).toBeNull();
+  });
+});
+
+describe('memory', () => {
+  const frames = (side: number, blocks: number): FrameSpec => ({
+    kind: 'frames',
+    width: side,
+    height: side,
+    frames: 1000,
+    blocks,
+    masked: new Uint8Array(0),
+  });
+
+  it('refuses what a worker cannot hold, with the way out', () => {
+    expect(() => assertFitsMemory('near', frames(256, 50))).not.toThrow();
+    // 16 x 2047 x 2047 x 50 bytes of block maps alone.
+    expect(estimateBytes(frames(1024, 50))).toBeGreaterThan(16 * 2047 * 2047 * 50);
+    expect(() => assertFitsMemory('near', frames(1024, 50))).toThrow(/dial "blocks" lower/);
   });
 });
 
