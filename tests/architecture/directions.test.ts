@@ -36,11 +36,11 @@ const allowed: Record<string, readonly string[]> = {
   'server/vite.config.ts': [],
 
   'src/lib': ['shared', 'workers/entries'],
-  'src/viz': ['src/lib', 'src/components', 'shared'],
+  'src/viz': ['src/lib', 'shared'],
   'src/state': ['src/lib', 'shared'],
   'src/components': ['src/viz', 'src/lib', 'src/state', 'shared'],
   'src/features': ['src/viz', 'src/components', 'src/state', 'src/lib', 'shared'],
-  'src/shell': ['src/features', 'src/viz', 'src/components', 'src/state', 'src/lib', 'shared'],
+  'src/shell': ['src/viz', 'src/components', 'src/state', 'src/lib', 'shared'],
   'src/app': ['src/shell', 'src/features', 'src/viz', 'src/components', 'src/state', 'src/lib', 'shared'],
   'src/main.tsx': ['src/app', 'src/lib'],
 };
