@@ -1,5 +1,6 @@
 import compression from 'compression';
 import express, { type Express } from 'express';
+import type { Config } from '../platform/config';
 import { createHttpLog, type Logger } from '../platform/log';
 import { giveNonce, refuseForeignOrigins, securityHeaders } from '../platform/security';
 import { createErrorHandler, refuseUnknown } from '../routes/errors';
@@ -12,7 +13,7 @@ import { createSignInRouter, type SignInLimits } from '../routes/sign-in-routes'
 
 export interface AppDeps extends RouteDeps {
   log: Logger;
-  behindProxy: boolean;
+  proxy: Config['proxy'];
   limits: SignInLimits;
   /** Folder of the built page; null serves the API alone (development). */
   pageDir: string | null;
@@ -21,8 +22,8 @@ export interface AppDeps extends RouteDeps {
 /** The whole server but listening. */
 export function createApp(deps: AppDeps): Express {
   const app = express();
-  // The address a limit counts is told by the proxy, believed only from nearby addresses.
-  if (deps.behindProxy) app.set('trust proxy', 'loopback, linklocal, uniquelocal');
+  // The address the sign-in limit counts: of the connection, unless a proxy is known to tell the one before it.
+  app.set('trust proxy', deps.proxy);
   app.use(
     giveNonce,
     securityHeaders(deps.origin.startsWith('https:')),

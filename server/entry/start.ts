@@ -11,7 +11,7 @@ import { createSessions } from '../data/repositories/sessions';
 import { createSampleStore } from '../data/sample-store';
 import { admitFirstLead, closeDemo, openDemo, type SeedStores } from '../domain/seed';
 import { createAuth, hashNewPassword } from '../platform/auth';
-import type { Config } from '../platform/config';
+import { type Config, isLoopback } from '../platform/config';
 import type { Logger } from '../platform/log';
 import { type ProcessLock, takeLock } from '../platform/process-lock';
 import { StartProblem } from '../platform/refusal';
@@ -121,7 +121,7 @@ export async function assemble(
     origin: config.origin,
     trustedOrigins: config.trustedOrigins,
     log,
-    behindProxy: config.behindProxy,
+    proxy: config.proxy,
     limits: { failures: 20, calls: 600 },
     pageDir: config.development ? null : join(place.root, 'dist/client'),
   };
@@ -134,6 +134,11 @@ async function prepareOpenServer(
   say: (line: string) => void,
 ): Promise<void> {
   await closeDemo(seed.people);
+  if (config.proxy === false && isLoopback(config.host)) {
+    say(
+      'GEMEL_ORIGIN is an address other machines reach and HOST is this machine alone, so a proxy stands in front: set GEMEL_PROXY=loopback, or everybody shares one limit of failed sign-ins.',
+    );
+  }
   if (config.leadEmail === null || (await seed.people.hasPerson(config.leadEmail))) return;
   const password = randomBytes(12).toString('base64url');
   await admitFirstLead(seed, config.leadEmail, password);

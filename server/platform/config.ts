@@ -13,9 +13,12 @@ export interface Config {
   origin: string;
   /** Origins whose requests may carry a session. */
   trustedOrigins: string[];
-  /** True when GEMEL_ORIGIN says that another server stands in front. */
-  behindProxy: boolean;
-  /** Only this machine can connect: the demo sign-in exists only then. */
+  /**
+   * Whom to believe about the address a request comes from: nobody, so many proxies in front, or proxies on this
+   * machine. Believing a sender who is no proxy lets anybody pass for many addresses.
+   */
+  proxy: false | number | 'loopback';
+  /** Only this machine can connect, and no proxy hands on others: the demo sign-in exists only then. */
   loopback: boolean;
   development: boolean;
   logLevel: string;
@@ -23,7 +26,8 @@ export interface Config {
   leadEmail: string | null;
 }
 
-const port = z.coerce.number().int().min(1).max(65535);
+const portWords = 'expected a whole number from 1 to 65535';
+const port = z.coerce.number(portWords).int(portWords).min(1, portWords).max(65535, portWords);
 const optional = <T extends z.ZodType>(schema: T) =>
   z.preprocess((value) => (value === '' ? undefined : value), schema.optional());
 
@@ -38,7 +42,12 @@ const environmentSchema = z.object({
   GEMEL_ORIGIN: optional(
     z.url({ protocol: /^https?$/, error: 'expected an address such as https://gemel.example.org' }),
   ),
-  GEMEL_LOG: optional(z.enum(['silent', 'error', 'warn', 'info', 'debug'])),
+  GEMEL_PROXY: optional(
+    z.string().regex(/^([1-9]|loopback)$/, 'expected the number of proxies in front (1 to 9), or loopback'),
+  ),
+  GEMEL_LOG: optional(
+    z.enum(['silent', 'error', 'warn', 'info', 'debug'], 'expected silent, error, warn, info or debug'),
+  ),
   GEMEL_LEAD_EMAIL: optional(z.email('expected an e-mail address')),
 });
 
@@ -60,6 +69,12 @@ export function parseConfig(
     );
   }
   const given = parsed.data;
+  const proxy = given.GEMEL_PROXY === 'loopback' ? 'loopback' : Number(given.GEMEL_PROXY ?? 0) || false;
+  if (proxy !== false && given.GEMEL_ORIGIN === undefined) {
+    throw new StartProblem(
+      'GEMEL_PROXY says that a proxy stands in front, so other machines can reach this server: set GEMEL_ORIGIN to the address people type, for example GEMEL_ORIGIN=https://gemel.example.org.',
+    );
+  }
   const host = given.HOST ?? '127.0.0.1';
   const listenPort = (place.development ? given.GEMEL_API_PORT : given.PORT) ?? 4310;
   const origin = publicOrigin(host, listenPort, given.GEMEL_ORIGIN, place.development);
@@ -70,8 +85,9 @@ export function parseConfig(
     databaseUrl: given.DATABASE_URL ?? null,
     origin,
     trustedOrigins: sameMachineOrigins(origin),
-    behindProxy: given.GEMEL_ORIGIN !== undefined,
-    loopback: isLoopback(host) && isLoopback(new URL(origin).hostname.replace(/^\[|\]$/g, '')),
+    proxy,
+    loopback:
+      proxy === false && isLoopback(host) && isLoopback(new URL(origin).hostname.replace(/^\[|\]$/g, '')),
     development: place.development,
     logLevel: given.GEMEL_LOG ?? 'info',
     leadEmail: given.GEMEL_LEAD_EMAIL?.toLowerCase() ?? null,

@@ -29,6 +29,8 @@ export function createSignInRouter(deps: RouteDeps, limits: SignInLimits): Route
       skipSuccessfulRequests: onlyFailures,
       standardHeaders: 'draft-8',
       legacyHeaders: false,
+      // Anybody may send this header; GEMEL_PROXY decides whether it is read.
+      validate: { xForwardedForHeader: false },
       handler: (_request, _response, next) =>
         next(
           new Refusal('too-many', 'Too many attempts from this address: wait five minutes and try again.'),

@@ -100,4 +100,25 @@ describe('the page and its headers', () => {
     const last = await attempt('wrong one here');
     expect([last.status, last.body.error.code]).toEqual([429, 'too-many']);
   });
+
+  it.each([
+    [false, 429],
+    ['loopback', 401],
+    [1, 401],
+  ] as const)(
+    'with GEMEL_PROXY %s a new X-Forwarded-For after the last attempt gets %i',
+    async (proxy, status) => {
+      const app = createApp({ ...h.deps, proxy, limits: { failures: 2, calls: 100 } });
+      const attempt = (from: string) =>
+        request(app)
+          .post('/api/auth/sign-in/email')
+          .set('Origin', origin)
+          .set('X-Forwarded-For', from)
+          .send({ email: 'lead@bench.example', password: 'wrong one here' });
+      for (let k = 0; k < 2; k++) expect((await attempt('203.0.113.1')).status).toBe(401);
+      expect((await attempt('203.0.113.2')).status).toBe(status);
+      // What the proxy itself adds comes last; what a client put before it is not believed.
+      expect((await attempt('203.0.113.9, 203.0.113.1')).status).toBe(429);
+    },
+  );
 });

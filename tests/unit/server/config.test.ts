@@ -13,7 +13,7 @@ describe('parseConfig', () => {
       databaseUrl: null,
       origin: 'http://127.0.0.1:4310',
       trustedOrigins: ['http://127.0.0.1:4310', 'http://localhost:4310', 'http://[::1]:4310'],
-      behindProxy: false,
+      proxy: false,
       loopback: true,
       development: false,
       logLevel: 'info',
@@ -40,6 +40,7 @@ describe('parseConfig', () => {
     [{ HOST: '0.0.0.0', GEMEL_ORIGIN: 'http://localhost:4310' }, false],
     // A public address in front of a loopback server is reachable by others all the same.
     [{ HOST: '127.0.0.1', GEMEL_ORIGIN: 'https://gemel.example.org' }, false],
+    [{ GEMEL_PROXY: 'loopback', GEMEL_ORIGIN: 'http://localhost:8080' }, false],
   ])('%o: only this machine can connect: %s', (environment, loopback) => {
     expect(parseConfig(environment, built).loopback).toBe(loopback);
   });
@@ -51,8 +52,28 @@ describe('parseConfig', () => {
   });
 
   it.each([
-    [{ PORT: 'http' }, /^The setting PORT is "http": /],
-    [{ PORT: '70000' }, /^The setting PORT is "70000": /],
+    [undefined, false],
+    ['', false],
+    ['loopback', 'loopback'],
+    ['2', 2],
+  ])('GEMEL_PROXY %s: believes %s', (given, proxy) => {
+    const environment = { GEMEL_ORIGIN: 'http://192.168.1.5:4310', GEMEL_PROXY: given };
+    expect(parseConfig(environment, built).proxy).toBe(proxy);
+  });
+
+  it.each([
+    [{ PORT: 'abc' }, /^The setting PORT is "abc": expected a whole number from 1 to 65535\. /],
+    [{ PORT: '4310.5' }, /^The setting PORT is "4310\.5": expected a whole number from 1 to 65535\. /],
+    [{ PORT: '70000' }, /^The setting PORT is "70000": expected a whole number from 1 to 65535\. /],
+    [
+      { GEMEL_LOG: 'loud' },
+      /^The setting GEMEL_LOG is "loud": expected silent, error, warn, info or debug\. /,
+    ],
+    [
+      { GEMEL_PROXY: 'yes', GEMEL_ORIGIN: 'http://a.example' },
+      /number of proxies in front \(1 to 9\), or loopback/,
+    ],
+    [{ GEMEL_PROXY: '1' }, /set GEMEL_ORIGIN to the address people type/],
     [{ DATABASE_URL: 'mysql://x' }, /starts with postgres:\/\//],
     [{ GEMEL_ORIGIN: 'gemel' }, /^The setting GEMEL_ORIGIN is "gemel": .*https:\/\/gemel\.example\.org/],
     [{ HOST: '0.0.0.0' }, /set GEMEL_ORIGIN to the address people type/],
