@@ -46,7 +46,7 @@ export const acquisitions: readonly Acquisition[] = [
     file: 'near-tags.h5',
     scenarioFile: 'near-tags.json',
     scenario: nearTags,
-    shows: 'Near field on two 16 x 16 arrays: the photons of a pair are born at the same place.',
+    shows: 'Near field on two 16 × 16 arrays: the photons of a pair are born at the same place.',
   },
   {
     file: 'near-tags.bin',

@@ -16,7 +16,7 @@ const samplesFolder = fileURLToPath(new URL('..', import.meta.url));
 const say = (text: string): void => void process.stderr.write(`${text}\n`);
 
 const scenario =
-  'The Lanternfield pair bench, an invented set-up: a 405 nm pump of 75 um waist in 5 mm of crystal, pairs at 810 nm, two 16 x 16 single-photon arrays, a bucket detector behind a lantern stencil, and a camera. Everything is simulated from known numbers.';
+  'The Lanternfield pair bench, an invented set-up: a 405 nm pump of 75 µm waist in 5 mm of crystal, pairs at 810 nm, two 16 × 16 single-photon arrays, a bucket detector behind a lantern stencil, and a camera. Everything is simulated from known numbers.';
 
 async function writeSamples(folder: string): Promise<void> {
   await mkdir(`${folder}/presets`, { recursive: true });
