@@ -57,6 +57,10 @@ export interface VerdictRequest {
   value: number;
   spread: Spread;
   resampled: Float64Array;
+  /** Relative 1-sigma error that all resamples share (calibration). */
+  systematic: number;
+  /** Why the value supports no claim, as a clause; null where it does. */
+  doubts: string | null;
   /** Sentences with the assumptions, from the study. */
   assumptions: string;
 }
@@ -72,17 +76,31 @@ export interface Judgement {
   sentence: string;
 }
 
+/** Whether twice the systematic error would take a value below the bound up to it. */
+export function isShaken(value: number, systematic: number, bound: number): boolean {
+  return value < bound && value * (1 + 2 * systematic) >= bound;
+}
+
+/**
+ * A resample without a finite value counts as reaching the bound. A violation that twice the systematic error would
+ * undo is only indicated, and doubts leave no claim at all, whatever the value.
+ */
 export function judge(request: VerdictRequest): Judgement {
-  const { witness, axis, value, spread, resampled, assumptions } = request;
+  const { witness, axis, value, spread, resampled, systematic, doubts, assumptions } = request;
   const { bound } = witness;
   const z = significanceOf(value, spread.sigma, bound);
-  const level = verdictLevel(z.log, spread.interval, bound);
-  const above = resampled.reduce((count, v) => count + (v >= bound ? 1 : 0), 0);
+  const counted = verdictLevel(z.log, spread.interval, bound);
+  const shaken = counted === 'violated' && isShaken(value, systematic, bound);
+  const level = doubts !== null ? 'inconclusive' : shaken ? 'indicated' : counted;
+  const above = resampled.reduce((count, v) => count + (v < bound ? 0 : 1), 0);
   const share =
     above === 0
       ? `none of ${resampled.length} resamples reaches it`
       : `${above} of ${resampled.length} resamples reach it`;
-  const sentence = `${headline(level, witness, axis, Math.abs(z.log))} (${share}). ${assumptions}`.trim();
+  const sentence =
+    doubts === null
+      ? `${headline(level, witness, axis, Math.abs(z.log), shaken ? systematic : null)} (${share}). ${assumptions}`
+      : `No verdict on the ${witness.label} in ${axis}: ${doubts}.`;
   return {
     bound,
     side: 'below',
@@ -90,18 +108,29 @@ export function judge(request: VerdictRequest): Judgement {
     significanceLinear: z.linear,
     interval: spread.interval,
     level,
-    sentence,
+    sentence: sentence.trim(),
   };
 }
 
-function headline(level: VerdictLevel, witness: Witness, axis: string, z: number): string {
+function headline(
+  level: VerdictLevel,
+  witness: Witness,
+  axis: string,
+  z: number,
+  /** Set where the calibration is what keeps an indication from being more. */
+  shaking: number | null,
+): string {
   const name = `The ${witness.label} in ${axis}`;
   const bound = `the bound ${witness.bound}`;
   switch (level) {
     case 'violated':
       return `${name} lies ${z.toFixed(1)} standard deviations below ${bound}: this shows ${witness.shows}`;
     case 'indicated':
-      return `${name} lies ${z.toFixed(1)} standard deviations below ${bound}: this indicates ${witness.shows}, short of five`;
+      return `${name} lies ${z.toFixed(1)} standard deviations below ${bound}: this indicates ${witness.shows}, ${
+        shaking === null
+          ? 'short of five'
+          : `no more, because twice the calibration error of ${(100 * shaking).toFixed(1)} % would take it to the bound`
+      }`;
     case 'not-violated':
       return `${name} lies above ${bound} by ${z.toFixed(1)} standard deviations: no ${witness.shows} is shown`;
     case 'inconclusive':

@@ -64,6 +64,8 @@ describe('Verdicts', () => {
       value: 0.026,
       spread: { sigma: 0.003, interval: [0.021, 0.032], mean: 0.026 },
       resampled: new Float64Array(1000).fill(0.026),
+      systematic: 0,
+      doubts: null,
       assumptions: 'Assumes fair sampling.',
     });
     expect(verdict.level).toBe('violated');
@@ -80,10 +82,41 @@ describe('Verdicts', () => {
       value: 1.4,
       spread: { sigma: 0.05, interval: [1.3, 1.5], mean: 1.4 },
       resampled: new Float64Array(100).fill(1.4),
+      systematic: 0,
+      doubts: null,
       assumptions: '',
     });
     expect(verdict.level).toBe('not-violated');
     expect(verdict.significance).toBeLessThan(0);
     expect(verdict.sentence).toContain('no entanglement is shown');
+  });
+
+  const below = {
+    witness: witnesses.reid,
+    axis: 'x',
+    value: 0.2,
+    spread: { sigma: 0.004, interval: [0.192, 0.208] as [number, number], mean: 0.2 },
+    resampled: new Float64Array(100).fill(0.2),
+    systematic: 0,
+    doubts: null,
+    assumptions: '',
+  };
+
+  it('claim nothing where the planes leave doubts', () => {
+    const verdict = judge({ ...below, doubts: 'in the near field no Gaussian fits' });
+    expect(verdict.level).toBe('inconclusive');
+    expect(verdict.sentence).toBe('No verdict on the Reid product in x: in the near field no Gaussian fits.');
+  });
+
+  it('only indicate what twice the calibration error would undo', () => {
+    expect(judge({ ...below, systematic: 0.12 }).level).toBe('violated');
+    const shaken = judge({ ...below, systematic: 0.13 });
+    expect(shaken.level).toBe('indicated');
+    expect(shaken.sentence).toContain('twice the calibration error of 13.0 %');
+  });
+
+  it('count a resample without a value as reaching the bound', () => {
+    const resampled = Float64Array.from({ length: 100 }, (_, k) => (k === 7 ? Number.NaN : 0.2));
+    expect(judge({ ...below, resampled }).sentence).toContain('1 of 100 resamples reach it');
   });
 });

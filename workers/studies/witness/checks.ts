@@ -1,5 +1,6 @@
 import type { Check, Verdict } from '../../../shared/contracts/output';
 import { productRelativeError } from '../../../shared/physics/calibration';
+import { isShaken } from '../../../shared/physics/witness';
 import type { PlaneResult } from '../joint-map/plane-result';
 import type { CountedInput } from '../study';
 
@@ -35,7 +36,8 @@ export function checkProductCalibration(
   }
   const shaken = Object.entries(verdicts).filter(([id, verdict]) => {
     const value = values(id);
-    return verdict.level === 'violated' && value !== undefined && value * (1 + 2 * relative) >= verdict.bound;
+    const claims = verdict.level === 'violated' || verdict.level === 'indicated';
+    return claims && value !== undefined && isShaken(value, relative, verdict.bound);
   });
   const common = `The calibrations add ${percent.toFixed(1)} % to every product, common to all blocks and not in the errors quoted`;
   if (shaken.length === 0) return { ...base, status: 'pass', sentence: `${common}; no verdict hangs on it.` };

@@ -13,6 +13,7 @@ import {
   planeChecks,
   productSystematic,
 } from './checks';
+import { doubtsOf } from './doubts';
 import {
   type AxisProducts,
   axisProducts,
@@ -49,8 +50,13 @@ export function finishWitness({ inputs, dials, seed, partial }: FinishRequest): 
     return output;
   }
   const judged = addProducts(output, near, far);
+  const context = {
+    looking: partial,
+    doubts: doubtsOf([near, far]),
+    systematic: productSystematic(near, far),
+  };
   for (const one of judged) {
-    const verdict = verdictOf(one, partial);
+    const verdict = verdictOf(one, context);
     if (verdict !== null) output.verdicts[one.id] = verdict;
   }
   output.checks.push(checkSamePixels(inputs.near, inputs.far));

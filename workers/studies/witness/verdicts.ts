@@ -40,8 +40,17 @@ export function judgedProducts(
   ];
 }
 
-/** Null where value or error is missing. `looking`: bytes are still being read. */
-export function verdictOf(judged: Judged, looking: boolean): Verdict | null {
+export interface VerdictContext {
+  /** Bytes are still being read. */
+  looking: boolean;
+  /** Why no product of these planes supports a claim; null where it may. */
+  doubts: string | null;
+  /** Relative systematic error of the product, 1 sigma. */
+  systematic: number;
+}
+
+/** Null where value or error is missing. */
+export function verdictOf(judged: Judged, context: VerdictContext): Verdict | null {
   const { part, witness, axis, what, bounded } = judged;
   if (part === null) return null;
   const spread = spreadOf(part.resampled);
@@ -52,9 +61,11 @@ export function verdictOf(judged: Judged, looking: boolean): Verdict | null {
     value: part.value,
     spread,
     resampled: part.resampled,
+    systematic: context.systematic,
+    doubts: context.doubts,
     assumptions: assumptionsOf(what, bounded),
   });
-  return looking ? { ...verdict, sentence: `So far, still reading: ${verdict.sentence}` } : verdict;
+  return context.looking ? { ...verdict, sentence: `So far, still reading: ${verdict.sentence}` } : verdict;
 }
 
 function assumptionsOf(what: Subtraction, bounded: boolean): string {
@@ -63,5 +74,5 @@ function assumptionsOf(what: Subtraction, bounded: boolean): string {
     : '';
   return what === 'raw'
     ? 'Raw: nothing is subtracted and the blur of the pixels is left in; fair sampling of the pairs that meet the arrays is assumed.'
-    : `Net: assumes fair sampling, uncorrelated accidentals and a Gaussian peak; the blur of the pixels is left in.${camera}`;
+    : `Accidentals subtracted: assumes fair sampling, uncorrelated accidentals and a Gaussian peak; the blur of the pixels is left in.${camera}`;
 }

@@ -71,15 +71,71 @@ describe('Witness', () => {
     expect(output.chosen['window.far']).toBe(2100);
   });
 
-  it('judges uncorrelated light as no violation', () => {
+  const verdictsOf = (found: ReturnType<typeof finish>) => Object.values(found.verdicts);
+  const claim = /this (shows|indicates)/;
+
+  it('gives uncorrelated light no verdict', () => {
     const flat = { ...scene, truth: { v1: 8, v2: 8, c: 0 } };
     const found = finish({
       near: countedTags(simulateTally(flat, createRandom(3)), nearPlane),
       far: countedTags(simulateTally(flat, createRandom(4)), farPlane),
     });
-    expect(found.verdicts['reid.x.net']!.level).toBe('not-violated');
-    expect(found.verdicts['mancini.x.net']!.level).toBe('not-violated');
+    expect(new Set(verdictsOf(found).map(({ level }) => level))).toEqual(new Set(['inconclusive']));
+    expect(found.verdicts['reid.x.net']!.sentence).toContain(
+      'near field the two arms are not seen to be correlated',
+    );
     expect(found.checks.find(({ id }) => id === 'correlation-sign.near')?.status).not.toBe('pass');
+  });
+
+  it('gives pairs that land anywhere on 4 x 4 pixels no verdict, though their moments lie below the bounds', () => {
+    // Coincident in time, independent in place: a law much wider than the array, without correlation.
+    const anywhere: TallyScene = { ...scene, size: 4, centre: 1.5, truth: { v1: 64, v2: 64, c: 0 } };
+    const many = { ...anywhere, pairs: 2e6, accidentals: 2e5 };
+    const found = finish({
+      near: countedTags(simulateTally(many, createRandom(8)), {
+        ...nearPlane,
+        magnification: { value: 4, sigma: 0.04 },
+      }),
+      far: countedTags(simulateTally(many, createRandom(9)), {
+        ...farPlane,
+        focalLengthMm: { value: 22, sigma: 0.2 },
+      }),
+    });
+    const reid = found.verdicts['reid.x.raw']!;
+    expect(found.quantities['reid.x.raw']!.value).toBeLessThan(0.1);
+    expect(reid.significance).toBeGreaterThan(50);
+    expect(new Set(verdictsOf(found).map(({ level }) => level))).toEqual(new Set(['inconclusive']));
+    for (const text of [found.statement, ...verdictsOf(found).map(({ sentence }) => sentence)]) {
+      expect(text).not.toMatch(claim);
+    }
+    expect(found.statement).toContain('No verdict on the Reid product in x');
+  });
+
+  it('gives truncated maps no verdict, raw or net, however strong the correlation', () => {
+    // Nine tenths of these pairs miss the arrays: their moments are those of the arrays.
+    const wide: TallyScene = { ...scene, pairs: 60_000, truth: { v1: 400, v2: 400, c: 396 } };
+    const far = { ...wide, truth: { ...wide.truth, c: -396 } };
+    const found = finish({
+      near: countedTags(simulateTally(wide, createRandom(10)), nearPlane),
+      far: countedTags(simulateTally(far, createRandom(11)), farPlane),
+    });
+    expect(found.checks.find(({ id }) => id === 'map-truncated.near')?.status).toBe('fail');
+    expect(found.verdicts['reid.x.raw']!.level).toBe('inconclusive');
+    expect(found.verdicts['reid.x.raw']!.sentence).toContain('miss the arrays');
+    expect(found.statement).not.toMatch(claim);
+  });
+
+  it('only indicates what twice the calibration error would take to the bound', () => {
+    const level = (sigma: number) => {
+      const plane = { ...nearPlane, magnification: { value: 0.5, sigma } };
+      return finish({ near: { ...near, plane }, far }).verdicts['mancini.x.net']!.level;
+    };
+    expect(level(0.005)).toBe('violated');
+    expect(level(0.1)).toBe('indicated');
+    const unsure = { ...nearPlane, magnification: { value: 0.5, sigma: 0.1 } };
+    const found = finish({ near: { ...near, plane: unsure }, far });
+    expect(found.verdicts['mancini.x.net']!.sentence).toContain('calibration error');
+    expect(found.checks.find(({ id }) => id === 'calibration-known')?.sentence).toContain('mancini.x.net');
   });
 
   it('cautions when the planes were taken with different pixels', () => {
