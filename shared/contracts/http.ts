@@ -1,4 +1,8 @@
 import { z } from '../util/zod';
+import { detectorSchema } from './detector';
+import { dialValueSchema } from './dial';
+import { layoutSchema } from './layout';
+import { planeSchema } from './plane';
 import { presetSchema } from './preset';
 import { resultFileSchema } from './result';
 
@@ -70,7 +74,7 @@ export const benchStateSchema = z.strictObject({
   version: z.literal(1),
   study: z.string().max(80),
   preset: presetSchema,
-  /** Which acquisition serves which input. */
+  /** Acquisitions in their order, and which input of the study each serves. */
   shelf: z
     .array(
       z.strictObject({
@@ -80,9 +84,21 @@ export const benchStateSchema = z.strictObject({
         input: z.string().max(80).nullable(),
         /** Sample file name when it came with Gemel, so that it reopens by itself. */
         sample: z.string().max(200).nullable(),
+        /** How it is read: layout null where nobody confirmed one. Absent in sessions of before this was kept. */
+        layout: layoutSchema.nullable().optional(),
+        detector: detectorSchema.nullable().optional(),
+        /** false: the map is a proposal, or its pitch is not known. */
+        detectorGiven: z.boolean().optional(),
+        plane: planeSchema.nullable().optional(),
       }),
     )
     .max(50),
+  /** By study: dials that were set. */
+  dials: z.record(z.string().max(80), z.record(z.string().max(80), dialValueSchema)).optional(),
+  /** By study and input: place on the shelf from 0, null where a person left the input empty. */
+  assigned: z
+    .record(z.string().max(80), z.record(z.string().max(80), z.int().min(0).max(49).nullable()))
+    .optional(),
   seed: z.int(),
   resultId: z.string().nullable(),
 });

@@ -30,9 +30,16 @@ export function savePreset(groupId: string, preset: Preset, versionOf: string | 
   return request(presetRowSchema, `${groupPath(groupId)}/${path}`, { method: 'POST', json: { preset } });
 }
 
-export function saveSession(groupId: string, name: string, state: SavedBench): Promise<SessionRow> {
-  return request(sessionRowSchema, `${groupPath(groupId)}/sessions`, {
-    method: 'POST',
+/** A new session, or what is kept under `id` from now on. */
+export function saveSession(
+  groupId: string,
+  name: string,
+  state: SavedBench,
+  id: string | null,
+): Promise<SessionRow> {
+  const path = id === null ? 'sessions' : `sessions/${encodeURIComponent(id)}`;
+  return request(sessionRowSchema, `${groupPath(groupId)}/${path}`, {
+    method: id === null ? 'POST' : 'PUT',
     json: { name, state },
   });
 }

@@ -1,4 +1,5 @@
 import { SlidersHorizontal, X } from 'lucide-react';
+import type { ReactNode } from 'react';
 import type { Detector } from '../../../../shared/contracts/detector';
 import type { InspectionFacts } from '../../../../shared/contracts/engine';
 import {
@@ -13,7 +14,7 @@ import { CheckMark } from '../../../components/ui/CheckMark';
 import { IconButton } from '../../../components/ui/IconButton';
 import { RateStrip } from '../../../viz/RateStrip';
 import type { Tone } from '../../../viz/types';
-import type { Acquisition } from '../model/acquisition';
+import { type Acquisition, isOtherFile } from '../model/acquisition';
 import { ProblemText } from './ProblemText';
 
 export interface AcquisitionCardProps {
@@ -58,16 +59,22 @@ export function AcquisitionCard(props: AcquisitionCardProps) {
             looking at the bytes
           </p>
         ) : null}
-        {reading.status === 'awaited' ? (
-          <p className="flex gap-2 text-sm">
-            <span className="pt-0.5">
-              <CheckMark status="caution" />
-            </span>
-            <span>
-              Drop {name} again, or open it: the session knows it by name and size, its bytes stayed on your
-              machine.
-            </span>
+        {reading.status === 'awaited' && sample !== null ? (
+          <p role="status" className="font-mono text-xs text-dim">
+            fetching the sample
           </p>
+        ) : null}
+        {reading.status === 'awaited' && sample === null ? (
+          <Caution>
+            Drop {name} again, or open it: the session knows it by name and size, its bytes stayed on your
+            machine.
+          </Caution>
+        ) : null}
+        {isOtherFile(acquisition) ? (
+          <Caution>
+            Not the file the session was made with: name and size agree, the fingerprint does not. Numbers
+            from it are of other data; remove it and drop the right one to go on with the session.
+          </Caution>
         ) : null}
         {reading.status === 'failed' ? (
           <ProblemText problem={reading.problem}>
@@ -112,12 +119,7 @@ function Known({ acquisition, facts, warnings }: KnownProps) {
       </p>
       {plane === null ? null : <p>{planeWords(plane)}</p>}
       {warnings.map((warning) => (
-        <p key={warning} className="flex gap-2 font-sans text-sm text-text">
-          <span className="pt-0.5">
-            <CheckMark status="caution" />
-          </span>
-          {warning}
-        </p>
+        <Caution key={warning}>{warning}</Caution>
       ))}
       {strip.length === 0 ? null : (
         <div className="mt-1.5">
@@ -130,6 +132,17 @@ function Known({ acquisition, facts, warnings }: KnownProps) {
         </div>
       )}
     </div>
+  );
+}
+
+function Caution({ children }: { children: ReactNode }) {
+  return (
+    <p className="flex gap-2 font-sans text-sm text-text">
+      <span className="pt-0.5">
+        <CheckMark status="caution" />
+      </span>
+      <span>{children}</span>
+    </p>
   );
 }
 

@@ -6,8 +6,10 @@ import { Menu } from '../../../components/ui/Menu';
 import { explain } from '../../../lib/errors/explain';
 import type { Group } from '../../../lib/query/me';
 import { savePreset, saveResult, saveSession } from '../api/save';
-import { presetOfBench, presetOfResult, sessionOfBench } from '../model/bench-records';
-import { currentStudy } from '../model/bench-selectors';
+import { presetOfBench, presetOfResult } from '../model/bench-records';
+import { currentStudy, linkedResult } from '../model/bench-selectors';
+import type { SessionRef } from '../model/bench-types';
+import { sessionOfBench } from '../model/session-bench';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
 import { NameDialog } from './NameDialog';
 
@@ -30,7 +32,8 @@ const EXPLANATIONS: Record<Kind, string> = {
   preset:
     'The study with its layouts, detector maps, planes and dials, to run unchanged on the next acquisition.',
   version: 'The earlier versions stay as they are.',
-  session: 'Study, dials and the fingerprints of the acquisitions, to go on later. Only you see it.',
+  session:
+    'Studies, dials, readings and the fingerprints of the acquisitions, to go on later. Only you see it.',
 };
 
 /** Keeping what was found: result, preset, session, each with a link to where it is. */
@@ -39,18 +42,21 @@ export function SaveActions({ group }: SaveActionsProps) {
   const queries = useQueryClient();
   const [kind, setKind] = useState<Kind | null>(null);
   const [said, setSaid] = useState<ReactNode>(null);
-  const [resultId, setResultId] = useState<string | null>(null);
   const result = useBenchState((state) => state.found[state.study]?.result ?? null);
-  const preset = useBenchState((state) => state.preset);
+  const preset = useBenchState((state) => (state.preset?.study === state.study ? state.preset : null));
+  const session = useBenchState((state) => state.session);
+  const linked = useBenchState((state) => (state.session === null ? null : linkedResult(state)));
   const study = useBenchPlan(currentStudy);
   const mayWritePresets = group.role === 'lead' || group.role === 'analyst';
   const maySave = group.role !== 'guest';
 
   const save = async (name: string): Promise<void> => {
     const state = store.getState();
-    if (kind === 'result' && result !== null) {
-      const saved = await saveResult(group.id, name, result, presetOfResult(state, result));
-      setResultId(saved.id);
+    const found = state.found[state.study];
+    if (kind === 'result' && found?.result) {
+      const { result: run, key } = found;
+      const saved = await saveResult(group.id, name, run, presetOfResult(state, run));
+      store.setState((now) => ({ saved: { ...now.saved, [state.study]: { id: saved.id, key } } }));
       setSaid(<SavedLink what="Result" name={name} to={`/results/${saved.id}`} />);
     } else if (kind === 'preset' || kind === 'version') {
       const versionOf = kind === 'version' ? (preset?.id ?? null) : null;
@@ -59,14 +65,31 @@ export function SaveActions({ group }: SaveActionsProps) {
       store.setState({ preset: { id: row.id, name, version: row.version, study: id, dials, inputs } });
       setSaid(<SavedLink what={`Preset v${row.version}`} name={name} to={`/presets/${row.id}`} />);
     } else if (kind === 'session') {
-      const row = await saveSession(group.id, name, sessionOfBench(state, name, resultId));
-      const address = `session=${row.id}`;
-      // The bench is what was saved: following the link must not empty it.
-      openedFrom.current = `${group.id} ${address}`;
-      setSaid(<SavedLink what="Session" name={name} to={`/bench?${address}`} />);
+      await keepSession(name, null);
+      return;
     }
+    await finish(name);
+  };
+
+  const finish = async (name: string): Promise<void> => {
     store.getState().say(`Saved: ${name}.`);
     await queries.invalidateQueries({ queryKey: ['groups', group.id] });
+  };
+
+  const keepSession = async (name: string, id: string | null): Promise<void> => {
+    const row = await saveSession(group.id, name, sessionOfBench(store.getState(), name), id);
+    store.setState({ session: { id: row.id, name: row.name } });
+    const address = `session=${row.id}`;
+    // The bench is what was saved: following the link must not empty it.
+    openedFrom.current = `${group.id} ${address}`;
+    setSaid(<SavedLink what="Session" name={name} to={`/bench?${address}`} />);
+    await finish(name);
+  };
+
+  const saveOver = (opened: SessionRef): void => {
+    keepSession(opened.name, opened.id).catch((thrown: unknown) =>
+      setSaid(<span className="text-fail">{explain(thrown).sentence}</span>),
+    );
   };
 
   const close = (): void => setKind(null);
@@ -76,13 +99,23 @@ export function SaveActions({ group }: SaveActionsProps) {
   return (
     <span className="flex flex-wrap items-center gap-2">
       <span role="status" className="font-sans text-sm text-text" data-testid="save-status">
-        {said}
+        {said ??
+          (linked === null ? null : (
+            <Link to={`/results/${linked}`} className="underline underline-offset-2">
+              Result saved from this session
+            </Link>
+          ))}
       </span>
       <Menu
         align="end"
         trigger={<Button size="sm">Save …</Button>}
         items={[
-          { label: 'Save session', onSelect: () => setKind('session') },
+          ...(session === null
+            ? [{ label: 'Save session', onSelect: () => setKind('session') }]
+            : [
+                { label: 'Save session', onSelect: () => saveOver(session) },
+                { label: 'Save session as …', onSelect: () => setKind('session') },
+              ]),
           {
             label: mayWritePresets ? 'Save as preset' : 'Save as preset (analysts and leads)',
             disabled: !mayWritePresets,

@@ -19,6 +19,8 @@ export interface Acquisition {
   file: File | null;
   /** Known once a study has read the file. */
   sha256: string | null;
+  /** Of the file a session was made with, where one was opened. */
+  expectedSha256: string | null;
   /** Name among the samples that come with Gemel. */
   sample: string | null;
   reading: Reading;
@@ -35,6 +37,11 @@ export function kindOf(acquisition: Acquisition): 'tags' | 'frames' | null {
   return acquisition.layout?.kind ?? null;
 }
 
+/** Same name and size as in the session, other bytes. */
+export function isOtherFile({ sha256, expectedSha256 }: Acquisition): boolean {
+  return sha256 !== null && expectedSha256 !== null && sha256 !== expectedSha256;
+}
+
 export function newAcquisition(
   id: string,
   what: { name: string; bytes: number; file: File | null; sample: string | null },
@@ -43,6 +50,7 @@ export function newAcquisition(
     id,
     ...what,
     sha256: null,
+    expectedSha256: null,
     reading: what.file === null ? { status: 'awaited' } : { status: 'looking' },
     layout: null,
     layoutGiven: false,

@@ -1,12 +1,11 @@
 import type { RunResult } from '../../../../shared/contracts/engine';
-import type { BenchState as SavedBench } from '../../../../shared/contracts/http';
 import type { InputSetting, Preset } from '../../../../shared/contracts/preset';
 import { currentAssignment, currentDials, currentStudy } from './bench-selectors';
 import type { BenchState } from './bench-types';
 import { changedDials } from './dial-history';
 import { isReadAs } from './same-reading';
 
-/** What is stored of the bench: presets and sessions. The bytes of acquisitions never leave the machine. */
+/** The presets of the bench. The bytes of acquisitions never leave the machine. */
 
 export interface PresetOptions {
   /**
@@ -34,26 +33,6 @@ export function presetOfBench(state: BenchState, name: string, { fixProposals }:
     } else if (waiting !== undefined) inputs[input] = waiting;
   }
   return { gemel: 1, kind: 'preset', name, study: state.study, dials: currentDials(state), inputs };
-}
-
-export function sessionOfBench(state: BenchState, name: string, resultId: string | null): SavedBench {
-  const assignment = currentAssignment(state);
-  const inputOf = (id: string): string | null =>
-    Object.entries(assignment).find(([, held]) => held === id)?.[0] ?? null;
-  return {
-    version: 1,
-    study: state.study,
-    preset: presetOfBench(state, name, { fixProposals: false }),
-    shelf: state.shelf.map(({ id, name: file, bytes, sha256, sample }) => ({
-      name: file,
-      bytes,
-      sha256,
-      input: inputOf(id),
-      sample,
-    })),
-    seed: state.seed,
-    resultId,
-  };
 }
 
 /** The preset a result names: only when it was run with exactly the dials and the readings of that preset. */

@@ -80,3 +80,10 @@ export function planRun(state: BenchPlan): Plan {
     inputsKey,
   };
 }
+
+/** The stored result of what would be run now; null once a dial or an input is another. */
+export function linkedResult(state: BenchPlan & Pick<BenchState, 'saved'>): string | null {
+  const saved = state.saved[state.study];
+  if (saved === undefined) return null;
+  return saved.key === null || saved.key === planRun(state).key ? saved.id : null;
+}

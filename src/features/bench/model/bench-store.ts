@@ -2,6 +2,7 @@ import { createStore, type StoreApi } from 'zustand/vanilla';
 import type { Detector } from '../../../../shared/contracts/detector';
 import type { DialValues } from '../../../../shared/contracts/dial';
 import type { Inspection } from '../../../../shared/contracts/engine';
+import type { BenchState as SavedBench } from '../../../../shared/contracts/http';
 import type { Layout } from '../../../../shared/contracts/layout';
 import type { Plane } from '../../../../shared/contracts/plane';
 import type { InputSetting } from '../../../../shared/contracts/preset';
@@ -10,10 +11,18 @@ import type { ProblemData } from '../../../../shared/errors/problem';
 import { factsWords } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
 import { type Acquisition, newAcquisition } from './acquisition';
-import { currentAssignment, currentHistory, currentStudy } from './bench-selectors';
-import { type BenchState, emptyBench, type PresetRef } from './bench-types';
-import { redoDials, replaceDials, startHistory, turnDials, undoDials } from './dial-history';
+import { baseDials, currentAssignment, currentHistory, currentStudy } from './bench-selectors';
+import { type BenchState, emptyBench, type PresetRef, type SessionRef } from './bench-types';
+import {
+  type DialHistory,
+  redoDials,
+  replaceDials,
+  startHistory,
+  turnDials,
+  undoDials,
+} from './dial-history';
 import { proposeDetector } from './propose-detector';
+import { benchOfSession } from './session-bench';
 
 /** What a person settles in the reading dialog. */
 export interface ReadingChange {
@@ -41,8 +50,6 @@ export interface BenchSettings {
 export interface BenchActions {
   loadStudies(): Promise<void>;
   addFiles(files: readonly SampleFile[]): void;
-  /** Places for acquisitions whose bytes must be handed over again. */
-  awaitFiles(entries: readonly { name: string; bytes: number; input: string | null }[]): void;
   lookAgain(id: string): void;
   changeReading(id: string, change: ReadingChange): void;
   remove(id: string): void;
@@ -52,8 +59,10 @@ export interface BenchActions {
   undo(): void;
   redo(): void;
   resetDials(): void;
-  /** Study, dials and readings at once, from a preset (`ref`) or a session (null). */
+  /** Study, dials and readings at once, from a preset (`ref`) or a result of none (null). */
   openSettings(settings: BenchSettings, ref: PresetRef | null): void;
+  /** In place of what is on the bench; its acquisitions wait for their bytes. */
+  openSession(session: SessionRef, saved: SavedBench): void;
   clear(): void;
   say(text: string, tone?: 'plain' | 'problem'): void;
 }
@@ -75,7 +84,8 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
       get().say(`${acquisition.name}: ${problem.message}`, 'problem');
     };
 
-    const look = async (id: string): Promise<void> => {
+    /** `keepsMap`: a map that is there already came from a session or a result, also where its pitch is not known. */
+    const look = async (id: string, { keepsMap }: { keepsMap: boolean }): Promise<void> => {
       const before = get().shelf.find((a) => a.id === id);
       if (before === undefined || before.file === null) return;
       patch(id, { reading: { status: 'looking' } });
@@ -88,11 +98,11 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
       if (outcome.status === 'cancelled') return;
       const inspection = outcome.value;
       const layout = now.layoutGiven ? now.layout : inspection.layout;
-      const proposal = now.detectorGiven ? null : proposeDetector(inspection.facts);
+      const isMapKept = now.detectorGiven || (keepsMap && now.detector !== null);
       patch(id, {
         reading: { status: 'read', inspection },
         layout,
-        ...(now.detectorGiven ? {} : { detector: proposal?.detector ?? null }),
+        ...(isMapKept ? {} : { detector: proposeDetector(inspection.facts)?.detector ?? null }),
       });
       get().say(`${now.name}: ${factsWords(inspection.facts)}.`);
     };
@@ -122,6 +132,17 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
         chosen: { ...chosen, [study]: { ...chosen[study], [input]: id } },
       }));
 
+    /** A link that waits for its acquisitions is of the session as it was saved, not of what is changed before. */
+    const dropPendingLink = (): void =>
+      set(({ saved, study }) =>
+        saved[study]?.key === null ? { saved: { ...saved, [study]: undefined } } : {},
+      );
+
+    const changeDials = (change: (history: DialHistory) => DialHistory): void => {
+      dropPendingLink();
+      set((state) => ({ dials: { ...state.dials, [state.study]: change(currentHistory(state)) } }));
+    };
+
     return {
       ...emptyBench,
 
@@ -135,15 +156,17 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
         const added: string[] = [];
         for (const { file, sample, input } of files) {
           const { shelf, waiting } = get();
-          const awaited = shelf.find(
-            (a) => a.reading.status === 'awaited' && a.name === file.name && a.bytes === file.size,
+          const named = shelf.filter((a) => a.reading.status === 'awaited' && a.name === file.name);
+          // A sample made anew may have another size; its fingerprint will tell.
+          const awaited = named.find(
+            (a) => a.bytes === file.size || (sample !== null && a.sample === sample),
           );
           if (awaited !== undefined) {
-            patch(awaited.id, { file, sample, reading: { status: 'looking' } });
+            patch(awaited.id, { file, bytes: file.size, sample, reading: { status: 'looking' } });
             added.push(awaited.id);
             continue;
           }
-          const almost = shelf.find((a) => a.reading.status === 'awaited' && a.name === file.name);
+          const almost = named[0];
           if (almost !== undefined) {
             get().say(
               `${file.name} has ${file.size} bytes, the session used one of ${almost.bytes}; it was added as another acquisition.`,
@@ -161,38 +184,27 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
           }
           added.push(acquisition.id);
         }
-        for (const id of added) void look(id);
-      },
-
-      awaitFiles(entries) {
-        for (const { name, bytes, input } of entries) {
-          const { waiting } = get();
-          const fresh = newAcquisition(nextId(), { name, bytes, file: null, sample: null });
-          set({
-            shelf: [...get().shelf, withSetting(fresh, input === null ? undefined : waiting[input])],
-          });
-          if (input !== null) {
-            chooseFor(input, fresh.id);
-            set({ waiting: Object.fromEntries(Object.entries(waiting).filter(([key]) => key !== input)) });
-          }
-        }
+        for (const id of added) void look(id, { keepsMap: true });
       },
 
       lookAgain(id) {
-        void look(id);
+        void look(id, { keepsMap: false });
       },
 
       changeReading(id, { inspection, ...change }) {
+        dropPendingLink();
         patch(id, { ...change, layoutGiven: true, reading: { status: 'read', inspection } });
       },
 
       remove(id) {
+        dropPendingLink();
         const gone = get().shelf.find((a) => a.id === id);
         set(({ shelf }) => ({ shelf: shelf.filter((a) => a.id !== id) }));
         if (gone !== undefined) get().say(`${gone.name} taken off the shelf.`);
       },
 
       assign(input, id) {
+        dropPendingLink();
         // One acquisition cannot serve two inputs without being asked to: it leaves the other.
         const before = currentAssignment(get());
         for (const [other, held] of Object.entries(before))
@@ -205,30 +217,25 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
       },
 
       turn(values) {
-        const { study } = get();
-        const history = turnDials(currentHistory(get()), values, Date.now());
-        set(({ dials }) => ({ dials: { ...dials, [study]: history } }));
+        changeDials((history) => turnDials(history, values, Date.now()));
       },
 
       undo() {
-        const { study } = get();
-        set(({ dials }) => ({ dials: { ...dials, [study]: undoDials(currentHistory(get())) } }));
+        changeDials(undoDials);
       },
 
       redo() {
-        const { study } = get();
-        set(({ dials }) => ({ dials: { ...dials, [study]: redoDials(currentHistory(get())) } }));
+        changeDials(redoDials);
       },
 
       resetDials() {
-        const { study, preset } = get();
-        const base = preset?.study === study ? preset.dials : {};
-        set(({ dials }) => ({ dials: { ...dials, [study]: replaceDials(currentHistory(get()), base) } }));
+        changeDials((history) => replaceDials(history, baseDials(get())));
       },
 
       openSettings({ study, dials: given, inputs, seed }, ref) {
         set(({ dials, chosen }) => ({
           preset: ref,
+          session: null,
           study,
           seed,
           dials: { ...dials, [study]: startHistory(given) },
@@ -246,9 +253,15 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
           patch(id, withSetting(acquisition, setting));
           chooseFor(input, id);
           taken.add(input);
-          if (acquisition.file !== null && setting.layout !== null) void look(id);
+          if (acquisition.file !== null && setting.layout !== null)
+            void look(id, { keepsMap: setting.detector !== null });
         }
         set({ waiting: Object.fromEntries(Object.entries(inputs).filter(([key]) => !taken.has(key))) });
+      },
+
+      openSession(session, saved) {
+        const { studies, studiesProblem } = get();
+        set({ ...emptyBench, studies, studiesProblem, session, ...benchOfSession(saved, nextId) });
       },
 
       clear() {

@@ -45,6 +45,18 @@ export interface PresetRef {
   inputs: Record<string, InputSetting>;
 }
 
+/** A result in the group's store, found with the inputs and dials of `key`. */
+export interface SavedResult {
+  id: string;
+  /** null in a session just opened, until its acquisitions are here again. */
+  key: string | null;
+}
+
+export interface SessionRef {
+  id: string;
+  name: string;
+}
+
 export interface BenchState {
   studies: readonly StudyInfo[];
   studiesProblem: ProblemData | null;
@@ -56,9 +68,12 @@ export interface BenchState {
   /** How the inputs of the study are to be read, for acquisitions still to come. */
   waiting: Record<string, InputSetting>;
   preset: PresetRef | null;
+  /** The session the bench was opened from or saved as last. */
+  session: SessionRef | null;
   seed: number;
   run: RunState;
   found: Partial<Record<StudyId, Found>>;
+  saved: Partial<Record<StudyId, SavedResult>>;
   log: readonly LogLine[];
 }
 
@@ -73,8 +88,10 @@ export const emptyBench: BenchState = {
   dials: {},
   waiting: {},
   preset: null,
+  session: null,
   seed: DEFAULT_SEED,
   run: { status: 'idle' },
   found: {},
+  saved: {},
   log: [],
 };

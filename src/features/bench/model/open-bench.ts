@@ -39,27 +39,20 @@ export function openWanted(opener: Opener, wanted: Wanted): Promise<void> {
 }
 
 async function openSession({ store, queries, groupId }: Opener, id: string): Promise<void> {
-  const { name, state } = await queries.fetchQuery(sessionQuery(groupId, id));
+  const row = await queries.fetchQuery(sessionQuery(groupId, id));
   const actions = store.getState();
   // Files of the session that are still at hand need not be asked for again.
   const held = actions.shelf.flatMap(({ file, sample }) => (file === null || sample !== null ? [] : [file]));
-  actions.clear();
-  const { study, dials, inputs } = state.preset;
-  actions.openSettings({ study, dials, inputs, seed: state.seed }, null);
-  const own = state.shelf.filter(({ sample }) => sample === null);
-  actions.awaitFiles(own);
-  actions.say(`Session ${name} opened.`);
-  for (const { name: ownName, bytes } of own) {
-    const file = held.find((candidate) => candidate.name === ownName && candidate.size === bytes);
+  actions.openSession({ id: row.id, name: row.name }, row.state);
+  actions.say(`Session ${row.name} opened.`);
+  for (const { name, bytes, sample } of row.state.shelf) {
+    if (sample !== null) continue;
+    const file = held.find((candidate) => candidate.name === name && candidate.size === bytes);
     if (file !== undefined) actions.addFiles([{ file, sample: null }]);
-    else actions.say(`Drop ${ownName} again: its bytes stayed on your machine.`);
+    else actions.say(`Drop ${name} again: its bytes stayed on your machine.`);
   }
-  const samples = await Promise.all(
-    state.shelf.flatMap(({ sample, input }) =>
-      sample === null ? [] : [fetchInOrder(sample, input ?? undefined)],
-    ),
-  );
-  actions.addFiles(samples);
+  const samples = new Set(row.state.shelf.flatMap(({ sample }) => sample ?? []));
+  actions.addFiles(await Promise.all([...samples].map((sample) => fetchInOrder(sample, undefined))));
 }
 
 async function openPreset(

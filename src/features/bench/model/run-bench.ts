@@ -1,7 +1,8 @@
 import type { RunEvent } from '../../../../shared/contracts/engine';
 import { bytesWords, durationWords, shortCount } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
-import { currentStudy, type Plan, planRun } from './bench-selectors';
+import { isOtherFile } from './acquisition';
+import { currentAssignment, currentStudy, type Plan, planRun } from './bench-selectors';
 import type { BenchStore } from './bench-store';
 import type { BenchState, Found, Progress } from './bench-types';
 
@@ -49,6 +50,7 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     const jobId = `job-${++jobs}`;
     active = { jobId, key, inputsKey };
     const isCurrent = (): boolean => active?.jobId === jobId;
+    const holders = currentAssignment(store.getState());
     store.setState({ run: { status: 'running', jobId, key, progress: null } });
     const onEvent = (event: RunEvent): void => {
       if (!isCurrent()) return;
@@ -65,10 +67,14 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     if (outcome.status === 'ok') {
       const { output, provenance } = outcome.value;
       keep({ output, result: outcome.value, fraction: null, key }, request.study);
-      store.setState(({ shelf }) => ({
-        run: { status: 'done', key, seconds: provenance.seconds },
-        shelf: rememberHashes(shelf, provenance.inputs),
-      }));
+      const before = store.getState().shelf;
+      const shelf = rememberHashes(before, holders, provenance.inputs);
+      store.setState({ run: { status: 'done', key, seconds: provenance.seconds }, shelf });
+      for (const other of shelf.filter((a) => isOtherFile(a) && !before.includes(a))) {
+        say(`${other.name} is not the file the session was made with: its fingerprint differs.`, 'problem');
+        // The session's result was found in the other file.
+        store.setState(({ saved }) => ({ saved: { ...saved, [request.study]: undefined } }));
+      }
       const label = currentStudy(store.getState())?.label ?? request.study;
       say(`${label} done in ${durationWords(provenance.seconds)}.`);
     } else if (outcome.status === 'cancelled') {
@@ -85,12 +91,15 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     if (timer !== null) clearTimeout(timer);
     timer = null;
     const plan = planRun(store.getState());
-    const { run, found, study } = store.getState();
+    const { run, found, saved, study } = store.getState();
     if (plan.request === null) {
       dropActive();
       if (run.status !== 'idle') store.setState({ run: { status: 'idle' } });
       return;
     }
+    // The acquisitions of an opened session are all here: its result is of this plan and of no other.
+    if (saved[study]?.key === null)
+      store.setState({ saved: { ...saved, [study]: { ...saved[study], key: plan.key } } });
     if (active?.key === plan.key) return;
     const known = found[study];
     if (known?.key === plan.key && known.result !== null) {
@@ -124,15 +133,19 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
   };
 }
 
+/** Two files may share name and size, so the fingerprint goes to the acquisition that served the input. */
 function rememberHashes(
   shelf: BenchState['shelf'],
-  inputs: readonly { fileName: string; bytes: number; sha256: string }[],
+  holders: Record<string, string | null>,
+  inputs: readonly { name: string; sha256: string }[],
 ): BenchState['shelf'] {
-  const hashOf = (name: string, bytes: number): string | undefined =>
-    inputs.find((input) => input.fileName === name && input.bytes === bytes)?.sha256;
-  const isNews = shelf.some((a) => (hashOf(a.name, a.bytes) ?? a.sha256) !== a.sha256);
+  const hashes = new Map(inputs.map(({ name, sha256 }) => [holders[name], sha256]));
+  const isNews = shelf.some((a) => (hashes.get(a.id) ?? a.sha256) !== a.sha256);
   if (!isNews) return shelf;
-  return shelf.map((a) => ({ ...a, sha256: hashOf(a.name, a.bytes) ?? a.sha256 }));
+  return shelf.map((a) => {
+    const sha256 = hashes.get(a.id) ?? a.sha256;
+    return sha256 === a.sha256 ? a : { ...a, sha256 };
+  });
 }
 
 /** Short, for the line beside the studies: how far, how fast, how long. */

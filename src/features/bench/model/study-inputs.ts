@@ -83,7 +83,9 @@ export function needOf(spec: InputSpec, acquisition: Acquisition | undefined): N
   if (acquisition === undefined)
     return { sentence: `${spec.label}: an acquisition with ${kinds} is needed.`, acquisitionId: null };
   const at = { acquisitionId: acquisition.id };
-  const { name, reading } = acquisition;
+  const { name, reading, sample } = acquisition;
+  if (reading.status === 'awaited' && sample !== null)
+    return { sentence: `The sample ${name} is on its way from the server.`, acquisitionId: null };
   if (reading.status === 'awaited')
     return { sentence: `Drop ${name} again: its bytes stay on your machine.`, acquisitionId: null };
   if (reading.status === 'looking') return { sentence: `Looking at ${name}.`, ...at };

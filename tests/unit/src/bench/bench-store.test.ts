@@ -1,22 +1,29 @@
 import { describe, expect, it } from 'vitest';
-import { benchStateSchema } from '../../../../shared/contracts/http';
+import { type BenchState, benchStateSchema } from '../../../../shared/contracts/http';
 import type { Plane } from '../../../../shared/contracts/plane';
 import { presetSchema } from '../../../../shared/contracts/preset';
-import {
-  presetOfBench,
-  presetOfResult,
-  sessionOfBench,
-} from '../../../../src/features/bench/model/bench-records';
+import { presetOfBench, presetOfResult } from '../../../../src/features/bench/model/bench-records';
 import {
   currentAssignment,
   currentDials,
   isReadingChanged,
+  linkedResult,
   planRun,
 } from '../../../../src/features/bench/model/bench-selectors';
 import { createBenchStore } from '../../../../src/features/bench/model/bench-store';
+import { sessionOfBench } from '../../../../src/features/bench/model/session-bench';
 import { fakeEngine, fileOf, inspectionOf, outputOf, resultOf, settle, tagsLayout } from './fake-engine';
 
 const near: Plane = { version: 1, kind: 'near', magnification: { value: 4, sigma: 0.04 } };
+
+const oldSession: BenchState = {
+  version: 1,
+  study: 'delay',
+  preset: { gemel: 1, kind: 'preset', name: 'Monday', study: 'delay', dials: { window: 200 }, inputs: {} },
+  shelf: [{ name: 'near.h5', bytes: 80, sha256: 'cd'.repeat(32), input: 'tags', sample: null }],
+  seed: 1,
+  resultId: 'r1',
+};
 
 async function freshBench() {
   const engine = fakeEngine();
@@ -114,12 +121,13 @@ describe('presets and sessions', () => {
 
   it('ask for files of one’s own again, by name and size', async () => {
     const { store } = await freshBench();
-    const { awaitFiles, addFiles, openSettings } = store.getState();
-    openSettings({ study: 'delay', dials: { window: 200 }, inputs: {}, seed: 1 }, null);
-    awaitFiles([{ name: 'near.h5', bytes: 80, input: 'tags' }]);
+    const { addFiles, openSession } = store.getState();
+    // As stored before the shelf kept its readings.
+    openSession({ id: 's', name: 'Monday' }, oldSession);
     expect(planRun(store.getState()).needs[0]?.sentence).toBe(
       'Drop near.h5 again: its bytes stay on your machine.',
     );
+    expect(linkedResult(store.getState())).toBe('r1');
     addFiles([{ file: fileOf('near.h5', 81), sample: null }]);
     await settle();
     expect(store.getState().shelf).toHaveLength(2);
@@ -130,6 +138,60 @@ describe('presets and sessions', () => {
     expect(planRun(store.getState()).request?.dials).toEqual({ window: 200, delay: null });
   });
 
+  it('bring the whole bench back: readings, dials and inputs of every study', async () => {
+    const { store } = await freshBench();
+    store.getState().addFiles([
+      { file: fileOf('far.h5'), sample: null },
+      { file: fileOf('near.h5'), sample: null },
+      { file: fileOf('spare.h5'), sample: null },
+    ]);
+    await settle();
+    const [far, close, spare] = store.getState().shelf;
+    const { detector, reading } = far!;
+    if (reading.status !== 'read' || detector?.kind !== 'tags') throw new Error('not read');
+    // Corrected by hand, its pitch still unknown: neither a proposal nor a given map.
+    const corrected = { ...detector, idler: { ...detector.idler!, flipX: true } };
+    const change = { layout: tagsLayout, plane: near, inspection: reading.inspection };
+    store.getState().changeReading(far!.id, { ...change, detector: corrected, detectorGiven: false });
+    store.getState().turn({ window: 300 });
+    store.getState().assign('tags', spare!.id);
+    store.getState().chooseStudy('witness');
+    store.getState().assign('near', far!.id);
+    store.getState().assign('far', null);
+    const saved = benchStateSchema.parse(JSON.parse(JSON.stringify(sessionOfBench(store.getState(), 'All'))));
+
+    const again = (await freshBench()).store;
+    again.getState().openSession({ id: 's', name: 'All' }, saved);
+    again
+      .getState()
+      .addFiles(['near.h5', 'spare.h5', 'far.h5'].map((name) => ({ file: fileOf(name), sample: null })));
+    await settle();
+    const state = again.getState();
+    expect(state.study).toBe('witness');
+    expect(state.shelf.map(({ name }) => name)).toEqual(['far.h5', 'near.h5', 'spare.h5']);
+    expect(state.shelf[0]).toMatchObject({ layoutGiven: true, detector: corrected, detectorGiven: false });
+    expect(state.shelf[0]?.plane).toEqual(near);
+    expect(state.shelf[1]).toMatchObject({ layoutGiven: false, detector: close!.detector, plane: null });
+    expect(currentAssignment(state)).toEqual({ near: state.shelf[0]!.id, far: null });
+    again.getState().chooseStudy('delay');
+    expect(currentAssignment(again.getState())).toEqual({ tags: state.shelf[2]!.id });
+    expect(currentDials(again.getState())).toEqual({ window: 300, delay: null });
+  });
+
+  it('link a result only as long as nothing was changed since', async () => {
+    const { store } = await freshBench();
+    store.getState().openSession({ id: 's', name: 'Monday' }, oldSession);
+    store.getState().turn({ window: 210 });
+    expect(linkedResult(store.getState())).toBeNull();
+    store.setState({ saved: { delay: { id: 'r2', key: planRun(store.getState()).key } } });
+    expect(linkedResult(store.getState())).toBe('r2');
+    expect(sessionOfBench(store.getState(), 'Later').resultId).toBe('r2');
+    store.getState().turn({ delay: 10 });
+    expect(sessionOfBench(store.getState(), 'Later').resultId).toBeNull();
+    store.getState().undo();
+    expect(linkedResult(store.getState())).toBe('r2');
+  });
+
   it('are stored in the shape of their contracts, without a proposed pitch', async () => {
     const { store } = await freshBench();
     store.getState().addFiles([{ file: fileOf('run.h5'), sample: 'run.h5' }]);
@@ -138,10 +200,10 @@ describe('presets and sessions', () => {
     const preset = presetSchema.parse(presetOfBench(store.getState(), 'Monday', { fixProposals: true }));
     expect(preset.inputs.tags).toEqual({ layout: tagsLayout, detector: null, plane: null });
     expect(preset.dials.window).toBe(300);
-    const session = benchStateSchema.parse(sessionOfBench(store.getState(), 'Monday', null));
+    const session = benchStateSchema.parse(sessionOfBench(store.getState(), 'Monday'));
     expect(session.preset.inputs.tags?.layout).toBeNull();
-    expect(session.shelf).toEqual([
-      { name: 'run.h5', bytes: 80, sha256: null, input: 'tags', sample: 'run.h5' },
+    expect(session.shelf).toMatchObject([
+      { name: 'run.h5', bytes: 80, sha256: null, input: 'tags', sample: 'run.h5', layout: null },
     ]);
   });
 

@@ -1,5 +1,6 @@
 import { afterEach, beforeEach, describe, expect, it, vi } from 'vitest';
-import { planRun } from '../../../../src/features/bench/model/bench-selectors';
+import { isOtherFile } from '../../../../src/features/bench/model/acquisition';
+import { linkedResult, planRun } from '../../../../src/features/bench/model/bench-selectors';
 import { createBenchStore } from '../../../../src/features/bench/model/bench-store';
 import { attachRunner } from '../../../../src/features/bench/model/run-bench';
 import { fakeEngine, fileOf, outputOf, resultOf, settle } from './fake-engine';
@@ -108,5 +109,46 @@ describe('a run', () => {
     await vi.advanceTimersByTimeAsync(1000);
     expect(engine.runs).toHaveLength(1);
     expect(store.getState().run.status).toBe('done');
+  });
+
+  it('says when a file is not the one the session was made with, and drops the link to its result', async () => {
+    const engine = fakeEngine();
+    const store = createBenchStore(engine);
+    attachRunner(store, engine);
+    await store.getState().loadStudies();
+    const entry = (name: string, sha256: string, input: string | null) => ({
+      name,
+      bytes: 80,
+      sha256,
+      input,
+      sample: null,
+    });
+    store.getState().openSession(
+      { id: 's', name: 'Monday' },
+      {
+        version: 1,
+        study: 'delay',
+        preset: { gemel: 1, kind: 'preset', name: 'Monday', study: 'delay', dials: {}, inputs: {} },
+        shelf: [entry('run.h5', 'cd'.repeat(32), 'tags'), entry('run.h5', 'ef'.repeat(32), null)],
+        seed: 1,
+        resultId: 'r1',
+      },
+    );
+    store.getState().addFiles([
+      { file: fileOf('run.h5'), sample: null },
+      { file: fileOf('run.h5'), sample: null },
+    ]);
+    await settle();
+    await vi.advanceTimersByTimeAsync(1);
+    expect(linkedResult(store.getState())).toBe('r1');
+    expect(store.getState().saved.delay?.key).toBe(planRun(store.getState()).key);
+    const run = engine.runs[0]!;
+    run.answer({ status: 'ok', value: resultOf(outputOf(), run.request) });
+    await settle();
+    const { shelf, log } = store.getState();
+    // The other file of that name and size was not read.
+    expect(shelf.map(isOtherFile)).toEqual([true, false]);
+    expect(log.filter(({ text }) => text.includes('not the file the session was made with'))).toHaveLength(1);
+    expect(linkedResult(store.getState())).toBeNull();
   });
 });
