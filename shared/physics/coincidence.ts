@@ -13,7 +13,10 @@ export function accidentalsFromSingles(
   pairs = 0,
 ): Estimate {
   const value = (countsA * countsB * windowS) / spanS;
-  if (value === 0) return { value, sigma: windowS / spanS };
+  if (countsA === 0 || countsB === 0) {
+    // An arm without a tag may have missed about one; the other then pairs all of its own with it.
+    return { value, sigma: (Math.max(1, countsA) * Math.max(1, countsB) * windowS) / spanS };
+  }
   const relative = 1 / countsA + 1 / countsB + (2 * Math.max(0, pairs)) / (countsA * countsB);
   return { value, sigma: value * Math.sqrt(relative) };
 }

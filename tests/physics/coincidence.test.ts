@@ -39,7 +39,10 @@ describe('accidentals', () => {
   });
 
   it('gives no number where there is none', () => {
-    expect(accidentalsFromSingles(0, 10, 1e-9, 1).value).toBe(0);
+    // One missed tag would have met all ten of the other arm.
+    expect(accidentalsFromSingles(0, 10, 1e-9, 1)).toEqual({ value: 0, sigma: 1e-8 });
+    expect(accidentalsFromSingles(10, 0, 1e-9, 1)).toEqual({ value: 0, sigma: 1e-8 });
+    expect(accidentalsFromSingles(0, 0, 1e-9, 1)).toEqual({ value: 0, sigma: 1e-9 });
     // None seen is not none with certainty: one count is the scale of the error.
     expect(accidentalsFromWindows(0, 10)).toEqual({ value: 0, sigma: 0.1 });
     expect(coincidencesToAccidentals(10, { value: 0, sigma: 0 })).toBeNull();
