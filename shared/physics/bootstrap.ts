@@ -53,11 +53,18 @@ export interface Spread {
   mean: number;
 }
 
-/** Spread of resampled values. NaN where fewer than two of them are finite. */
+/** Share of the resamples that must have a value for their spread to mean anything. */
+export const LEAST_FINITE = 0.98;
+
+/**
+ * Spread of resampled values. NaN where fewer than two, or fewer than 98 in a hundred, are finite: a quantity that
+ * resampling so often makes impossible has no standard error, and leaving those draws out would make it look better.
+ */
 export function spreadOf(values: Float64Array): Spread {
   const kept = values.filter((v) => Number.isFinite(v)).sort();
   const n = kept.length;
-  if (n < 2) return { sigma: Number.NaN, interval: [Number.NaN, Number.NaN], mean: Number.NaN };
+  if (n < 2 || n < LEAST_FINITE * values.length)
+    return { sigma: Number.NaN, interval: [Number.NaN, Number.NaN], mean: Number.NaN };
   let mean = 0;
   for (const v of kept) mean += v / n;
   let squares = 0;

@@ -35,6 +35,13 @@ describe('Block bootstrap', () => {
     expect(percentile(Float64Array.of(0, 1, 2, 3), 0.5)).toBe(1.5);
     expect([...recentre(Float64Array.of(1, 3), 4)]).toEqual([2, 6]);
   });
+
+  it('has no spread where resampling often leaves no value', () => {
+    const withGaps = (gaps: number) =>
+      Float64Array.from({ length: 100 }, (_, k) => (k < gaps ? Number.NaN : k));
+    expect(spreadOf(withGaps(2)).sigma).toBeGreaterThan(0);
+    expect(spreadOf(withGaps(3)).sigma).toBeNaN();
+  });
 });
 
 describe('Fit of a joint map', () => {

@@ -1,3 +1,4 @@
+import { LEAST_FINITE } from '../../shared/physics/bootstrap';
 import { createRandom } from '../../shared/util/random';
 
 /** Fewer blocks than this give no honest bootstrap error. */
@@ -35,7 +36,7 @@ export function spreadOver(
   const values = draws
     .map(statistic)
     .filter((value): value is number => value !== null && Number.isFinite(value));
-  if (values.length < 2 || values.length < 0.98 * draws.length) return null;
+  if (values.length < 2 || values.length < LEAST_FINITE * draws.length) return null;
   const mean = values.reduce((sum, value) => sum + value, 0) / values.length;
   return Math.sqrt(values.reduce((sum, value) => sum + (value - mean) ** 2, 0) / (values.length - 1));
 }

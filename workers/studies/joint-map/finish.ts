@@ -8,7 +8,7 @@ import { chosenDials } from '../tag-main';
 import { coincidencesOf } from '../tag-numbers';
 import { analysePlane } from './inputs';
 import { checkCalibration } from './plane-checks';
-import { axisNames, type PlaneResult } from './plane-result';
+import { axisNames, noVariances, type PlaneResult } from './plane-result';
 import { addQuantities, type Resampled, widthOf } from './resampled';
 
 export function finishJointMap({ inputs, dials, seed, partial }: FinishRequest): StudyOutput {
@@ -44,8 +44,11 @@ function widthQuantities(plane: PlaneResult): Record<string, Quantity> {
     part: variance === null ? null : widthOf(variance),
     unit,
   });
+  // Moments weigh the edges of the map most, where few pairs and many accidentals lie.
+  const fewPairs = plane.checks.some(({ id, status }) => id === 'pairs-enough' && status === 'fail');
   for (const axis of axisNames) {
-    const { net, moment } = plane.axes[axis];
+    const { net } = plane.axes[axis];
+    const moment = fewPairs ? noVariances : plane.axes[axis].moment;
     addQuantities(quantities, {
       [`width.${axis}.minus.fit`]: width(net.minus),
       [`width.${axis}.minus.moment`]: width(moment.minus),

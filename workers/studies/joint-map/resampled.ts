@@ -34,8 +34,16 @@ export function toQuantity(part: Resampled, unit: string): Quantity | null {
   return { value: part.value, sigma, unit, method: part.method, n: part.n };
 }
 
-/** Square root of a variance; a negative one has no width. */
-export function widthOf(variance: Resampled): Resampled {
+/** Standard errors that a variance must lie above zero to have a width. */
+const CLEAR_OF_ZERO = 3;
+
+/**
+ * Square root of a variance; null where the variance is not clear of zero, because a width and its first-order error
+ * then say nothing.
+ */
+export function widthOf(variance: Resampled): Resampled | null {
+  const { sigma } = spreadOf(variance.resampled);
+  if (!(variance.value > CLEAR_OF_ZERO * sigma)) return null;
   return combine([variance], variance.method, (v) => (v > 0 ? Math.sqrt(v) : Number.NaN));
 }
 

@@ -92,6 +92,25 @@ describe('Joint map', () => {
     expect(['caution', 'fail']).toContain(status(broad, 'map-truncated'));
   });
 
+  it('gives no width of a variance that is not clear of zero, and no moments of few pairs', () => {
+    const widthsOf = (found: ReturnType<typeof finish>) =>
+      Object.entries(found.quantities).filter(([id]) => id.startsWith('width'));
+    for (const [pairs, accidentals, seed] of [
+      [120, 400, 4],
+      [250, 20_000, 21],
+      [250, 20_000, 22],
+      [400, 20_000, 23],
+    ] as const) {
+      const found = finish(simulateTally({ ...scene, pairs, accidentals }, createRandom(seed)));
+      const few = status(found, 'pairs-enough') === 'fail';
+      for (const [id, { value, sigma }] of widthsOf(found)) {
+        // A variance three errors above zero has a width six errors above it.
+        expect(value, id).toBeGreaterThan(5.5 * sigma!);
+        if (few) expect(id).not.toContain('moment');
+      }
+    }
+  });
+
   it('gives no number from fewer than eight slices, but still the maps', () => {
     const short = finish(simulateTally({ ...scene, slices: 4 }, createRandom(6)));
     expect(status(short, 'slices-enough')).toBe('fail');
