@@ -2,7 +2,7 @@ import compression from 'compression';
 import express, { type Express } from 'express';
 import type { Config } from '../platform/config';
 import { createHttpLog, type Logger } from '../platform/log';
-import { giveNonce, refuseForeignOrigins, securityHeaders } from '../platform/security';
+import { giveNonce, refuseForeignHosts, refuseForeignOrigins, securityHeaders } from '../platform/security';
 import { createErrorHandler, refuseUnknown } from '../routes/errors';
 import { createGroupRouter } from '../routes/group-routes';
 import { createPageRouter } from '../routes/page-routes';
@@ -14,6 +14,8 @@ import { createSignInRouter, type SignInLimits } from '../routes/sign-in-routes'
 export interface AppDeps extends RouteDeps {
   log: Logger;
   proxy: Config['proxy'];
+  /** Only this machine can connect. */
+  loopback: boolean;
   limits: SignInLimits;
   /** Folder of the built page; null serves the API alone (development). */
   pageDir: string | null;
@@ -34,6 +36,7 @@ export function createApp(deps: AppDeps): Express {
     response.set('Cache-Control', 'no-store');
     next();
   });
+  if (deps.loopback) app.use('/api', refuseForeignHosts(deps.trustedOrigins));
   app.use('/api', refuseForeignOrigins(deps.trustedOrigins));
   app.use(
     '/api',

@@ -9,7 +9,14 @@ import { createPresets } from '../data/repositories/presets';
 import { createResults } from '../data/repositories/results';
 import { createSessions } from '../data/repositories/sessions';
 import { createSampleStore } from '../data/sample-store';
-import { admitFirstLead, closeDemo, openDemo, type SeedStores } from '../domain/seed';
+import {
+  admitFirstLead,
+  closeDemo,
+  hasRealLead,
+  isDemoEmail,
+  openDemo,
+  type SeedStores,
+} from '../domain/seed';
 import { createAuth, hashNewPassword } from '../platform/auth';
 import { type Config, isLoopback } from '../platform/config';
 import type { Logger } from '../platform/log';
@@ -106,6 +113,8 @@ export async function assemble(
     hash: hashNewPassword,
     note: (text) => log.warn(text),
   };
+  // Asked at every request: another server on the same database may open its demo at any time.
+  const isBarred = (email: string): boolean => !config.loopback && isDemoEmail(email);
   const demo = config.loopback ? await openDemo(seed, secrets.demoPassword) : null;
   if (!config.loopback) await prepareOpenServer(config, seed, say);
   return {
@@ -116,10 +125,15 @@ export async function assemble(
     results: createResults(db),
     maps: createMapStore(join(config.dataDir, 'maps')),
     info: { version: place.version, demo },
-    whoIs: auth.whoIs,
+    whoIs: async (headers) => {
+      const person = await auth.whoIs(headers);
+      return person === null || isBarred(person.email) ? null : person;
+    },
+    isBarred,
     signInLibrary: auth.handler,
     origin: config.origin,
     trustedOrigins: config.trustedOrigins,
+    loopback: config.loopback,
     log,
     proxy: config.proxy,
     limits: { failures: 20, calls: 600 },
@@ -139,9 +153,15 @@ async function prepareOpenServer(
       'GEMEL_ORIGIN is an address other machines reach and HOST is this machine alone, so a proxy stands in front: set GEMEL_PROXY=loopback, or everybody shares one limit of failed sign-ins.',
     );
   }
-  if (config.leadEmail === null || (await seed.people.hasPerson(config.leadEmail))) return;
+  if (config.leadEmail === null || (await seed.people.hasPerson(config.leadEmail))) {
+    if (await hasRealLead(seed.people)) return;
+    say(
+      'Nobody leads this server yet, so nobody can be let in: set GEMEL_LEAD_EMAIL to the e-mail address of its first lead and start again.',
+    );
+    return;
+  }
   const password = randomBytes(12).toString('base64url');
-  await admitFirstLead(seed, config.leadEmail, password);
+  await admitFirstLead(seed, config.groupName, config.leadEmail, password);
   say(`First lead: ${config.leadEmail}  password: ${password}  (shown once; change it after signing in)`);
 }
 

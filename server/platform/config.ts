@@ -24,6 +24,8 @@ export interface Config {
   logLevel: string;
   /** First lead of a server that has no demo sign-in. */
   leadEmail: string | null;
+  /** Name the group of that lead is given when it is made. */
+  groupName: string;
 }
 
 const portWords = 'expected a whole number from 1 to 65535';
@@ -49,6 +51,12 @@ const environmentSchema = z.object({
     z.enum(['silent', 'error', 'warn', 'info', 'debug'], 'expected silent, error, warn, info or debug'),
   ),
   GEMEL_LEAD_EMAIL: optional(z.email('expected an e-mail address')),
+  GEMEL_GROUP: optional(
+    z
+      .string()
+      .trim()
+      .regex(/^\P{Cc}{1,100}$/u, 'expected a name of one line, up to 100 characters'),
+  ),
 });
 
 export function isLoopback(host: string): boolean {
@@ -91,6 +99,7 @@ export function parseConfig(
     development: place.development,
     logLevel: given.GEMEL_LOG ?? 'info',
     leadEmail: given.GEMEL_LEAD_EMAIL?.toLowerCase() ?? null,
+    groupName: given.GEMEL_GROUP ?? 'Our group',
   };
 }
 

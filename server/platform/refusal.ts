@@ -9,6 +9,7 @@ const statusOf = {
   'wrong-sign-in': 401,
   'not-allowed': 403,
   'foreign-origin': 403,
+  'foreign-host': 403,
   'not-found': 404,
   'too-large': 413,
   'not-json': 415,

@@ -60,3 +60,22 @@ export function refuseForeignOrigins(trusted: readonly string[]): RequestHandler
     next();
   };
 }
+
+/**
+ * On loopback the demo password is told to whoever asks, and a page from elsewhere can ask: it lets its own name point
+ * to this machine after it was loaded. Such a request names that host. Ports are not compared: a name is enough to tell.
+ */
+export function refuseForeignHosts(trusted: readonly string[]): RequestHandler {
+  const names = new Set(trusted.map((origin) => new URL(origin).hostname));
+  return (request, _response, next) => {
+    const host = request.get('host') ?? '';
+    const name = host.toLowerCase().replace(/:\d*$/, '');
+    if (!names.has(name)) {
+      throw new Refusal(
+        'foreign-host',
+        `This request asks for the host ${JSON.stringify(host)}, and this server answers ${trusted[0] ?? 'this machine'} only. Open that address, or set GEMEL_ORIGIN to the one you use.`,
+      );
+    }
+    next();
+  };
+}

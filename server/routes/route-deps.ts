@@ -18,6 +18,8 @@ export interface RouteDeps {
   info: ServerInfo;
   /** The person of a request's session cookie. */
   whoIs(headers: IncomingHttpHeaders): Promise<PersonRecord | null>;
+  /** True for people who may not sign in on this server, whatever their password. */
+  isBarred(email: string): boolean;
   /** Answers a request of the sign-in library, given and returned as web standard objects. */
   signInLibrary(request: globalThis.Request): Promise<globalThis.Response>;
   origin: string;

@@ -3,15 +3,11 @@ import { rateLimit } from 'express-rate-limit';
 import type { ErrorBody } from '../../shared/contracts/http';
 import { z } from '../../shared/util/zod';
 import { Refusal, type RefusalCode } from '../platform/refusal';
+import { requirePerson } from './people-routes';
 import type { RouteDeps } from './route-deps';
 
-/** What of the sign-in library is open; the rest (sign-up, groups, invitations) is not reachable. */
-const openPaths = {
-  '/sign-in/email': 'post',
-  '/sign-out': 'post',
-  '/change-password': 'post',
-  '/get-session': 'get',
-} as const;
+/** What of the sign-in library is open; the rest (sign-up, groups, invitations, reading the token) is not reachable. */
+const openPaths = ['/sign-in/email', '/sign-out', '/change-password'] as const;
 
 export interface SignInLimits {
   /** Failed sign-ins from one address in five minutes. */
@@ -38,10 +34,18 @@ export function createSignInRouter(deps: RouteDeps, limits: SignInLimits): Route
     });
   router.use('/auth', limiter(limits.calls, false));
   router.use('/auth/sign-in', limiter(limits.failures, true));
-  for (const [path, method] of Object.entries(openPaths)) {
-    router[method](`/auth${path}`, express.json({ limit: '16kb' }), (request, response) =>
-      passOn(deps, request, response),
-    );
+  const parse = express.json({ limit: '16kb' });
+  router.post('/auth/sign-in/email', parse, (request, _response, next) => {
+    const { success, data } = emailSchema.safeParse(request.body);
+    if (success && deps.isBarred(data.email)) throw wrongSignIn();
+    next();
+  });
+  router.post('/auth/change-password', async (request, _response, next) => {
+    await requirePerson(deps, request);
+    next();
+  });
+  for (const path of openPaths) {
+    router.post(`/auth${path}`, parse, (request, response) => passOn(deps, request, response));
   }
   return router;
 }
@@ -52,35 +56,44 @@ async function passOn(deps: RouteDeps, request: Request, response: Response): Pr
     const value = request.get(name);
     if (value !== undefined) headers.set(name, value);
   }
-  const post = request.method === 'POST';
-  if (post) headers.set('content-type', 'application/json');
+  headers.set('content-type', 'application/json');
   const answer = await deps.signInLibrary(
     new globalThis.Request(new URL(request.originalUrl, deps.origin), {
-      method: request.method,
+      method: 'POST',
       headers,
-      body: post ? JSON.stringify(request.body ?? {}) : undefined,
+      body: JSON.stringify(request.body ?? {}),
     }),
   );
   const cookies = answer.headers.getSetCookie();
   if (cookies.length > 0) response.setHeader('Set-Cookie', cookies);
   response.set('Cache-Control', 'no-store');
-  const text = await answer.text();
-  if (answer.ok)
-    response
-      .status(answer.status)
-      .type('json')
-      .send(text === '' ? 'null' : text);
-  else response.status(answer.status).json(explain(answer.status, text));
+  // The library's own answer holds the session token, which scripts of the page are not to see.
+  if (answer.ok) response.json({});
+  else response.status(answer.status).json(explain(answer.status, await answer.text()));
 }
 
-const libraryErrorSchema = z.object({ code: z.string().optional(), message: z.string().optional() });
+const emailSchema = z.object({ email: z.string() });
+const libraryErrorSchema = z.object({ message: z.string().optional() });
+
+function wrongSignIn(): Refusal {
+  return new Refusal('wrong-sign-in', 'This e-mail and this password do not belong together.');
+}
+
+/** What the library says in its JSON; empty when it answers something else. */
+function messageOf(text: string): string {
+  try {
+    return libraryErrorSchema.parse(JSON.parse(text)).message ?? '';
+  } catch {
+    // Not its usual shape: the status then speaks for itself.
+    return '';
+  }
+}
 
 /** The library's refusal in our words. */
-function explain(status: number, text: string): ErrorBody {
-  const parsed = libraryErrorSchema.safeParse(text.startsWith('{') ? JSON.parse(text) : {});
-  const said = parsed.success ? (parsed.data.message ?? '') : '';
+export function explain(status: number, text: string): ErrorBody {
+  const said = messageOf(text);
   const tell = (code: RefusalCode, message: string) => new Refusal(code, message).toBody();
-  if (status === 401) return tell('wrong-sign-in', 'This e-mail and this password do not belong together.');
+  if (status === 401) return wrongSignIn().toBody();
   if (status >= 500) return tell('internal', 'Signing in failed on the server; its log says why.');
   return tell('bad-input', `The sign-in request was refused: ${said === '' ? `status ${status}` : said}.`);
 }

@@ -4,6 +4,7 @@ import { gunzipSync } from 'node:zlib';
 import request from 'supertest';
 import { afterAll, beforeAll, describe, expect, it, vi } from 'vitest';
 import type { OpenDatabase } from '../../server/data/client';
+import { hashNewPassword } from '../../server/platform/auth';
 import {
   errorBodySchema,
   meSchema,
@@ -70,6 +71,63 @@ function signingIn(harness: () => Harness): void {
       expect(cookie).toMatch(/HttpOnly/);
       expect(cookie).toMatch(/SameSite=Lax/);
       expect(cookie).not.toMatch(/Secure/);
+    });
+
+    it('never gives the session token to a script', async () => {
+      const { app, deps } = harness();
+      const groupId = await deps.people.createGroup('Token bench', 'token-bench');
+      const passwordHash = await hashNewPassword('a long enough one');
+      const email = 'token@bench.example';
+      await deps.people.admit({ name: 'Token', email, passwordHash, groupId, role: 'guest' });
+      const post = (path: string, cookie: string | null, body: object) =>
+        send(app, 'post', `/api/auth/${path}`, cookie, body);
+      const entered = await post('sign-in/email', null, { email, password: 'a long enough one' });
+      expect([entered.status, entered.text]).toEqual([200, '{}']);
+      const cookie = String(entered.headers['set-cookie']).split(';')[0]!;
+      expect((await send(app, 'get', '/api/auth/get-session', cookie)).status).toBe(404);
+      const change = {
+        currentPassword: 'a long enough one',
+        newPassword: 'another long one',
+        revokeOtherSessions: true,
+      };
+      const out = await post('change-password', null, change);
+      expect([out.status, out.body.error.code]).toEqual([401, 'not-signed-in']);
+      const wrong = await post('change-password', cookie, { ...change, currentPassword: 'not this one' });
+      expect([wrong.status, wrong.body.error.message]).toEqual([
+        400,
+        expect.stringMatching(/invalid password/i),
+      ]);
+      const changed = await post('change-password', cookie, change);
+      expect([changed.status, changed.text]).toEqual([200, '{}']);
+      expect((await send(app, 'get', '/api/me', cookie)).status).toBe(401);
+      const renewed = String(changed.headers['set-cookie']).split(';')[0]!;
+      expect((await send(app, 'get', '/api/me', renewed)).status).toBe(200);
+      const left = await post('sign-out', renewed, {});
+      expect([left.status, left.text]).toEqual([200, '{}']);
+    });
+
+    it('answers this machine by its own names only', async () => {
+      const { app } = harness();
+      const ask = (host: string) => request(app).get('/api/server').set('Host', host);
+      for (const host of ['127.0.0.1:4310', 'localhost:4310', 'LOCALHOST', '[::1]:4310']) {
+        expect([host, (await ask(host)).status]).toEqual([host, 200]);
+      }
+      for (const host of [
+        'elsewhere.example:4310',
+        '127.0.0.1.elsewhere.example',
+        'localhost@elsewhere',
+        '[::2]:1',
+      ]) {
+        const answer = await ask(host);
+        expect([host, answer.status, answer.body.error?.code]).toEqual([host, 403, 'foreign-host']);
+        expect(answer.text).not.toContain('pair-of-the-tests');
+      }
+      const demo = { email: 'lead@demo.gemel', password: 'pair-of-the-tests' };
+      const planted = send(app, 'post', '/api/auth/sign-in/email', null, demo).set(
+        'Host',
+        'elsewhere.example',
+      );
+      expect((await planted).status).toBe(403);
     });
 
     it('refuses a wrong password, a foreign page, a forged cookie and signing up', async () => {

@@ -1,5 +1,5 @@
 import { randomUUID } from 'node:crypto';
-import { and, eq, inArray, sql } from 'drizzle-orm';
+import { and, eq, inArray, notInArray, sql } from 'drizzle-orm';
 import type { Database } from '../client';
 import { account, member, organization, session, user } from '../schema/auth-tables';
 
@@ -55,6 +55,17 @@ export function createPeople(db: Database) {
 
     async hasPerson(email: string): Promise<boolean> {
       return (await db.$count(user, eq(user.email, email))) > 0;
+    },
+
+    /** Roles, as stored, of the people who have a password; without the people of these e-mails. */
+    async rolesBeside(emails: readonly string[]): Promise<string[]> {
+      const rows = await db
+        .selectDistinct({ role: member.role })
+        .from(member)
+        .innerJoin(user, eq(user.id, member.userId))
+        .innerJoin(account, eq(account.userId, user.id))
+        .where(notInArray(user.email, [...emails]));
+      return rows.map((row) => row.role);
     },
 
     /** Adds the person, or finds them by e-mail, sets the password and makes them a member with this role. */

@@ -18,6 +18,7 @@ describe('parseConfig', () => {
       development: false,
       logLevel: 'info',
       leadEmail: null,
+      groupName: 'Our group',
     });
   });
 
@@ -73,6 +74,7 @@ describe('parseConfig', () => {
       { GEMEL_PROXY: 'yes', GEMEL_ORIGIN: 'http://a.example' },
       /number of proxies in front \(1 to 9\), or loopback/,
     ],
+    [{ GEMEL_GROUP: 'two\nlines' }, /expected a name of one line/],
     [{ GEMEL_PROXY: '1' }, /set GEMEL_ORIGIN to the address people type/],
     [{ DATABASE_URL: 'mysql://x' }, /starts with postgres:\/\//],
     [{ GEMEL_ORIGIN: 'gemel' }, /^The setting GEMEL_ORIGIN is "gemel": .*https:\/\/gemel\.example\.org/],

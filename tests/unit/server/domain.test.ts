@@ -2,6 +2,7 @@ import { describe, expect, it } from 'vitest';
 import { pickHeadline } from '../../../server/domain/headline';
 import { parseRole } from '../../../server/domain/permissions';
 import { withNonce } from '../../../server/routes/page-routes';
+import { explain } from '../../../server/routes/sign-in-routes';
 import { makeResult } from '../../http/fixtures';
 
 describe('parseRole', () => {
@@ -40,6 +41,20 @@ describe('pickHeadline', () => {
   it('takes a study it does not know as it comes, and an empty one', () => {
     expect(pickHeadline(file('new', ['a', 'b', 'c', 'd'])).map((entry) => entry.id)).toEqual(['a', 'b', 'c']);
     expect(pickHeadline(file('delay', []))).toEqual([]);
+  });
+});
+
+describe('explain', () => {
+  it.each([
+    [401, '', 'wrong-sign-in', /do not belong together/],
+    [400, '{"message":"Invalid password"}', 'bad-input', /refused: Invalid password\.$/],
+    [400, '{"message":', 'bad-input', /refused: status 400\.$/],
+    [400, '{"message":7}', 'bad-input', /refused: status 400\.$/],
+    [500, '<html>', 'internal', /its log says why/],
+  ])('%i %s -> %s', (status, text, code, sentence) => {
+    const { error } = explain(status, text);
+    expect(error.code).toBe(code);
+    expect(error.message).toMatch(sentence);
   });
 });
 
