@@ -128,7 +128,7 @@ export function checkSaturation(
       status: 'caution',
       figure: null,
       unit,
-      sentence: 'Fewer than two tags, so no pixel could saturate.',
+      sentence: 'There is no live time, so the rate of no pixel is known.',
     };
   }
   const truth = trueRateNonParalysable(busiest.rate, deadNs * 1e-9);
@@ -165,26 +165,33 @@ export function checkMapped(count: TagCount): Check {
   return { ...base, status: 'caution', sentence };
 }
 
-/** Live time is taken as last minus first tag; stretches without a tag make it too long. */
+/** Live time runs from the first to the last tag without the slices that hold none. */
 export function checkLiveTime(count: TagCount): Check {
-  const { tally } = count;
-  const tagsPerSlice = tally.tags / Math.max(1, tally.slices);
-  let empty = 0;
-  for (let k = 0; k < tally.slices; k++) {
-    if (tally.a.singlesPerSlice[k]! + tally.b.singlesPerSlice[k]! === 0) empty += 1;
-  }
+  const { tally, times, seconds } = count;
+  const { empty } = times;
   const base = { id: 'live-time', figure: empty, unit: 'slices' };
-  if (empty === 0 || tagsPerSlice < 20) {
-    const sentence = `Live time is taken from the first to the last tag, ${formatFigure(count.seconds)} s; no stretch of it is empty.`;
-    return tagsPerSlice < 20
-      ? {
-          ...base,
-          status: 'caution',
-          sentence: `Too few tags to see gaps; live time is taken from the first to the last tag, ${formatFigure(count.seconds)} s.`,
-        }
-      : { ...base, status: 'pass', sentence };
+  if (!(seconds > 0)) {
+    if (tally.tags < 2) {
+      const sentence = 'Fewer than two tags were read, so there is no live time and no rate.';
+      return { ...base, status: 'caution', sentence };
+    }
+    const sentence = `All ${tally.tags} tags carry the same time, so there is no live time and no rate; look at the time field of the layout (its dataset, column or bytes).`;
+    return { ...base, status: 'fail', sentence };
   }
-  const sentence = `${empty} of ${tally.slices} slices of time hold no tag, yet live time is taken from the first to the last tag: rates are too low by about as much. Cut the gap out.`;
+  if (!times.gapsSeen) {
+    const sentence = `Too few tags to see gaps; live time is taken from the first to the last tag, ${formatFigure(seconds)} s${times.known ? '' : ', and no rate is given'}.`;
+    return { ...base, status: 'caution', sentence };
+  }
+  if (empty === 0) {
+    const sentence = `Live time is taken from the first to the last tag, ${formatFigure(seconds)} s; no stretch of it is empty.`;
+    return { ...base, status: 'pass', sentence };
+  }
+  const found = `${empty} of ${tally.slices} slices of time hold no tag and are left out of the live time of ${formatFigure(seconds)} s`;
+  if (!times.known) {
+    const sentence = `${found}, but more than a tenth of the rest lies beside a gap and may be partly empty, so no rate is given. Cut the gap out, and look at the time field of the layout.`;
+    return { ...base, status: 'fail', sentence };
+  }
+  const sentence = `${found}. Cut the gap out.`;
   return { ...base, status: empty > tally.slices / 20 ? 'fail' : 'caution', sentence };
 }
 

@@ -10,12 +10,13 @@ import type { BinnedCounts, PeakFit } from '../../shared/physics/fit-peak';
 import { windowFractionOfFit } from '../../shared/physics/timing';
 import { ticksToPs } from '../../shared/units/ticks';
 import { fitAround, histogramPs } from './peak-search';
-import { type SliceTimes, sliceTimes, spanSeconds } from './slice-times';
+import { type SliceTimes, sliceTimes } from './slice-times';
 import { effectiveWidthPs } from './tag-spec';
 
 /** Everything the tag studies draw their numbers and checks from, once per look. Times in ps unless the name says s. */
 export interface TagCount {
   tally: TagTally;
+  /** Live time. */
   seconds: number;
   times: SliceTimes;
   countsA: number;
@@ -47,7 +48,8 @@ export interface Sideband {
 }
 
 export function countTags(tally: TagTally): TagCount {
-  const seconds = spanSeconds(tally);
+  const times = sliceTimes(tally);
+  const seconds = times.liveS;
   const countsA = sum(tally.a.singles);
   const countsB = sum(tally.b.singles);
   const windowPs = effectiveWidthPs(tally);
@@ -65,7 +67,7 @@ export function countTags(tally: TagTally): TagCount {
   return {
     tally,
     seconds,
-    times: sliceTimes(tally),
+    times,
     countsA,
     countsB,
     windowPs,

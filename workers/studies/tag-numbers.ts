@@ -3,6 +3,7 @@ import type { Estimate } from '../../shared/physics/estimate';
 import { countRate, g2 } from '../../shared/physics/timing';
 import type { ArmPair } from './peak-search';
 import type { Measured } from './quantities';
+import { checkBaseline, checkLiveTime } from './run-checks';
 import type { TagCount } from './tag-count';
 
 /** Columns of a resample: seconds, tags of arm A, of arm B, pairs in the window, pairs in the shifted windows. */
@@ -24,13 +25,25 @@ const TAGS_B = 2;
 const PROMPT = 3;
 const SHIFTED = 4;
 
+/** A rate over a live time that is not known is no number. */
+function rateOf(count: TagCount, counted: Estimate | null): Estimate | null {
+  const { seconds, times } = count;
+  if (counted === null || !times.known) return null;
+  return { value: counted.value / seconds, sigma: counted.sigma / seconds };
+}
+
+/** The product of the singles rates is the accidentals only where the rates are steady over a known live time. */
+function isSteady(count: TagCount): boolean {
+  return [checkLiveTime(count), checkBaseline(count)].every(({ status }) => status !== 'fail');
+}
+
 export function singlesOf(count: TagCount, arms: ArmPair): Measured[] {
   const arm = (name: string, counts: number, column: number): Measured => ({
     id: `singles.${name}`,
-    estimate: countRate(counts, count.seconds),
+    estimate: count.times.known ? countRate(counts, count.seconds) : null,
     unit: '1/s',
     n: counts,
-    method: 'tags over the time from first to last tag',
+    method: 'tags over the live time, from the first to the last tag without empty slices',
     statistic: (t) => t[column]! / t[SECONDS]!,
   });
   return [arm(arms.a, count.countsA, TAGS_A), arm(arms.b, count.countsB, TAGS_B)];
@@ -53,15 +66,11 @@ export function peakOf(count: TagCount): Measured[] {
 }
 
 export function coincidencesOf(count: TagCount): Measured[] {
-  const { seconds, net, inWindow, shifts } = count;
-  const rate = (estimate: Estimate): Estimate => ({
-    value: estimate.value / seconds,
-    sigma: estimate.sigma / seconds,
-  });
+  const { seconds, net, inWindow, shifts, times } = count;
   return [
     {
       id: 'coincidences.raw',
-      estimate: countRate(inWindow, seconds),
+      estimate: times.known ? countRate(inWindow, seconds) : null,
       unit: '1/s',
       n: inWindow,
       method: 'pairs in the window, nothing subtracted',
@@ -69,7 +78,7 @@ export function coincidencesOf(count: TagCount): Measured[] {
     },
     {
       id: 'coincidences.net',
-      estimate: rate(net),
+      estimate: rateOf(count, net),
       unit: '1/s',
       n: inWindow,
       method: 'pairs in the window less the mean of the shifted windows',
@@ -79,13 +88,11 @@ export function coincidencesOf(count: TagCount): Measured[] {
 }
 
 export function accidentalsOf(count: TagCount): Measured[] {
-  const { seconds, accidentals, shifts, windowPs, sideband } = count;
-  const rate = (estimate: Estimate | null): Estimate | null =>
-    estimate && { value: estimate.value / seconds, sigma: estimate.sigma / seconds };
+  const { accidentals, shifts, windowPs, sideband } = count;
   return [
     {
       id: 'accidentals.product',
-      estimate: rate(accidentals.product),
+      estimate: isSteady(count) ? rateOf(count, accidentals.product) : null,
       unit: '1/s',
       n: count.countsA + count.countsB,
       method: 'product of the singles rates and the full window',
@@ -93,7 +100,7 @@ export function accidentalsOf(count: TagCount): Measured[] {
     },
     {
       id: 'accidentals.shifted',
-      estimate: rate(accidentals.shifted),
+      estimate: rateOf(count, accidentals.shifted),
       unit: '1/s',
       n: count.shiftedCounts,
       method: `mean of ${shifts} shifted windows`,
@@ -101,7 +108,7 @@ export function accidentalsOf(count: TagCount): Measured[] {
     },
     {
       id: 'accidentals.sideband',
-      estimate: rate(accidentals.sideband),
+      estimate: rateOf(count, accidentals.sideband),
       unit: '1/s',
       n: sideband?.counts ?? 0,
       method: 'delay histogram beyond six sigma of the peak, scaled to the window',
@@ -164,7 +171,7 @@ export function g2PeakOf(count: TagCount): Measured {
   return {
     id: 'g2.peak',
     estimate:
-      pairs === undefined
+      pairs === undefined || !isSteady(count)
         ? null
         : g2({
             pairs,

@@ -2,7 +2,7 @@ import type { Check } from '../../../shared/contracts/output';
 import { FIT_PARAMETERS, type ShapeFit } from '../../../shared/physics/fit-shape';
 import { formatFigure } from '../format-figure';
 import { checkAccidentalsAgree, checkPairsEnough, checkPeakFound, checkWindowCut } from '../peak-checks';
-import { checkDrift, checkMapped, checkOrder, checkPixels } from '../run-checks';
+import { checkDrift, checkLiveTime, checkMapped, checkOrder, checkPixels } from '../run-checks';
 import type { TagCount } from '../tag-count';
 import { checkBlocks } from './plane-checks';
 import type { ArmScales, TagAxis } from './tag-axis';
@@ -42,6 +42,7 @@ export function checkTagPlane(request: TagChecksRequest): Check[] {
     ]),
     checkMapped(count),
     checkOrder(count),
+    checkLiveTime(count),
   ];
 }
 

@@ -1,7 +1,8 @@
 import { describe, expect, it } from 'vitest';
+import type { TagBlock } from '../../../../shared/contracts/blocks';
 import type { TagDetector } from '../../../../shared/contracts/detector';
 import type { StudyOutput } from '../../../../shared/contracts/output';
-import type { Random } from '../../../../shared/util/random';
+import { createRandom, type Random } from '../../../../shared/util/random';
 import { createTagAccumulator } from '../../../../workers/accumulators/tag-accumulator';
 import { delayStudy } from '../../../../workers/studies/delay/study';
 import { fillDials } from '../../../../workers/studies/dials';
@@ -223,6 +224,65 @@ describe('Delay says what is wrong', () => {
     );
     const { output } = runTagStudy(delayStudy, gap, detector);
     expect(statusOf(output, 'live-time')).toBe('fail');
+    // The rate is that while light fell: 40 000 + darks would be a fifth lower over the whole span.
+    const { value, sigma } = output.quantities['singles.signal']!;
+    expect(Math.abs(value - 4e4)).toBeLessThan(5 * sigma! + 0.03 * 4e4);
+    expect(output.quantities['accidentals.product']).toBeUndefined();
+    expect(output.quantities['g2.peak']).toBeUndefined();
+  });
+
+  /** Uniform darks on both arms in stretches of ticks. */
+  const stretches = (list: readonly (readonly [from: number, length: number, tags: number])[]): TagBlock => {
+    const random = createRandom(12);
+    const times = list.flatMap(([from, length, tags]) =>
+      Array.from({ length: tags }, () => from + Math.floor(length * random.uniform())).sort((p, q) => p - q),
+    );
+    return {
+      kind: 'tags',
+      baseTick: 0n,
+      deltaTick: Float64Array.from(times),
+      channel: Uint16Array.from(times, () => (random.uniform() < 0.5 ? 0 : 100) + random.below(16)),
+      count: times.length,
+      records: times.length,
+      firstRecord: 0,
+      bytes: 0,
+    };
+  };
+  const rateIds = (output: StudyOutput): string[] =>
+    Object.entries(output.quantities).flatMap(([id, { unit }]) => (unit === '1/s' ? [id] : []));
+
+  it('when most of the time between the first and the last tag is a gap, and then gives no rate', () => {
+    const twoRuns = stretches([
+      [0, 1e10, 20_000],
+      [1e13, 1e10, 20_000],
+    ]);
+    const strayTag = stretches([
+      [0, 1e9, 5000],
+      [2 ** 52, 1, 1],
+    ]);
+    for (const tags of [twoRuns, strayTag]) {
+      const { output } = runTagStudy(delayStudy, tags, detector);
+      const check = output.checks.find(({ id }) => id === 'live-time')!;
+      expect(check.status).toBe('fail');
+      expect(check.sentence).toContain('no rate is given');
+      expect(rateIds(output)).toEqual([]);
+      expect(output.quantities['g2.peak']).toBeUndefined();
+    }
+  });
+
+  it('when every tag carries the same time', () => {
+    const { output } = runTagStudy(delayStudy, stretches([[77, 1, 2000]]), detector);
+    const check = output.checks.find(({ id }) => id === 'live-time')!;
+    expect(check.status).toBe('fail');
+    expect(check.sentence).toContain('time field of the layout');
+    expect(rateIds(output)).toEqual([]);
+  });
+
+  it('when there are too few tags for a rate', () => {
+    const { output } = runTagStudy(delayStudy, stretches([[0, 1e9, 9]]), detector);
+    expect(rateIds(output)).toEqual([]);
+    const ten = runTagStudy(delayStudy, stretches([[0, 1e9, 10]]), detector).output;
+    expect(rateIds(ten)).toContain('singles.signal');
   });
 
   it('before counting, when the map or the dials cannot work', () => {
