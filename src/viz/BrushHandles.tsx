@@ -2,7 +2,7 @@ import { type KeyboardEvent, type PointerEvent, useRef } from 'react';
 import type { Axis } from '../../shared/contracts/output';
 import { displayUnit } from '../lib/format-number';
 import { type Span, shiftInside } from './axis-geometry';
-import { formatPosition } from './format-tick';
+import { formatPosition, roundPosition } from './format-tick';
 import type { PlotRect } from './PlotAxes';
 import type { Brush } from './types';
 
@@ -18,8 +18,31 @@ export interface BrushHandlesProps {
 
 type Part = 'lo' | 'hi' | 'both';
 
-/** Half the width of what can be grabbed, in CSS pixels. */
-const GRAB_PX = 6;
+/** Least width of what can be grabbed, in CSS pixels (WCAG 2.2, 2.5.8). */
+const GRAB_PX = 24;
+/** How far the handle of an edge reaches into the window, where the window has room for it. */
+const INSIDE_PX = 6;
+/** How far the last handle may stand out over the plot, inside its right margin. */
+const MARGIN_PX = 14;
+
+interface GrabBox {
+  left: number;
+  width: number;
+}
+
+/** What is grabbed for a window drawn from x0 to x1: each part wide enough, none over another. */
+export function grabBoxes(x0: number, x1: number, rect: PlotRect): Record<Part, GrabBox> {
+  const width = Math.max(GRAB_PX, x1 - x0);
+  const left = (x0 + x1 - width) / 2;
+  const inside = Math.min(INSIDE_PX, (width - GRAB_PX) / 2);
+  const hi = Math.min(left + width - inside, rect.left + rect.width + MARGIN_PX - GRAB_PX);
+  const both = Math.min(left + inside, hi - GRAB_PX);
+  return {
+    lo: { left: both - GRAB_PX, width: GRAB_PX },
+    both: { left: both, width: hi - both },
+    hi: { left: hi, width: GRAB_PX },
+  };
+}
 
 const KEY_BINS: Record<string, number> = {
   ArrowLeft: -1,
@@ -28,6 +51,8 @@ const KEY_BINS: Record<string, number> = {
   ArrowUp: 1,
   PageDown: -10,
   PageUp: 10,
+  Home: -Infinity,
+  End: Infinity,
 };
 
 /** The window with one part moved: the edges never cross, the whole keeps its width, nothing leaves the axis. */
@@ -37,7 +62,8 @@ export function moveWindow(window: Span, part: Part, by: number, full: Span, lea
   return [window[0], Math.max(window[0] + least, Math.min(full[1], window[1] + by))];
 }
 
-/** Two edges and the span between them, each a slider: drag, or arrow keys by one bin (Shift or Page keys by ten). */
+/** Two edges and the span between them, each a slider: drag, or arrow keys by one bin (Shift or Page keys by ten), Home and End
+ * as far as it goes. */
 export function BrushHandles({ brush, axis, full, view, rect, toAxis }: BrushHandlesProps) {
   const grabbed = useRef<{ at: number; window: Span } | null>(null);
   const name = brush.label ?? 'window';
@@ -45,9 +71,13 @@ export function BrushHandles({ brush, axis, full, view, rect, toAxis }: BrushHan
   const window: Span = [brush.lo, brush.hi];
   const left = (at: number): number =>
     rect.left + ((Math.min(view[1], Math.max(view[0], at)) - view[0]) / (view[1] - view[0])) * rect.width;
-  const say = (at: number): string => `${formatPosition(at, bin / 10)} ${displayUnit(axis.unit)}`;
+  const digit = bin / 10;
+  const say = (at: number): string => `${formatPosition(at, digit)} ${displayUnit(axis.unit)}`;
   const set = (next: Span): void => {
     if (next[0] !== brush.lo || next[1] !== brush.hi) brush.onChange(next[0], next[1]);
+  };
+  const letGo = (): void => {
+    grabbed.current = null;
   };
   const gestures = (part: Part) => ({
     onPointerDown: (event: PointerEvent) => {
@@ -60,9 +90,9 @@ export function BrushHandles({ brush, axis, full, view, rect, toAxis }: BrushHan
       const from = grabbed.current;
       if (from !== null) set(moveWindow(from.window, part, toAxis(event) - from.at, full, bin));
     },
-    onPointerUp: () => {
-      grabbed.current = null;
-    },
+    onPointerUp: letGo,
+    onPointerCancel: letGo,
+    onLostPointerCapture: letGo,
     onDoubleClick: (event: { stopPropagation(): void }) => event.stopPropagation(),
     onKeyDown: (event: KeyboardEvent) => {
       const bins = KEY_BINS[event.key];
@@ -76,14 +106,14 @@ export function BrushHandles({ brush, axis, full, view, rect, toAxis }: BrushHan
     role: 'slider',
     tabIndex: 0,
     'aria-label': `${name}, ${label}`,
-    'aria-valuemin': full[0],
-    'aria-valuemax': full[1],
-    'aria-valuenow': at,
+    'aria-valuemin': roundPosition(full[0], digit),
+    'aria-valuemax': roundPosition(full[1], digit),
+    'aria-valuenow': roundPosition(at, digit),
     'aria-valuetext': text,
     'data-brush': part,
     ...gestures(part),
   });
-  const [x0, x1] = [left(brush.lo), left(brush.hi)];
+  const boxes = grabBoxes(left(brush.lo), left(brush.hi), rect);
   const box = { top: rect.top, height: rect.height };
   const whole = `${say(brush.lo)} to ${say(brush.hi)}`;
   return (
@@ -91,7 +121,7 @@ export function BrushHandles({ brush, axis, full, view, rect, toAxis }: BrushHan
       <div
         {...slider('both', 'centre', (brush.lo + brush.hi) / 2, whole)}
         className="absolute cursor-grab touch-none active:cursor-grabbing"
-        style={{ ...box, left: x0, width: Math.max(1, x1 - x0) }}
+        style={{ ...box, ...boxes.both }}
       />
       {(['lo', 'hi'] as const).map((part) => {
         const at = brush[part];
@@ -102,7 +132,7 @@ export function BrushHandles({ brush, axis, full, view, rect, toAxis }: BrushHan
             key={part}
             {...slider(part, part === 'lo' ? 'start' : 'end', at, say(at))}
             className="absolute cursor-ew-resize touch-none"
-            style={{ ...box, left: left(at) - GRAB_PX, width: 2 * GRAB_PX }}
+            style={{ ...box, ...boxes[part] }}
           />
         );
       })}

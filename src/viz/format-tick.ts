@@ -17,10 +17,20 @@ function group(text: string): string {
   return (fraction === undefined ? grouped : `${grouped}.${fraction}`).replace('-', MINUS);
 }
 
+function positionDigits(value: number, step: number): string {
+  const places = decimalsFor(Number((Math.abs(step) || 1).toPrecision(3)));
+  return value.toFixed(Math.min(12, places));
+}
+
+/** The number `formatPosition` writes, for what is read by machines. */
+export function roundPosition(value: number, step: number): number {
+  // Plus zero: there is no negative zero to read.
+  return Number(positionDigits(value, step)) + 0;
+}
+
 /** A position to the places of its bin's first three digits, so that the read-out promises no more than the binning. */
 export function formatPosition(value: number, step: number): string {
-  const places = decimalsFor(Number((Math.abs(step) || 1).toPrecision(3)));
-  const text = value.toFixed(Math.min(12, places));
+  const text = positionDigits(value, step);
   return group(Number(text) === 0 ? text.replace('-', '') : text);
 }
 

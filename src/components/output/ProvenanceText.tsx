@@ -24,7 +24,7 @@ export function ProvenanceText({ provenance }: { provenance: Provenance }) {
         <InputText key={input.name} input={input} />
       ))}
       <details>
-        <summary className="cursor-pointer">dials</summary>
+        <summary className="min-h-6 cursor-pointer py-1">dials</summary>
         <dl className="mt-1 grid grid-cols-[auto_1fr] gap-x-3">
           {Object.entries(dials).map(([id, value]) => (
             <div key={id} className="contents">

@@ -18,7 +18,7 @@ export function VerdictList({ verdicts }: { verdicts: Record<string, Verdict> })
             : [
                 <li key={`${row.base}.${variant}`} className="text-sm">
                   <details>
-                    <summary className="flex cursor-pointer items-baseline justify-between gap-3 hover:bg-raised">
+                    <summary className="flex min-h-6 cursor-pointer items-center justify-between gap-3 hover:bg-raised">
                       <span>
                         {row.label}
                         {variant === null ? '' : `, ${VARIANT_WORDS[variant]}`}

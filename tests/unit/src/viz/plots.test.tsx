@@ -2,6 +2,7 @@
 import { fireEvent, render, screen } from '@testing-library/react';
 import { describe, expect, it, vi } from 'vitest';
 import { BoundRuler } from '../../../../src/viz/BoundRuler';
+import { grabBoxes } from '../../../../src/viz/BrushHandles';
 import { HeatMap } from '../../../../src/viz/HeatMap';
 import { LinePlot } from '../../../../src/viz/LinePlot';
 import { RateStrip } from '../../../../src/viz/RateStrip';
@@ -137,6 +138,48 @@ describe('LinePlot', () => {
     expect(onChange).toHaveBeenLastCalledWith(-300, 1050);
     fireEvent.keyDown(centre!, { key: 'ArrowLeft' });
     expect(onChange).toHaveBeenLastCalledWith(-400, 200);
+    fireEvent.keyDown(start!, { key: 'End' });
+    expect(onChange).toHaveBeenLastCalledWith(200, 300);
+    fireEvent.keyDown(centre!, { key: 'Home' });
+    expect(onChange).toHaveBeenLastCalledWith(-1050, -450);
+  });
+
+  it('lets the window go when the pointer is taken away, and says it with the digits it shows', () => {
+    const onChange = vi.fn();
+    const brush = { lo: -300.123456, hi: 300, centre: 0, onChange };
+    render(<LinePlot map={smallHistogram()} style="steps" tone="pair" brush={brush} />);
+    const end = screen.getByRole('slider', { name: 'window, end' });
+    end.setPointerCapture = vi.fn();
+    fireEvent.pointerDown(end, { button: 0, clientX: 400 });
+    fireEvent.pointerMove(end, { clientX: 420 });
+    expect(onChange).toHaveBeenCalledOnce();
+    fireEvent.pointerCancel(end);
+    fireEvent.pointerMove(end, { clientX: 440 });
+    expect(onChange).toHaveBeenCalledOnce();
+    const start = screen.getByRole('slider', { name: 'window, start' });
+    expect(start.getAttribute('aria-valuenow')).toBe('-300');
+    expect(start.getAttribute('aria-valuetext')).toBe('\u2212300 ps');
+  });
+
+  it('gives every part of the window room to be grabbed, also at the edge of the plot', () => {
+    const rect = { left: 60, top: 0, width: 400, height: 100 };
+    for (const [x0, x1] of [
+      [200, 300],
+      [200, 203],
+      [60, 460],
+      [455, 460],
+    ] as const) {
+      const { lo, both, hi } = grabBoxes(x0, x1, rect);
+      expect(Math.min(lo.width, both.width, hi.width)).toBeGreaterThanOrEqual(24);
+      expect(lo.left + lo.width).toBeLessThanOrEqual(both.left);
+      expect(both.left + both.width).toBeLessThanOrEqual(hi.left);
+      expect(hi.left + hi.width).toBeLessThanOrEqual(474);
+    }
+    // A wide window: the edges themselves are grabbed.
+    const wide = grabBoxes(200, 300, rect);
+    expect(wide.lo.left).toBeLessThan(200);
+    expect(wide.lo.left + wide.lo.width).toBeGreaterThan(200);
+    expect(wide.hi.left).toBeLessThan(300);
   });
 
   it('names bands once and marks', () => {
