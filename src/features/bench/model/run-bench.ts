@@ -1,3 +1,4 @@
+import type { DialValues } from '../../../../shared/contracts/dial';
 import type { RunEvent } from '../../../../shared/contracts/engine';
 import { bytesWords, durationWords, shortCount } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
@@ -5,9 +6,20 @@ import { isOtherFile } from './acquisition';
 import { currentAssignment, currentStudy, type Plan, planRun } from './bench-selectors';
 import type { BenchStore } from './bench-store';
 import type { BenchState, Found, Progress } from './bench-types';
+import { changedDials } from './dial-history';
 
-/** While a hand moves a dial, one run after it rests this long. */
+/** While a hand moves a dial that counts anew, one run after it rests this long. */
 const DIAL_REST_MS = 150;
+/** Dials that only finish anew are answered while the hand moves, at most this often and one at a time. */
+const DIAL_PACE_MS = 100;
+
+interface ActiveRun {
+  jobId: string;
+  key: string;
+  inputsKey: string;
+  dials: DialValues;
+  startedAt: number;
+}
 
 export interface Runner {
   /** Runs again what was cancelled or failed. */
@@ -30,7 +42,9 @@ function isSamePlanSource(a: BenchState, b: BenchState): boolean {
 /** Runs the study whenever what it needs is there and something changed; the newest request wins. */
 export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
   let timer: ReturnType<typeof setTimeout> | null = null;
-  let active: { jobId: string; key: string; inputsKey: string } | null = null;
+  let active: ActiveRun | null = null;
+  /** The run started last, under way or not: what a dial was turned from. */
+  let last: ActiveRun | null = null;
   let jobs = 0;
 
   const keep = (found: Found, study: BenchState['study']): void =>
@@ -48,7 +62,8 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     if (request === null) return;
     dropActive();
     const jobId = `job-${++jobs}`;
-    active = { jobId, key, inputsKey };
+    active = { jobId, key, inputsKey, dials: request.dials, startedAt: Date.now() };
+    last = active;
     const isCurrent = (): boolean => active?.jobId === jobId;
     const holders = currentAssignment(store.getState());
     store.setState({ run: { status: 'running', jobId, key, progress: null } });
@@ -85,6 +100,8 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
       const { message, place } = outcome.problem;
       say(place === null ? message : `${place}: ${message}`, 'problem');
     }
+    // A dial turned meanwhile may have waited for this answer.
+    settle();
   };
 
   const settle = (): void => {
@@ -109,8 +126,14 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
       return;
     }
     if ((run.status === 'failed' || run.status === 'cancelled') && run.key === plan.key) return;
+    const isFinishOnly =
+      last?.inputsKey === plan.inputsKey && needsOnlyFinish(store.getState(), last.dials, plan.request.dials);
+    // The counts under way serve the new dials as well; to begin again would throw them away.
+    if (isFinishOnly && active !== null) return;
     const onlyDials = known?.key.startsWith(plan.inputsKey) ?? false;
-    timer = setTimeout(() => void start(planRun(store.getState())), onlyDials ? DIAL_REST_MS : 0);
+    const pace = last === null ? 0 : Math.max(0, last.startedAt + DIAL_PACE_MS - Date.now());
+    const wait = isFinishOnly ? pace : onlyDials ? DIAL_REST_MS : 0;
+    timer = setTimeout(() => void start(planRun(store.getState())), wait);
   };
 
   const unsubscribe = store.subscribe((state, before) => {
@@ -121,8 +144,9 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     again: () => void start(planRun(store.getState())),
     cancel: () => {
       if (active === null) return;
-      const { key } = active;
       dropActive();
+      // Dials that waited for the answer are cancelled with it.
+      const { key } = planRun(store.getState());
       store.setState({ run: { status: 'cancelled', key } });
       store.getState().say('Cancelled; what was computed so far is kept.');
     },
@@ -131,6 +155,13 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
       dropActive();
     },
   };
+}
+
+/** Do two settings of the dials differ only in what is done after the counting? */
+function needsOnlyFinish(state: BenchState, from: DialValues, to: DialValues): boolean {
+  const specs = currentStudy(state)?.dials ?? [];
+  const changed = changedDials(specs, to, from);
+  return changed.size > 0 && specs.every(({ id, needs }) => needs === 'finish' || !changed.has(id));
 }
 
 /** Two files may share name and size, so the fingerprint goes to the acquisition that served the input. */

@@ -1,3 +1,4 @@
+import type { DialSpec } from '../../../../shared/contracts/dial';
 import type { Inspection, RunEvent, RunRequest, RunResult } from '../../../../shared/contracts/engine';
 import type { Layout } from '../../../../shared/contracts/layout';
 import type { Outcome } from '../../../../shared/contracts/outcome';
@@ -74,6 +75,21 @@ export const delayInfo: StudyInfo = {
       auto: true,
     },
   ],
+};
+
+/** A dial of any study that only finishes anew. */
+export const finishDial: DialSpec = {
+  id: 'resamples',
+  label: 'Resamples',
+  reason: 'How often.',
+  needs: 'finish',
+  type: 'integer',
+  unit: '',
+  default: 1000,
+  min: 100,
+  max: 10_000,
+  step: 100,
+  auto: false,
 };
 
 export const witnessInfo: StudyInfo = {

@@ -3,7 +3,7 @@ import { isOtherFile } from '../../../../src/features/bench/model/acquisition';
 import { linkedResult, planRun } from '../../../../src/features/bench/model/bench-selectors';
 import { createBenchStore } from '../../../../src/features/bench/model/bench-store';
 import { attachRunner } from '../../../../src/features/bench/model/run-bench';
-import { fakeEngine, fileOf, outputOf, resultOf, settle } from './fake-engine';
+import { delayInfo, fakeEngine, fileOf, finishDial, outputOf, resultOf, settle } from './fake-engine';
 
 beforeEach(() => {
   vi.useFakeTimers();
@@ -74,6 +74,52 @@ describe('a run', () => {
     engine.runs[1]!.answer({ status: 'ok', value: resultOf(late, engine.runs[1]!.request) });
     await settle();
     expect(store.getState().found.delay?.output.statement).toBe('Counted in a window.');
+  });
+
+  it('answers dials that only finish anew while the hand moves, one at a time', async () => {
+    const engine = fakeEngine();
+    const info = { ...delayInfo, dials: [...delayInfo.dials, finishDial] };
+    engine.studies = async () => ({ status: 'ok', value: [info] });
+    const store = createBenchStore(engine);
+    attachRunner(store, engine);
+    await store.getState().loadStudies();
+    store.getState().addFiles([{ file: fileOf('run.h5'), sample: null }]);
+    await settle();
+    await vi.advanceTimersByTimeAsync(1);
+    // Turned while the file is read: the reading goes on and serves it.
+    store.getState().turn({ resamples: 200 });
+    await vi.advanceTimersByTimeAsync(500);
+    expect(engine.runs).toHaveLength(1);
+    expect(engine.cancelled).toEqual([]);
+    const answer = async (index: number): Promise<void> => {
+      const run = engine.runs[index]!;
+      run.answer({ status: 'ok', value: resultOf(outputOf(), run.request) });
+      await settle();
+      await vi.advanceTimersByTimeAsync(1);
+    };
+    await answer(0);
+    expect(engine.runs[1]?.request.dials.resamples).toBe(200);
+    await answer(1);
+    await vi.advanceTimersByTimeAsync(1000);
+    // The first move starts at once, those during its answer wait for it, the newest of them follows.
+    for (const resamples of [300, 400, 500]) {
+      store.getState().turn({ resamples });
+      await vi.advanceTimersByTimeAsync(20);
+    }
+    expect(engine.runs).toHaveLength(3);
+    expect(engine.runs[2]?.request.dials.resamples).toBe(300);
+    await answer(2);
+    await vi.advanceTimersByTimeAsync(100);
+    expect(engine.runs).toHaveLength(4);
+    expect(engine.runs[3]?.request.dials.resamples).toBe(500);
+    expect(engine.cancelled).toEqual([]);
+    // A dial that counts anew still waits for the hand to rest, and the newest wins.
+    store.getState().turn({ window: 300 });
+    await vi.advanceTimersByTimeAsync(100);
+    expect(engine.runs).toHaveLength(4);
+    await vi.advanceTimersByTimeAsync(100);
+    expect(engine.runs).toHaveLength(5);
+    expect(engine.cancelled).toEqual([engine.runs[3]?.request.jobId]);
   });
 
   it('keeps what was found when the run fails or is cancelled, and does not start again by itself', async () => {
