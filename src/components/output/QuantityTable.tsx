@@ -39,7 +39,7 @@ export function QuantityTable({ quantities, verdicts }: QuantityTableProps) {
   const tables = [
     <Rows
       key="paired"
-      label="Quantities, raw and with accidentals removed"
+      label="Quantities, raw and with accidentals subtracted"
       rows={paired}
       isPaired
       {...shared}
@@ -47,7 +47,7 @@ export function QuantityTable({ quantities, verdicts }: QuantityTableProps) {
     <Rows key="single" label="Quantities" rows={single} isPaired={false} {...shared} />,
   ];
   return (
-    <div className="flex flex-col gap-3">
+    <div className="flex flex-col gap-3 overflow-x-auto">
       {rows[0]?.only === null ? tables : tables.reverse()}
       <span>
         <Button size="sm" variant="quiet" aria-expanded={isWhole} onClick={() => setWhole(!isWhole)}>
@@ -86,7 +86,7 @@ function Rows({ label, rows, isPaired, verdicts, isWhole }: RowsProps) {
           )}
           <Th>unit</Th>
           {isJudged ? <Th numeric>significance</Th> : null}
-          <Th className="w-full">how</Th>
+          <Th className="w-full min-w-32">how</Th>
         </tr>
       </thead>
       <tbody>

@@ -1,12 +1,11 @@
 import { useQuery, useQueryClient } from '@tanstack/react-query';
 import { useCallback, useEffect, useRef, useState } from 'react';
-import { Group, Panel, Separator, useDefaultLayout } from 'react-resizable-panels';
 import { useSearchParams } from 'react-router-dom';
 import { ProblemNote } from '../../components/page/ProblemNote';
 import { Button } from '../../components/ui/Button';
 import { useOwnGroup } from '../../lib/query/me';
 import { samplesQuery } from '../../lib/query/samples';
-import { readSetting, writeSetting } from '../../lib/settings';
+import { BenchRegions } from './components/BenchRegions';
 import { type Bench, BenchProvider, useBench, useBenchState } from './components/bench-context';
 import { DialsRegion } from './components/DialsRegion';
 import { DropZone } from './components/DropZone';
@@ -68,7 +67,7 @@ function BenchBody() {
           </ProblemNote>
         </div>
       )}
-      <Regions
+      <BenchRegions
         shelf={
           <ShelfRegion
             readOnly={readOnly}
@@ -90,57 +89,6 @@ function BenchBody() {
     </DropZone>
   );
 }
-
-const storage = { getItem: readSetting, setItem: writeSetting };
-
-interface RegionsProps {
-  shelf: React.ReactNode;
-  stage: React.ReactNode;
-  dials: React.ReactNode;
-  ledger: React.ReactNode;
-}
-
-/** Four regions with borders that move, by hand or by arrow keys, and stay where they were put. */
-function Regions({ shelf, stage, dials, ledger }: RegionsProps) {
-  const rows = useDefaultLayout({ id: 'bench.rows', panelIds: ['top', 'ledger'], storage });
-  const columns = useDefaultLayout({ id: 'bench.columns', panelIds: ['shelf', 'stage', 'dials'], storage });
-  return (
-    <Group
-      orientation="vertical"
-      className="min-h-0 flex-1"
-      defaultLayout={rows.defaultLayout}
-      onLayoutChanged={rows.onLayoutChanged}
-    >
-      <Panel id="top" minSize={180}>
-        <Group
-          orientation="horizontal"
-          defaultLayout={columns.defaultLayout}
-          onLayoutChanged={columns.onLayoutChanged}
-        >
-          <Panel id="shelf" defaultSize="18%" minSize={170}>
-            {shelf}
-          </Panel>
-          <Separator aria-label="Between shelf and stage" className={BORDER_X} />
-          <Panel id="stage" minSize={320}>
-            {stage}
-          </Panel>
-          <Separator aria-label="Between stage and dials" className={BORDER_X} />
-          <Panel id="dials" defaultSize="21%" minSize={210}>
-            {dials}
-          </Panel>
-        </Group>
-      </Panel>
-      <Separator aria-label="Between stage and ledger" className={BORDER_Y} />
-      <Panel id="ledger" defaultSize="30%" minSize={90}>
-        {ledger}
-      </Panel>
-    </Group>
-  );
-}
-
-const BORDER = 'bg-line hover:bg-control focus-visible:bg-focus data-[separator=active]:bg-control';
-const BORDER_X = `${BORDER} w-px`;
-const BORDER_Y = `${BORDER} h-px`;
 
 /** Puts on the bench what the address asks for, once; another visit to the same address changes nothing. */
 function useOpening(groupId: string) {

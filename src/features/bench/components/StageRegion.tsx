@@ -32,7 +32,7 @@ export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
   const found = useBenchState((state) => state.found[state.study] ?? null);
   return (
     <section aria-label="stage" className="flex h-full min-h-0 flex-col">
-      <header className="flex min-h-9 shrink-0 items-stretch justify-between gap-4 border-b border-line px-4">
+      <header className="flex min-h-9 shrink-0 flex-wrap items-stretch justify-between gap-x-4 border-b border-line px-4">
         <h2 className="sr-only">stage</h2>
         <StudyPicker />
         <RunLine />
@@ -108,7 +108,7 @@ function RunLine() {
   const share =
     progress === null || progress.bytesTotal === 0 ? null : progress.bytesDone / progress.bytesTotal;
   return (
-    <span className="flex min-w-0 items-center gap-3 font-mono text-xs text-dim">
+    <span className="flex min-h-9 min-w-0 items-center gap-3 font-mono text-xs text-dim">
       <span
         className="min-w-0 truncate"
         data-testid="run-progress"

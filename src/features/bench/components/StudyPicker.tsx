@@ -1,11 +1,14 @@
 import { Tabs } from 'radix-ui';
-import type { StudyInfo } from '../../../../shared/contracts/study';
+import { type StudyInfo, studyIds } from '../../../../shared/contracts/study';
 import { useBench, useBenchState } from './bench-context';
 
-const ORDER = ['delay', 'joint-map', 'witness', 'ghost-image'];
-
-function inOrder(studies: readonly StudyInfo[]): StudyInfo[] {
-  return [...studies].sort((a, b) => ORDER.indexOf(a.id) - ORDER.indexOf(b.id));
+/** In the order of the list of studies; one it does not name comes last. */
+export function inOrder(studies: readonly StudyInfo[]): StudyInfo[] {
+  const rank = ({ id }: StudyInfo): number => {
+    const place = studyIds.indexOf(id);
+    return place < 0 ? studyIds.length : place;
+  };
+  return [...studies].sort((a, b) => rank(a) - rank(b));
 }
 
 /** One kind of analysis at a time. Radix's tabs give the arrow keys. */
@@ -17,13 +20,13 @@ export function StudyPicker() {
     <Tabs.Root
       value={study}
       activationMode="manual"
-      className="flex shrink-0 items-stretch"
+      className="flex min-h-9 max-w-full items-stretch"
       onValueChange={(value) => {
         const next = studies.find(({ id }) => id === value);
         if (next !== undefined) store.getState().chooseStudy(next.id);
       }}
     >
-      <Tabs.List aria-label="Study" className="flex items-stretch gap-4">
+      <Tabs.List aria-label="Study" className="flex flex-wrap items-stretch gap-x-4">
         {inOrder(studies).map(({ id, label }) => (
           <Tabs.Trigger
             key={id}
