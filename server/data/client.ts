@@ -9,6 +9,7 @@ import { drizzle as drizzlePglite } from 'drizzle-orm/pglite';
 import { migrate as migratePglite } from 'drizzle-orm/pglite/migrator';
 import { Pool } from 'pg';
 import { StartProblem } from '../platform/refusal';
+import { reasonOf } from '../platform/safe-error';
 import * as authTables from './schema/auth-tables';
 import * as benchTables from './schema/bench-tables';
 
@@ -38,7 +39,7 @@ async function createEmbedded(dir: string | null): Promise<PGlite> {
     return await (dir === null ? PGlite.create() : PGlite.create(dir));
   } catch (error) {
     throw new StartProblem(
-      `The database in ${dir ?? 'memory'} cannot be opened (${String(error)}). Restore the directory from a backup, or set GEMEL_DATA to a new one.`,
+      `The database in ${dir ?? 'memory'} cannot be opened (${reasonOf(error)}). Restore the directory from a backup, or set GEMEL_DATA to a new one.`,
     );
   }
 }
@@ -54,7 +55,7 @@ export async function openPostgres(url: string, onIdleError: (error: Error) => v
   } catch (error) {
     await pool.end();
     throw new StartProblem(
-      `The database of DATABASE_URL cannot be used: ${error instanceof Error ? error.message : String(error)}. Check that PostgreSQL runs and that the user may create tables.`,
+      `The database of DATABASE_URL cannot be used: ${reasonOf(error)}. Check that PostgreSQL runs and that the user may create tables.`,
     );
   }
   return { db, kind: 'postgres', close: () => pool.end() };

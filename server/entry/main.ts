@@ -4,6 +4,7 @@ import { z } from '../../shared/util/zod';
 import { parseConfig } from '../platform/config';
 import { createLog } from '../platform/log';
 import { StartProblem } from '../platform/refusal';
+import { printError } from '../platform/safe-error';
 import { start } from './start';
 
 // Two folders below the project, both as server/entry/main.ts and as dist/server/main.js.
@@ -46,8 +47,7 @@ async function main(): Promise<void> {
 }
 
 main().catch((error: unknown) => {
-  const text =
-    error instanceof StartProblem ? error.message : error instanceof Error ? error.stack : String(error);
+  const text = error instanceof StartProblem ? error.message : printError(error);
   process.stderr.write(`${text}\n`);
   process.exit(1);
 });

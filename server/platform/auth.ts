@@ -3,6 +3,7 @@ import { drizzleAdapter } from 'better-auth/adapters/drizzle';
 import { hashPassword } from 'better-auth/crypto';
 import { organization } from 'better-auth/plugins';
 import { createAccessControl } from 'better-auth/plugins/access';
+import { redact } from './safe-error';
 
 /**
  * Who may do what to a group itself. What may be done to presets, sessions and results is the table of
@@ -52,7 +53,9 @@ export function createAuth(options: AuthOptions): Auth {
     telemetry: { enabled: false },
     // The routes limit attempts themselves.
     rateLimit: { enabled: false },
-    logger: { level: 'warn', log: (level, message) => options.log(level, message) },
+    logger: { level: 'warn', log: (level, message) => options.log(level, redact(message)) },
+    // What fails inside is thrown to the route, which logs it; the library would print it whole on the console.
+    onAPIError: { throw: true },
     database: drizzleAdapter(options.db, { provider: 'pg', schema: options.schema, transaction: true }),
     emailAndPassword: { enabled: true, disableSignUp: true, minPasswordLength: 10 },
     advanced: {

@@ -1,6 +1,7 @@
 import { resolve } from 'node:path';
 import { z } from '../../shared/util/zod';
 import { StartProblem } from './refusal';
+import { redact } from './safe-error';
 
 /** What the environment may say. Every setting has a default that works on one machine. */
 export interface Config {
@@ -72,9 +73,11 @@ export function parseConfig(
   if (!parsed.success) {
     const issue = parsed.error.issues[0];
     const name = String(issue?.path[0] ?? 'environment');
-    throw new StartProblem(
-      `The setting ${name} is "${environment[name] ?? ''}": ${issue?.message ?? 'it cannot be used'}. Correct it or leave it out.`,
-    );
+    const wrong = issue?.message ?? 'it cannot be used';
+    // Whatever was typed in place of a database address may hold its password.
+    const found =
+      name === 'DATABASE_URL' ? 'cannot be used and is not shown' : `is "${redact(environment[name] ?? '')}"`;
+    throw new StartProblem(`The setting ${name} ${found}: ${wrong}. Correct it or leave it out.`);
   }
   const given = parsed.data;
   const proxy = given.GEMEL_PROXY === 'loopback' ? 'loopback' : Number(given.GEMEL_PROXY ?? 0) || false;

@@ -1,11 +1,20 @@
-import { type Logger, pino } from 'pino';
+import { type DestinationStream, type Logger, pino } from 'pino';
 import { type HttpLogger, pinoHttp } from 'pino-http';
+import { describeError } from './safe-error';
 
 export type { Logger } from 'pino';
 
 /** One JSON line per event on standard error; standard output is for the few lines a person reads at start. */
-export function createLog(level: string): Logger {
-  return pino({ level, base: null, timestamp: pino.stdTimeFunctions.isoTime }, pino.destination(2));
+export function createLog(level: string, destination: DestinationStream = pino.destination(2)): Logger {
+  return pino(
+    {
+      level,
+      base: null,
+      timestamp: pino.stdTimeFunctions.isoTime,
+      serializers: { err: (error: unknown) => describeError(error) },
+    },
+    destination,
+  );
 }
 
 /** Logs method, path, status and time of API requests; never bodies, cookies or query strings. */
@@ -20,6 +29,7 @@ export function createHttpLog(log: Logger): HttpLogger {
         method: request.method,
         path: request.url.split('?', 1)[0],
       }),
+      err: (error: unknown) => describeError(error),
       res: (response: { statusCode: number }) => ({ status: response.statusCode }),
     },
     customLogLevel: (_request, response, error) =>

@@ -24,8 +24,9 @@ export class Refusal extends Error {
   readonly code: RefusalCode;
   readonly place: string | null;
 
-  constructor(code: RefusalCode, message: string, place: string | null = null) {
-    super(message);
+  /** `cause` goes to the log, not to the person. */
+  constructor(code: RefusalCode, message: string, place: string | null = null, cause?: unknown) {
+    super(message, cause === undefined ? {} : { cause });
     this.name = 'Refusal';
     this.code = code;
     this.place = place;

@@ -1,18 +1,23 @@
-import type { ErrorRequestHandler, RequestHandler } from 'express';
+import type { ErrorRequestHandler, Request, RequestHandler } from 'express';
 import { Problem } from '../../shared/errors/problem';
 import type { Logger } from '../platform/log';
 import { Refusal } from '../platform/refusal';
 
 export const refuseUnknown: RequestHandler = (request) => {
-  throw new Refusal('not-found', `The server has no address ${request.method} ${request.path}.`);
+  throw new Refusal('not-found', `The server has no address ${request.method} ${askedAddress(request)}.`);
 };
+
+/** As it was asked, below whatever router, without the query, which may hold what is nobody's business. */
+export function askedAddress(request: Request): string {
+  return request.originalUrl.split('?', 1)[0] ?? '';
+}
 
 /** The one place where an error becomes an answer. What is not a refusal is logged and told without its details. */
 export function createErrorHandler(log: Logger): ErrorRequestHandler {
   return (error: unknown, request, response, next) => {
     const refusal = toRefusal(error);
-    if (refusal.code === 'internal')
-      log.error({ err: error, method: request.method, path: request.path }, 'failed');
+    if (refusal.status >= 500)
+      log.error({ err: error, method: request.method, path: askedAddress(request) }, 'failed');
     if (response.headersSent) return next(error);
     // A failed answer must not be kept by any cache, whatever its route wished.
     response.set('Cache-Control', 'no-store');

@@ -1,7 +1,8 @@
 import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
 import express, { type Request, type Response, Router } from 'express';
-import { notFound, StartProblem } from '../platform/refusal';
+import { Refusal, StartProblem } from '../platform/refusal';
+import { askedAddress } from './errors';
 
 /** The built page: hashed files for a year, index.html with a new nonce every time. */
 export function createPageRouter(folder: string): Router {
@@ -16,8 +17,11 @@ export function createPageRouter(folder: string): Router {
   router.use(
     '/assets',
     express.static(join(folder, 'assets'), { immutable: true, maxAge: '1y', index: false, redirect: false }),
-    () => {
-      throw notFound('file');
+    (request) => {
+      throw new Refusal(
+        'not-found',
+        `The page has no file ${askedAddress(request)}. It may belong to an earlier version of the page: load the page again.`,
+      );
     },
   );
   // Before the static files, which would send the page without its nonce.

@@ -18,7 +18,12 @@ export function createPeopleRouter(deps: RouteDeps): Router {
     try {
       await deps.people.ping();
     } catch (error) {
-      throw new Refusal('not-ready', `The database does not answer (${String(error)}).`);
+      throw new Refusal(
+        'not-ready',
+        'The database of this server does not answer now; its log says why.',
+        null,
+        error,
+      );
     }
     response.json({ status: 'ok', version: deps.info.version });
   });

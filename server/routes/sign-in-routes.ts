@@ -1,8 +1,7 @@
 import express, { type Request, type Response, Router } from 'express';
 import { rateLimit } from 'express-rate-limit';
-import type { ErrorBody } from '../../shared/contracts/http';
 import { z } from '../../shared/util/zod';
-import { Refusal, type RefusalCode } from '../platform/refusal';
+import { Refusal } from '../platform/refusal';
 import { requirePerson } from './people-routes';
 import type { RouteDeps } from './route-deps';
 
@@ -68,8 +67,8 @@ async function passOn(deps: RouteDeps, request: Request, response: Response): Pr
   if (cookies.length > 0) response.setHeader('Set-Cookie', cookies);
   response.set('Cache-Control', 'no-store');
   // The library's own answer holds the session token, which scripts of the page are not to see.
-  if (answer.ok) response.json({});
-  else response.status(answer.status).json(explain(answer.status, await answer.text()));
+  if (!answer.ok) throw explain(answer.status, await answer.text());
+  response.json({});
 }
 
 const emailSchema = z.object({ email: z.string() });
@@ -90,10 +89,15 @@ function messageOf(text: string): string {
 }
 
 /** The library's refusal in our words. */
-export function explain(status: number, text: string): ErrorBody {
+export function explain(status: number, text: string): Refusal {
   const said = messageOf(text);
-  const tell = (code: RefusalCode, message: string) => new Refusal(code, message).toBody();
-  if (status === 401) return wrongSignIn().toBody();
-  if (status >= 500) return tell('internal', 'Signing in failed on the server; its log says why.');
-  return tell('bad-input', `The sign-in request was refused: ${said === '' ? `status ${status}` : said}.`);
+  if (status === 401) return wrongSignIn();
+  if (status >= 500) {
+    const cause = new Error(`the sign-in library answered ${status}: ${said}`);
+    return new Refusal('internal', 'Signing in failed on the server; its log says why.', null, cause);
+  }
+  return new Refusal(
+    'bad-input',
+    `The sign-in request was refused: ${said === '' ? `status ${status}` : said}.`,
+  );
 }

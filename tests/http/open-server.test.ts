@@ -3,11 +3,12 @@ import { join } from 'node:path';
 import type { Express } from 'express';
 import { pino } from 'pino';
 import request from 'supertest';
-import { afterAll, beforeAll, describe, expect, it } from 'vitest';
+import { afterAll, beforeAll, describe, expect, it, vi } from 'vitest';
 import { type OpenDatabase, openEmbedded } from '../../server/data/client';
 import { createApp } from '../../server/entry/create-app';
 import { assemble } from '../../server/entry/start';
 import { parseConfig } from '../../server/platform/config';
+import { createLog } from '../../server/platform/log';
 import { makeRoot, signIn } from './harness';
 
 const publicOrigin = 'http://bench.example';
@@ -82,6 +83,38 @@ describe('a server others can reach', () => {
     const demo = await signIn(near.app, 'lead@demo.gemel', secrets.demoPassword);
     const groups = (await request(near.app).get('/api/me').set('Cookie', demo)).body.groups;
     expect(groups).toMatchObject([{ name: 'Lanternfield pair bench' }]);
+  });
+
+  it('tells strangers nothing of a failing database, and the log everything but the values', async () => {
+    const lines: string[] = [];
+    const printed = vi
+      .spyOn(console, 'error')
+      .mockImplementation((...all) => void lines.push(all.map(String).join(' ')));
+    const failing = await openEmbedded(null);
+    const config = parseConfig({ GEMEL_DATA: join(root, 'data') }, { root, development: false });
+    const log = createLog('info', { write: (line) => void lines.push(line) });
+    const app = createApp(
+      await assemble(config, { root, version: '0.0.0' }, secrets, failing.db, log, () => {}),
+    );
+    await failing.close();
+    const health = await request(app).get('/api/health');
+    expect([health.status, health.body.error]).toEqual([
+      503,
+      {
+        code: 'not-ready',
+        message: 'The database of this server does not answer now; its log says why.',
+        place: null,
+      },
+    ]);
+    const entered = await request(app)
+      .post('/api/auth/sign-in/email')
+      .set('Origin', 'http://127.0.0.1:4310')
+      .send({ email: 'someone@bench.example', password: 'a long enough one' });
+    expect([entered.status, entered.body.error.code]).toEqual([500, 'internal']);
+    printed.mockRestore();
+    const text = lines.join('\n');
+    expect(text.match(/PGlite is closed/g)?.length).toBeGreaterThanOrEqual(2);
+    expect(text).not.toMatch(/someone@bench|params|a long enough one/);
   });
 
   it('tells how to count attempts behind a proxy', async () => {

@@ -82,6 +82,15 @@ describe('the page and its headers', () => {
     }
   });
 
+  it('names the asked address, without its query', async () => {
+    const told = async (path: string) => (await request(h.app).get(path)).body.error.message;
+    expect(await told('/api/nothing?token=hidden')).toBe('The server has no address GET /api/nothing.');
+    expect(await told('/api')).toBe('The server has no address GET /api.');
+    expect(await told('/assets/missing.js?v=1')).toMatch(
+      /^The page has no file \/assets\/missing\.js\. .*load the page/,
+    );
+  });
+
   it('asks browsers for https, and for secure cookies only, when the address is https', async () => {
     const app = createApp({ ...h.deps, origin: 'https://gemel.example' });
     expect((await request(app).get('/')).headers['strict-transport-security']).toContain('max-age=31536000');

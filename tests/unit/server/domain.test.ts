@@ -52,9 +52,9 @@ describe('explain', () => {
     [400, '{"message":7}', 'bad-input', /refused: status 400\.$/],
     [500, '<html>', 'internal', /its log says why/],
   ])('%i %s -> %s', (status, text, code, sentence) => {
-    const { error } = explain(status, text);
-    expect(error.code).toBe(code);
-    expect(error.message).toMatch(sentence);
+    const refusal = explain(status, text);
+    expect(refusal.code).toBe(code);
+    expect(refusal.message).toMatch(sentence);
   });
 });
 
