@@ -50,7 +50,10 @@ export class FrameAccumulator {
     this.#rows = new Float64Array(spec.height);
   }
 
-  /** Takes the next frames, however many. A jump in the frame index starts a new stretch. */
+  /**
+   * Takes the next frames, however many. A jump in the frame index starts a new stretch.
+   * @throws Problem `bad-input` for another shape, or a pixel that is not masked and holds no finite number.
+   */
   push(block: FrameBlock): void {
     if (block.kind !== 'frames') {
       throw new Problem(
@@ -67,7 +70,15 @@ export class FrameAccumulator {
     }
     for (let i = 0; i < block.count; i++) {
       const start = i * width * height;
-      const total = takeFrame(block.pixels, start, masked, this.#incoming, this.#sum, this.#sumSquares);
+      const { total, squares } = takeFrame(
+        block.pixels,
+        start,
+        masked,
+        this.#incoming,
+        this.#sum,
+        this.#sumSquares,
+      );
+      if (!Number.isFinite(squares)) throw notNumber(this.#incoming, width, block.firstFrame + i);
       this.#append(block.firstFrame + i, total);
     }
     if (this.#segments.length > 1) this.#joinSegments();
@@ -291,6 +302,18 @@ export class FrameAccumulator {
     this.#blocks.set(block, sums);
     return sums;
   }
+}
+
+/** Names the first pixel of a frame whose square is not a finite number. */
+function notNumber(image: Float64Array, width: number, frame: number): Problem {
+  const at = image.findIndex((value) => !Number.isFinite(value * value));
+  const x = at % width;
+  const y = Math.floor(at / width);
+  return new Problem(
+    'bad-input',
+    `Frame ${frame} holds ${image[at]} at pixel (${x}, ${y}), where a finite number was expected; mask pixel ${at} in the detector map, or write numbers in its place.`,
+    `frame ${frame}, pixel (${x}, ${y})`,
+  );
 }
 
 export function createFrameAccumulator(spec: FrameSpec): FrameAccumulator {

@@ -4,7 +4,8 @@ import type { PixelArray } from '../../shared/contracts/blocks';
 
 /**
  * Copies one frame out of a stack as doubles, masked pixels as 0, and adds it to the sums of I and I^2.
- * Returns the total of the unmasked pixels. `start` is the index of the frame's first pixel.
+ * Returns the totals of the unmasked pixels and of their squares; where the latter is not finite, neither are the sums
+ * any more. `start` is the index of the frame's first pixel.
  */
 export function takeFrame(
   pixels: PixelArray,
@@ -13,16 +14,18 @@ export function takeFrame(
   out: Float64Array,
   sum: Float64Array,
   sumSquares: Float64Array,
-): number {
+): { total: number; squares: number } {
   let total = 0;
+  let squares = 0;
   for (let i = 0; i < out.length; i++) {
     const value = masked[i] === 0 ? pixels[start + i]! : 0;
     out[i] = value;
     sum[i]! += value;
     sumSquares[i]! += value * value;
     total += value;
+    squares += value * value;
   }
-  return total;
+  return { total, squares };
 }
 
 /** out = x - y */

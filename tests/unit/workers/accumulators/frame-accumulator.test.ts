@@ -222,6 +222,41 @@ describe('frame accumulator', () => {
   });
 });
 
+describe('frames with pixels that are no numbers', () => {
+  const spec = (masked: number[] = []): FrameSpec => ({
+    kind: 'frames',
+    width: 4,
+    height: 3,
+    frames: 6,
+    blocks: 2,
+    masked: Uint8Array.from({ length: 12 }, (_, k) => (masked.includes(k) ? 1 : 0)),
+  });
+  const block = (odd: number) => {
+    const pixels = new Float32Array(4 * 12).fill(1);
+    // Third of four frames from number 2 on, pixel (2, 1).
+    pixels[2 * 12 + 6] = odd;
+    return { kind: 'frames' as const, firstFrame: 2, count: 4, width: 4, height: 3, pixels, bytes: 0 };
+  };
+
+  it.each([Number.NaN, Number.POSITIVE_INFINITY, Number.NEGATIVE_INFINITY])(
+    'refuses %s, by its place',
+    (odd) => {
+      const push = () => createAccumulator(spec()).push(block(odd));
+      expect(push).toThrow(
+        /Frame 4 holds (NaN|-?Infinity) at pixel \(2, 1\).*mask pixel 6 in the detector map/,
+      );
+    },
+  );
+
+  it('takes them where they are masked', () => {
+    const accumulator = createAccumulator(spec([6]));
+    accumulator.push(block(Number.NaN));
+    const tally = accumulator.tally();
+    if (tally.kind !== 'frames') throw new Error('frames expected');
+    expect([...tally.sum]).toEqual(Array.from({ length: 12 }, (_, k) => (k === 6 ? 0 : 4)));
+  });
+});
+
 describe('accumulators of either kind', () => {
   const frames: FrameSpec = {
     kind: 'frames',
