@@ -94,6 +94,7 @@ export const delayDial: DialSpec = {
   reason:
     'Centre of the coincidence window; left empty, the study looks for the peak and says where it found it.',
   needs: 'bytes',
+  for: 'tags',
   type: 'number',
   unit: 'ps',
   default: null,
@@ -109,6 +110,7 @@ export const windowDial: DialSpec = {
   reason:
     'Full width of the window; wider keeps more pairs and more accidentals. Left empty it is four sigma of the fitted peak, which keeps 95.4 % of a Gaussian one.',
   needs: 'bytes',
+  for: 'tags',
   type: 'number',
   unit: 'ps',
   default: null,
@@ -124,6 +126,7 @@ export const histogramRangeDial: DialSpec = {
   reason:
     'How far the delay histogram reaches to either side of the peak; the search for the peak looks five times as far around zero.',
   needs: 'bytes',
+  for: 'tags',
   type: 'number',
   unit: 'ns',
   default: 200,
@@ -138,6 +141,7 @@ export const histogramBinDial: DialSpec = {
   label: 'Histogram bin',
   reason: 'Width of a bin of the delay histogram; left empty it is a third of the sigma of the peak.',
   needs: 'bytes',
+  for: 'tags',
   type: 'number',
   unit: 'ps',
   default: null,
@@ -153,6 +157,7 @@ export const shiftStepDial: DialSpec = {
   reason:
     'Distance from the peak to the first window that counts accidentals, and between those windows; clear of the peak, and a multiple of the pump period when the pump is pulsed.',
   needs: 'bytes',
+  for: 'tags',
   type: 'number',
   unit: 'ps',
   default: 20_000,
@@ -168,6 +173,7 @@ export const shiftCountDial: DialSpec = {
   reason:
     'How many shifted windows are averaged, half on either side; more make the accidentals more certain.',
   needs: 'bytes',
+  for: 'tags',
   type: 'integer',
   unit: '',
   default: 10,
@@ -183,6 +189,7 @@ export const deadTimeDial: DialSpec = {
   reason:
     'How long a pixel is blind after a click, from its data sheet; only the check for saturated pixels uses it, counts are not corrected.',
   needs: 'finish',
+  for: 'tags',
   type: 'number',
   unit: 'ns',
   default: 50,
@@ -216,6 +223,7 @@ export const blocksDial: DialSpec = {
   reason:
     'Into how many blocks of frames the acquisition is cut for the bootstrap; each should outlast the drift of the source, and there should be 20 or more.',
   needs: 'bytes',
+  for: 'frames',
   type: 'integer',
   unit: '',
   default: 50,

@@ -34,7 +34,11 @@ export function checkPairsEnough(count: TagCount, least: number, good: number): 
     return { ...base, status: 'pass', sentence: `${pairs} net pairs are enough for steady numbers.` };
   }
   const status = pairs >= least ? 'caution' : 'fail';
-  const sentence = `Only ${pairs} net pairs were found; ${good} or more give steady numbers. Measure longer or raise the pair rate.`;
+  const found =
+    pairs > 0
+      ? `Only ${pairs} net pairs were found`
+      : `No net pairs: the window holds ${count.inWindow} pairs, ${formatFigure(count.accidentals.shifted.value)} of them accidental by the shifted windows`;
+  const sentence = `${found}; ${good} or more give steady numbers. Measure longer or raise the pair rate.`;
   return { ...base, status, sentence };
 }
 
@@ -78,7 +82,8 @@ export function checkPeakCentred(count: TagCount): Check {
 export function checkAccidentalsAgree(count: TagCount): Check {
   const { product, shifted, sideband } = count.accidentals;
   const named = [
-    { name: 'singles product', ...product },
+    // The product rests on the live time.
+    ...(count.times.known ? [{ name: 'singles product', ...product }] : []),
     { name: 'shifted windows', ...shifted },
     ...(sideband === null ? [] : [{ name: 'sideband', ...sideband }]),
   ];

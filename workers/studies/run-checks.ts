@@ -4,6 +4,7 @@ import { trueRateNonParalysable } from '../../shared/physics/dead-time';
 import { g2 } from '../../shared/physics/timing';
 import { formatFigure } from './format-figure';
 import type { ArmPair } from './peak-search';
+import type { SliceTimes } from './slice-times';
 import { sum, type TagCount } from './tag-count';
 
 /** Questions about the run as a whole: drift, gaps, order, pixels. */
@@ -54,6 +55,10 @@ export function checkBaseline(count: TagCount): Check {
   const id = 'baseline-flat';
   const unit = '1';
   const { sideband, seconds, countsA, countsB, histogram } = count;
+  if (!count.times.known) {
+    const sentence = 'The live time is not known, so the baseline of g2 could not be checked.';
+    return { id, status: 'caution', figure: null, unit, sentence };
+  }
   const request = {
     pairs: sideband?.counts ?? 0,
     countsA,
@@ -110,11 +115,12 @@ export function checkPixels(arms: readonly { arm: ArmTally; name: string }[]): C
 /** Share of photons that the busiest pixel loses to its dead time, m t_d for a non-paralysable one. */
 export function checkSaturation(
   arms: readonly { arm: ArmTally; name: string }[],
-  seconds: number,
+  times: SliceTimes,
   deadNs: number,
 ): Check {
   const id = 'pixels-saturated';
   const unit = '%';
+  const seconds = times.known ? times.liveS : 0;
   let busiest = { rate: 0, at: '' };
   for (const { arm, name } of seconds > 0 ? arms : []) {
     for (const [pixel, n] of arm.singles.entries()) {
@@ -128,7 +134,7 @@ export function checkSaturation(
       status: 'caution',
       figure: null,
       unit,
-      sentence: 'There is no live time, so the rate of no pixel is known.',
+      sentence: 'The live time is not known, and so the rate of no pixel.',
     };
   }
   const truth = trueRateNonParalysable(busiest.rate, deadNs * 1e-9);
@@ -186,12 +192,12 @@ export function checkLiveTime(count: TagCount): Check {
     const sentence = `Live time is taken from the first to the last tag, ${formatFigure(seconds)} s; no stretch of it is empty.`;
     return { ...base, status: 'pass', sentence };
   }
-  const found = `${empty} of ${tally.slices} slices of time hold no tag and are left out of the live time of ${formatFigure(seconds)} s`;
+  const gaps = `${empty} of ${tally.slices} slices of time hold no tag`;
   if (!times.known) {
-    const sentence = `${found}, but more than a tenth of the rest lies beside a gap and may be partly empty, so no rate is given. Cut the gap out, and look at the time field of the layout.`;
+    const sentence = `${gaps}, and so much of the rest lies beside a gap and may be partly empty that the live time is not known and no rate is given. Cut the gap out, and look at the time field of the layout.`;
     return { ...base, status: 'fail', sentence };
   }
-  const sentence = `${found}. Cut the gap out.`;
+  const sentence = `${gaps} and are left out of the live time of ${formatFigure(seconds)} s. Cut the gap out.`;
   return { ...base, status: empty > tally.slices / 20 ? 'fail' : 'caution', sentence };
 }
 

@@ -34,7 +34,9 @@ function rateOf(count: TagCount, counted: Estimate | null): Estimate | null {
 
 /** The product of the singles rates is the accidentals only where the rates are steady over a known live time. */
 function isSteady(count: TagCount): boolean {
-  return [checkLiveTime(count), checkBaseline(count)].every(({ status }) => status !== 'fail');
+  return (
+    count.times.known && [checkLiveTime(count), checkBaseline(count)].every(({ status }) => status !== 'fail')
+  );
 }
 
 export function singlesOf(count: TagCount, arms: ArmPair): Measured[] {

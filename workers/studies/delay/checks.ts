@@ -43,7 +43,7 @@ export function checkDelay(
     checkDrift(count, arms),
     checkExcessNoise(excess),
     checkPixels(arrays),
-    checkSaturation(arrays, count.seconds, deadNs),
+    checkSaturation(arrays, count.times, deadNs),
     checkOrder(count),
     checkMapped(count),
     checkLiveTime(count),

@@ -59,7 +59,7 @@ export function checkGhostImage(
         { arm: count.tally.a, name: arms.a },
         { arm: count.tally.b, name: arms.b },
       ],
-      count.seconds,
+      count.times,
       numberDial(dials, 'dead.time'),
     ),
     checkOrder(count),

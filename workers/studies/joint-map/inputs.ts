@@ -28,6 +28,7 @@ const crosstalkDial: DialSpec = {
   reason:
     'Frames only: difference bins up to this many pixels are left out, because charge smear and optical crosstalk of neighbours land there and feign a narrow peak. 0 leaves out a pixel with itself alone.',
   needs: 'finish',
+  for: 'frames',
   type: 'number',
   unit: 'pixels',
   default: 1,

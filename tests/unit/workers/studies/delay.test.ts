@@ -267,6 +267,8 @@ describe('Delay says what is wrong', () => {
       expect(check.sentence).toContain('no rate is given');
       expect(rateIds(output)).toEqual([]);
       expect(output.quantities['g2.peak']).toBeUndefined();
+      expect(output.checks.find(({ id }) => id === 'baseline-flat')!.figure).toBeNull();
+      expect(output.checks.find(({ id }) => id === 'pairs-enough')!.sentence).not.toContain('Only -');
     }
   });
 
