@@ -21,6 +21,8 @@ interface DialBase {
   reason: string;
   /** `bytes`: turning it reads the file again; `finish`: it does not. */
   needs: 'bytes' | 'finish';
+  /** Kind of input it concerns; left out where it concerns any. */
+  for?: 'tags' | 'frames';
 }
 
 export type DialSpec = DialBase &
