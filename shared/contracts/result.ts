@@ -6,6 +6,18 @@ import { planeSchema } from './plane';
 
 /** The result file: written by the command line, stored by the server, read by tests. Version 1. */
 
+/** Far above what any study gives; they keep one file from filling the store with names. */
+const mostEntries = 2000;
+const longestKey = 200;
+const named = <T extends z.ZodType>(entry: T) =>
+  z
+    .record(z.string(), entry)
+    .refine((record) => Object.keys(record).length <= mostEntries, `more than ${mostEntries} entries`)
+    .refine(
+      (record) => Object.keys(record).every((key) => key.length <= longestKey),
+      `a name is longer than ${longestKey} characters`,
+    );
+
 export const quantitySchema = z.strictObject({
   value: z.number(),
   sigma: z.number().min(0).nullable(),
@@ -74,11 +86,11 @@ export type MapFile = z.infer<typeof mapFileSchema>;
 export const resultFileSchema = z.strictObject({
   gemel: z.literal(1),
   study: z.string().max(80),
-  quantities: z.record(z.string(), quantitySchema),
-  verdicts: z.record(z.string(), verdictSchema),
+  quantities: named(quantitySchema),
+  verdicts: named(verdictSchema),
   checks: z.array(checkSchema).max(200),
-  maps: z.record(z.string(), mapFileSchema),
-  chosen: z.record(z.string(), z.number()),
+  maps: named(mapFileSchema),
+  chosen: named(z.number()),
   statement: z.string().max(10_000),
   provenance: z.strictObject({
     inputs: z
@@ -95,7 +107,7 @@ export const resultFileSchema = z.strictObject({
       )
       .max(20),
     preset: z.strictObject({ name: z.string().max(200), version: z.int().nullable() }).nullable(),
-    dials: z.record(z.string(), dialValueSchema),
+    dials: named(dialValueSchema),
     engine: z.string().max(40),
     seed: z.int(),
     startedAt: z.string().max(40),

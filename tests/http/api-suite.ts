@@ -390,6 +390,25 @@ function results(harness: () => Harness): void {
       expect(existsSync(fileOf(address))).toBe(false);
     });
 
+    it('refuse more names, and longer ones, than any study gives', async () => {
+      const { app, cookies, group } = harness();
+      const numbers = (count: number) =>
+        Object.fromEntries(Array.from({ length: count }, (_, k) => [`w${k}`, k]));
+      const post = (chosen: Record<string, number>) =>
+        send(app, 'post', `/api/groups/${group}/results`, cookies.lead, {
+          name: 'x',
+          result: { ...makeResult({}), chosen },
+        });
+      expect((await post(numbers(2000))).status).toBe(201);
+      const many = await post(numbers(2001));
+      expect([many.status, many.body.error.place]).toEqual([400, 'result.chosen']);
+      expect(many.body.error.message).toContain('more than 2000 entries');
+      expect((await post({ ['n'.repeat(200)]: 1 })).status).toBe(201);
+      const long = await post({ ['n'.repeat(201)]: 1 });
+      expect(long.status).toBe(400);
+      expect(long.body.error.message).toContain('a name is longer than 200 characters');
+    });
+
     it('refuse maps whose arrays do not fit their shape', async () => {
       const { app, cookies, group } = harness();
       const bad = {
