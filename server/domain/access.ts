@@ -1,7 +1,8 @@
 import type { Me, Role } from '../../shared/contracts/http';
+import { type Action, may } from '../../shared/contracts/permissions';
 import type { People, PersonRecord } from '../data/repositories/people';
 import { notFound, Refusal } from '../platform/refusal';
-import { type Action, actionWords, mayDo, parseRole } from './permissions';
+import { actionWords, parseRole } from './permissions';
 
 /** A signed-in person inside one of their groups. */
 export interface Member {
@@ -24,7 +25,7 @@ export async function requireMember(people: People, groupId: string, userId: str
 }
 
 export function requireAction(member: Member, action: Action): void {
-  if (mayDo(member.role, action)) return;
+  if (may(member.role, action)) return;
   throw new Refusal(
     'not-allowed',
     `As ${member.role} of this group you may not ${actionWords[action]}; ask a lead of the group for another role.`,

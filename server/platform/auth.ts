@@ -7,7 +7,7 @@ import { redact } from './safe-error';
 
 /**
  * Who may do what to a group itself. What may be done to presets, sessions and results is the table of
- * domain/permissions, asked by every route.
+ * shared/contracts/permissions, asked by every route.
  */
 const accessControl = createAccessControl({
   organization: ['update', 'delete'],

@@ -1,6 +1,6 @@
 import type { Request, Response } from 'express';
+import type { Action } from '../../shared/contracts/permissions';
 import type { Member } from '../domain/access';
-import type { Action } from '../domain/permissions';
 import type { RouteDeps } from './route-deps';
 
 /** A route inside a group. Who is asking and whether they may is settled before its body is read. */
