@@ -25,7 +25,7 @@ export interface OpenDatabase {
 /** Beside this file in the source, beside main.js in the built server. */
 const migrationsFolder = fileURLToPath(new URL('./migrations', import.meta.url));
 
-/** `dir` null keeps the embedded database in memory (tests). The caller holds the lock of `dir`. */
+/** `dir` null keeps the embedded database in memory (tests). The caller holds the lock of the data directory. */
 export async function openEmbedded(dir: string | null): Promise<OpenDatabase> {
   if (dir !== null) mkdirSync(dirname(dir), { recursive: true });
   const client = await createEmbedded(dir);

@@ -14,7 +14,10 @@ export interface MapStore {
   /** Unpacked bytes and the gzip stream as stored; null when the file is missing or does not match its name. */
   read(hash: string): Promise<{ raw: Buffer; gzip: Buffer } | null>;
   remove(hash: string): Promise<void>;
-  /** Runs one at a time: saving and removing must not cross, or a map in use could be removed. */
+  /**
+   * Runs one at a time: saving and removing must not cross, or a map in use could be removed. This holds within one
+   * process; the lock of the data directory sees to it that there is no second one on the same folder.
+   */
   alone<T>(work: () => Promise<T>): Promise<T>;
 }
 

@@ -20,7 +20,7 @@ import {
 import { createAuth, hashNewPassword } from '../platform/auth';
 import { type Config, isLoopback } from '../platform/config';
 import type { Logger } from '../platform/log';
-import { type ProcessLock, takeLock } from '../platform/process-lock';
+import { takeLock } from '../platform/process-lock';
 import { StartProblem } from '../platform/refusal';
 import { loadSecrets, type Secrets } from '../platform/secrets';
 import { type AppDeps, createApp } from './create-app';
@@ -44,46 +44,38 @@ export async function start(
   log: Logger,
   say: (line: string) => void,
 ): Promise<Running> {
-  const secrets = loadSecrets(config.dataDir);
-  const opened = await openStore(config, log);
+  // Before anything is read or made there; also with a database elsewhere, because secrets and maps are in the directory.
+  const lock = takeLock(join(config.dataDir, 'db.lock'));
+  let database: OpenDatabase | null = null;
+  const undo = async (): Promise<void> => {
+    try {
+      await database?.close();
+    } finally {
+      lock.release();
+    }
+  };
   try {
-    const deps = await assemble(config, place, secrets, opened.database.db, log, say);
+    const secrets = loadSecrets(config.dataDir);
+    database = await openDatabase(config, log);
+    const deps = await assemble(config, place, secrets, database.db, log, say);
     const server = createServer(createApp(deps));
     await listen(server, config);
     const stop = async (): Promise<void> => {
       await closeServer(server);
-      await opened.close();
+      await undo();
     };
     return { server, demo: deps.info.demo, stop };
   } catch (error) {
-    await opened.close();
+    await undo();
     throw error;
   }
 }
 
-async function openStore(
-  config: Config,
-  log: Logger,
-): Promise<{ database: OpenDatabase; close(): Promise<void> }> {
-  if (config.databaseUrl !== null) {
-    const database = await openPostgres(config.databaseUrl, (error) =>
-      log.warn({ err: error }, 'a database connection was lost'),
-    );
-    return { database, close: database.close };
-  }
-  const dir = join(config.dataDir, 'db');
-  const lock: ProcessLock = takeLock(`${dir}.lock`);
-  try {
-    const database = await openEmbedded(dir);
-    const close = async (): Promise<void> => {
-      await database.close();
-      lock.release();
-    };
-    return { database, close };
-  } catch (error) {
-    lock.release();
-    throw error;
-  }
+function openDatabase(config: Config, log: Logger): Promise<OpenDatabase> {
+  if (config.databaseUrl === null) return openEmbedded(join(config.dataDir, 'db'));
+  return openPostgres(config.databaseUrl, (error) =>
+    log.warn({ err: error }, 'a database connection was lost'),
+  );
 }
 
 /** Everything the app stands on, over an open database; also what the tests run on. */

@@ -14,7 +14,7 @@ import { StartProblem } from './refusal';
 
 /**
  * One process at a time per data directory: two on one embedded database do not notice each other, and the rows of one
- * of them are lost. The lock file names its holder by process id and, where the system tells it, by the moment the
+ * of them are lost; two on one maps folder may remove a map the other is about to name. The lock file names its holder by process id and, where the system tells it, by the moment the
  * process began, because ids are used again.
  */
 const holderSchema = z.object({ pid: z.int().positive(), began: z.string().nullable(), token: z.string() });
