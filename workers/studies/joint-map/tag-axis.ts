@@ -37,6 +37,11 @@ export interface TagAxis {
   n2: number;
 }
 
+/** The fit where its numbers may be used; null where it did not converge or ended at the least width it can tell. */
+export function goodFit({ fit }: Pick<TagAxis, 'fit'>): PairFit | null {
+  return fit === null || !fit.fit.converged || fit.fit.atFloor ? null : fit;
+}
+
 /** Joint counts of one axis: fit, moments and raw moments, each with its resamples. `weights` null: too few blocks. */
 export function analyseTagAxis(
   tally: TagTally,
@@ -84,6 +89,7 @@ export function analyseTagAxis(
     return { ...counted, result };
   }
   const how = `block bootstrap, ${slices} slices of time`;
+  const sound = goodFit(counted);
   const raw = momentVariances(
     sums.raw,
     scales,
@@ -92,7 +98,7 @@ export function analyseTagAxis(
   );
   return {
     result: {
-      net: fit?.fit.converged === true ? fitVariances(fit, scales, weights, how) : noVariances,
+      net: sound === null ? noVariances : fitVariances(sound, scales, weights, how),
       moment: momentVariances(
         sums.net,
         scales,

@@ -1,11 +1,13 @@
 import type { Check } from '../../../shared/contracts/output';
+import { spreadOf } from '../../../shared/physics/bootstrap';
+import type { PairFit } from '../../../shared/physics/fit-pair';
 import { FIT_PARAMETERS, type ShapeFit } from '../../../shared/physics/fit-shape';
 import { formatFigure } from '../format-figure';
 import { checkAccidentalsAgree, checkPairsEnough, checkPeakFound, checkWindowCut } from '../peak-checks';
 import { checkDrift, checkLiveTime, checkMapped, checkOrder, checkPixels } from '../run-checks';
 import type { TagCount } from '../tag-count';
 import { checkBlocks } from './plane-checks';
-import type { ArmScales, TagAxis } from './tag-axis';
+import { type ArmScales, goodFit, type TagAxis } from './tag-axis';
 
 export interface TagChecksRequest {
   count: TagCount;
@@ -51,17 +53,34 @@ const axesOf = ({ x, y }: TagChecksRequest): { name: string; axis: TagAxis }[] =
   { name: 'y', axis: y },
 ];
 
+const namesOf = (axes: readonly { name: string }[]): string => axes.map(({ name }) => name).join(' and ');
+
+/** Axes on which the fit may be believed, with it. */
+const goodFits = (request: TagChecksRequest): { name: string; axis: TagAxis; fit: PairFit }[] =>
+  axesOf(request).flatMap(({ name, axis }) => {
+    const fit = goodFit(axis);
+    return fit === null ? [] : [{ name, axis, fit }];
+  });
+
+/** The fit stopped at the least width it can tell: the pairs are correlated more finely than the pixels see. */
+const belowPixels = ({ fit }: TagAxis): boolean => fit?.fit.atFloor === true;
+
 function checkFit(request: TagChecksRequest): Check {
-  const bad = axesOf(request).filter(({ axis }) => axis.fit?.fit.converged !== true);
   const id = 'fit-good';
-  if (bad.length > 0) {
-    const sentence = `No Gaussian could be fitted to the joint map of ${bad.map(({ name }) => name).join(' and ')}, so its net numbers are left out; measure longer or look at the map.`;
+  const unfitted = axesOf(request).filter(({ axis }) => goodFit(axis) === null && !belowPixels(axis));
+  if (unfitted.length > 0) {
+    const sentence = `No Gaussian could be fitted to the joint map of ${namesOf(unfitted)}, so its net numbers are left out; measure longer or look at the map.`;
     return { id, status: 'fail', figure: null, unit: '', sentence };
+  }
+  const narrow = axesOf(request).filter(({ axis }) => belowPixels(axis));
+  if (narrow.length > 0) {
+    const sentence = `The pairs are correlated along ${namesOf(narrow)} more narrowly than the pixels are wide, so no fitted width is given there; magnify more.`;
+    return { id, status: 'caution', figure: null, unit: '', sentence };
   }
   let worst = 0;
   let deviation = 0;
-  for (const { axis } of axesOf(request)) {
-    const { chi2, ndf } = axis.fit ?? { chi2: 0, ndf: 0 };
+  for (const { fit } of goodFits(request)) {
+    const { chi2, ndf } = fit;
     if (ndf < 1) continue;
     worst = Math.max(worst, chi2 / ndf);
     deviation = Math.max(deviation, (chi2 - ndf) / Math.sqrt(2 * ndf));
@@ -74,7 +93,7 @@ function checkFit(request: TagChecksRequest): Check {
 }
 
 function checkTruncation(request: TagChecksRequest): Check {
-  const outside = axesOf(request).flatMap(({ axis }) => (axis.fit === null ? [] : [100 * axis.fit.outside]));
+  const outside = goodFits(request).map(({ fit }) => 100 * fit.outside);
   if (outside.length === 0) {
     const sentence = 'Without a fitted Gaussian it is not known how many pairs lie outside the arrays.';
     return { id: 'map-truncated', status: 'caution', figure: null, unit: '%', sentence };
@@ -96,18 +115,15 @@ function checkSign(request: TagChecksRequest): Check {
   const wrong: string[] = [];
   let weakest = Number.POSITIVE_INFINITY;
   for (const { name, axis } of axesOf(request)) {
-    const fit = axis.fit;
-    if (fit === null) continue;
-    const z =
-      (wanted * fit.blurred.c) /
-      Math.max(
-        sigmaOf(fit.influence, (m) => m(4)),
-        1e-12,
-      );
-    weakest = Math.min(weakest, z);
-    if (z < -3) wrong.push(name);
+    const z = correlationZ(axis);
+    if (z === null) {
+      const sentence = `Without a fit it is not known whether the two arms are correlated along ${name}.`;
+      return { id, status: 'caution', figure: null, unit: 'sigma', sentence };
+    }
+    weakest = Math.min(weakest, wanted * z);
+    if (wanted * z < -3) wrong.push(name);
   }
-  const base = { id, figure: Number.isFinite(weakest) ? weakest : null, unit: 'sigma' };
+  const base = { id, figure: weakest, unit: 'sigma' };
   if (wrong.length > 0) {
     const axes = wrong.join(' and ');
     const sentence = near
@@ -125,6 +141,22 @@ function checkSign(request: TagChecksRequest): Check {
   return { ...base, status: 'pass', sentence };
 }
 
+/**
+ * Standard errors of the correlation above zero: of the fitted covariance, or of the moments where the ridge is too
+ * narrow to be fitted. Null where neither is known.
+ */
+function correlationZ(axis: TagAxis): number | null {
+  const fit = goodFit(axis);
+  if (fit !== null) {
+    const sigma = sigmaOf(fit.influence, (m) => m(4));
+    return sigma > 0 ? fit.blurred.c / sigma : null;
+  }
+  const { correlation } = axis.result.moment;
+  if (!belowPixels(axis) || correlation === null) return null;
+  const { sigma } = spreadOf(correlation.resampled);
+  return sigma > 0 ? correlation.value / sigma : null;
+}
+
 function checkDiscarded(request: TagChecksRequest): Check {
   const percent = Math.max(...axesOf(request).map(({ axis }) => 100 * axis.rawColumns.discarded));
   const base = { id: 'columns-kept', figure: percent, unit: '%' };
@@ -137,15 +169,24 @@ function checkDiscarded(request: TagChecksRequest): Check {
 /** Width of the narrow coordinate against the blur of two pixels. */
 function checkResolution(request: TagChecksRequest): Check {
   const { plane } = request;
-  const ratios = axesOf(request).flatMap(({ axis }) => {
-    if (axis.fit === null) return [];
-    const { v1, v2, c } = axis.fit.blurred;
-    return [(v1 + v2 - 2 * Math.abs(c)) / (1 / 6)];
+  const ratios = goodFits(request).map(({ fit }) => {
+    const { v1, v2, c } = fit.blurred;
+    return (v1 + v2 - 2 * Math.abs(c)) / (1 / 6);
   });
+  const id = 'pixels-fine';
+  const narrowAxes = axesOf(request).filter(({ axis }) => belowPixels(axis));
+  if (narrowAxes.length > 0) {
+    const sentence = `The pairs are narrower than the pixels along ${namesOf(narrowAxes)}; magnify more to resolve them.`;
+    return { id, status: 'caution', figure: null, unit: '1', sentence };
+  }
+  if (ratios.length === 0) {
+    const sentence = 'Without a fit it is not known whether the pixels resolve the pairs.';
+    return { id, status: 'caution', figure: null, unit: '1', sentence };
+  }
   const least = Math.min(...ratios);
-  const base = { id: 'pixels-fine', figure: Number.isFinite(least) ? least : null, unit: '1' };
+  const base = { id, figure: least, unit: '1' };
   const narrow = plane === 'near' ? 'difference' : 'sum';
-  if (!(least < 1.5)) {
+  if (least >= 1.5) {
     const sentence = `The ${narrow} coordinate varies ${formatFigure(least)} times as much as its pixels alone would make it.`;
     return { ...base, status: 'pass', sentence };
   }
@@ -156,10 +197,14 @@ function checkResolution(request: TagChecksRequest): Check {
 /** Narrow variance of the first against the second half of the slices. */
 function checkWidthDrift(request: TagChecksRequest): Check {
   const id = 'width-drift';
+  const fits = goodFits(request);
+  if (fits.length === 0) {
+    const sentence = 'Without a fit it is not known whether the widths drift.';
+    return { id, status: 'caution', figure: null, unit: 'sigma', sentence };
+  }
   let worst = 0;
-  for (const { axis } of axesOf(request)) {
-    if (axis.fit === null) continue;
-    const move = narrowMoves(axis, request.plane);
+  for (const { fit } of fits) {
+    const move = narrowMoves(fit, request.plane);
     const half = move.length / 2;
     const sigma = scatterOf(move);
     const halves = move.reduce((sum, v, s) => sum + (s < half ? v : -v), 0);
@@ -176,25 +221,29 @@ function checkWidthDrift(request: TagChecksRequest): Check {
 
 /** Block scatter of the narrow variance against what counting alone would give. */
 function checkExcess(request: TagChecksRequest): Check {
+  const id = 'excess-noise';
+  const fits = goodFits(request);
+  if (fits.length === 0) {
+    const sentence = 'Without a fit it is not known how the widths of single slices scatter.';
+    return { id, status: 'caution', figure: null, unit: '1', sentence };
+  }
   let worst = 0;
-  for (const { axis } of axesOf(request)) {
-    if (axis.fit === null) continue;
-    const expected = fisherOf(axis.fit.fit, request.plane === 'near' ? -1 : 1);
-    const ratio = scatterOf(narrowMoves(axis, request.plane)) / expected;
+  for (const { fit } of fits) {
+    const expected = fisherOf(fit.fit, request.plane === 'near' ? -1 : 1);
+    const ratio = scatterOf(narrowMoves(fit, request.plane)) / expected;
     if (Number.isFinite(ratio)) worst = Math.max(worst, ratio);
   }
-  const base = { id: 'excess-noise', figure: worst, unit: '1' };
+  const base = { id, figure: worst, unit: '1' };
   if (worst <= 1.5) {
     const sentence = 'Slices of time scatter as counting alone makes them.';
     return { ...base, status: 'pass', sentence };
   }
-  const sentence = `The narrow width scatters between slices of time ${worst.toFixed(1)} times as much as counting alone explains (drift or afterpulsing); the larger error is the one reported.`;
+  const sentence = `The narrow width scatters between slices of time ${worst.toFixed(1)} times as much as counting alone explains (drift or afterpulsing); the errors given are from that scatter.`;
   return { ...base, status: 'caution', sentence };
 }
 
 /** How each slice moves Var(x1 -+ x2), pixel^2. */
-function narrowMoves(axis: TagAxis, plane: 'near' | 'far'): Float64Array {
-  const influence = axis.fit?.influence ?? new Float64Array(0);
+function narrowMoves({ influence }: PairFit, plane: 'near' | 'far'): Float64Array {
   const sign = plane === 'near' ? -2 : 2;
   return Float64Array.from({ length: influence.length / FIT_PARAMETERS }, (_, s) => {
     const at = (p: number): number => influence[s * FIT_PARAMETERS + p] as number;

@@ -3,7 +3,7 @@ import type { PlaneScale } from '../../../shared/physics/calibration';
 import { pairedImage, type TagCount } from '../tag-count';
 import { histogramMap } from '../tag-maps';
 import type { AxisName } from './plane-result';
-import type { ArmScales, TagAxis } from './tag-axis';
+import { type ArmScales, goodFit, type TagAxis } from './tag-axis';
 
 export interface TagMapsRequest {
   count: TagCount;
@@ -53,7 +53,8 @@ function armAxis(request: TagMapsRequest, arm: 'signal' | 'idler', axis: AxisNam
 
 function jointMap(request: TagMapsRequest, found: TagAxis, axis: AxisName, what: 'net' | 'raw'): MapData {
   const { count, scales } = request;
-  const { fit, n1, n2, prompt, shifted } = found;
+  const { n1, n2, prompt, shifted } = found;
+  const fit = goodFit(found);
   const { tally } = count;
   const net = netOf(prompt, shifted, tally.window.shiftsTick.length);
   const axes = [armAxis(request, 'signal', axis, n1), armAxis(request, 'idler', axis, n2)] as const;
@@ -66,7 +67,7 @@ function jointMap(request: TagMapsRequest, found: TagAxis, axis: AxisName, what:
     data: what === 'net' ? net.data : prompt,
     sigma: what === 'net' ? net.sigma : prompt.map(Math.sqrt),
   };
-  if (fit === null || !fit.fit.converged) return map;
+  if (fit === null) return map;
   const { shape } = fit.fit;
   return {
     ...map,
@@ -97,7 +98,8 @@ function projection(
   axis: AxisName,
   what: 'minus' | 'plus',
 ): MapData {
-  const { fit, n1, n2 } = found;
+  const { n1, n2 } = found;
+  const fit = goodFit(found);
   const { tally } = request.count;
   const cells = n1 * n2;
   const bins = n1 + n2 - 1;
@@ -124,7 +126,7 @@ function projection(
     scale: 'signed',
     ...net,
   };
-  return fit === null || !fit.fit.converged ? map : { ...map, model: fold(fit.fit.peak) };
+  return fit === null ? map : { ...map, model: fold(fit.fit.peak) };
 }
 
 /** Two-dimensional; the tally keeps idler minus signal. */

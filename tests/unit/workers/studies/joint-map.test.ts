@@ -111,6 +111,38 @@ describe('Joint map', () => {
     }
   });
 
+  it('says to magnify, not to measure longer, where pairs are narrower than the pixels', () => {
+    // Both photons of a pair on one pixel, always.
+    const onPixels: TallyScene = { ...scene, truth: { v1: 9, v2: 9, c: 9 }, pairs: 20_000, accidentals: 10 };
+    const found = finish(simulateTally(onPixels, createRandom(31)));
+    const check = (id: string) => found.checks.find((one) => one.id === id)!;
+    expect(check('fit-good').status).toBe('caution');
+    expect(check('fit-good').sentence).toContain('more narrowly than the pixels are wide');
+    expect(check('pixels-fine').sentence).toContain('magnify more');
+    expect(check('correlation-sign').status).toBe('pass');
+    expect(Object.keys(found.quantities).filter((id) => id.endsWith('.fit'))).toEqual([]);
+    for (const id of ['fit-good', 'map-truncated', 'pixels-fine', 'width-drift', 'excess-noise']) {
+      expect(check(id).figure, id).toBeNull();
+    }
+  });
+
+  it('takes no figure from a fit that found nothing', () => {
+    const found = finish(simulateTally({ ...scene, pairs: 0, accidentals: 0 }, createRandom(32)));
+    for (const id of [
+      'fit-good',
+      'map-truncated',
+      'correlation-sign',
+      'pixels-fine',
+      'width-drift',
+      'excess-noise',
+    ]) {
+      const check = found.checks.find((one) => one.id === id)!;
+      expect(check.figure, id).toBeNull();
+      expect(check.status, id).not.toBe('pass');
+    }
+    expect(found.maps['joint.x']!.model).toBeUndefined();
+  });
+
   it('gives no number from fewer than eight slices, but still the maps', () => {
     const short = finish(simulateTally({ ...scene, slices: 4 }, createRandom(6)));
     expect(status(short, 'slices-enough')).toBe('fail');
