@@ -37,7 +37,6 @@ export const frameDetectorSchema = z.strictObject({
   /** Pixels to leave out, as y * width + x. */
   maskedPixels: z.array(z.int().min(0)).max(1048576).default([]),
 });
-export type FrameDetector = z.infer<typeof frameDetectorSchema>;
 
 export const detectorSchema = z.discriminatedUnion('kind', [tagDetectorSchema, frameDetectorSchema]);
 export type Detector = z.infer<typeof detectorSchema>;

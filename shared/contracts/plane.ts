@@ -22,7 +22,5 @@ export const farPlaneSchema = z.strictObject({
   idlerNm: positive,
 });
 export const planeSchema = z.discriminatedUnion('kind', [nearPlaneSchema, farPlaneSchema]);
-export type NearPlane = z.infer<typeof nearPlaneSchema>;
-export type FarPlane = z.infer<typeof farPlaneSchema>;
 export type Plane = z.infer<typeof planeSchema>;
 export type PlaneKind = Plane['kind'];

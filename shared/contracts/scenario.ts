@@ -98,7 +98,6 @@ export const bucketSchema = z.strictObject({
   darksPerSecond: perSecond.default(0),
   backgroundPerSecond: perSecond.default(0),
 });
-export type Bucket = z.infer<typeof bucketSchema>;
 
 const receiverSchema = z.discriminatedUnion('kind', [pixelArraySchema, bucketSchema]);
 export type Receiver = z.infer<typeof receiverSchema>;

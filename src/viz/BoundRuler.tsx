@@ -26,7 +26,7 @@ export function BoundRuler(props: BoundRulerProps) {
   const sorted = [...bounds].sort((a, b) => a.value - b.value);
   const labelWidths = sorted.map((b) => (Math.max(b.name.length, boundText(b).length) + 2) * em * CHAR);
   const axis = fitRulerAxis(props, { left, width, right: MARGIN.right * em }, sorted, labelWidths);
-  const above = entries.filter((entry) => entry.label === 'accidentals removed');
+  const above = entries.filter((entry) => entry.label === 'accidentals subtracted');
   const below = entries.filter((entry) => entry.label === 'raw');
   const rows = labelRows(sorted.map((bound, i) => ({ x: axis.x(bound.value), width: labelWidths[i]! })));
   const boundsHeight = (Math.max(0, ...rows) + 1) * ROW.bound * em;
@@ -170,7 +170,7 @@ interface EntryMarkProps {
 }
 
 /** Short on the ruler, where the caption gives the unit; in full for who points at it. */
-const SHORT = { raw: 'raw', 'accidentals removed': 'removed' } as const;
+const SHORT = { raw: 'raw', 'accidentals subtracted': 'subtracted' } as const;
 
 function EntryMark({ entry, axis, walls, y, em }: EntryMarkProps) {
   const isRaw = entry.label === 'raw';

@@ -39,7 +39,7 @@ export interface HeatMapProps {
   height?: number;
   /** Caption; the map's label when left out, none when null. */
   title?: string | null;
-  /** What kind of numbers these are, at the right of the caption, e.g. "pairs · accidentals removed". */
+  /** What kind of numbers these are, at the right of the caption, e.g. "pairs · accidentals subtracted". */
   note?: ReactNode;
   /** Given (even null): the parent links the cursor. Left out: the map keeps its own. */
   crosshair?: PlotPoint | null;
@@ -88,7 +88,7 @@ export interface LinePlotProps {
 }
 
 export interface RulerEntry {
-  label: 'raw' | 'accidentals removed';
+  label: 'raw' | 'accidentals subtracted';
   value: number;
   sigma: number | null;
   interval: readonly [number, number];

@@ -40,9 +40,9 @@ export function OutputStage(props: OutputStageProps) {
   const shared = { theme, note, specs, dials, onTurn, cursor, logScale, chosen: output.chosen };
   return (
     <div className="flex flex-col gap-5">
-      <div className="flex items-start justify-between gap-x-5">
-        <div className="min-w-0 flex-1">{children}</div>
-        <div className="flex shrink-0 items-center gap-5">
+      <div className="flex flex-wrap items-start justify-between gap-x-5 gap-y-1">
+        <div className="min-w-[min(100%,16rem)] flex-1">{children}</div>
+        <div className="flex flex-wrap items-center gap-x-5">
           {hasVariants(output.maps) ? (
             <Toggle
               label={`Maps with ${VARIANT_WORDS.net}`}

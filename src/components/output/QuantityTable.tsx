@@ -86,7 +86,7 @@ function Rows({ label, rows, isPaired, verdicts, isWhole }: RowsProps) {
           )}
           <Th>unit</Th>
           {isJudged ? <Th numeric>significance</Th> : null}
-          <Th className="w-full min-w-32">how</Th>
+          <Th className="w-full min-w-16">how</Th>
         </tr>
       </thead>
       <tbody>

@@ -72,7 +72,7 @@ function Ruler({ row }: { row: QuantityRow<Measured> }) {
     <div data-verdict={row.base}>
       <BoundRuler
         title={row.label}
-        entries={[...entryOf('accidentals removed', row.net), ...entryOf('raw', raw)]}
+        entries={[...entryOf('accidentals subtracted', row.net), ...entryOf('raw', raw)]}
         bounds={[{ name: boundName(row.base), value: verdict.bound, unit: displayUnit(quantity.unit) }]}
         side={verdict.side}
         sentence={claim}

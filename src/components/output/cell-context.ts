@@ -24,7 +24,7 @@ export const HEIGHTS = { wide: 300, line: 210, projection: 250 } as const;
 export function noteOf({ id, map }: Cell, note: string | null): string {
   const { variant } = splitVariant(id);
   // The study's own caption may say it already.
-  const isSaid = /subtracted|removed|raw/i.test(map.label);
+  const isSaid = /subtracted|raw/i.test(map.label);
   const variantWords = variant === null || isSaid ? '' : VARIANT_WORDS[variant];
   const parts = [displayUnit(map.unit), variantWords, note ?? ''];
   return parts.filter((part) => part !== '').join(' · ');

@@ -43,7 +43,7 @@ const WAYS: Record<string, string> = { fit: 'fit', moment: 'moments' };
 
 export type Variant = 'raw' | 'net';
 
-export const VARIANT_WORDS: Record<Variant, string> = { raw: 'raw', net: 'accidentals removed' };
+export const VARIANT_WORDS: Record<Variant, string> = { raw: 'raw', net: 'accidentals subtracted' };
 
 export const LEVEL_WORDS: Record<VerdictLevel, string> = {
   violated: 'violated',

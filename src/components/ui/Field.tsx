@@ -55,7 +55,3 @@ const INPUT =
 export function TextInput({ className = '', ...rest }: ComponentProps<'input'>) {
   return <input {...rest} className={`${INPUT} ${className}`} />;
 }
-
-export function TextArea({ className = '', ...rest }: ComponentProps<'textarea'>) {
-  return <textarea {...rest} className={`${INPUT} h-auto min-h-20 py-1.5 ${className}`} />;
-}

@@ -5,6 +5,7 @@ import { ProblemNote } from '../../components/page/ProblemNote';
 import { Button } from '../../components/ui/Button';
 import { useOwnGroup } from '../../lib/query/me';
 import { samplesQuery } from '../../lib/query/samples';
+import { takeFiles } from '../../state/dropped-files';
 import { BenchRegions } from './components/BenchRegions';
 import { type Bench, BenchProvider, useBench, useBenchState } from './components/bench-context';
 import { DialsRegion } from './components/DialsRegion';
@@ -37,6 +38,9 @@ function BenchBody() {
   const opening = useOpening(group.id);
   const addFiles = (files: readonly File[]): void =>
     store.getState().addFiles(files.map((file) => ({ file, sample: null })));
+  useEffect(() => {
+    store.getState().addFiles(takeFiles().map((file) => ({ file, sample: null })));
+  }, [store]);
   const open = (): void => picker.current?.click();
   useBenchKeys({ open, readOnly });
   return (

@@ -8,8 +8,9 @@ import { textLink } from '../../components/ui/link-class';
 import { formatTime } from '../../lib/format-time';
 import { useOwnGroup } from '../../lib/query/me';
 import { presetQuery } from '../../lib/query/presets';
+import { studiesQuery } from '../../lib/query/studies';
 import { fileNameOf, saveJson } from '../../lib/save-file';
-import { studyName, studyQuestion } from '../../lib/study-names';
+import { studyName } from '../../lib/study-names';
 import { PresetDials } from './components/PresetDials';
 import { PresetInputs } from './components/PresetInputs';
 import { VersionList } from './components/VersionList';
@@ -48,6 +49,7 @@ export function PresetPage() {
 
 function OnePreset({ row, newest }: { row: PresetRow; newest: number }) {
   const version = row.version === newest ? '' : `&version=${row.version}`;
+  const answers = useQuery(studiesQuery).data?.find((info) => info.id === row.study)?.answers;
   return (
     <Page
       title={row.name}
@@ -77,7 +79,7 @@ function OnePreset({ row, newest }: { row: PresetRow; newest: number }) {
           <Region name="study">
             <p className="pt-2">
               <span className="font-semibold">{studyName(row.study)}.</span>{' '}
-              <span className="text-dim">{studyQuestion(row.study)}</span>
+              <span className="text-dim">{answers}</span>
             </p>
           </Region>
           <Region name="inputs">

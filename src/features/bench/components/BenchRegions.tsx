@@ -22,10 +22,11 @@ export function BenchRegions(props: BenchRegionsProps) {
 function Stacked({ shelf, stage, dials, ledger }: BenchRegionsProps) {
   return (
     <div className="min-h-0 flex-1 divide-y divide-line overflow-y-auto" data-testid="bench-stacked">
-      {shelf}
-      {stage}
-      {dials}
-      {ledger}
+      {/* Each as high as what it holds: a region of the height of the window would scroll inside the one that scrolls. */}
+      <div>{shelf}</div>
+      <div>{stage}</div>
+      <div>{dials}</div>
+      <div>{ledger}</div>
     </div>
   );
 }

@@ -10,13 +10,15 @@ import { FormPart } from './FormPart';
 export interface DetectorFormProps {
   draft: ReadingDraft;
   errors: DraftErrors;
+  /** What the map was proposed from, in a sentence; null where it is a person's. */
+  proposedFrom: string | null;
   onChange(part: Partial<ReadingDraft>): void;
   /** Fills it from the channels seen. */
   onPropose(): void;
 }
 
 /** Channel or pixel -> arm, array, x, y; pitch, mask, delays. */
-export function DetectorForm({ draft, errors, onChange, onPropose }: DetectorFormProps) {
+export function DetectorForm({ draft, errors, proposedFrom, onChange, onPropose }: DetectorFormProps) {
   const isFrames = draft.format === 'hdf5-frames';
   return (
     <FormPart
@@ -29,6 +31,9 @@ export function DetectorForm({ draft, errors, onChange, onPropose }: DetectorFor
         )
       }
     >
+      <p role="status" className={proposedFrom === null ? 'sr-only' : 'mb-3 text-sm text-dim'}>
+        {proposedFrom}
+      </p>
       {isFrames ? (
         <div className="flex flex-col gap-3">
           <NumberField
@@ -187,7 +192,7 @@ function Present({ of }: { of: string }) {
   );
 }
 
-function BucketFields({ draft, errors, onChange }: Omit<DetectorFormProps, 'onPropose'>) {
+function BucketFields({ draft, errors, onChange }: Omit<DetectorFormProps, 'onPropose' | 'proposedFrom'>) {
   const { bucket } = draft;
   return (
     <fieldset className="flex flex-col gap-2.5">

@@ -4,6 +4,7 @@ import { Button } from '../../../components/ui/Button';
 import { IconButton } from '../../../components/ui/IconButton';
 import {
   baseDials,
+  concernedDials,
   currentDials,
   currentHistory,
   currentStudy,
@@ -31,6 +32,7 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
   const values = useBenchPlan(currentDials);
   const history = useBenchPlan(currentHistory);
   const base = useBenchPlan(baseDials);
+  const concerned = useBenchPlan(concernedDials);
   const isReadOtherwise = useBenchPlan(isReadingChanged);
   const preset = useBenchState((state) => (state.preset?.study === state.study ? state.preset : null));
   const chosen = useBenchState((state) => state.found[state.study]?.output.chosen);
@@ -74,7 +76,7 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
         </p>
       ) : null}
       {GROUPS.map(({ needs, title }) => {
-        const dials = orderDials(study.dials.filter((spec) => spec.needs === needs));
+        const dials = orderDials(concerned.filter((spec) => spec.needs === needs));
         if (dials.length === 0) return null;
         return (
           <div key={needs} className="mb-5">

@@ -24,6 +24,13 @@ function lastInspection({ reading }: Acquisition): Inspection | null {
   return reading.status === 'read' ? reading.inspection : null;
 }
 
+/** Why the map is as proposed; null once a person gave or corrected it. */
+function becauseOf({ detector, detectorGiven }: Acquisition, { facts }: Inspection): string | null {
+  const proposal = proposeDetector(facts);
+  const isProposal = !detectorGiven && JSON.stringify(proposal?.detector) === JSON.stringify(detector);
+  return isProposal ? (proposal?.because ?? null) : null;
+}
+
 /** How the bytes are read: a proposal from the bytes, what it gives, and every correction a person may make. */
 export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
   const { store } = useBench();
@@ -37,6 +44,7 @@ export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
       (first?.datasets.length ?? 0) > 0,
     ),
   );
+  const [proposedFrom, setProposedFrom] = useState(() => first && becauseOf(acquisition, first));
   const [tried, setTried] = useState(false);
   const layout = useMemo(() => readLayout(draft), [draft]);
   const detector = useMemo(() => readDetector(draft), [draft]);
@@ -63,6 +71,7 @@ export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
   const propose = (): void => {
     if (look.state.status !== 'read') return;
     const proposal = proposeDetector(look.state.inspection.facts);
+    setProposedFrom(proposal?.because ?? 'No plain arrangement fits the channels seen; describe the arrays.');
     if (proposal === null) return;
     const { signal, idler, bucket, frameMasked } = draftReading(null, proposal.detector, false, null, false);
     change({ signal, idler, bucket, frameMasked });
@@ -94,7 +103,13 @@ export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
       <div className="grid grid-cols-1 gap-x-10 gap-y-6 lg:grid-cols-2">
         <LayoutForm draft={draft} errors={shown} datasets={look.datasets} onChange={change} />
         <ReadingPreview look={look} />
-        <DetectorForm draft={draft} errors={shown} onChange={change} onPropose={propose} />
+        <DetectorForm
+          draft={draft}
+          errors={shown}
+          proposedFrom={proposedFrom}
+          onChange={change}
+          onPropose={propose}
+        />
         <PlaneForm draft={draft} errors={shown} onChange={change} />
       </div>
     </Dialog>

@@ -13,11 +13,11 @@ export function Region({ title, note, actions, children }: RegionProps) {
   const id = useId();
   return (
     <section aria-labelledby={id} className="flex h-full min-h-0 flex-col">
-      <header className="flex min-h-9 shrink-0 flex-wrap items-center justify-between gap-x-3 border-b border-line px-3.5 py-1 font-mono text-xs text-dim">
+      <header className="flex min-h-9 shrink-0 items-center justify-between gap-x-3 border-b border-line px-3.5 py-1 font-mono text-xs text-dim">
         <h2 id={id} className="font-semibold">
           {title}
         </h2>
-        <span className="flex min-w-0 flex-wrap items-center gap-2">
+        <span className="flex min-w-0 items-center gap-2">
           {note === undefined ? null : (
             <span className="min-w-0 truncate" title={typeof note === 'string' ? note : undefined}>
               {note}

@@ -1,6 +1,7 @@
-import type { DialValues } from '../../../../shared/contracts/dial';
+import type { DialSpec, DialValues } from '../../../../shared/contracts/dial';
 import type { RunRequest } from '../../../../shared/contracts/engine';
 import type { StudyInfo } from '../../../../shared/contracts/study';
+import { kindOf } from './acquisition';
 import type { BenchState } from './bench-types';
 import { completeDials, type DialHistory, startHistory } from './dial-history';
 import { isReadAs } from './same-reading';
@@ -47,6 +48,16 @@ export function isReadingChanged(plan: BenchPlan): boolean {
     const read = shelf.find(({ id }) => id === assignment[spec.name]);
     return given !== undefined && read !== undefined && !isReadAs(spec, given, read);
   });
+}
+
+/** The dials that concern what is analysed: all of them until it is known whether tags or frames. */
+export function concernedDials(plan: BenchPlan): readonly DialSpec[] {
+  const dials = currentStudy(plan)?.dials ?? [];
+  const held = new Set(Object.values(currentAssignment(plan)));
+  const kinds = new Set(plan.shelf.filter(({ id }) => held.has(id)).map(kindOf));
+  kinds.delete(null);
+  if (kinds.size === 0) return dials;
+  return dials.filter((spec) => spec.for === undefined || kinds.has(spec.for));
 }
 
 export interface Plan {

@@ -21,7 +21,7 @@ import {
   turnDials,
   undoDials,
 } from './dial-history';
-import { proposeDetector } from './propose-detector';
+import { isPitchKnown, proposeDetector } from './propose-detector';
 import { benchOfSession } from './session-bench';
 
 /** What a person settles in the reading dialog. */
@@ -122,7 +122,7 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
         layout: setting.layout ?? acquisition.layout,
         layoutGiven: setting.layout !== null || acquisition.layoutGiven,
         detector: setting.detector ?? acquisition.detector,
-        detectorGiven: setting.detector !== null || acquisition.detectorGiven,
+        detectorGiven: setting.detector === null ? acquisition.detectorGiven : isPitchKnown(setting.detector),
         plane: setting.plane ?? acquisition.plane,
       };
     };

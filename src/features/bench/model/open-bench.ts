@@ -2,8 +2,10 @@ import type { QueryClient } from '@tanstack/react-query';
 import type { Samples } from '../../../../shared/contracts/http';
 import { Problem } from '../../../../shared/errors/problem';
 import { presetQuery } from '../../../lib/query/presets';
+import { resultQuery } from '../../../lib/query/results';
 import { samplesQuery } from '../../../lib/query/samples';
 import { sessionQuery } from '../../../lib/query/sessions';
+import { toPreset } from '../../../lib/result-preset';
 import { fetchSample } from '../api/sample-file';
 import type { BenchStore, SampleFile } from './bench-store';
 import { DEFAULT_SEED } from './bench-types';
@@ -12,6 +14,7 @@ import { DEFAULT_SEED } from './bench-types';
 export type Wanted =
   | { kind: 'session'; id: string }
   | { kind: 'preset'; id: string; version: number | null }
+  | { kind: 'result'; id: string }
   | { kind: 'sample'; index: number };
 
 export function readWanted(search: URLSearchParams): Wanted | null {
@@ -22,6 +25,8 @@ export function readWanted(search: URLSearchParams): Wanted | null {
     const version = Number(search.get('version'));
     return { kind: 'preset', id: preset, version: Number.isInteger(version) && version > 0 ? version : null };
   }
+  const result = search.get('result');
+  if (result !== null) return { kind: 'result', id: result };
   const sample = search.get('sample');
   return sample === null ? null : { kind: 'sample', index: Number(sample) };
 }
@@ -35,6 +40,7 @@ export interface Opener {
 export function openWanted(opener: Opener, wanted: Wanted): Promise<void> {
   if (wanted.kind === 'session') return openSession(opener, wanted.id);
   if (wanted.kind === 'preset') return openPreset(opener, wanted.id, wanted.version);
+  if (wanted.kind === 'result') return openResult(opener, wanted.id);
   return openSampleAt(opener, wanted.index);
 }
 
@@ -68,6 +74,27 @@ async function openPreset(
     { id: row.id, name, version: row.version, study, dials, inputs },
   );
   actions.say(`Preset ${name} v${row.version} opened.`);
+}
+
+/** Dials, readings and seed exactly as the result was found with, whatever has become of its preset. */
+async function openResult({ store, queries, groupId }: Opener, id: string): Promise<void> {
+  const row = await queries.fetchQuery(resultQuery(groupId, id));
+  const preset = toPreset(row.result, row.name);
+  if (preset === null) {
+    throw new Problem(
+      'bad-input',
+      `The result ${row.name} is of a study this version of Gemel does not have (${row.study}). Open it with the version that made it (${row.result.provenance.engine}).`,
+    );
+  }
+  const { study, dials, inputs } = preset;
+  const { seed, preset: used } = row.result.provenance;
+  const actions = store.getState();
+  actions.openSettings(
+    { study, dials, inputs, seed },
+    // The result claims its preset only if dials and readings were the preset's.
+    used === null ? null : { id: null, name: used.name, version: used.version, study, dials, inputs },
+  );
+  actions.say(`Settings of the result ${row.name} opened; open its acquisitions or others like them.`);
 }
 
 async function openSampleAt(opener: Opener, index: number): Promise<void> {

@@ -10,6 +10,15 @@ export interface DetectorProposal {
 /** The pitch cannot be guessed: positions count pixels until a person gives it, and no calibrated study runs before. */
 export const UNKNOWN_PITCH_UM = 1;
 
+/**
+ * A proposal that went through a result: its placeholder stands where the pitch would. No detector array has so small a
+ * pitch, and whoever has one is only asked again.
+ */
+export function isPitchKnown(detector: Detector): boolean {
+  if (detector.kind === 'frames') return detector.pitchUm !== UNKNOWN_PITCH_UM;
+  return [detector.signal, detector.idler].every((array) => array?.pitchUm !== UNKNOWN_PITCH_UM);
+}
+
 /** A square array with fewer pixels alive than this is not proposed. */
 const LEAST_ALIVE = 0.7;
 const MOST_SIDE = 128;

@@ -6,7 +6,7 @@ import { Loaded } from '../../../components/page/Loaded';
 import { Region } from '../../../components/page/Page';
 import { buttonClass } from '../../../components/ui/Button';
 import { samplesQuery } from '../../../lib/query/samples';
-import { studyName, studyQuestion } from '../../../lib/study-names';
+import { studyName } from '../../../lib/study-names';
 import { orderSamples, type SampleEntry } from '../model/sample-order';
 
 /** The first click of a new reader: an acquisition that comes with Gemel, opened and run. */
@@ -64,9 +64,7 @@ function FirstSample({ entry, scenario }: { entry: SampleEntry; scenario: string
             {studyName(entry.preset.study)} · {bytesWords(entry.bytes)}
           </span>
         </p>
-        <p className="mt-0.5 max-w-prose text-dim">
-          {studyQuestion(entry.preset.study)} {entry.shows.join(' ')}
-        </p>
+        <p className="mt-0.5 max-w-prose text-dim">{entry.shows.join(' ')}</p>
         {scenario === '' ? null : <p className="mt-1.5 max-w-prose text-xs text-dim">{scenario}</p>}
       </div>
     </div>

@@ -7,7 +7,10 @@ const PROPOSED = <span className="text-dim">proposed from the bytes</span>;
 function factsOf({ layout, detector, plane }: InputSetting): Fact[] {
   return [
     { name: 'layout', value: layout === null ? PROPOSED : <Lines lines={describeLayout(layout)} /> },
-    { name: 'detector', value: detector === null ? PROPOSED : <Lines lines={describeDetector(detector)} /> },
+    {
+      name: 'detector map',
+      value: detector === null ? PROPOSED : <Lines lines={describeDetector(detector)} />,
+    },
     ...(plane === null ? [] : [{ name: 'plane', value: <Lines lines={describePlane(plane)} /> }]),
   ];
 }

@@ -13,6 +13,7 @@ function same(a: unknown, b: unknown): boolean {
 }
 
 const SETTINGS = ['layout', 'detector', 'plane'] as const;
+const SETTING_WORDS = { layout: 'layout', detector: 'detector map', plane: 'plane' } as const;
 
 /** What a version changed, in words; an input's settings are named, not spelled out. */
 export function listDifferences(before: Preset, after: Preset, specs: readonly DialSpec[]): Difference[] {
@@ -39,7 +40,7 @@ export function listDifferences(before: Preset, after: Preset, specs: readonly D
         const none = setting === 'plane' ? 'none' : 'proposed from the bytes';
         const word = (value: unknown): string => (value === null ? none : 'given');
         differences.push({
-          what: `${name}: ${setting}`,
+          what: `${name}: ${SETTING_WORDS[setting]}`,
           before: word(a),
           after: a !== null && b !== null ? 'given anew' : word(b),
         });

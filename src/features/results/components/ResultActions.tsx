@@ -1,4 +1,3 @@
-import { useQuery } from '@tanstack/react-query';
 import { ChevronDown } from 'lucide-react';
 import { useState } from 'react';
 import { Link, useNavigate } from 'react-router-dom';
@@ -6,11 +5,10 @@ import type { ResultRow } from '../../../../shared/contracts/http';
 import type { MapFile } from '../../../../shared/contracts/result';
 import { Button, buttonClass } from '../../../components/ui/Button';
 import { Menu, type MenuItem } from '../../../components/ui/Menu';
-import { type Group, mayUseBench, useMe, useOwnGroup } from '../../../lib/query/me';
-import { presetsQuery } from '../../../lib/query/presets';
+import { mayUseBench, useMe, useOwnGroup } from '../../../lib/query/me';
+import { toPreset } from '../../../lib/result-preset';
 import { fileNameOf, saveJson } from '../../../lib/save-file';
-import { findPreset } from '../model/find-preset';
-import { toPreset, toWholeFile } from '../model/stored-output';
+import { toWholeFile } from '../model/stored-output';
 import { DeleteResult } from './DeleteResult';
 
 export interface ResultActionsProps {
@@ -42,7 +40,11 @@ export function ResultActions({ row, maps }: ResultActionsProps) {
   ];
   return (
     <span className="flex flex-wrap items-center gap-2">
-      {mayUseBench(group) ? <BenchLink row={row} group={group} /> : null}
+      {mayUseBench(group) && preset !== null ? (
+        <Link to={`/bench?result=${row.id}`} className={buttonClass('plain', 'sm')}>
+          Open on the bench with this preset
+        </Link>
+      ) : null}
       <Menu
         align="end"
         items={items}
@@ -65,18 +67,5 @@ export function ResultActions({ row, maps }: ResultActionsProps) {
         onDone={() => void navigate('/results', { replace: true })}
       />
     </span>
-  );
-}
-
-/** Only when the group still has the preset the result was made with. */
-function BenchLink({ row, group }: { row: ResultRow; group: Group }) {
-  const presets = useQuery(presetsQuery(group.id));
-  const found = findPreset(row.result, presets.data ?? []);
-  if (found === null) return null;
-  const version = found.version === null ? '' : `&version=${found.version}`;
-  return (
-    <Link to={`/bench?preset=${found.id}${version}`} className={buttonClass('plain', 'sm')}>
-      Open on the bench with this preset
-    </Link>
   );
 }

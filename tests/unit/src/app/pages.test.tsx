@@ -84,7 +84,7 @@ describe('home', () => {
     const others = within(screen.getByRole('list', { name: 'Other samples' })).getAllByRole('link');
     expect(others.map((link) => link.getAttribute('href'))).toEqual(['/bench?sample=1', '/bench?sample=0']);
     expect(screen.getByText('1.234(3) k/s')).toBeTruthy();
-    expect(screen.getByText('Coincidences, accidentals removed')).toBeTruthy();
+    expect(screen.getByText('Coincidences, accidentals subtracted')).toBeTruthy();
   });
 
   it('says what failed in its place and leaves the rest standing', async () => {
@@ -119,7 +119,7 @@ describe('result', () => {
     await screen.findByText('Delay histogram');
     expect(screen.getByText('31.2(4)')).toBeTruthy();
     const bench = await screen.findByRole('link', { name: 'Open on the bench with this preset' });
-    expect(bench.getAttribute('href')).toBe('/bench?preset=p1&version=1');
+    expect(bench.getAttribute('href')).toBe('/bench?result=r1');
 
     fireEvent.click(screen.getByRole('button', { name: 'Delete' }));
     expect(asked.some(({ method }) => method === 'DELETE')).toBe(false);

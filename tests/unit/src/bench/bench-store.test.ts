@@ -4,6 +4,7 @@ import type { Plane } from '../../../../shared/contracts/plane';
 import { presetSchema } from '../../../../shared/contracts/preset';
 import { presetOfBench, presetOfResult } from '../../../../src/features/bench/model/bench-records';
 import {
+  concernedDials,
   currentAssignment,
   currentDials,
   isReadingChanged,
@@ -12,7 +13,17 @@ import {
 } from '../../../../src/features/bench/model/bench-selectors';
 import { createBenchStore } from '../../../../src/features/bench/model/bench-store';
 import { sessionOfBench } from '../../../../src/features/bench/model/session-bench';
-import { fakeEngine, fileOf, inspectionOf, outputOf, resultOf, settle, tagsLayout } from './fake-engine';
+import {
+  fakeEngine,
+  fileOf,
+  finishDial,
+  inspectionOf,
+  outputOf,
+  resultOf,
+  settle,
+  tagsLayout,
+  witnessInfo,
+} from './fake-engine';
 
 const near: Plane = { version: 1, kind: 'near', magnification: { value: 4, sigma: 0.04 } };
 
@@ -241,6 +252,50 @@ describe('presets and sessions', () => {
     expect(claim()).toEqual({ name: 'Monday', version: 1 });
     store.getState().turn({ window: 300 });
     expect(claim()).toBeNull();
+  });
+
+  it('of a result keep its map, and ask for a pitch it never knew', async () => {
+    const { store } = await freshBench();
+    store.getState().addFiles([{ file: fileOf('run.h5'), sample: null }]);
+    await settle();
+    const { detector } = store.getState().shelf[0]!;
+    if (detector?.kind !== 'tags') throw new Error('not tags');
+    const turned = { ...detector, signal: { ...detector.signal!, flipX: true } };
+    const settings = { study: 'delay' as const, dials: {}, seed: 3 };
+    const inputs = { tags: { layout: tagsLayout, detector: turned, plane: null } };
+    store.getState().openSettings({ ...settings, inputs }, null);
+    await settle();
+    expect(store.getState().shelf[0]).toMatchObject({ detector: turned, detectorGiven: false });
+    expect(planRun(store.getState()).request?.inputs.tags?.detector).toEqual(turned);
+    const pitched = {
+      ...turned,
+      signal: { ...turned.signal, pitchUm: 50 },
+      idler: { ...turned.idler!, pitchUm: 50 },
+    };
+    const given = { tags: { layout: tagsLayout, detector: pitched, plane: near } };
+    store.getState().openSettings({ ...settings, inputs: given }, null);
+    await settle();
+    expect(store.getState().shelf[0]).toMatchObject({ detector: pitched, detectorGiven: true });
+  });
+
+  it('show the dials that concern tags or frames, all of them while neither is known', async () => {
+    const { engine, store } = await freshBench();
+    const dials = [
+      finishDial,
+      { ...finishDial, id: 'window', for: 'tags' as const },
+      { ...finishDial, id: 'blocks', for: 'frames' as const },
+    ];
+    store.setState({ studies: [{ ...witnessInfo, dials }], study: 'witness' });
+    const shown = () => concernedDials(store.getState()).map(({ id }) => id);
+    expect(shown()).toEqual(['resamples', 'window', 'blocks']);
+    store.getState().addFiles([{ file: fileOf('near.h5'), sample: null }]);
+    await settle();
+    expect(shown()).toEqual(['resamples', 'window']);
+    const stack = { version: 1 as const, format: 'hdf5' as const, kind: 'frames' as const, dataset: '/f' };
+    engine.inspection = (name) => ({ status: 'ok', value: inspectionOf(name, { layout: stack }) });
+    store.getState().addFiles([{ file: fileOf('far.h5'), sample: null }]);
+    await settle();
+    expect(shown()).toEqual(['resamples', 'window', 'blocks']);
   });
 
   it('keep each study’s dials, with one undo a turn', async () => {

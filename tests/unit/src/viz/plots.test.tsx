@@ -211,7 +211,7 @@ describe('BoundRuler', () => {
         entries={[
           { label: 'raw', value: 0.0291, sigma: 0.0009, interval: [0.0274, 0.0309], unit: 'hbar^2' },
           {
-            label: 'accidentals removed',
+            label: 'accidentals subtracted',
             value: 0.0264,
             sigma: 0.0008,
             interval: [0.0249, 0.028],
@@ -228,7 +228,7 @@ describe('BoundRuler', () => {
     expect(screen.getByText(/74 standard deviations/)).toBeTruthy();
     // Shapes differ, not only colours.
     expect(document.querySelectorAll('[data-entry="raw"] circle')).toHaveLength(1);
-    expect(document.querySelectorAll('[data-entry="accidentals removed"] circle')).toHaveLength(0);
+    expect(document.querySelectorAll('[data-entry="accidentals subtracted"] circle')).toHaveLength(0);
   });
 });
 

@@ -102,5 +102,8 @@ describe('differences between two versions', () => {
       { what: 'tags: layout', before: 'given', after: 'given anew' },
       { what: 'tags: plane', before: 'given', after: 'none' },
     ]);
+    const detector = detectorSchema.parse({ version: 1, kind: 'frames', pitchUm: 16 });
+    const mapped = { ...preset, inputs: { tags: { ...tags!, detector } } };
+    expect(listDifferences(preset, mapped, specs).map(({ what }) => what)).toEqual(['tags: detector map']);
   });
 });

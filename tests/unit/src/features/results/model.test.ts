@@ -2,11 +2,11 @@ import { describe, expect, it } from 'vitest';
 import { presetSchema } from '../../../../../shared/contracts/preset';
 import { resultFileSchema } from '../../../../../shared/contracts/result';
 import { decodeMap } from '../../../../../shared/contracts/result-codec';
-import { findPreset } from '../../../../../src/features/results/model/find-preset';
 import { arrangeResults, nextSorting } from '../../../../../src/features/results/model/sort-results';
-import { toOutput, toPreset, toWholeFile } from '../../../../../src/features/results/model/stored-output';
+import { toOutput, toWholeFile } from '../../../../../src/features/results/model/stored-output';
+import { toPreset } from '../../../../../src/lib/result-preset';
 import { fileNameOf } from '../../../../../src/lib/save-file';
-import { inlineMap, presetRow, resultFile, summary } from '../../app/fixtures';
+import { inlineMap, resultFile, summary } from '../../app/fixtures';
 
 describe('the list of results', () => {
   const rows = [
@@ -61,20 +61,6 @@ describe('a stored result', () => {
     expect(again?.inputs.tags?.plane?.kind).toBe('near');
     expect(again?.dials).toEqual(resultFile.provenance.dials);
     expect(toPreset({ ...resultFile, study: 'of-a-later-version' }, 'Night run')).toBeNull();
-  });
-
-  it('finds the version it was made with, and nothing that is not the same', () => {
-    expect(findPreset(resultFile, [presetRow])).toEqual({ id: 'p1', version: 1 });
-    const made = (version: number | null) => ({
-      ...resultFile,
-      provenance: { ...resultFile.provenance, preset: { name: presetRow.name, version } },
-    });
-    expect(findPreset(made(2), [presetRow])).toEqual({ id: 'p1', version: null });
-    expect(findPreset(made(3), [presetRow])).toBeNull();
-    expect(findPreset(made(1), [{ ...presetRow, study: 'witness' }])).toBeNull();
-    expect(
-      findPreset({ ...resultFile, provenance: { ...resultFile.provenance, preset: null } }, [presetRow]),
-    ).toBeNull();
   });
 });
 

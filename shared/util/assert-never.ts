@@ -1,4 +1,0 @@
-/** Makes a switch over a union exhaustive: the compiler refuses a case that was forgotten. */
-export function assertNever(value: never): never {
-  throw new Error(`Unexpected case: ${JSON.stringify(value)}`);
-}
