@@ -155,16 +155,15 @@ export const shiftStepDial: DialSpec = {
   id: 'shift.step',
   label: 'Shifted-window step',
   reason:
-    'Distance from the peak to the first window that counts accidentals, and between those windows; clear of the peak, and a multiple of the pump period when the pump is pulsed.',
+    'Distance from the peak to the first window that counts accidentals, and between those windows; a multiple of the pump period when the pump is pulsed. Left empty it is 20 ns, or two windows or ten sigma of the peak where those are more.',
   needs: 'bytes',
-  for: 'tags',
   type: 'number',
   unit: 'ps',
-  default: 20_000,
+  default: null,
   min: 1,
   max: 1e8,
   step: 1000,
-  auto: false,
+  auto: true,
 };
 
 export const shiftCountDial: DialSpec = {

@@ -1,5 +1,6 @@
 import type { Check } from '../../shared/contracts/output';
 import { poissonZ } from '../../shared/physics/find-peak';
+import { ticksToPs } from '../../shared/units/ticks';
 import { formatFigure } from './format-figure';
 import type { TagCount } from './tag-count';
 
@@ -95,6 +96,8 @@ export function checkAccidentalsAgree(count: TagCount): Check {
     }
   }
   const base = { id: 'accidentals-agree', figure: worst.z, unit: 'sigma' };
+  const overlap = overlappingStep(count);
+  if (overlap !== null) return { ...base, status: 'fail', sentence: overlap };
   if (worst.z <= 3) {
     const sentence = `The ${named.length} estimates of the accidentals agree within ${worst.z.toFixed(1)} standard errors.`;
     return { ...base, status: 'pass', sentence };
@@ -102,4 +105,14 @@ export function checkAccidentalsAgree(count: TagCount): Check {
   const status = worst.z <= 5 ? 'caution' : 'fail';
   const sentence = `The accidentals from ${worst.names} differ by ${worst.z.toFixed(1)} standard errors: rates drift, pixels afterpulse or talk to each other, or a shifted window still sees the peak.`;
   return { ...base, status, sentence };
+}
+
+/** A step that leaves the first shifted window on the flank of the peak, as a sentence. */
+function overlappingStep({ tally, fit, windowPs }: TagCount): string | null {
+  const { shiftsTick } = tally.window;
+  if (fit === null || shiftsTick.length === 0) return null;
+  const step = ticksToPs(Math.min(...shiftsTick.map(Math.abs)), tally.tickFs);
+  const least = windowPs + 5 * fit.sigma;
+  if (step >= least) return null;
+  return `The first shifted window lies ${formatFigure(step)} ps from the prompt one and still counts pairs of the peak, whose sigma is ${formatFigure(fit.sigma)} ps: accidentals are too many and net pairs too few. Set the shifted-window step to ${Math.ceil(least / 1000)} ns or more, or leave it to the study.`;
 }

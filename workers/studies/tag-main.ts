@@ -12,6 +12,15 @@ export interface TagSettings {
   delay: number;
   window: number;
   bin: number;
+  shiftStep: number;
+}
+
+/** Leaves room for the tails that most single-photon detectors add to their peak. */
+const LEAST_STEP_PS = 20_000;
+
+/** Clear of the window and of the peak, also of one that the window cuts; whole ns. */
+function clearStep(windowPs: number, sigmaPs: number): number {
+  return Math.ceil(Math.max(LEAST_STEP_PS, 2 * windowPs, 10 * sigmaPs) / 1000) * 1000;
 }
 
 export function tagSettings(dials: DialValues, chosen: Chosen): TagSettings {
@@ -21,7 +30,8 @@ export function tagSettings(dials: DialValues, chosen: Chosen): TagSettings {
     throw new Problem('internal', 'The main pass was asked for before the peak was searched.');
   }
   const bin = autoDial(dials, 'histogram.bin') ?? chosen['histogram.bin'] ?? window / AUTO_WINDOW_SIGMAS / 3;
-  return { delay, window, bin };
+  const sigma = chosen.sigma ?? window / AUTO_WINDOW_SIGMAS;
+  return { delay, window, bin, shiftStep: autoDial(dials, 'shift.step') ?? clearStep(window, sigma) };
 }
 
 /** Window, shifted windows and histogram around the delay, for the two arms. */
@@ -34,7 +44,7 @@ export function buildMainSpec(input: StudyInput, arms: ArmPair, dials: DialValue
     tickFs,
     delayPs: settings.delay,
     windowPs: settings.window,
-    shiftStepPs: numberDial(dials, 'shift.step'),
+    shiftStepPs: settings.shiftStep,
     shiftCount: numberDial(dials, 'shift.count'),
     histogramRangePs: numberDial(dials, 'histogram.range') * 1000,
     histogramBinPs: settings.bin,
@@ -44,7 +54,12 @@ export function buildMainSpec(input: StudyInput, arms: ArmPair, dials: DialValue
 /** For `StudyOutput.chosen`: the dials that were left to the study, with what it settled on. */
 export function chosenDials(dials: DialValues, chosen: Chosen): Record<string, number> {
   const settings = tagSettings(dials, chosen);
-  const values = { delay: settings.delay, window: settings.window, 'histogram.bin': settings.bin };
+  const values = {
+    delay: settings.delay,
+    window: settings.window,
+    'histogram.bin': settings.bin,
+    'shift.step': settings.shiftStep,
+  };
   return Object.fromEntries(Object.entries(values).filter(([id]) => autoDial(dials, id) === null));
 }
 

@@ -59,7 +59,8 @@ describe('Delay', () => {
       'singles.signal',
       'singles.idler',
     ]);
-    expect(Object.keys(chosen).sort()).toEqual(['delay', 'histogram.bin', 'window']);
+    expect(Object.keys(chosen).sort()).toEqual(['delay', 'histogram.bin', 'shift.step', 'window']);
+    expect(chosen['shift.step']).toBe(20_000);
     expect(statement).toContain('(C - A)/A');
     for (const map of Object.values(maps)) {
       expect(map.data.length).toBe(map.shape.reduce((a, b) => a * b));
@@ -141,11 +142,11 @@ describe('Delay', () => {
 
   it('keeps what a person has set and chooses the rest', () => {
     const delaySet = runTagStudy(delayStudy, block, detector, { delay: 3300 });
-    expect(Object.keys(delaySet.output.chosen).sort()).toEqual(['histogram.bin', 'window']);
+    expect(Object.keys(delaySet.output.chosen).sort()).toEqual(['histogram.bin', 'shift.step', 'window']);
     expect(delaySet.chosen.delay).toBe(3300);
     expect(delaySet.chosen.window! / run.chosen.window!).toBeCloseTo(1, 1);
     const windowSet = runTagStudy(delayStudy, block, detector, { window: 600, 'histogram.bin': 50 });
-    expect(Object.keys(windowSet.output.chosen)).toEqual(['delay']);
+    expect(Object.keys(windowSet.output.chosen)).toEqual(['delay', 'shift.step']);
     expect(windowSet.output.quantities['window.width']?.value).toBe(600);
     expect(windowSet.output.maps['delay.histogram']?.axes[0]?.step).toBeCloseTo(0.05, 12);
   });
@@ -154,7 +155,7 @@ describe('Delay', () => {
     const set = { delay: 3210, window: 1000 };
     const { output, chosen } = runTagStudy(delayStudy, block, detector, set);
     expect(chosen).toEqual({});
-    expect(Object.keys(output.chosen)).toEqual(['histogram.bin']);
+    expect(Object.keys(output.chosen)).toEqual(['histogram.bin', 'shift.step']);
     expect(output.quantities['window.width']?.value).toBe(1000);
   });
 });
@@ -177,6 +178,24 @@ describe('Delay says what is wrong', () => {
     expect(statusOf(withDials({ delay: 3210 + 250, window: 1000 }), 'peak-centred')).toBe('caution');
     expect(statusOf(withDials({ delay: 3210 + 500, window: 1000 }), 'peak-centred')).toBe('fail');
     expect(statusOf(withDials({ delay: 20000, window: 1000 }), 'peak-found')).toBe('fail');
+  });
+
+  it('when a shifted window still counts pairs of the peak', () => {
+    // Sigma 212 ps: 1000 + 5 * 212 = 2060 ps are clear.
+    const near = withDials({ window: 1000, 'shift.step': 2000 });
+    expect(statusOf(near, 'accidentals-agree')).toBe('fail');
+    expect(near.checks.find(({ id }) => id === 'accidentals-agree')!.sentence).toContain(
+      'Set the shifted-window step to 3 ns or more',
+    );
+    expect(statusOf(withDials({ window: 1000, 'shift.step': 3000 }), 'accidentals-agree')).toBe('pass');
+  });
+
+  it('and steps clear of a broad peak and of a wide window by itself', () => {
+    const broad = pairStream({ ...stream, jitterPs: [2500, 2500] }, 8);
+    const { output, chosen } = runTagStudy(delayStudy, broad, detector, { window: 3000 });
+    expect(output.chosen['shift.step']).toBe(Math.ceil(chosen.sigma! / 100) * 1000);
+    expect(output.chosen['shift.step']).toBeGreaterThan(30_000);
+    expect(withDials({ window: 15_000 }).chosen['shift.step']).toBe(30_000);
   });
 
   it('when the source drifts, and then reports the larger error', () => {
@@ -297,7 +316,8 @@ describe('Delay says what is wrong', () => {
     expect(() => validate({ ...detector, idler: arrayMap(4, 4, 65530) })).toThrow(/past 65535/);
     const masked = { ...arrayMap(4, 4, 100), maskedPixels: [16] };
     expect(() => validate({ ...detector, idler: masked })).toThrow(/Masked pixel 16/);
-    expect(() => validate(detector, { window: 15000 })).toThrow(/shift\.step/);
+    expect(() => validate(detector, { window: 15000, 'shift.step': 20000 })).toThrow(/shift\.step/);
+    expect(() => validate(detector, { window: 15000 })).not.toThrow();
     expect(() => validate(detector, { window: -1 })).toThrow(
       /"window".*takes a number from 1 to 10000000 ps/,
     );
