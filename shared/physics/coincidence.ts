@@ -39,11 +39,11 @@ export function netCoincidences(inWindow: number, accidentals: Estimate): Estima
 
 /**
  * CAR as true over accidental, (C - A)/A; the other convention in use, C/A, is larger by one. SE by the delta method
- * with A measured apart from C. Null without accidentals: there is no ratio to give.
+ * with A measured apart from C. Null without accidentals or without pairs: there is no ratio to give.
  */
 export function coincidencesToAccidentals(inWindow: number, accidentals: Estimate): Estimate | null {
   const { value: a, sigma } = accidentals;
-  if (!(a > 0)) return null;
+  if (!(a > 0) || inWindow === 0) return null;
   const variance = countVariance(inWindow) / a ** 2 + (inWindow / a ** 2) ** 2 * sigma ** 2;
   return { value: (inWindow - a) / a, sigma: Math.sqrt(variance) };
 }

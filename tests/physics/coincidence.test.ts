@@ -46,6 +46,7 @@ describe('accidentals', () => {
     // None seen is not none with certainty: one count is the scale of the error.
     expect(accidentalsFromWindows(0, 10)).toEqual({ value: 0, sigma: 0.1 });
     expect(coincidencesToAccidentals(10, { value: 0, sigma: 0 })).toBeNull();
+    expect(coincidencesToAccidentals(0, { value: 3, sigma: 1 })).toBeNull();
   });
 
   it('E19: 2e5 per s in a 5 ns gate', () => {

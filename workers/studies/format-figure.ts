@@ -1,6 +1,6 @@
-/** Four digits are enough in a sentence. */
+/** Four digits are enough in a sentence, but none left of the decimal point is rounded away. */
 export function formatFigure(value: number): string {
-  return Number(value.toPrecision(4)).toString();
+  return Math.abs(value) >= 1000 ? Math.round(value).toString() : Number(value.toPrecision(4)).toString();
 }
 
 /** A value and its 1-sigma error to two digits of the error: "0.0357 ± 0.0011". */

@@ -1,7 +1,7 @@
 import type { Check } from '../../shared/contracts/output';
 import { poissonZ } from '../../shared/physics/find-peak';
 import { ticksToPs } from '../../shared/units/ticks';
-import { formatFigure } from './format-figure';
+import { formatFigure, formatMeasured } from './format-figure';
 import type { TagCount } from './tag-count';
 
 /** Questions about the coincidence peak and its window. Each sentence says what was seen and what to do about it. */
@@ -17,7 +17,9 @@ export function checkPeakFound(count: TagCount): Check {
   const where =
     found === null
       ? 'in the window that was set'
-      : `at ${formatFigure(count.fit?.centre ?? found.centre)} ps`;
+      : count.fit === null
+        ? `at ${formatFigure(found.centre)} ps`
+        : `at ${formatMeasured(count.fit.centre, count.fit.centreError)} ps`;
   const outside = found !== null && Math.abs(found.centre - count.windowCentrePs) > count.windowPs;
   if (outside || !(net.value > 0)) {
     const sentence = `The peak stands ${where}, but the window is centred on ${formatFigure(count.windowCentrePs)} ps; move the delay there or leave it to the study.`;
@@ -32,13 +34,17 @@ export function checkPairsEnough(count: TagCount, least: number, good: number): 
   const pairs = Math.round(count.net.value);
   const base = { id: 'pairs-enough', figure: pairs, unit: 'pairs' };
   if (pairs >= good) {
-    return { ...base, status: 'pass', sentence: `${pairs} net pairs are enough for steady numbers.` };
+    return {
+      ...base,
+      status: 'pass',
+      sentence: `${pairs} pairs with accidentals subtracted are enough for steady numbers.`,
+    };
   }
   const status = pairs >= least ? 'caution' : 'fail';
   const found =
     pairs > 0
-      ? `Only ${pairs} net pairs were found`
-      : `No net pairs: the window holds ${count.inWindow} pairs, ${formatFigure(count.accidentals.shifted.value)} of them accidental by the shifted windows`;
+      ? `Only ${pairs} pairs are left with accidentals subtracted`
+      : `No pairs are left with accidentals subtracted: the window holds ${count.inWindow} pairs, ${formatFigure(count.accidentals.shifted.value)} of them accidental by the shifted windows`;
   const sentence = `${found}; ${good} or more give steady numbers. Measure longer or raise the pair rate.`;
   return { ...base, status, sentence };
 }
@@ -71,11 +77,11 @@ export function checkPeakCentred(count: TagCount): Check {
   const sigmas = Math.abs(offset) / count.fit.sigma;
   const clear = Math.abs(offset) > 3 * count.fit.centreError;
   if (sigmas <= 0.5 || !clear) {
-    const sentence = `The peak lies ${formatFigure(offset)} ps from the centre of the window, ${sigmas.toFixed(2)} of its sigma.`;
+    const sentence = `The peak lies ${formatMeasured(offset, count.fit.centreError)} ps from the centre of the window, ${sigmas.toFixed(2)} of its sigma.`;
     return { ...base, status: 'pass', figure: offset, sentence };
   }
   const status = sigmas <= 1.5 ? 'caution' : 'fail';
-  const sentence = `The peak lies ${formatFigure(offset)} ps from the centre of the window, ${sigmas.toFixed(2)} of its sigma; set the delay to ${formatFigure(count.fit.centre)} ps or leave it to the study.`;
+  const sentence = `The peak lies ${formatMeasured(offset, count.fit.centreError)} ps from the centre of the window, ${sigmas.toFixed(2)} of its sigma; set the delay to ${formatFigure(count.fit.centre)} ps or leave it to the study.`;
   return { ...base, status, figure: offset, sentence };
 }
 
@@ -114,5 +120,5 @@ function overlappingStep({ tally, fit, windowPs }: TagCount): string | null {
   const step = ticksToPs(Math.min(...shiftsTick.map(Math.abs)), tally.tickFs);
   const least = windowPs + 5 * fit.sigma;
   if (step >= least) return null;
-  return `The first shifted window lies ${formatFigure(step)} ps from the prompt one and still counts pairs of the peak, whose sigma is ${formatFigure(fit.sigma)} ps: accidentals are too many and net pairs too few. Set the shifted-window step to ${Math.ceil(least / 1000)} ns or more, or leave it to the study.`;
+  return `The first shifted window lies ${formatFigure(step)} ps from the prompt one and still counts pairs of the peak, whose sigma is ${formatFigure(fit.sigma)} ps: accidentals come out too many and pairs too few. Set the shifted-window step to ${Math.ceil(least / 1000)} ns or more, or leave it to the study.`;
 }

@@ -35,7 +35,7 @@ export function checkDrift(count: TagCount, arms: ArmPair): Check {
   const changes = [
     compare(`${arms.a} singles`, tally.a.singlesPerSlice, null),
     compare(`${arms.b} singles`, tally.b.singlesPerSlice, null),
-    compare('net pairs', tally.prompt.pairs, tally.shifted.pairs),
+    compare('number of pairs with accidentals subtracted', tally.prompt.pairs, tally.shifted.pairs),
   ].filter((change) => Number.isFinite(change.change) && change.z > 3);
   const worst = changes.sort((p, q) => Math.abs(q.change) - Math.abs(p.change))[0];
   if (worst === undefined) {

@@ -159,7 +159,7 @@ export function heraldingOf(count: TagCount, of: 'a' | 'b', arms: ArmPair, darkR
       }),
     unit: '1',
     n: heralds,
-    method: `net pairs over tags of the ${herald} arm, ${darks}, corrected for the ${(kept * 100).toFixed(1)} % of the peak inside the window`,
+    method: `pairs, accidentals subtracted, over tags of the ${herald} arm, ${darks}, corrected for the ${(kept * 100).toFixed(1)} % of the peak inside the window`,
     statistic: (t) => (t[PROMPT]! - t[SHIFTED]! / shifts) / netHeralds(t) / kept,
   };
 }

@@ -84,7 +84,7 @@ function stateDelay(count: TagCount, arms: ArmPair): string {
   return [
     `Time tags of the ${describeArms(arms)} arms over ${formatFigure(seconds)} s, delay counted as ${arms.b} minus ${arms.a}.`,
     `Coincidences are all pairs inside a window of ${formatFigure(windowPs)} ps full width centred on ${formatFigure(windowCentrePs)} ps. ${kept}`,
-    `Net numbers and the CAR, quoted as (C - A)/A, use the mean of ${shifts} windows shifted clear of the peak; the product of the singles and the sideband of the histogram are given beside it.`,
+    `Numbers with accidentals subtracted and the CAR, quoted as (C - A)/A, use the mean of ${shifts} windows shifted clear of the peak; the product of the singles and the sideband of the histogram are given beside it.`,
     'Assumed: live time from the first to the last tag without empty slices, no correction for dead time or afterpulsing, a Gaussian peak; a heralding efficiency includes optics and mode coupling.',
   ].join(' ');
 }

@@ -134,10 +134,10 @@ function stateGhostImage(count: TagCount, arms: ArmPair, regions: Regions | null
       ? 'There were no counts to compare open with closed pixels.'
       : regions.drawn
         ? 'Visibility and CNR compare the two regions that were drawn.'
-        : 'Visibility and CNR compare pixels above and below the Otsu threshold of the net image, chosen on half of the slices of time and measured on the other half, so that the choice does not flatter them; a pixel sorted wrongly lowers them.';
+        : 'Visibility and CNR compare pixels above and below the Otsu threshold of the image with accidentals subtracted, chosen on half of the slices of time and measured on the other half, so that the choice does not flatter them; a pixel sorted wrongly lowers them.';
   return [
     `Ghost image of what the bucket saw, from tags of the ${describeArms(arms)} arms over ${formatFigure(seconds)} s: array tags paired with a bucket tag inside a window of ${formatFigure(windowPs)} ps full width centred on ${formatFigure(windowCentrePs)} ps.`,
-    `Net numbers have the mean image of ${shifts} shifted windows subtracted; raw ones are given beside them.`,
+    `Accidentals subtracted are the mean image of ${shifts} shifted windows; raw numbers are given beside those with accidentals subtracted.`,
     compared,
     'CNR is per pixel with Poisson noise; a region of n pixels has sqrt(n) times as much. Assumed: no flat field, no correction for dead time or afterpulsing. The array alone (singles) and the bucket alone must show no image; a ghost image by itself does not prove entanglement.',
   ].join(' ');

@@ -28,13 +28,13 @@ export function contrastOf(
   if (open.pixels === 0 || closed.pixels === 0 || !(o.raw + c.raw > 0)) return [];
   const regions = drawn
     ? 'regions as drawn'
-    : 'regions split by the net image, chosen on half of the slices and measured on the other';
+    : 'regions split by the image with accidentals subtracted, chosen on half of the slices and measured on the other';
   const levels = (t: readonly number[], net: boolean): [number, number] => {
     const off = net ? 1 / windows : 0;
     return [t[first]! - t[first + 1]! * off, t[first + 2]! - t[first + 3]! * off];
   };
   return [false, true].flatMap((net) => {
-    const what = net ? 'less the shifted windows' : 'nothing subtracted';
+    const what = net ? 'accidentals subtracted' : 'nothing subtracted';
     const suffix = net ? 'net' : 'raw';
     const shared = { unit: '1', n: Math.round(o.raw * open.pixels + c.raw * closed.pixels) };
     return [

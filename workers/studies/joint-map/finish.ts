@@ -65,7 +65,7 @@ function widthQuantities(plane: PlaneResult): Record<string, Quantity> {
 
 function stateJointMap(plane: PlaneResult): string {
   const tags =
-    'Fitted widths are standard deviations of a bivariate Gaussian by Poisson maximum likelihood on measured accidentals, cut at the edges of the arrays; moments are those of the net counts over the whole map. The conditional width is that of the signal given the idler.';
+    'Fitted widths are standard deviations of a bivariate Gaussian by Poisson maximum likelihood on measured accidentals, cut at the edges of the arrays; moments are those of the counts with accidentals subtracted, over the whole map. The conditional width is that of the signal given the idler.';
   const frames =
     'Widths are standard deviations of a Gaussian on a pedestal fitted to the sum and difference maps. One camera sees each pair twice and cannot tell the arms apart, so no conditional width is given.';
   return [

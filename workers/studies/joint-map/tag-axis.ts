@@ -103,7 +103,7 @@ export function analyseTagAxis(
         sums.net,
         scales,
         weights,
-        `second moments over the whole map less shifted windows; ${how}`,
+        `second moments over the whole map, accidentals subtracted; ${how}`,
       ),
       raw: {
         ...raw,

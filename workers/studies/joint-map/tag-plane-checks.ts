@@ -69,7 +69,7 @@ function checkFit(request: TagChecksRequest): Check {
   const id = 'fit-good';
   const unfitted = axesOf(request).filter(({ axis }) => goodFit(axis) === null && !belowPixels(axis));
   if (unfitted.length > 0) {
-    const sentence = `No Gaussian could be fitted to the joint map of ${namesOf(unfitted)}, so its net numbers are left out; measure longer or look at the map.`;
+    const sentence = `No Gaussian could be fitted to the joint map of ${namesOf(unfitted)}, so its numbers with accidentals subtracted are left out; measure longer or look at the map.`;
     return { id, status: 'fail', figure: null, unit: '', sentence };
   }
   const narrow = axesOf(request).filter(({ axis }) => belowPixels(axis));

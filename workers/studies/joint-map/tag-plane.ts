@@ -3,7 +3,7 @@ import type { TagTally } from '../../../shared/contracts/tally';
 import { Problem } from '../../../shared/errors/problem';
 import { drawBlockWeights } from '../../../shared/physics/bootstrap';
 import { planeScale } from '../../../shared/physics/calibration';
-import { formatFigure } from '../format-figure';
+import { formatFigure, formatMeasured } from '../format-figure';
 import type { CountedInput } from '../study';
 import { countTags } from '../tag-count';
 import { LEAST_BLOCKS, type PlaneRequest, type PlaneResult } from './plane-result';
@@ -36,7 +36,7 @@ export function analyseTagPlane(
     checks: checkTagPlane({ count, x, y, scales, plane: plane.kind }),
     maps: tagPlaneMaps({ count, x, y, scales, scale }),
     statement: [
-      `${plane.kind === 'near' ? 'Near' : 'Far'} field: ${count.inWindow} raw pairs in a window of ${formatFigure(count.windowPs)} ps full width, ${formatFigure(count.accidentals.shifted.value)} of them accidental by ${shifts} shifted windows.`,
+      `${plane.kind === 'near' ? 'Near' : 'Far'} field: ${count.inWindow} raw pairs in a window of ${formatFigure(count.windowPs)} ps full width, ${formatMeasured(count.accidentals.shifted.value, count.accidentals.shifted.sigma)} of them accidental by ${shifts} shifted windows.`,
     ],
     blocks: tally.slices,
   };

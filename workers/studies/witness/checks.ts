@@ -97,9 +97,9 @@ export function checkBalance(near: PlaneResult, far: PlaneResult): Check | null 
   const ratio = Math.max(a / b, b / a);
   const base = { id: 'planes-balanced', figure: ratio, unit: '1' };
   if (ratio <= 5) {
-    const sentence = `The planes hold ${a} and ${b} net pairs.`;
+    const sentence = `The planes hold ${a} and ${b} pairs with accidentals subtracted.`;
     return { ...base, status: 'pass', sentence };
   }
-  const sentence = `The planes hold ${a} and ${b} net pairs: the smaller one sets the error of every product; give it more time.`;
+  const sentence = `The planes hold ${a} and ${b} pairs with accidentals subtracted: the smaller one sets the error of every product; give it more time.`;
   return { ...base, status: 'caution', sentence };
 }

@@ -3,7 +3,7 @@ import type { PlaneResult } from '../joint-map/plane-result';
 /** What a failed check of one plane takes away from the products of both; the first that holds is said. */
 const reasons: readonly (readonly [id: string, reason: string])[] = [
   ['peak-found', 'no peak of pairs stands out'],
-  ['pairs-enough', 'too few net pairs are left'],
+  ['pairs-enough', 'too few pairs are left with accidentals subtracted'],
   ['map-truncated', 'so many pairs miss the arrays that widths measure the arrays, not the pairs'],
   [
     'correlation-sign',

@@ -159,8 +159,8 @@ function addReverse(
 }
 
 function addSchmidt(quantities: Record<string, Quantity>, x: AxisProducts, y: AxisProducts): void {
-  const kx = schmidtOf(x.reid);
-  const ky = schmidtOf(y.reid);
+  const kx = schmidtOf(x.reid, x.bounded);
+  const ky = schmidtOf(y.reid, y.bounded);
   const both = bothAxes(x.reid, y.reid);
   // K = Kx Ky = 1/(4 sqrt(Wx Wy)).
   const k = both && {

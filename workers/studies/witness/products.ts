@@ -53,12 +53,18 @@ export function bothAxes(x: Resampled | null, y: Resampled | null): Resampled | 
   return combine([x, y], `geometric mean of x and y; ${x.method}`, (a, b) => Math.sqrt(a * b));
 }
 
-/** K = 1/(2 sqrt W) of a pure double-Gaussian state with Reid product W. */
-export function schmidtOf(reid: Resampled | null): Resampled | null {
+/**
+ * K = 1/(2 sqrt W) of a pure double-Gaussian state with Reid product W. A camera has only a bound W' >= W, the Mancini
+ * product, and so a lower bound of K.
+ */
+export function schmidtOf(reid: Resampled | null, bounded: boolean): Resampled | null {
   if (reid === null) return null;
+  const what = bounded
+    ? 'lower bound 1/(2 sqrt W) with the Mancini product W, which is not below the Reid product'
+    : '1/(2 sqrt W) with the Reid product W';
   return combine(
     [reid],
-    `1/(2 sqrt W) of the net Reid product, for pure double-Gaussian states only; ${reid.method}`,
+    `${what}, accidentals subtracted, for pure double-Gaussian states only; ${reid.method}`,
     (w) => 1 / (2 * Math.sqrt(w)),
   );
 }

@@ -62,6 +62,10 @@ describe('Delay', () => {
     expect(Object.keys(chosen).sort()).toEqual(['delay', 'histogram.bin', 'shift.step', 'window']);
     expect(chosen['shift.step']).toBe(20_000);
     expect(statement).toContain('(C - A)/A');
+    expect(statement).toContain(
+      `centred on ${Math.round((run.tally.window.loTick + run.tally.window.hiTick) / 2)} ps`,
+    );
+    expect(statement).toContain('accidentals subtracted');
     for (const map of Object.values(maps)) {
       expect(map.data.length).toBe(map.shape.reduce((a, b) => a * b));
     }

@@ -186,6 +186,8 @@ describe('Witness', () => {
     expect(found.quantities['reid.x.net']!.value).toBe(found.quantities['mancini.x.net']!.value);
     expect(found.verdicts['reid.x.net']!.sentence).toContain('bounded from above');
     expect(found.verdicts['mancini.x.net']!.sentence).not.toContain('bounded from above');
+    expect(found.quantities['schmidt.x']!.method).toMatch(/^lower bound .* Mancini product/);
+    expect(output.quantities['schmidt.x']!.method).toMatch(/^1\/\(2 sqrt W\) with the Reid product/);
     expect(found.maps['minus.near']).toBeDefined();
     expect(found.maps['mean.frame.far']!.shape).toEqual([24, 24]);
   });
