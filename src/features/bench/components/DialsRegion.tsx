@@ -42,9 +42,10 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
   const presetWords =
     preset === null ? '' : `${preset.name}${preset.version === null ? '' : ` v${preset.version}`}`;
   const note = [
-    presetWords,
+    // First what differs: the name of the preset may be cut off.
     changed.size > 0 ? `${changed.size} changed` : '',
     isReadOtherwise ? 'reading changed' : '',
+    presetWords,
   ]
     .filter(Boolean)
     .join(' · ');

@@ -7,8 +7,11 @@ import type { Role } from '../../../../shared/contracts/http';
 import { TooltipProvider } from '../../../../src/components/ui/Tooltip';
 import { BenchPage } from '../../../../src/features/bench/BenchPage';
 import { type Bench, createBench } from '../../../../src/features/bench/components/bench-context';
+import { sessionOfBench } from '../../../../src/features/bench/model/session-bench';
 import { meQuery } from '../../../../src/lib/query/me';
 import { samplesQuery } from '../../../../src/lib/query/samples';
+import { handOverFiles, takeFiles } from '../../../../src/state/dropped-files';
+import { stubServer } from '../app/server-stub';
 import { stageOf } from '../viz/stage';
 import {
   type FakeEngine,
@@ -156,5 +159,34 @@ describe('the bench', () => {
     fireEvent.click(await screen.findByRole('button', { name: 'Start the engine again' }));
     expect(restart).toHaveBeenCalledOnce();
     await waitFor(() => expect(engine.runs).toHaveLength(2));
+  });
+
+  it('takes files dropped on another page', async () => {
+    const engine = fakeEngine();
+    handOverFiles([fileOf('from-home.h5')]);
+    await openBench(engine);
+    expect(await screen.findByRole('listitem', { name: 'from-home.h5' })).toBeTruthy();
+    expect(takeFiles()).toEqual([]);
+  });
+
+  it('saves an opened session over, and asks for a name only for a new one', async () => {
+    const engine = fakeEngine();
+    const { store } = await openBench(engine);
+    const state = sessionOfBench(store.getState(), 'Monday');
+    act(() => store.getState().openSession({ id: 's1', name: 'Monday' }, { ...state, resultId: 'r1' }));
+    const link = screen.getByRole('link', { name: 'Result saved from this session' });
+    expect(link.getAttribute('href')).toBe('/results/r1');
+    const asked = stubServer({
+      'PUT /api/groups/g/sessions/s1': ({ body }) => ({
+        body: { id: 's1', createdAt: '', updatedAt: '', by: 'Someone', ...(body as object) },
+      }),
+    });
+    const menu = screen.getByRole('button', { name: 'Save …' });
+    fireEvent.keyDown(menu, { key: 'Enter' });
+    expect(await screen.findByRole('menuitem', { name: 'Save session as …' })).toBeTruthy();
+    fireEvent.click(screen.getByRole('menuitem', { name: 'Save session' }));
+    await screen.findByRole('link', { name: 'Monday' });
+    expect(asked.map(({ method }) => method)).toEqual(['PUT']);
+    expect(screen.queryByRole('dialog')).toBeNull();
   });
 });
