@@ -361,9 +361,3 @@ export function blockInfluence(
   }
   return out;
 }
-
-/** Standard error of parameter p from the inverse Fisher matrix (counting noise alone); 0 when held. */
-export function fisherSigma(fit: ShapeFit, p: number): number {
-  const at = fit.free.indexOf(p);
-  return at < 0 ? 0 : Math.sqrt(Math.max(fit.covariance[at * fit.free.length + at] as number, 0));
-}

@@ -71,12 +71,6 @@ export function autoDial(dials: DialValues, id: string): number | null {
   return dials[id] === null || dials[id] === undefined ? null : numberDial(dials, id);
 }
 
-export function choiceDial(dials: DialValues, id: string): string {
-  const value = dials[id];
-  if (typeof value === 'string') return value;
-  throw new Problem('bad-dial', `The dial "${id}" needs a choice; ${JSON.stringify(value)} was given.`, id);
-}
-
 export function regionDial(dials: DialValues, id: string): Region | null {
   const value = dials[id] ?? null;
   if (value === null || typeof value === 'object') return value;
