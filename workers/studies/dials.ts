@@ -151,6 +151,7 @@ export const shiftStepDial: DialSpec = {
   reason:
     'Distance from the peak to the first window that counts accidentals, and between those windows; a multiple of the pump period when the pump is pulsed. Left empty it is 20 ns, or two windows or ten sigma of the peak where those are more.',
   needs: 'bytes',
+  for: 'tags',
   type: 'number',
   unit: 'ps',
   default: null,
