@@ -167,4 +167,39 @@ describe('Widths from simulated camera frames', () => {
     expect(output.quantities['width.x.minus.fit']).toBeUndefined();
     expect(output.checks.some(({ status }) => status === 'fail')).toBe(true);
   });
+
+  it('B20: the noise of a difference bin of 35 pairs is that of sqrt(35) pairs, each once', () => {
+    // Derived by numerics, Monte Carlo ratio 0.991: in units of p (1 - p)/sqrt(F) for plain covariances. Consecutive
+    // frames have 1.5 times their variance.
+    const [width, height, frames, p] = [8, 5, 100_000, 0.2];
+    const pixels = width * height;
+    const cells = (2 * width - 1) * (2 * height - 1);
+    const clicks = new Float64Array(pixels).fill(p * frames);
+    const maps = buildFrameMaps(
+      {
+        width,
+        height,
+        frames,
+        masked: new Uint8Array(pixels),
+        sum: clicks,
+        sumSquares: clicks,
+        diagonal: new Float64Array(pixels),
+        plus: new Float64Array(cells),
+        minus: new Float64Array(cells),
+        blockTotals: new Float64Array(1),
+        blockPlus: new Float64Array(cells),
+        blockMinus: new Float64Array(cells),
+        blockDiagonal: new Float64Array(pixels),
+      },
+      selfMaps(width, height),
+      0,
+    );
+    // Neighbours along x: 7 x 5 pairs.
+    const bin = (height - 1) * (2 * width - 1) + width;
+    expect(maps.minus.pairs[bin]).toBe(35);
+    const noise = Math.sqrt(maps.minus.variance[bin]! / 1.5) / ((p * (1 - p)) / Math.sqrt(frames));
+    expect(Math.abs(noise - 5.916079783099616)).toBeLessThan(0.35496478698597694);
+    // The bin on the other side is the same data, and as noisy.
+    expect(maps.minus.variance[bin - 2]).toBeCloseTo(maps.minus.variance[bin]!, 12);
+  });
 });
