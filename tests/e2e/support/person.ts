@@ -41,9 +41,8 @@ export async function saveAs(page: Page, what: 'result' | 'session' | 'preset', 
     await page.getByRole('button', { name: 'Save result' }).click();
   } else {
     await page.getByRole('button', { name: 'Save …' }).click();
-    await page
-      .getByRole('menuitem', { name: what === 'session' ? 'Save session' : 'Save as preset' })
-      .click();
+    const item = what === 'session' ? 'Save session' : 'Save as preset';
+    await page.getByRole('menuitem', { name: item, exact: true }).click();
   }
   await page.getByLabel('Name').fill(name);
   await page.getByRole('dialog').getByRole('button', { name: 'Save', exact: true }).click();
