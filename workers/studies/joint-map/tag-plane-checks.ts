@@ -62,8 +62,12 @@ const goodFits = (request: TagChecksRequest): { name: string; axis: TagAxis; fit
     return fit === null ? [] : [{ name, axis, fit }];
   });
 
-/** The fit stopped at the least width it can tell: the pairs are correlated more finely than the pixels see. */
-const belowPixels = ({ fit }: TagAxis): boolean => fit?.fit.atFloor === true;
+/**
+ * The fit stopped at the least width it can tell, and not because noise drove it there: the moments are clearly
+ * correlated, so the pairs are correlated more finely than the pixels see.
+ */
+const belowPixels = (axis: TagAxis): boolean =>
+  axis.fit?.fit.atFloor === true && Math.abs(momentCorrelationZ(axis) ?? 0) >= 3;
 
 function checkFit(request: TagChecksRequest): Check {
   const id = 'fit-good';
@@ -151,10 +155,16 @@ function correlationZ(axis: TagAxis): number | null {
     const sigma = sigmaOf(fit.influence, (m) => m(4));
     return sigma > 0 ? fit.blurred.c / sigma : null;
   }
-  const { correlation } = axis.result.moment;
-  if (!belowPixels(axis) || correlation === null) return null;
+  return belowPixels(axis) ? momentCorrelationZ(axis) : null;
+}
+
+/** Standard errors of the moments' correlation above zero; null where its error is not known. */
+function momentCorrelationZ({ result }: TagAxis): number | null {
+  const { correlation } = result.moment;
+  if (correlation === null) return null;
   const { sigma } = spreadOf(correlation.resampled);
-  return sigma > 0 ? correlation.value / sigma : null;
+  // Pairs that always share a pixel have a correlation of one in every resample.
+  return Number.isFinite(sigma) ? correlation.value / Math.max(sigma, 1e-12) : null;
 }
 
 function checkDiscarded(request: TagChecksRequest): Check {

@@ -126,6 +126,15 @@ describe('Joint map', () => {
     }
   });
 
+  it('does not take a fit that noise drove below a pixel for narrow pairs', () => {
+    for (let seed = 40; seed < 50; seed += 1) {
+      const weak: TallyScene = { ...scene, truth: { v1: 9, v2: 9, c: 8.9 }, pairs: 40, accidentals: 1500 };
+      const found = finish(simulateTally(weak, createRandom(seed)));
+      const check = found.checks.find(({ id }) => id === 'fit-good')!;
+      if (check.sentence.includes('more narrowly')) expect(status(found, 'correlation-sign')).toBe('pass');
+    }
+  });
+
   it('takes no figure from a fit that found nothing', () => {
     const found = finish(simulateTally({ ...scene, pairs: 0, accidentals: 0 }, createRandom(32)));
     for (const id of [
