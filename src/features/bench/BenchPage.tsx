@@ -1,6 +1,7 @@
 import { useQuery, useQueryClient } from '@tanstack/react-query';
 import { useCallback, useEffect, useRef, useState } from 'react';
 import { useSearchParams } from 'react-router-dom';
+import { may } from '../../../shared/contracts/permissions';
 import { ProblemNote } from '../../components/page/ProblemNote';
 import { Button } from '../../components/ui/Button';
 import { useOwnGroup } from '../../lib/query/me';
@@ -30,7 +31,7 @@ export function BenchPage({ bench }: { bench?: Bench }) {
 function BenchBody() {
   const { store } = useBench();
   const group = useOwnGroup();
-  const readOnly = group.role === 'runner' || group.role === 'guest';
+  const readOnly = !may(group.role, 'presets.write');
   const picker = useRef<HTMLInputElement>(null);
   const [editing, setEditing] = useState<string | null>(null);
   const acquisition = useBenchState((state) => state.shelf.find(({ id }) => id === editing) ?? null);

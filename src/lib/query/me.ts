@@ -1,5 +1,6 @@
 import { queryOptions, useQuery, useSuspenseQuery } from '@tanstack/react-query';
 import { type Me, meSchema, type ServerInfo, serverInfoSchema } from '../../../shared/contracts/http';
+import { may } from '../../../shared/contracts/permissions';
 import { request } from '../http/request';
 import { useGroupChoice } from './group-choice';
 
@@ -42,5 +43,5 @@ export function useOwnGroup(): Group {
 
 /** Guests read results; presets, sessions and the bench are for those who work with data. */
 export function mayUseBench(group: Group): boolean {
-  return group.role !== 'guest';
+  return may(group.role, 'sessions.use');
 }

@@ -1,6 +1,7 @@
 import { useQueryClient } from '@tanstack/react-query';
 import { type ReactNode, useState } from 'react';
 import { Link } from 'react-router-dom';
+import { may } from '../../../../shared/contracts/permissions';
 import { Button } from '../../../components/ui/Button';
 import { Menu } from '../../../components/ui/Menu';
 import { explain } from '../../../lib/errors/explain';
@@ -47,8 +48,8 @@ export function SaveActions({ group }: SaveActionsProps) {
   const session = useBenchState((state) => state.session);
   const linked = useBenchState((state) => (state.session === null ? null : linkedResult(state)));
   const study = useBenchPlan(currentStudy);
-  const mayWritePresets = group.role === 'lead' || group.role === 'analyst';
-  const maySave = group.role !== 'guest';
+  const mayWritePresets = may(group.role, 'presets.write');
+  const maySave = may(group.role, 'results.write');
 
   const save = async (name: string): Promise<void> => {
     const state = store.getState();

@@ -2,6 +2,7 @@ import { ChevronDown } from 'lucide-react';
 import { useState } from 'react';
 import { Link, useNavigate } from 'react-router-dom';
 import type { ResultRow } from '../../../../shared/contracts/http';
+import { may } from '../../../../shared/contracts/permissions';
 import type { MapFile } from '../../../../shared/contracts/result';
 import { Button, buttonClass } from '../../../components/ui/Button';
 import { Menu, type MenuItem } from '../../../components/ui/Menu';
@@ -23,7 +24,7 @@ export function ResultActions({ row, maps }: ResultActionsProps) {
   const navigate = useNavigate();
   const [deleting, setDeleting] = useState(false);
   const preset = toPreset(row.result, row.name);
-  const mayDelete = group.role === 'lead' || (group.role === 'analyst' && row.byId === me.user.id);
+  const mayDelete = may(group.role, row.byId === me.user.id ? 'results.delete' : 'results.delete-any');
   const items: MenuItem[] = [
     {
       label: maps === null ? 'Result as JSON (maps still on their way)' : 'Result as JSON',
