@@ -56,3 +56,12 @@ export function productRelativeError(relatives: readonly number[]): number {
 export function pixelVariance(pitch: number): number {
   return (pitch * pitch) / 12;
 }
+
+/**
+ * Width with the pixels of both coordinates taken out, s_true = sqrt(s_m^2 - a^2/6). Null where s_m^2 < 1.5 a^2/6:
+ * then only an upper limit can be given. Never for a headline witness.
+ */
+export function deconvolvedDifferenceSigma(measured: number, pitch: number): number | null {
+  const blur = 2 * pixelVariance(pitch);
+  return measured * measured < 1.5 * blur ? null : Math.sqrt(measured * measured - blur);
+}

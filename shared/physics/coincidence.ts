@@ -48,6 +48,25 @@ export function coincidencesToAccidentals(inWindow: number, accidentals: Estimat
   return { value: (inWindow - a) / a, sigma: Math.sqrt(variance) };
 }
 
+export interface CarModel {
+  pairRate: number;
+  efficiencyA: number;
+  efficiencyB: number;
+  darkA: number;
+  darkB: number;
+  windowS: number;
+  /** Fraction of the peak inside the window. */
+  fraction: number;
+}
+
+/** Expected CAR of a steady source: f eta_A eta_B R / (R_A R_B w); without darks f/(R w), whatever the efficiencies. */
+export function expectedCar(model: CarModel): number {
+  const { pairRate, efficiencyA, efficiencyB } = model;
+  const singlesA = efficiencyA * pairRate + model.darkA;
+  const singlesB = efficiencyB * pairRate + model.darkB;
+  return (model.fraction * efficiencyA * efficiencyB * pairRate) / (singlesA * singlesB * model.windowS);
+}
+
 export interface KlyshkoRequest {
   /** Counts of the heralding arm in the same time, and how many of them are darks or background. */
   heralds: number;
@@ -81,4 +100,9 @@ export function heraldingEfficiency(request: KlyshkoRequest): Estimate | null {
   const relativeFraction = fraction.sigma / fraction.value;
   const value = e / fraction.value;
   return { value, sigma: Math.sqrt(variance / fraction.value ** 2 + (value * relativeFraction) ** 2) };
+}
+
+/** Probability that an accidental photon of rate R falls into a gate of length w, 1 - exp(-R w). */
+export function gateAccidental(rate: number, gateS: number): number {
+  return -Math.expm1(-rate * gateS);
 }

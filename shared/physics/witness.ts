@@ -21,6 +21,11 @@ export const witnesses = {
   duan: { id: 'duan', label: 'Duan sum', bound: 2, shows: 'entanglement' },
 } as const satisfies Record<string, Witness>;
 
+/** Duan sum at its best unit scale s^2 = sqrt(Var x_- / Var k_+): 2 sqrt(product). */
+export function duanSum(varMinus: number, varPlus: number): number {
+  return 2 * Math.sqrt(varMinus * varPlus);
+}
+
 export interface Significance {
   /** ln(bound/W)/(SE/W): never above the linear one, so it is the one to headline. */
   log: number;

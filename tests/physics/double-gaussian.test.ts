@@ -9,9 +9,40 @@ import {
   pixelBlurred,
   reidProduct,
   schmidtNumber,
+  sincAlpha,
 } from '../../shared/physics/double-gaussian';
 
+const sinc = (x: number): number => Math.sin(x) / x;
+
+function root(f: (x: number) => number, low: number, high: number): number {
+  let [a, b] = [low, high];
+  for (let k = 0; k < 100; k += 1) {
+    const middle = (a + b) / 2;
+    if (f(a) * f(middle) <= 0) b = middle;
+    else a = middle;
+  }
+  return (a + b) / 2;
+}
+
 describe('Check values of the double-Gaussian biphoton', () => {
+  it('has the alphas of the sinc stand-in', () => {
+    // Equal 1/e amplitude: Chan, Torres & Eberly, PRA 75, 050101 (2007), quoted as 0.455 (from memory).
+    expect(1 / root((x) => sinc(x) - Math.exp(-1), 1, 3)).toBeCloseTo(0.4547267104391095, 9);
+    expect(sincAlpha.amplitude).toBeCloseTo(0.4547267104391095, 6);
+    // Equal FWHM of the intensity: sinc^2(x) = 1/2 and exp(-2 alpha x) = 1/2.
+    const half = root((x) => sinc(x) ** 2 - 0.5, 1, 2);
+    expect(Math.log(2) / (2 * half)).toBeCloseTo(0.2490544735679113, 9);
+    expect(sincAlpha.fwhm).toBeCloseTo(0.2490544735679113, 6);
+    // Largest 2-D overlap: overlap^2 = (4/pi) alpha atan(1/alpha)^2 is stationary there and 0.8217.
+    const overlap = (a: number): number => (4 / Math.PI) * a * Math.atan(1 / a) ** 2;
+    expect(overlap(sincAlpha.overlap)).toBeCloseTo(0.8217, 4);
+    expect(overlap(sincAlpha.overlap)).toBeGreaterThan(overlap(0.71));
+    expect(overlap(sincAlpha.overlap)).toBeGreaterThan(overlap(0.727));
+    expect(sincAlpha.momentum).toBeCloseTo(1 / 3, 9);
+    // Behind Schneeloch & Howell, J. Opt. 18, 053501 (2016) (formula from memory).
+    expect(sincAlpha.position).toBeCloseTo(1.8, 9);
+  });
+
   it('gives d and r of a 2 mm crystal pumped at 405 nm', () => {
     const delta = crystalDeltaUm(2, 405, 1.66, 0.455);
     expect(Math.abs(delta - 5.944348043356229)).toBeLessThan(1e-4);

@@ -2,9 +2,12 @@ import { describe, expect, it } from 'vitest';
 import { findPeak, largestNoise, poissonZ } from '../../shared/physics/find-peak';
 import { centreErrorLaw, fitPeak, peakModel } from '../../shared/physics/fit-peak';
 import {
+  bestHalfWindow,
   countRate,
+  fanoFactor,
   g2,
   peakSigmaFromFwhm,
+  thermalG2,
   windowFraction,
   windowFractionOfFit,
 } from '../../shared/physics/timing';
@@ -16,6 +19,17 @@ describe('rates', () => {
     // N/T, sqrt(N)/T: Poisson statistics.
     const { value, sigma } = countRate(250000, 10);
     expect([value, sigma]).toEqual([25000, 50]);
+  });
+
+  it('knows steady counts from drifting ones by their Fano factor', () => {
+    const random = createRandom(3);
+    const steady = Float64Array.from({ length: 400 }, () => random.poisson(50));
+    const drifting = Float64Array.from({ length: 400 }, (_, k) => random.poisson(25 + k / 8));
+    const factor = fanoFactor(steady);
+    expect(Math.abs((factor?.value ?? 0) - 1)).toBeLessThan(3 * (factor?.sigma ?? 0));
+    expect(fanoFactor(drifting)?.value).toBeGreaterThan(2);
+    expect(fanoFactor([])).toBeNull();
+    expect(fanoFactor([0, 0])).toBeNull();
   });
 });
 
@@ -33,6 +47,11 @@ describe('g2', () => {
     expect(at(-5)?.value).toBe(at(5)?.value);
     expect(at(10)).toBeNull();
   });
+
+  it('A27: four thermal modes', () => {
+    // Mandel & Wolf, Optical Coherence and Quantum Optics (1995), from memory.
+    expect(thermalG2(4)).toBe(1.25);
+  });
 });
 
 describe('the coincidence window', () => {
@@ -41,6 +60,12 @@ describe('the coincidence window', () => {
     expect(windowFraction(1, 0.25, 0)).toBeCloseTo(0.9544997361036416, 9);
     expect(windowFraction(1, 0.25, 0.2)).toBeCloseTo(0.8823751994478637, 9);
     expect(windowFraction(1, 0.25, -0.2)).toBeCloseTo(0.8823751994478637, 9);
+  });
+
+  it('A08: the best half-window among accidentals is 1.4 sigma', () => {
+    // Stationarity root and direct maximisation; the full window keeps 83.85 %.
+    expect(Math.abs(bestHalfWindow() - 1.3999852768782846)).toBeLessThan(1e-4);
+    expect(windowFraction(2 * bestHalfWindow(), 1, 0)).toBeCloseTo(0.8385, 3);
   });
 
   it('carries the error of the fit to the kept share', () => {

@@ -1,8 +1,15 @@
 import { describe, expect, it } from 'vitest';
 import { spreadOf } from '../../shared/physics/bootstrap';
-import { farFieldK, pixelVariance, planeScale, productRelativeError } from '../../shared/physics/calibration';
+import {
+  deconvolvedDifferenceSigma,
+  farFieldK,
+  pixelVariance,
+  planeScale,
+  productRelativeError,
+} from '../../shared/physics/calibration';
 import { columnSums, conditionalVariance } from '../../shared/physics/conditional';
 import { pairVariances } from '../../shared/physics/double-gaussian';
+import { jackknifeSigma } from '../../shared/physics/jackknife';
 import {
   addMomentSums,
   covarianceOfSums,
@@ -18,6 +25,11 @@ describe('Check values of widths and calibration', () => {
   it('adds a^2/12 per pixel and a^2/6 per difference (13 um; uniform law)', () => {
     expect(pixelVariance(13)).toBeCloseTo(14.083333333333334, 9);
     expect(2 * pixelVariance(13)).toBeCloseTo(28.166666666666668, 9);
+  });
+
+  it('takes pixels out of a difference width, or refuses', () => {
+    expect(deconvolvedDifferenceSigma(12, 13)).toBeCloseTo(10.762589527308627, 6);
+    expect(deconvolvedDifferenceSigma(6, 13)).toBeNull();
   });
 
   it('turns camera pixels into crystal units (k = 2 pi x / (lambda f), Goodman, Introduction to Fourier Optics, from memory)', () => {
@@ -112,6 +124,12 @@ describe('Check values of widths and calibration', () => {
     expect(biased).toBeCloseTo(0.8 * fair, 9);
     // 4000 columns of 4 degrees of freedom: standard error sqrt(2/16000) = 0.011.
     expect(Math.abs(fair - 1)).toBeLessThan(0.035);
+  });
+
+  it('has the jackknife error of a mean (Efron & Tibshirani, An Introduction to the Bootstrap, 1993, from memory)', () => {
+    const mean = (values: readonly number[]) => values.reduce((a, b) => a + b, 0) / values.length;
+    expect(jackknifeSigma([4.1, 3.8, 4.4, 4.0, 3.7], mean)).toBeCloseTo(0.12247448713915934, 9);
+    expect(jackknifeSigma([1], mean)).toBeNaN();
   });
 
   it('turns an ellipse into its marginal covariance', () => {

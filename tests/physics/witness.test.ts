@@ -1,6 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { farCovariance, nearCovariance, pairVariances } from '../../shared/physics/double-gaussian';
-import { judge, significanceOf, verdictLevel, witnesses } from '../../shared/physics/witness';
+import { duanSum, judge, significanceOf, verdictLevel, witnesses } from '../../shared/physics/witness';
 
 describe('Check values of the variance witnesses', () => {
   it('keeps every bound with its inequality (Reid 1989; Mancini 2002; Duan, Simon 2000, from memory)', () => {
@@ -14,11 +14,16 @@ describe('Check values of the variance witnesses', () => {
     // Plain difference and sum: (0.5 + 0.5)^2 = 1; rotated by sqrt 2: a quarter of it.
     expect((0.5 + 0.5) * (0.5 + 0.5)).toBe(witnesses.mancini.bound);
     expect(0.5 * 0.5).toBe(witnesses.rotated.bound);
+    expect(duanSum(1, 1)).toBe(witnesses.duan.bound);
     // A double Gaussian with w = d is a product state.
     const near = pairVariances(nearCovariance({ waistUm: 30, deltaUm: 30 }));
     const far = pairVariances(farCovariance({ waistUm: 30, deltaUm: 30 }));
     expect(near.conditional1 * far.conditional1 * 1e-6).toBeCloseTo(witnesses.reid.bound, 12);
     expect(near.minus * far.plus * 1e-6).toBeCloseTo(witnesses.mancini.bound, 12);
+  });
+
+  it('has the Duan sum at its best scale (Duan et al., PRL 84, 2722 (2000), from memory)', () => {
+    expect(duanSum(0.09, 0.16)).toBeCloseTo(0.24, 9);
   });
 
   it('reads published widths: 0.027 mm and 3.7 /mm give the 0.01 hbar^2 of Howell et al., PRL 92, 210403 (2004)', () => {
