@@ -113,6 +113,18 @@ describe('time tags of HDF5', () => {
     expect((await inspect(path)).layout).toEqual(layout);
   });
 
+  it('of a second pair are not passed over in silence', async () => {
+    const pair = (group: string) => [
+      { name: `${group}/t`, data: BigUint64Array.from(ticks) },
+      { name: `${group}/pix`, data: Uint16Array.from(channels) },
+    ];
+    const one = await inspect(await write(pair('left')));
+    const both = await inspect(await write([...pair('left'), ...pair('right')]));
+    const unread = (warnings: readonly string[]) => warnings.filter((each) => each.includes('are not read'));
+    expect(unread(one.warnings)).toEqual([]);
+    expect(unread(both.warnings)).toHaveLength(1);
+  });
+
   it('span a day at 1 ps', async () => {
     const day = 86_400n * 10n ** 12n;
     const times = [0n, 1n, day / 2n, day - 1n, day];

@@ -27,7 +27,7 @@ export function proposeHdf5(tree: Hdf5Tree): Hdf5Proposal {
     stack !== null && (pair === null || sizeOf(stack) > sizeOf(pair.time.dataset))
       ? framesProposal(stack, pair !== null)
       : pair !== null
-        ? tagsProposal(tree, pair, stack)
+        ? tagsProposal(tree, pair, stack, candidates)
         : { layout: null, because: nothingFits(tree), warnings: [] };
   return { ...proposal, warnings: [...warnings, ...proposal.warnings] };
 }
@@ -81,6 +81,13 @@ function likeliestPair(candidates: readonly Candidate[]): Pair | null {
   return best;
 }
 
+/** A second pair, in datasets the first does not touch: often the tags of the other detector. */
+function unreadPair(read: Pair, candidates: readonly Candidate[]): Pair | null {
+  const taken = [read.time.dataset.path, read.channel.dataset.path];
+  const other = likeliestPair(candidates.filter(({ dataset }) => !taken.includes(dataset.path)));
+  return other !== null && other.score > 0.7 * read.score ? other : null;
+}
+
 function groupOf(path: string): string {
   return path.slice(0, path.lastIndexOf('/'));
 }
@@ -89,13 +96,25 @@ function columnOf({ dataset, field }: Candidate): Column {
   return field === undefined ? { dataset: dataset.path } : { dataset: dataset.path, field };
 }
 
-function tagsProposal(tree: Hdf5Tree, { time, channel }: Pair, stack: DatasetEntry | null): Hdf5Proposal {
+function tagsProposal(
+  tree: Hdf5Tree,
+  pair: Pair,
+  stack: DatasetEntry | null,
+  candidates: readonly Candidate[],
+): Hdf5Proposal {
+  const { time, channel } = pair;
   const tick = namedTick(tree, time.dataset.path) ?? namedTick(tree, channel.dataset.path);
   const warnings = tick
     ? []
     : ['No attribute names the length of a tick: 1 ps is proposed, set the one of your time tagger.'];
   if (stack !== null)
     warnings.push(`The file also holds frames (${stack.path}); choose them if those are meant.`);
+  const left = unreadPair(pair, candidates);
+  if (left !== null) {
+    warnings.push(
+      `${nameOf(left.time)} and ${nameOf(left.channel)} look like tags too and are not read: one pair of columns is one acquisition. To correlate them, save both arms as one pair in order of time, each with channels of its own.`,
+    );
+  }
   const because = `${nameOf(time)} rises like time and ${nameOf(channel)}, as long, holds few values like a channel.`;
   return {
     layout: {

@@ -63,9 +63,15 @@ export function verdictOf(judged: Judged, context: VerdictContext): Verdict | nu
     resampled: part.resampled,
     systematic: context.systematic,
     doubts: context.doubts,
-    assumptions: assumptionsOf(what, bounded),
+    assumptions: `${assumptionsOf(what, bounded)} ${calibrationWords(context.systematic)}`,
   });
   return context.looking ? { ...verdict, sentence: `So far, still reading: ${verdict.sentence}` } : verdict;
+}
+
+function calibrationWords(systematic: number): string {
+  const scale = 'Standard deviations are those of counting, on the logarithmic scale';
+  if (!(systematic > 0)) return `${scale}.`;
+  return `${scale}; the calibrations add ${(100 * systematic).toFixed(1)} % to the product, which is not in them.`;
 }
 
 function assumptionsOf(what: Subtraction, bounded: boolean): string {

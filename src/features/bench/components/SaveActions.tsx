@@ -8,7 +8,7 @@ import { explain } from '../../../lib/errors/explain';
 import type { Group } from '../../../lib/query/me';
 import { savePreset, saveResult, saveSession } from '../api/save';
 import { presetOfBench, presetOfResult } from '../model/bench-records';
-import { currentStudy, linkedResult } from '../model/bench-selectors';
+import { currentStudy, guessedReadings, linkedResult } from '../model/bench-selectors';
 import type { SessionRef } from '../model/bench-types';
 import { sessionOfBench } from '../model/session-bench';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
@@ -48,6 +48,7 @@ export function SaveActions({ group }: SaveActionsProps) {
   const session = useBenchState((state) => state.session);
   const linked = useBenchState((state) => (state.session === null ? null : linkedResult(state)));
   const study = useBenchPlan(currentStudy);
+  const isGuessed = useBenchPlan(guessedReadings).length > 0;
   const mayWritePresets = may(group.role, 'presets.write');
   const maySave = may(group.role, 'results.write');
 
@@ -127,7 +128,12 @@ export function SaveActions({ group }: SaveActionsProps) {
             : []),
         ]}
       />
-      <Button size="sm" variant="primary" disabled={result === null} onClick={() => setKind('result')}>
+      <Button
+        size="sm"
+        variant="primary"
+        disabled={result === null || isGuessed}
+        onClick={() => setKind('result')}
+      >
         Save result
       </Button>
       {kind === null ? null : (

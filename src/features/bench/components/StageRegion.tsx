@@ -1,8 +1,9 @@
 import { OutputStage } from '../../../components/output/OutputStage';
 import { Button } from '../../../components/ui/Button';
+import { CheckMark } from '../../../components/ui/CheckMark';
 import { ProgressBar } from '../../../components/ui/ProgressBar';
 import { useTheme } from '../../../lib/theme/theme';
-import { currentDials, currentStudy, planRun } from '../model/bench-selectors';
+import { currentDials, currentStudy, guessedReadings, planRun } from '../model/bench-selectors';
 import type { Found } from '../model/bench-types';
 import { progressWords, stageWords } from '../model/run-bench';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
@@ -49,6 +50,7 @@ export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
         {study !== null && plan.needs.length > 0 ? (
           <EmptyStage study={study} needs={plan.needs} onEdit={readOnly ? null : onEdit} onOpen={onOpen} />
         ) : null}
+        {found === null ? null : <Guesses onEdit={readOnly ? null : onEdit} />}
         {found === null ? null : (
           <OutputStage
             output={found.output}
@@ -64,6 +66,30 @@ export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
         {found === null && plan.needs.length === 0 ? <Waiting isKnown={study !== null} /> : null}
       </div>
     </section>
+  );
+}
+
+/** Numbers from a reading that nobody has looked over say so above all else. */
+function Guesses({ onEdit }: { onEdit: ((acquisitionId: string) => void) | null }) {
+  const guessed = useBenchPlan(guessedReadings);
+  if (guessed.length === 0) return null;
+  return (
+    <ul className="mb-4 flex flex-col gap-1.5" aria-label="Readings to look over">
+      {guessed.map(({ id, name }) => (
+        <li key={id} className="flex flex-wrap items-center gap-x-3 gap-y-1 text-sm">
+          <CheckMark status="caution" />
+          <span className="min-w-0 flex-1">
+            Tick and detector map of {name} are only proposed from its bytes. Look its reading over and apply
+            it before a number is trusted; until then no result can be saved.
+          </span>
+          {onEdit === null ? null : (
+            <Button size="sm" onClick={() => onEdit(id)}>
+              Open its reading
+            </Button>
+          )}
+        </li>
+      ))}
+    </ul>
   );
 }
 

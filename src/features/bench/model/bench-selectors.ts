@@ -37,6 +37,14 @@ export function baseDials({ preset, study }: BenchPlan): DialValues {
   return preset?.study === study ? preset.dials : {};
 }
 
+/** Acquisitions in use whose reading is a proposal that nobody has applied: their numbers rest on a guess. */
+export function guessedReadings(plan: BenchPlan): { id: string; name: string }[] {
+  const held = new Set(Object.values(currentAssignment(plan)));
+  return plan.shelf
+    .filter((a) => held.has(a.id) && a.reading.status === 'read' && !a.layoutGiven && !a.detectorGiven)
+    .map(({ id, name }) => ({ id, name }));
+}
+
 /** Is an acquisition read otherwise than the preset says? */
 export function isReadingChanged(plan: BenchPlan): boolean {
   const study = currentStudy(plan);

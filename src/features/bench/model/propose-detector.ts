@@ -57,6 +57,15 @@ function* candidates(lowest: number, withBucket: boolean): Iterable<Candidate> {
         `Channels ${first} to ${first + (withBucket ? n : 2 * n - 1)} fit ${extra}; correct it if the wiring differs.`;
       if (!withBucket) {
         yield {
+          expected: n,
+          first,
+          last: first + n - 1,
+          build: () => ({
+            detector: tags({ signal: square(side, first) }),
+            because: `Channels ${first} to ${first + n - 1} fit one array of ${side} × ${side}; correct it if the wiring differs.`,
+          }),
+        };
+        yield {
           expected: 2 * n,
           first,
           last: first + 2 * n - 1,
@@ -86,7 +95,37 @@ function* candidates(lowest: number, withBucket: boolean): Iterable<Candidate> {
   }
 }
 
-function proposeTags(counts: readonly { channel: number; count: number }[]): DetectorProposal | null {
+interface ChannelCount {
+  channel: number;
+  count: number;
+}
+
+/** Channels a gap apart are two arrays on inputs of their own; fewer missing channels are dead pixels. */
+const LEAST_GAP = 4;
+
+function proposeTwoRuns(channels: readonly ChannelCount[]): DetectorProposal | null {
+  let cut = 0;
+  const gapBefore = (i: number): number => channels[i]!.channel - channels[i - 1]!.channel;
+  for (let i = 1; i < channels.length; i++) if (cut === 0 || gapBefore(i) > gapBefore(cut)) cut = i;
+  if (cut === 0 || gapBefore(cut) <= LEAST_GAP) return null;
+  const runs = [channels.slice(0, cut), channels.slice(cut)];
+  const sides = runs.map((run) => {
+    const span = run[run.length - 1]!.channel - run[0]!.channel + 1;
+    const side = Math.ceil(Math.sqrt(span));
+    return run.length >= LEAST_ALIVE * side * side && side <= MOST_SIDE ? side : 0;
+  });
+  const [side = 0, other = 0] = sides;
+  if (side < 2 || side !== other) return null;
+  const [first, second] = runs.map((run) => run[0]!.channel) as [number, number];
+  // Arrays that would overlap are one run with a hole.
+  if (first + side * side > second) return null;
+  return {
+    detector: tags({ signal: square(side, first), idler: square(side, second) }),
+    because: `Channels from ${first} and from ${second} on fit two arrays of ${side} × ${side}; correct it if the wiring differs.`,
+  };
+}
+
+function proposeTags(counts: readonly ChannelCount[]): DetectorProposal | null {
   const channels = counts.filter(({ count }) => count > 0).sort((a, b) => a.channel - b.channel);
   const [lowest, highest] = [channels[0], channels[channels.length - 1]];
   if (lowest === undefined || highest === undefined || channels.length < 2) return null;
@@ -105,7 +144,7 @@ function proposeTags(counts: readonly { channel: number; count: number }[]): Det
     if (withBucket && detector.kind === 'tags' && detector.bucket?.channel !== loudest.channel) continue;
     if (best === null || share > best.share) best = { share, build: () => proposal };
   }
-  return best === null ? null : best.build();
+  return proposeTwoRuns(channels) ?? (best === null ? null : best.build());
 }
 
 /** A detector map guessed from the channels seen; null when no plain arrangement fits. */

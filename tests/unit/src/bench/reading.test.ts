@@ -53,6 +53,16 @@ describe('the detector proposed from channels', () => {
     expect(seen([4, 5])?.detector).toMatchObject({ signal: { width: 1 }, idler: { firstChannel: 5 } });
   });
 
+  it('is two arrays where the channels lie in two runs, and one where they fill one square', () => {
+    expect(seen([...range(100, 163), ...range(200, 263)])?.detector).toMatchObject({
+      signal: { width: 8, height: 8, firstChannel: 100 },
+      idler: { width: 8, height: 8, firstChannel: 200 },
+    });
+    const one = seen(range(0, 63))?.detector;
+    expect(one).toMatchObject({ signal: { width: 8, height: 8, firstChannel: 0 } });
+    expect(one).not.toHaveProperty('idler');
+  });
+
   it('is a bucket and an array when one channel at an end is loud', () => {
     expect(seen(range(0, 256), 256)?.detector).toMatchObject({
       bucket: { channel: 256 },
