@@ -129,7 +129,7 @@ function projection(
   return fit === null ? map : { ...map, model: fold(fit.fit.peak) };
 }
 
-/** Two-dimensional; the tally keeps idler minus signal. */
+/** Two-dimensional. The tally keeps idler minus signal; shown is signal minus idler, as along one axis. */
 function planarMap(request: TagMapsRequest, what: 'difference' | 'sum'): MapData {
   const { tally } = request.count;
   const { a, b } = tally;
@@ -138,11 +138,14 @@ function planarMap(request: TagMapsRequest, what: 'difference' | 'sum'): MapData
   const symbol = request.scale.symbol;
   const sign = what === 'difference' ? '-' : '+';
   const first = (na: number, nb: number): number =>
-    what === 'difference' ? (na - nb) / 2 - (na - 1) : -(na + nb - 2) / 2;
+    what === 'difference' ? (nb - na) / 2 - (nb - 1) : -(na + nb - 2) / 2;
   const label = (axis: AxisName): string => {
     const name = symbol === 'x' ? axis : `k_${axis}`;
-    return what === 'difference' ? `${name} idler ${sign} signal` : `${name} signal ${sign} idler`;
+    return `${name} signal ${sign} idler`;
   };
+  const net = netOf(tally.prompt[what], tally.shifted[what], tally.window.shiftsTick.length);
+  // Turning both axes round is reading the bins backwards.
+  const turned = what === 'sum' ? net : { data: net.data.toReversed(), sigma: net.sigma.toReversed() };
   return {
     label: what === 'difference' ? 'Difference coordinate' : 'Sum coordinate',
     shape: [ny, nx],
@@ -152,7 +155,7 @@ function planarMap(request: TagMapsRequest, what: 'difference' | 'sum'): MapData
     ],
     unit: 'pairs',
     scale: 'signed',
-    ...netOf(tally.prompt[what], tally.shifted[what], tally.window.shiftsTick.length),
+    ...turned,
   };
 }
 

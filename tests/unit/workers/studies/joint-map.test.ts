@@ -61,6 +61,17 @@ describe('Joint map', () => {
     const sum = (values: Float64Array) => values.reduce((a, b) => a + b, 0);
     expect(sum(output.maps['minus.x']!.data)).toBeCloseTo(sum(joint.data), 6);
     expect(sum(output.maps.difference!.data)).toBeCloseTo(sum(joint.data), 6);
+    // Planar map and projection run the same way: signal minus idler.
+    const planar = output.maps.difference!;
+    const line = output.maps['minus.x']!;
+    const { start, step } = line.axes[0]!;
+    expect(planar.axes[0]).toMatchObject({ start, step });
+    const [rows, columns] = planar.shape as [number, number];
+    line.data.forEach((value, x) => {
+      let column = 0;
+      for (let y = 0; y < rows; y++) column += planar.data[y * columns + x]!;
+      expect(column).toBeCloseTo(value, 6);
+    });
     expect(Math.abs(sum(output.maps['minus.x']!.model!) / sum(joint.data) - 1)).toBeLessThan(0.02);
   });
 
