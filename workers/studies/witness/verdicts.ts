@@ -69,9 +69,8 @@ export function verdictOf(judged: Judged, context: VerdictContext): Verdict | nu
 }
 
 function calibrationWords(systematic: number): string {
-  const scale = 'Standard deviations are those of counting, on the logarithmic scale';
-  if (!(systematic > 0)) return `${scale}.`;
-  return `${scale}; the calibrations add ${(100 * systematic).toFixed(1)} % to the product, which is not in them.`;
+  const scale = 'Errors of counting only, significance on the logarithmic scale';
+  return systematic > 0 ? `${scale}; the calibrations add ${(100 * systematic).toFixed(1)} %.` : `${scale}.`;
 }
 
 function assumptionsOf(what: Subtraction, bounded: boolean): string {
