@@ -1,9 +1,7 @@
-import { copyFileSync, mkdtempSync, readFileSync, rmSync, truncateSync, writeFileSync } from 'node:fs';
-import { tmpdir } from 'node:os';
+import { copyFileSync, readFileSync, truncateSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
-import type { Browser, Page } from 'playwright-core';
+import type { Page } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { openBrowser, openPage, type Visit } from './support/browser';
 import {
   chooseStudy,
   openFiles,
@@ -14,33 +12,23 @@ import {
   waitUntilDone,
   withoutSignInNotice,
 } from './support/person';
-import { type BuiltServer, startBuiltServer } from './support/server';
+import { openScene, type Scene } from './support/scene';
 
 /** The bench under the hand: bad files beside good ones, the brush, the slice, undo, cancel. */
-let server: BuiltServer;
-let browser: Browser;
-let visit: Visit;
+let scene: Scene;
 let page: Page;
-let dir = '';
 
 beforeAll(async () => {
-  dir = mkdtempSync(join(tmpdir(), 'gemel-bench-'));
-  server = await startBuiltServer();
-  browser = await openBrowser();
-  visit = await openPage(browser, server.url);
-  page = visit.page;
+  scene = await openScene();
+  page = scene.page;
   await signIn(page);
   await openSamples(page);
   await waitUntilDone(page);
 });
-afterAll(async () => {
-  await browser?.close();
-  await server?.close();
-  rmSync(dir, { recursive: true, force: true });
-});
+afterAll(() => scene.close());
 
 describe('bad input', () => {
-  const path = (name: string): string => join(dir, name);
+  const path = (name: string): string => join(scene.dir, name);
   const cases: [string, () => void, RegExp][] = [
     ['empty.h5', () => writeFileSync(path('empty.h5'), ''), /no bytes|empty/],
     ['notes.h5', () => writeFileSync(path('notes.h5'), 'time,channel\n12,3\n15,4\n'), /text/],
@@ -136,5 +124,5 @@ describe('the plots are instruments', () => {
 });
 
 it('met no script error, no console error and no broken content security policy', () => {
-  expect(withoutSignInNotice(visit.faults)).toEqual([]);
+  expect(withoutSignInNotice(scene.faults)).toEqual([]);
 });

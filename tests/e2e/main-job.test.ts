@@ -1,11 +1,9 @@
 import AxeBuilder from '@axe-core/playwright';
-import type { Browser } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import { resultRowSchema } from '../../shared/contracts/http';
 import { type ResultFile, resultFileSchema } from '../../shared/contracts/result';
 import { type NodeEngine, startNodeEngine } from '../../workers/entries/node-engine';
 import { verb } from '../cli/gemel';
-import { openBrowser, openPage, type Visit } from './support/browser';
 import {
   fetchResult,
   openSamples,
@@ -16,31 +14,24 @@ import {
   waitUntilDone,
   withoutSignInNotice,
 } from './support/person';
-import { type BuiltServer, startBuiltServer } from './support/server';
+import { openScene, type Scene } from './support/scene';
 
 /** The main job, as a stranger meets it: one server, one browser, one story told in order. */
-let server: BuiltServer;
-let browser: Browser;
-let visit: Visit;
+let scene: Scene;
 let stored: ResultFile;
 let resultId = '';
 let shownRow = '';
 
 beforeAll(async () => {
-  server = await startBuiltServer();
-  browser = await openBrowser();
-  visit = await openPage(browser, server.url);
+  scene = await openScene();
 });
-afterAll(async () => {
-  await browser?.close();
-  await server?.close();
-});
+afterAll(() => scene.close());
 
 /** WCAG 2.2 AA with all it builds on; the size of targets is off by default. */
 const wcag22aa = ['wcag2a', 'wcag2aa', 'wcag21a', 'wcag21aa', 'wcag22aa'];
 
 async function expectAccessible(where: string): Promise<void> {
-  const { violations } = await new AxeBuilder({ page: visit.page }).withTags(wcag22aa).analyze();
+  const { violations } = await new AxeBuilder({ page: scene.page }).withTags(wcag22aa).analyze();
   const found = violations.map((each) => `${each.id}: ${each.nodes.map((node) => node.target).join(' | ')}`);
   expect(found, `axe on ${where}`).toEqual([]);
 }
@@ -56,15 +47,15 @@ function expectTwelveDigits(there: number | null, here: number | null, what: str
 
 describe('from a fresh data directory to a witness that is still there after a restart', () => {
   it('signs in with the demo sign-in', async () => {
-    await visit.page.goto('/');
-    await visit.page.getByRole('button', { name: 'Use the demo sign-in' }).waitFor();
+    await scene.page.goto('/');
+    await scene.page.getByRole('button', { name: 'Use the demo sign-in' }).waitFor();
     await expectAccessible('sign-in');
-    await signIn(visit.page);
+    await signIn(scene.page);
     await expectAccessible('home');
   });
 
   it('opens the samples in one click and shows the witness with its significance', async () => {
-    const { page } = visit;
+    const { page } = scene;
     await openSamples(page);
     await waitUntilDone(page);
     shownRow = await quantityRow(page, 'reid.x');
@@ -77,7 +68,7 @@ describe('from a fresh data directory to a witness that is still there after a r
   });
 
   it('saves result, preset and session', async () => {
-    const { page } = visit;
+    const { page } = scene;
     await saveAs(page, 'preset', 'Our witness');
     await saveAs(page, 'session', 'Night run');
     await saveAs(page, 'result', 'Witness of the night');
@@ -86,8 +77,8 @@ describe('from a fresh data directory to a witness that is still there after a r
   });
 
   it('shows the same number on the result page after a restart of the server', async () => {
-    const { page } = visit;
-    await server.restart();
+    const { page } = scene;
+    await scene.server.restart();
     await page.goto(`/results/${resultId}`);
     await page.getByRole('heading', { name: 'Witness of the night' }).waitFor();
     expect(await quantityRow(page, 'reid.x')).toBe(shownRow);
@@ -98,7 +89,7 @@ describe('from a fresh data directory to a witness that is still there after a r
   });
 
   it('finds session and preset again and comes to the same number', async () => {
-    const { page } = visit;
+    const { page } = scene;
     await page.goto('/');
     await page.getByRole('link', { name: /Night run/ }).click();
     await waitUntilDone(page);
@@ -141,6 +132,6 @@ describe('from a fresh data directory to a witness that is still there after a r
   });
 
   it('met no script error, no console error and no broken content security policy', () => {
-    expect(withoutSignInNotice(visit.faults)).toEqual([]);
+    expect(withoutSignInNotice(scene.faults)).toEqual([]);
   });
 });

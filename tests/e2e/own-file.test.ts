@@ -1,15 +1,12 @@
 import { execFileSync } from 'node:child_process';
-import { mkdtempSync, rmSync } from 'node:fs';
-import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import type { Browser, Locator } from 'playwright-core';
+import type { Locator } from 'playwright-core';
 import { afterAll, beforeAll, expect, it } from 'vitest';
 import { resultRowSchema } from '../../shared/contracts/http';
 import { mapFileSchema } from '../../shared/contracts/result';
 import { decodeMap } from '../../shared/contracts/result-codec';
 import { z } from '../../shared/util/zod';
 import { findPythonWithH5py } from '../support/tools';
-import { openBrowser, openPage, type Visit } from './support/browser';
 import {
   chooseStudy,
   fetchResult,
@@ -20,25 +17,16 @@ import {
   waitUntilDone,
   withoutSignInNotice,
 } from './support/person';
-import { type BuiltServer, root, startBuiltServer } from './support/server';
+import { openScene, type Scene } from './support/scene';
+import { root } from './support/server';
 
 /** A file the user brings: written by h5py, named by nobody here, mapped through the reading dialog. */
-let server: BuiltServer;
-let browser: Browser;
-let visit: Visit;
-let dir = '';
+let scene: Scene;
 
 beforeAll(async () => {
-  dir = mkdtempSync(join(tmpdir(), 'gemel-own-'));
-  server = await startBuiltServer();
-  browser = await openBrowser();
-  visit = await openPage(browser, server.url);
+  scene = await openScene();
 });
-afterAll(async () => {
-  await browser?.close();
-  await server?.close();
-  rmSync(dir, { recursive: true, force: true });
-});
+afterAll(() => scene.close());
 
 const truthSchema = z.object({
   tickPs: z.number(),
@@ -64,19 +52,19 @@ async function fillArm(dialog: Locator, arm: string, firstChannel: number): Prom
 
 async function choose(dialog: Locator, label: string, option: string | RegExp): Promise<void> {
   await dialog.getByLabel(label, { exact: true }).click();
-  await visit.page.getByRole('option', { name: option }).first().click();
+  await scene.page.getByRole('option', { name: option }).first().click();
 }
 
 it('gives the map that was put into the file', async () => {
   const python = findPythonWithH5py();
   expect(python, 'install python3-h5py').not.toBeNull();
-  const path = join(dir, 'night-12.h5');
+  const path = join(scene.dir, 'night-12.h5');
   const printed = execFileSync(python!, [join(root, 'tests/e2e/support/own-file.py'), path], {
     encoding: 'utf8',
   });
   const truth = truthSchema.parse(JSON.parse(printed));
 
-  const { page } = visit;
+  const { page } = scene;
   await signIn(page);
   await page.getByRole('link', { name: 'Bench', exact: true }).click();
   await openFiles(page, [path]);
@@ -133,5 +121,5 @@ it('gives the map that was put into the file', async () => {
       expect(Math.abs(value - mean), `${id} ${i}`).toBeLessThan(5 * Math.sqrt(mean * (1 - kept)) + 1e-9);
     });
   }
-  expect(withoutSignInNotice(visit.faults)).toEqual([]);
+  expect(withoutSignInNotice(scene.faults)).toEqual([]);
 });

@@ -11,15 +11,17 @@ import { ensureTools } from './tools';
 interface Tally {
   passed: number;
   failed: number;
+  notRun: number;
 }
 
-const total: Tally = { passed: 0, failed: 0 };
+const total: Tally = { passed: 0, failed: 0, notRun: 0 };
 const failures: string[] = [];
 const scratch = mkdtempSync(join(tmpdir(), 'gemel-test-'));
 
 function add(name: string, tally: Tally): void {
   total.passed += tally.passed;
   total.failed += tally.failed;
+  total.notRun += tally.notRun;
   if (tally.failed > 0) failures.push(`${name}: ${tally.failed} failed`);
 }
 
@@ -27,7 +29,7 @@ function add(name: string, tally: Tally): void {
 function step(name: string, command: string, args: readonly string[]): boolean {
   console.log(`\n== ${name}`);
   const ok = spawnSync(command, args, { stdio: 'inherit' }).status === 0;
-  add(name, ok ? { passed: 1, failed: 0 } : { passed: 0, failed: 1 });
+  add(name, { passed: ok ? 1 : 0, failed: ok ? 0 : 1, notRun: 0 });
   return ok;
 }
 
@@ -55,18 +57,25 @@ function readReport(path: string): Tally {
       'numPassedTests' in report &&
       'numFailedTests' in report
     ) {
-      return { passed: Number(report.numPassedTests), failed: Number(report.numFailedTests) };
+      return {
+        passed: Number(report.numPassedTests),
+        failed: Number(report.numFailedTests),
+        notRun: 'numPendingTests' in report ? Number(report.numPendingTests) : 0,
+      };
     }
   } catch (thrown) {
     console.error(`No report of the tests was written: ${String(thrown)}`);
   }
-  return { passed: 0, failed: 1 };
+  return { passed: 0, failed: 1, notRun: 0 };
 }
 
 function finish(): never {
   rmSync(scratch, { recursive: true, force: true });
   console.log('');
   for (const line of failures) console.log(line);
+  if (total.notRun > 0) {
+    console.log(`${total.notRun} not run; the reason is printed above.`);
+  }
   console.log(`${total.passed} passed, ${total.failed} failed`);
   process.exit(total.failed === 0 ? 0 : 1);
 }
@@ -75,7 +84,7 @@ try {
   ensureTools();
 } catch (thrown) {
   console.error(thrown instanceof Error ? thrown.message : String(thrown));
-  add('tools', { passed: 0, failed: 1 });
+  add('tools', { passed: 0, failed: 1, notRun: 0 });
   finish();
 }
 for (const room of ['shared', 'workers', 'server', 'src', 'tests']) {

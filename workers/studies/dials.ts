@@ -1,3 +1,4 @@
+import type { Arm } from '../../shared/contracts/detector';
 import type { DialSpec, DialValue, DialValues, Region } from '../../shared/contracts/dial';
 import type { StudyInfo } from '../../shared/contracts/study';
 import { Problem } from '../../shared/errors/problem';
@@ -192,6 +193,32 @@ export const deadTimeDial: DialSpec = {
   step: 5,
   auto: false,
 };
+
+/** Darks are measured apart: nothing in a run tells them from fluorescence. */
+export const darkDial = (arm: Arm): DialSpec => ({
+  id: `dark.${arm}`,
+  label: `Darks of the ${arm} arm`,
+  reason: `Darks and background of the ${arm} arm, measured with the crystal detuned for as long as this run; taken off where it heralds.`,
+  needs: 'finish',
+  for: 'tags',
+  type: 'number',
+  unit: '1/s',
+  default: 0,
+  min: 0,
+  max: 1e9,
+  step: 100,
+  auto: false,
+});
+
+/** What every study of time tags asks for: where the pairs are, and how accidentals are counted. */
+export const pairTagDials: readonly DialSpec[] = [
+  delayDial,
+  windowDial,
+  histogramRangeDial,
+  histogramBinDial,
+  shiftStepDial,
+  shiftCountDial,
+];
 
 export const resamplesDial: DialSpec = {
   id: 'resamples',

@@ -15,6 +15,16 @@ export const proposalBytes = 2 ** 18;
 /** Splits without markers are many, and tell themselves apart sooner. */
 const plainBytes = 2 ** 16;
 
+/** What every proposal takes for granted, because bytes do not tell. */
+const unknownFromBytes = {
+  version: 1,
+  format: 'records',
+  kind: 'tags',
+  headerBytes: 0,
+  skip: [],
+  tickFs: FS_PER_PS,
+} satisfies Partial<RecordsLayout>;
+
 const tickWarning =
   'The length of a tick cannot be known from such bytes: 1 ps is proposed, set the one of your time tagger.';
 
@@ -28,19 +38,7 @@ export function proposeRecords(sample: Uint8Array, size: number): RecordsProposa
   // Shorter fields may wrap after the sampled part: in ordered tags `wrap` is right whether they do or not.
   const rollover = time.bits < 64 ? ({ in: 'wrap' } as const) : ({ in: 'none' } as const);
   return {
-    layout: {
-      version: 1,
-      format: 'records',
-      kind: 'tags',
-      recordBytes,
-      byteOrder,
-      headerBytes: 0,
-      time,
-      channel,
-      rollover,
-      skip: [],
-      tickFs: FS_PER_PS,
-    },
+    layout: { ...unknownFromBytes, recordBytes, byteOrder, time, channel, rollover },
     because: because(guess),
     warnings: [
       tickWarning,
@@ -59,17 +57,12 @@ function markedProposal(guess: MarkerGuess): RecordsProposal {
   const counted = wraps === 'time-field' ? 'holds how many periods passed' : 'stands for one period';
   return {
     layout: {
-      version: 1,
-      format: 'records',
-      kind: 'tags',
+      ...unknownFromBytes,
       recordBytes,
       byteOrder,
-      headerBytes: 0,
       time,
       channel,
       rollover: { in: 'marker', when: [{ field: flag, equals: 1 }], advanceTick: 2 ** time.bits, wraps },
-      skip: [],
-      tickFs: FS_PER_PS,
     },
     because: `Read as ${orderName(byteOrder)} records of ${recordBytes} bytes, bits ${bitRange(time)} fall only across the ${markers} of the first ${records} records whose bit ${flag.firstBit} is set, and bits ${bitRange(channel)} hold ${channels} values up to ${lastChannel}.`,
     warnings: [

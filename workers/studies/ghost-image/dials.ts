@@ -1,14 +1,5 @@
 import type { DialSpec } from '../../../shared/contracts/dial';
-import {
-  deadTimeDial,
-  delayDial,
-  histogramBinDial,
-  histogramRangeDial,
-  resamplesDial,
-  shiftCountDial,
-  shiftStepDial,
-  windowDial,
-} from '../dials';
+import { darkDial, deadTimeDial, pairTagDials, resamplesDial } from '../dials';
 
 const openDial: DialSpec = {
   id: 'region.open',
@@ -30,31 +21,11 @@ const closedDial: DialSpec = {
   default: null,
 };
 
-const bucketDarkDial: DialSpec = {
-  id: 'dark.bucket',
-  label: 'Darks of the bucket',
-  reason:
-    'Darks and background of the bucket, measured with the crystal detuned for as long as this run; taken off where the bucket heralds.',
-  needs: 'finish',
-  type: 'number',
-  unit: '1/s',
-  default: 0,
-  min: 0,
-  max: 1e9,
-  step: 100,
-  auto: false,
-};
-
 export const ghostImageDials: readonly DialSpec[] = [
-  delayDial,
-  windowDial,
-  histogramRangeDial,
-  histogramBinDial,
-  shiftStepDial,
-  shiftCountDial,
+  ...pairTagDials,
   openDial,
   closedDial,
-  bucketDarkDial,
+  darkDial('bucket'),
   deadTimeDial,
   resamplesDial,
 ];
