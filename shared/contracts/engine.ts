@@ -28,8 +28,27 @@ export interface SourceRef {
   key?: string;
 }
 
+/** A second file of the same acquisition, written by a tagger whose clock runs on its own. */
+export interface Companion {
+  source: SourceRef;
+  layout: Layout;
+  /** Added to its channels, so that one detector map names the channels of both files. */
+  channelOffset: number;
+  /**
+   * Its clock against that of the main file: t_main = t_companion * (1 + drift) + offsetPs. null: found by
+   * cross-correlation before counting.
+   */
+  clock: { offsetPs: number; drift: number } | null;
+}
+
 export interface RunInput {
   source: SourceRef;
+  /**
+   * Files that go on where `source` ends, in this order: one acquisition in several files of one layout. Left out or
+   * empty: a single file.
+   */
+  following?: readonly SourceRef[];
+  companion?: Companion;
   layout: Layout;
   detector: Detector;
   plane: Plane | null;
@@ -43,6 +62,7 @@ export interface RunRequest {
   seed: number;
 }
 
+/** One entry a file: the files of a sequence follow each other under one name, a companion comes last. */
 export interface InputProvenance {
   name: string;
   fileName: string;

@@ -73,10 +73,73 @@ export const recordsLayoutSchema = z.strictObject({
   tickFs,
 });
 
-export const layoutSchema = z.union([hdf5TagsLayoutSchema, hdf5FramesLayoutSchema, recordsLayoutSchema]);
+/** A column of integers in NumPy files: a 1-D array, a field of a structured one, or a column of an (n, 2..16) array. */
+export const arrayColumnSchema = z.strictObject({
+  /** Name of the array in an NPZ archive (without ".npy"); left out for an NPY file. */
+  array: z.string().min(1).max(1000).optional(),
+  /** Field name, or column index of a 2-D array. */
+  field: z.union([z.string().min(1), z.int().min(0).max(15)]).optional(),
+});
+export type ArrayColumn = z.infer<typeof arrayColumnSchema>;
+
+export const npyTagsLayoutSchema = z.strictObject({
+  version: z.literal(1),
+  format: z.literal('npy'),
+  kind: z.literal('tags'),
+  time: arrayColumnSchema,
+  channel: arrayColumnSchema,
+  tickFs,
+});
+
+export const npyFramesLayoutSchema = z.strictObject({
+  version: z.literal(1),
+  format: z.literal('npy'),
+  kind: z.literal('frames'),
+  /** As in `arrayColumnSchema`. */
+  array: z.string().min(1).max(1000).optional(),
+});
+
+/** Every page is a frame; all must have one size and one sample type. */
+export const tiffLayoutSchema = z.strictObject({
+  version: z.literal(1),
+  format: z.literal('tiff'),
+  kind: z.literal('frames'),
+});
+
+/** One tag a line. */
+export const textLayoutSchema = z.strictObject({
+  version: z.literal(1),
+  format: z.literal('text'),
+  kind: z.literal('tags'),
+  /** `space`: any run of blanks. */
+  delimiter: z.enum(['comma', 'semicolon', 'tab', 'space']),
+  decimal: z.enum(['point', 'comma']),
+  /** Lines before the first tag; lines beginning with # are passed over anywhere. */
+  headerLines: z.int().min(0).max(1000),
+  timeColumn: z.int().min(0).max(255),
+  channelColumn: z.int().min(0).max(255),
+  /** Femtoseconds that 1 in the time column stands for: 1e15 for seconds, the tick length for whole ticks. */
+  timeUnitFs: z.number().positive().max(1e18),
+  /** Times are rounded to whole ticks of this length. */
+  tickFs,
+});
+
+export const layoutSchema = z.union([
+  hdf5TagsLayoutSchema,
+  hdf5FramesLayoutSchema,
+  recordsLayoutSchema,
+  npyTagsLayoutSchema,
+  npyFramesLayoutSchema,
+  tiffLayoutSchema,
+  textLayoutSchema,
+]);
 
 export type Hdf5TagsLayout = z.infer<typeof hdf5TagsLayoutSchema>;
 export type Hdf5FramesLayout = z.infer<typeof hdf5FramesLayoutSchema>;
 export type RecordsLayout = z.infer<typeof recordsLayoutSchema>;
+export type NpyTagsLayout = z.infer<typeof npyTagsLayoutSchema>;
+export type NpyFramesLayout = z.infer<typeof npyFramesLayoutSchema>;
+export type TiffLayout = z.infer<typeof tiffLayoutSchema>;
+export type TextLayout = z.infer<typeof textLayoutSchema>;
 export type Layout = z.infer<typeof layoutSchema>;
 export type FormatId = Layout['format'];

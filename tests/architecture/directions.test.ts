@@ -16,7 +16,13 @@ const allowed: Record<string, readonly string[]> = {
   'workers/formats': ['shared'],
   'workers/accumulators': ['workers/kernels', 'shared'],
   'workers/studies': ['workers/accumulators', 'workers/kernels', 'shared'],
-  'workers/pipeline': ['workers/formats', 'workers/studies', 'workers/accumulators', 'shared'],
+  'workers/pipeline': [
+    'workers/formats',
+    'workers/studies',
+    'workers/accumulators',
+    'workers/kernels',
+    'shared',
+  ],
   'workers/simulate': ['shared'],
   'workers/entries': [
     'workers/pipeline',

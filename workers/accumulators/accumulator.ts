@@ -1,6 +1,7 @@
 import type { Block } from '../../shared/contracts/blocks';
 import type { Tally, TallySpec } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
+import { type CompiledKernels, NO_COMPILED_KERNELS } from './compiled-kernels';
 import { createFrameAccumulator, frameAccumulatorFromPart } from './frame-accumulator';
 import type { FramePart } from './frame-part';
 import { createTagAccumulator, tagAccumulatorFromPart } from './tag-accumulator';
@@ -24,8 +25,14 @@ export interface Accumulator {
   toPart(): Part;
 }
 
-export function createAccumulator(spec: TallySpec): Accumulator {
-  return spec.kind === 'tags' ? createTagAccumulator(spec) : createFrameAccumulator(spec);
+/** With compiled kernels the counts are the same and come faster. */
+export function createAccumulator(
+  spec: TallySpec,
+  kernels: CompiledKernels = NO_COMPILED_KERNELS,
+): Accumulator {
+  return spec.kind === 'tags'
+    ? createTagAccumulator(spec, kernels.tags)
+    : createFrameAccumulator(spec, kernels.frames);
 }
 
 /** @throws Problem when the part is newer than this engine or does not belong to the specification. */

@@ -3,6 +3,7 @@ import type { FrameSpec, FrameTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
 import { FrameSpectra } from '../kernels/frame-spectra';
 import { addDiagonal, addOuter, projectFrame, subtract, takeFrame } from '../kernels/frame-sums';
+import type { FrameWasm } from '../kernels/frame-wasm';
 import { assertFramePart, type BlockSums, type FramePart, type Segment } from './frame-part';
 import { addInto } from './pair-store';
 
@@ -316,7 +317,7 @@ function notNumber(image: Float64Array, width: number, frame: number): Problem {
   );
 }
 
-export function createFrameAccumulator(spec: FrameSpec): FrameAccumulator {
+export function createFrameAccumulator(spec: FrameSpec, _kernels: FrameWasm | null = null): FrameAccumulator {
   return new FrameAccumulator(spec);
 }
 

@@ -4,6 +4,7 @@ import { Problem } from '../../shared/errors/problem';
 import { TagColumns } from '../kernels/tag-columns';
 import { scanBetween, scanHistogram, scanWindows } from '../kernels/tag-scan';
 import { firstAtLeast, sortTags } from '../kernels/tag-sort';
+import type { TagWasm } from '../kernels/tag-wasm';
 import { addInto } from './pair-store';
 import { SliceGrid, SliceRing, sliceEnd, slotOf } from './slice-grid';
 import {
@@ -291,7 +292,7 @@ function interleave(a: Float64Array, b: Float64Array): Float64Array {
   return both;
 }
 
-export function createTagAccumulator(spec: TagSpec): TagAccumulator {
+export function createTagAccumulator(spec: TagSpec, _kernels: TagWasm | null = null): TagAccumulator {
   return new TagAccumulator(spec);
 }
 

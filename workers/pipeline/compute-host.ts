@@ -8,10 +8,12 @@ import { createAccumulator } from '../accumulators/accumulator';
 import { inspectSource, openReader } from '../formats/registry';
 import { answer } from './answer';
 import type { ComputeHost, OnTaskProgress } from './compute';
+import { type CompileKernels, loadKernels } from './kernels';
 
 export interface ComputePlatform {
   openSource(ref: SourceRef): Promise<ByteSource>;
   environment: ReaderEnvironment;
+  compileKernels: CompileKernels;
 }
 
 /** Opened readers kept between tasks: opening HDF5 costs tens of milliseconds, and a file is read in many tasks. */
@@ -27,6 +29,7 @@ interface OpenReader {
 }
 
 export function createComputeHost(platform: ComputePlatform): ComputeHost {
+  const kernels = loadKernels(platform.compileKernels);
   const open: OpenReader[] = [];
   const tokens = new Map<string, { cancelled: boolean }>();
 
@@ -79,7 +82,7 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
     count: (task, onProgress) =>
       asTask(task.taskId, async (token) => {
         const reader = await readerFor(task.source, task.layout);
-        const accumulator = createAccumulator(task.spec);
+        const accumulator = createAccumulator(task.spec, await kernels);
         const report = createReport(onProgress);
         const offset = await reader.tickOffsetAt(task.range.start, token);
         for await (const block of reader.read(task.range, offset, token)) {

@@ -1,6 +1,6 @@
 import type { Detector } from '../../../shared/contracts/detector';
 import type { InspectionFacts } from '../../../shared/contracts/engine';
-import type { BitField, Column, Layout } from '../../../shared/contracts/layout';
+import type { ArrayColumn, BitField, Column, Layout } from '../../../shared/contracts/layout';
 import type { Plane } from '../../../shared/contracts/plane';
 import { FS_PER_PS } from '../../../shared/units/ticks';
 import { formatCount, formatPlain, formatWithSigma } from '../../lib/format-number';
@@ -33,9 +33,27 @@ export function columnWords({ dataset, field }: Column): string {
   return typeof field === 'number' ? `${dataset} column ${field}` : `${dataset} · ${field}`;
 }
 
+export function arrayWords({
+  array,
+  field,
+}: {
+  array?: string | undefined;
+  field?: ArrayColumn['field'];
+}): string {
+  return columnWords({ dataset: array ?? 'the array', field });
+}
+
 export function layoutWords(layout: Layout): string {
   if (layout.format === 'records') {
     return `records · ${layout.recordBytes} bytes ${layout.byteOrder} · time ${bitWords(layout.time)}, channel ${bitWords(layout.channel)} · ${tickWords(layout.tickFs)}`;
+  }
+  if (layout.format === 'tiff') return 'TIFF frames';
+  if (layout.format === 'text') {
+    return `text · ${layout.delimiter} between columns · time column ${layout.timeColumn + 1}, channel column ${layout.channelColumn + 1} · ${tickWords(layout.tickFs)}`;
+  }
+  if (layout.format === 'npy') {
+    if (layout.kind === 'frames') return `NumPy frames · ${arrayWords({ array: layout.array })}`;
+    return `NumPy tags · ${arrayWords(layout.time)}, ${arrayWords(layout.channel)} · ${tickWords(layout.tickFs)}`;
   }
   if (layout.kind === 'frames') return `HDF5 frames · ${layout.dataset}`;
   return `HDF5 tags · ${columnWords(layout.time)}, ${columnWords(layout.channel)} · ${tickWords(layout.tickFs)}`;

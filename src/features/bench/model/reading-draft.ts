@@ -111,7 +111,7 @@ export function draftReading(
   const tagDetector = detector?.kind === 'tags' ? detector : null;
   const frameDetector = detector?.kind === 'frames' ? detector : null;
   const tickFs = records?.tickFs ?? tags?.tickFs;
-  const framesLayout = layout?.kind === 'frames' ? layout : null;
+  const framesLayout = layout?.format === 'hdf5' && layout.kind === 'frames' ? layout : null;
   return {
     format: framesLayout ? 'hdf5-frames' : records || (layout === null && !isHdf5) ? 'records' : 'hdf5-tags',
     time: tags?.time ?? null,

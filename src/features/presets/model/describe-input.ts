@@ -34,6 +34,24 @@ export function describeLayout(layout: Layout): string[] {
       `${describeTick(layout.tickFs)}, ${rollover}`,
     ];
   }
+  if (layout.format === 'tiff') return ['frames in the pages of a TIFF file'];
+  if (layout.format === 'text') {
+    return [
+      `time tags in text, ${layout.delimiter} between columns, decimal ${layout.decimal}`,
+      `time in column ${layout.timeColumn + 1}, channel in column ${layout.channelColumn + 1}`,
+      describeTick(layout.tickFs),
+    ];
+  }
+  if (layout.format === 'npy') {
+    if (layout.kind === 'frames')
+      return [`frames in a NumPy array${layout.array ? `, ${layout.array}` : ''}`];
+    return [
+      'time tags in NumPy arrays',
+      `time in ${describeColumn({ dataset: layout.time.array ?? 'the array', field: layout.time.field })}`,
+      `channel in ${describeColumn({ dataset: layout.channel.array ?? 'the array', field: layout.channel.field })}`,
+      describeTick(layout.tickFs),
+    ];
+  }
   if (layout.kind === 'frames') return [`frames in an HDF5 dataset, ${layout.dataset}`];
   return [
     'time tags in HDF5 datasets',
