@@ -2,7 +2,7 @@ import type { InspectionFacts } from '../../shared/contracts/engine';
 import type { Reader } from '../../shared/contracts/reader';
 import { tickSpanToSeconds } from '../../shared/units/ticks';
 
-const firstShown = 12;
+const firstShown = 20;
 
 type TagFacts = Extract<InspectionFacts, { kind: 'tags' }>;
 

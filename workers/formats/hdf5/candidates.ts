@@ -1,13 +1,12 @@
 import { Problem } from '../../../shared/errors/problem';
+import { type ColumnScores, scoreColumn } from '../column-scores';
+import { type NumberType, roundedDoubles } from '../numbers';
 import { type ColumnPlace, gatherColumn } from './columns';
-import { roundedDoubles } from './numbers';
-import { type DatasetEntry, type Hdf5Tree, type NumberType, rowBytesOf } from './tree';
+import { type DatasetEntry, type Hdf5Tree, rowBytesOf } from './tree';
 
-/** A column of integers that may be time or channel. Scores above 0 are credible, 1 to 2 likely. */
-export interface Candidate extends ColumnPlace {
+/** A column of integers that may be time or channel. */
+export interface Candidate extends ColumnPlace, ColumnScores {
   field: string | number | undefined;
-  timeScore: number;
-  channelScore: number;
 }
 
 const mostCandidates = 200;
@@ -31,7 +30,7 @@ export function candidatesOf(tree: Hdf5Tree): { candidates: Candidate[]; warning
       const place: ColumnPlace = { dataset, rows, rowBytes: rowBytesOf(dataset), offset, number };
       const values = roundedDoubles(gatherColumn(sample, place), number);
       const name = typeof field === 'string' ? field : dataset.path.slice(dataset.path.lastIndexOf('/') + 1);
-      candidates.push({ ...place, field, ...scoresOf(values, number, name) });
+      candidates.push({ ...place, field, ...scoreColumn(values, number.bytes, name) });
     }
   }
   return { candidates, warnings };
@@ -69,56 +68,4 @@ function columnsIn({
   const columns = shape[1] ?? 0;
   if (shape.length !== 2 || columns < 2 || columns > 16) return [];
   return Array.from({ length: columns }, (_, field) => ({ field, offset: field * bytes, number }));
-}
-
-const timeName = /time|tick|stamp|arriv|toa/i;
-const channelName = /chan|^ch\d*$|pixel|pix|addr|detector|^det|^id$|site|input/i;
-
-function scoresOf(
-  values: Float64Array,
-  number: NumberType,
-  name: string,
-): { timeScore: number; channelScore: number } {
-  let kept = 0;
-  let rises = 0;
-  let lowest = values[0]!;
-  let highest = lowest;
-  const distinct = new Set<number>();
-  for (let i = 0; i < values.length; i += 1) {
-    const value = values[i]!;
-    if (i > 0 && value >= values[i - 1]!) kept += 1;
-    if (i > 0 && value > values[i - 1]!) rises += 1;
-    lowest = Math.min(lowest, value);
-    highest = Math.max(highest, value);
-    distinct.add(value);
-  }
-  const steps = Math.max(1, values.length - 1);
-  const ordered = values.length > 1 ? kept / steps : 1;
-  const isTimeNamed = timeName.test(name);
-  const isChannelNamed = channelName.test(name);
-  // Unordered columns are times only when they say so and range widely.
-  const isTime = highest > lowest || values.length === 1 || isTimeNamed;
-  const timeScore =
-    isTime && (ordered >= 0.75 || isTimeNamed)
-      ? ordered +
-        0.3 * (rises / steps) +
-        (number.bytes === 8 ? 0.2 : 0) +
-        (highest > 65535 ? 0.2 : 0) +
-        (isTimeNamed ? 0.3 : 0) -
-        (isChannelNamed ? 0.5 : 0)
-      : 0;
-  const isChannel = lowest >= 0 && highest <= 65535;
-  // A column that never changes is more likely a flag than a channel.
-  const isConstant = distinct.size === 1 && values.length > 1;
-  const repeats = isConstant ? 0 : 1 - distinct.size / values.length;
-  const channelScore = isChannel
-    ? 0.5 +
-      0.5 * repeats +
-      (number.bytes <= 2 ? 0.2 : 0) +
-      (isChannelNamed ? 0.3 : 0) -
-      (isTimeNamed ? 0.5 : 0) -
-      (isConstant ? 0.3 : 0) -
-      (ordered === 1 && distinct.size > 2 ? 0.4 : 0)
-    : 0;
-  return { timeScore, channelScore };
 }

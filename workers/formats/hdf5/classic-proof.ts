@@ -1,6 +1,6 @@
 /// <reference path="./jsfive.d.ts" />
 import type { Dataset } from 'jsfive';
-import type { NumberType } from './tree';
+import type { NumberType } from '../numbers';
 
 /** What the header of a dataset proves jsfive reads exactly. */
 export interface ProvenDataset {

@@ -2,9 +2,10 @@
 import type { Dataset, File, Group } from 'jsfive';
 import type { ByteSource } from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';
+import type { NumberType } from '../numbers';
 import { type ProvenDataset, proveDataset } from './classic-proof';
 import type { Superblock } from './superblock';
-import { absolutePath, type DatasetEntry, type Hdf5Tree, type NumberType, rowBytesOf } from './tree';
+import { absolutePath, type DatasetEntry, type Hdf5Tree, rowBytesOf } from './tree';
 
 /** Read whole into memory, so small ones only. */
 const mostBytes = 32 * 2 ** 20;

@@ -1,13 +1,7 @@
 import type { Column } from '../../../shared/contracts/layout';
 import { Problem } from '../../../shared/errors/problem';
-import {
-  absolutePath,
-  type DatasetEntry,
-  type Hdf5Tree,
-  type NumberType,
-  rowBytesOf,
-  typeName,
-} from './tree';
+import type { NumberType } from '../numbers';
+import { absolutePath, type DatasetEntry, type Hdf5Tree, rowBytesOf, typeName } from './tree';
 
 /** A column of integers inside the rows of a dataset. */
 export interface ColumnPlace {

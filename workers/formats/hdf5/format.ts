@@ -2,8 +2,8 @@ import type { DatasetFact, Inspection, InspectionFacts } from '../../../shared/c
 import type { Layout } from '../../../shared/contracts/layout';
 import type { ByteSource, Format, Reader } from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';
+import { summariseFrames } from '../frame-summary';
 import { summariseTags } from '../tag-summary';
-import { summariseFrames } from './frame-summary';
 import { openFrames } from './frames-reader';
 import { openTree } from './open-tree';
 import { proposeHdf5 } from './propose';

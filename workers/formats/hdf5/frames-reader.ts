@@ -2,12 +2,12 @@ import type { FrameBlock, PixelArray } from '../../../shared/contracts/blocks';
 import type { Hdf5FramesLayout } from '../../../shared/contracts/layout';
 import type { ByteSource, CancelToken, Reader, ReadRange } from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';
+import { exactDoubles, type NumberType, numberName, viewNumbers } from '../numbers';
 import { assertRange, bytesOfRange } from '../ranges';
 import { passTurn } from '../turn';
 import { nextEnd } from './chunks';
 import { findDataset } from './columns';
-import { exactDoubles, viewNumbers } from './numbers';
-import { type DatasetEntry, type Hdf5Tree, type NumberType, numberName, rowBytesOf, typeName } from './tree';
+import { type DatasetEntry, type Hdf5Tree, rowBytesOf, typeName } from './tree';
 
 /** Bytes of frames a block; at least one frame. */
 const mostBytes = 2 ** 23;

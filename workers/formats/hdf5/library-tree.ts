@@ -1,5 +1,6 @@
 import type { ByteSource, ReaderEnvironment } from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';
+import type { NumberType } from '../numbers';
 import {
   type H5Dataset,
   type H5Group,
@@ -14,7 +15,6 @@ import {
   type DatasetEntry,
   type ElementType,
   type Hdf5Tree,
-  type NumberType,
   type OutsideLink,
   rowBytesOf,
 } from './tree';

@@ -3,10 +3,10 @@ import type { Hdf5TagsLayout } from '../../../shared/contracts/layout';
 import type { ByteSource, CancelToken, Reader, ReadRange } from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';
 import { assertRange, bytesOfRange } from '../ranges';
+import { channelsOf, ticksOf } from '../tag-columns';
 import { passTurn } from '../turn';
 import { nextEnd } from './chunks';
 import { type ColumnPlace, gatherColumn, placeColumn } from './columns';
-import { channelsOf, ticksOf } from './tag-columns';
 import type { Hdf5Tree } from './tree';
 
 /** Records a block: at most a million, and rows of at most 16 MiB. */

@@ -1,3 +1,5 @@
+import { type NumberType, numberName } from '../numbers';
+
 /** What both HDF5 readers make of a file: a flat list of datasets whose rows can be read as little-endian bytes. */
 export interface Hdf5Tree {
   reader: 'jsfive' | 'h5wasm';
@@ -32,20 +34,11 @@ export type ElementType =
   | { kind: 'compound'; members: Member[]; bytes: number }
   | { kind: 'other'; name: string; bytes: number };
 
-export interface NumberType {
-  family: 'uint' | 'int' | 'float';
-  bytes: number;
-}
-
 export interface Member {
   name: string;
   offset: number;
   /** Null when the member is no plain number. */
   number: NumberType | null;
-}
-
-export function numberName({ family, bytes }: NumberType): string {
-  return `${family}${8 * bytes}`;
 }
 
 export function typeName(type: ElementType): string {

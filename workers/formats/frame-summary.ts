@@ -1,5 +1,5 @@
-import type { InspectionFacts } from '../../../shared/contracts/engine';
-import type { Reader } from '../../../shared/contracts/reader';
+import type { InspectionFacts } from '../../shared/contracts/engine';
+import type { Reader } from '../../shared/contracts/reader';
 
 /** Frames looked at by an inspection: up to this many, and about this many pixels. */
 const mostFrames = 64;

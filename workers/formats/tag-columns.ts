@@ -1,6 +1,5 @@
-import { Problem } from '../../../shared/errors/problem';
-import { viewNumbers, viewWordPairs } from './numbers';
-import type { NumberType } from './tree';
+import { Problem } from '../../shared/errors/problem';
+import { type NumberType, viewNumbers, viewWordPairs } from './numbers';
 
 /** Spread of the high words within one block: differences stay below 2^52. */
 const maxHighSpan = 2 ** 20 - 1;
@@ -18,7 +17,7 @@ export interface Ticks {
  */
 export function ticksOf(column: Uint8Array, number: NumberType, start: number): Ticks {
   if (number.bytes < 8) {
-    const deltaTick = Float64Array.from(viewNumbers(column, number).subarray(start));
+    const deltaTick = new Float64Array(viewNumbers(column, number).subarray(start));
     return { baseTick: 0n, deltaTick, end: start + deltaTick.length };
   }
   const words = viewWordPairs(column);

@@ -1,6 +1,14 @@
-import type { PixelArray } from '../../../shared/contracts/blocks';
-import { Problem } from '../../../shared/errors/problem';
-import type { NumberType } from './tree';
+import type { PixelArray } from '../../shared/contracts/blocks';
+import { Problem } from '../../shared/errors/problem';
+
+export interface NumberType {
+  family: 'uint' | 'int' | 'float';
+  bytes: number;
+}
+
+export function numberName({ family, bytes }: NumberType): string {
+  return `${family}${8 * bytes}`;
+}
 
 /** Little-endian bytes as numbers of up to 32 bits or floats; 64-bit integers have no such view. */
 export function viewNumbers(bytes: Uint8Array, { family, bytes: size }: NumberType): PixelArray {
