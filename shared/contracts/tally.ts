@@ -77,6 +77,8 @@ export interface TagSpec {
   histogram: { loTick: number; binTick: number; bins: number };
   /** null: histogram and singles only (the pass that looks for the delay). */
   window: { loTick: number; hiTick: number; shiftsTick: number[] } | null;
+  /** Keep every pair with tau in here, both ends included: windows and histograms inside it then need no bytes. */
+  keepPairs?: { minTauTick: number; maxTauTick: number };
 }
 
 export interface ArmSpec {

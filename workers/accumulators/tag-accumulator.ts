@@ -5,6 +5,7 @@ import { TagColumns } from '../kernels/tag-columns';
 import { scanBetween, scanHistogram, scanWindows } from '../kernels/tag-scan';
 import { firstAtLeast, sortTags } from '../kernels/tag-sort';
 import type { TagWasm } from '../kernels/tag-wasm';
+import { type KeptPart, PairKeeper } from './pair-cache-keeper';
 import { addInto } from './pair-store';
 import { SliceGrid, SliceRing, sliceEnd, slotOf } from './slice-grid';
 import {
@@ -42,6 +43,8 @@ export class TagAccumulator {
   readonly #histogram: Float64Array;
   readonly #windows: WindowCounter;
   readonly #scratch = new TagColumns();
+  /** null when no pairs are to be kept, or no longer all of them are. */
+  #keeper: PairKeeper | null;
   #head = createBorder();
   #tail = createBorder();
   #records = 0;
@@ -55,7 +58,8 @@ export class TagAccumulator {
     this.#grid = new SliceGrid(spec.tickFs);
     this.#singles = new Float64Array(this.#plan.sites);
     this.#histogram = new Float64Array(spec.histogram.bins);
-    this.#windows = new WindowCounter(spec);
+    this.#keeper = spec.keepPairs ? new PairKeeper(spec, spec.keepPairs) : null;
+    this.#windows = new WindowCounter(spec, this.#keeper);
   }
 
   /** Takes the next block of this range, whatever its length. */
@@ -78,6 +82,7 @@ export class TagAccumulator {
     sortTags(work, start, stop, this.#scratch);
     this.#cover(block.baseTick + BigInt(work.time[start]!), block.baseTick + BigInt(work.time[stop - 1]!));
     this.#countPerSlice(start, stop);
+    this.#keeper?.takeTags(work, start, stop, block.baseTick, this.#grid);
     offerToHead(this.#head, work, start, stop, block.baseTick);
     this.#pairBetween(this.#tail, start, work, start, stop);
     this.#pairWithin(start, stop);
@@ -105,6 +110,8 @@ export class TagAccumulator {
     this.#singlesPerSlice.addRing(next.#singlesPerSlice, doublings, first, count);
     this.#windows.prompt.addStore(next.#windows.prompt, doublings, first, count);
     this.#windows.shifted.addStore(next.#windows.shifted, doublings, first, count);
+    if (next.#keeper !== null) this.#keeper?.merge(next.#keeper, next.#grid, doublings);
+    else this.dropKept();
     const head = borderFromPart(borderToPart(next.#head));
     const tail = borderFromPart(borderToPart(next.#tail));
     if (this.#tags === 0) {
@@ -150,7 +157,19 @@ export class TagAccumulator {
       tally: this.tally(),
       head: borderToPart(this.#head),
       tail: borderToPart(this.#tail),
+      ...(this.#keeper === null ? {} : { kept: this.#keeper.toPart(this.#grid) }),
     };
+  }
+
+  /** What was kept beside the counts; null when `TagSpec.keepPairs` did not ask, or some of it was dropped. */
+  kept(): KeptPart | null {
+    return this.#keeper?.toPart(this.#grid) ?? null;
+  }
+
+  /** Keeps no pairs any more and forgets those at hand; the counts go on. */
+  dropKept(): void {
+    this.#keeper = null;
+    this.#windows.dropKeeper();
   }
 
   /** Fills an accumulator that has counted nothing yet. */
@@ -175,6 +194,8 @@ export class TagAccumulator {
     this.#windows.shifted.addTally(tally.shifted, first, count);
     this.#head = borderFromPart(part.head);
     this.#tail = borderFromPart(part.tail);
+    if (part.kept) this.#keeper?.load(part.kept, this.#grid);
+    else this.dropKept();
   }
 
   /** Appends the kept tags of a block to the tail's columns, delays applied, and counts singles and disorder. */
@@ -210,6 +231,7 @@ export class TagAccumulator {
     const { first, count } = this.#grid;
     const doublings = this.#grid.cover(fromTick, toTick);
     if (doublings === 0) return;
+    this.#keeper?.fold(doublings, first, count);
     this.#singlesPerSlice.fold(doublings, first, count);
     this.#windows.prompt.fold(doublings, first, count);
     this.#windows.shifted.fold(doublings, first, count);
@@ -234,7 +256,7 @@ export class TagAccumulator {
 
   #pairWithin(start: number, stop: number): void {
     const { tags, refTick } = this.#tail;
-    if (this.#spec.window === null) {
+    if (this.#spec.window === null && this.#keeper === null) {
       scanHistogram(tags, start, stop, this.#plan, this.#histogram);
       return;
     }

@@ -1,5 +1,6 @@
 import type { TagSpec, TagTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
+import type { KeptPart } from './pair-cache-keeper';
 import type { TagBorderPart } from './tag-border';
 
 /** Version 1. What one range has counted, plus the tags at its ends that may meet those of its neighbours. */
@@ -9,6 +10,8 @@ export interface TagPart {
   tally: TagTally;
   head: TagBorderPart;
   tail: TagBorderPart;
+  /** With `TagSpec.keepPairs` only. */
+  kept?: KeptPart;
 }
 
 /** What the tally says when no window was asked for: an empty one. */

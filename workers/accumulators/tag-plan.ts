@@ -24,8 +24,15 @@ export function planTags(spec: TagSpec): TagPlan {
   const { siteOfChannel, delayOfChannel, delaySpreadTick } = planChannels(spec);
   const { loTick, binTick, bins } = spec.histogram;
   const centres = spec.window === null ? [] : [0, ...spec.window.shiftsTick];
-  const hullLoTick = Math.min(...centres.map((shift) => shift + (spec.window?.loTick ?? 0)));
-  const hullHiTick = Math.max(...centres.map((shift) => shift + (spec.window?.hiTick ?? 0)));
+  const kept = spec.keepPairs;
+  const hullLoTick = Math.min(
+    ...centres.map((shift) => shift + (spec.window?.loTick ?? 0)),
+    kept?.minTauTick ?? Number.POSITIVE_INFINITY,
+  );
+  const hullHiTick = Math.max(
+    ...centres.map((shift) => shift + (spec.window?.hiTick ?? 0)),
+    kept?.maxTauTick ?? Number.NEGATIVE_INFINITY,
+  );
   const minTauTick = Math.min(hullLoTick, bins > 0 ? loTick : Number.POSITIVE_INFINITY);
   const maxTauTick = Math.max(hullHiTick, bins > 0 ? loTick + bins * binTick - 1 : Number.NEGATIVE_INFINITY);
   const sitesA = spec.a.width * spec.a.height;
@@ -48,7 +55,17 @@ export function planTags(spec: TagSpec): TagPlan {
 function requireWhole(spec: TagSpec): void {
   const { loTick, binTick, bins } = spec.histogram;
   const window = spec.window ?? { loTick: 0, hiTick: 0, shiftsTick: [] };
-  const whole = [loTick, binTick, bins, window.loTick, window.hiTick, ...window.shiftsTick];
+  const { minTauTick, maxTauTick } = spec.keepPairs ?? { minTauTick: 0, maxTauTick: 0 };
+  const whole = [
+    loTick,
+    binTick,
+    bins,
+    window.loTick,
+    window.hiTick,
+    ...window.shiftsTick,
+    minTauTick,
+    maxTauTick,
+  ];
   if (!whole.every(Number.isSafeInteger) || binTick < 1 || bins < 0) {
     throw new Problem(
       'bad-dial',

@@ -1,6 +1,7 @@
 import type { ArmSpec, TagSpec } from '../../shared/contracts/tally';
 import { createPairColumns } from '../kernels/pair-counts';
 import type { PairSink } from '../kernels/tag-scan';
+import type { PairKeeper } from './pair-cache-keeper';
 import { PairStore } from './pair-store';
 import { type SliceGrid, type SlotClock, slotOf } from './slice-grid';
 
@@ -22,11 +23,14 @@ export class WindowCounter implements PairSink {
   readonly #chosen: ReturnType<typeof createPairColumns>;
   readonly #a: PixelTable;
   readonly #b: PixelTable;
+  #keeper: PairKeeper | null;
   #clock: SlotClock = { slot: 0, offsetTick: 0, perTick: 1 };
 
-  constructor(spec: TagSpec) {
+  /** With a keeper all candidates go to it as well. */
+  constructor(spec: TagSpec, keeper: PairKeeper | null = null) {
     const enabled = spec.window !== null;
-    this.capacity = enabled ? CAPACITY : 1;
+    this.#keeper = keeper;
+    this.capacity = enabled || keeper !== null ? CAPACITY : 1;
     this.timeA = new Float64Array(this.capacity);
     this.tau = new Float64Array(this.capacity);
     this.pixelA = new Int32Array(this.capacity);
@@ -44,8 +48,14 @@ export class WindowCounter implements PairSink {
     this.#clock = grid.clockAt(refTick);
   }
 
+  dropKeeper(): void {
+    this.#keeper = null;
+  }
+
   drain(count: number): void {
-    if (this.#window === null || count === 0) return;
+    if (count === 0) return;
+    this.#keeper?.takePairs(this, count, this.#clock);
+    if (this.#window === null) return;
     const { loTick, hiTick, shiftsTick } = this.#window;
     this.prompt.add(this.#chosen, this.#choose(count, loTick, hiTick));
     for (const shift of shiftsTick) {
