@@ -3,7 +3,8 @@ import type { InputProvenance, RunResult } from '../../../shared/contracts/engin
 import type { ResultFile } from '../../../shared/contracts/result';
 import { formatPlain } from '../../lib/format-number';
 import { isRegion } from './dial-marks';
-import { bytesWords, detectorWords, durationWords, layoutWords, planeWords } from './reading-words';
+import { describeDetector, describeLayout, describePlane } from './input-words';
+import { bytesWords, durationWords } from './reading-words';
 
 /** Of a finished run or a stored result. */
 export type Provenance = RunResult['provenance'] | ResultFile['provenance'];
@@ -20,8 +21,9 @@ export function ProvenanceText({ provenance }: { provenance: Provenance }) {
   const preset = 'preset' in provenance ? provenance.preset : null;
   return (
     <div className="flex flex-col gap-2 font-mono text-xs text-dim">
-      {inputs.map((input) => (
-        <InputText key={input.name} input={input} />
+      {inputs.map((input, place) => (
+        // biome-ignore lint/suspicious/noArrayIndexKey: the files of a sequence share their name and may share their bytes
+        <InputText key={place} input={input} />
       ))}
       <details>
         <summary className="min-h-6 cursor-pointer py-1">dials</summary>
@@ -54,9 +56,11 @@ function InputText({ input }: { input: InputProvenance }) {
       </p>
       <p className="break-all">sha-256 {sha256}</p>
       <p className="wrap-anywhere">
-        {[layoutWords(layout), detectorWords(detector), plane === null ? '' : planeWords(plane)]
-          .filter((part) => part !== '')
-          .join(' · ')}
+        {[
+          ...describeLayout(layout),
+          ...describeDetector(detector),
+          ...(plane === null ? [] : describePlane(plane)),
+        ].join(' · ')}
       </p>
     </div>
   );

@@ -2,13 +2,8 @@ import { SlidersHorizontal, X } from 'lucide-react';
 import type { ReactNode } from 'react';
 import type { Detector } from '../../../../shared/contracts/detector';
 import type { InspectionFacts } from '../../../../shared/contracts/engine';
-import {
-  bytesWords,
-  detectorWords,
-  factsWords,
-  layoutWords,
-  planeWords,
-} from '../../../components/output/reading-words';
+import { describeDetector, describeLayout, describePlane } from '../../../components/output/input-words';
+import { bytesWords, factsWords } from '../../../components/output/reading-words';
 import { Button } from '../../../components/ui/Button';
 import { CheckMark } from '../../../components/ui/CheckMark';
 import { IconButton } from '../../../components/ui/IconButton';
@@ -112,12 +107,14 @@ function Known({ acquisition, facts, warnings }: KnownProps) {
   return (
     <div className="flex flex-col gap-0.5 font-mono text-xs text-dim">
       <p>{factsWords(facts)}</p>
-      <p className="wrap-anywhere">{layout === null ? 'layout not known' : layoutWords(layout)}</p>
+      <p className="wrap-anywhere">
+        {layout === null ? 'layout not known' : describeLayout(layout).join(' · ')}
+      </p>
       <p>
-        {detector === null ? 'no detector map' : detectorWords(detector)}
+        {detector === null ? 'no detector map' : describeDetector(detector, detectorGiven).join(' · ')}
         {detector === null || detectorGiven ? '' : ' · proposed, pitch not given'}
       </p>
-      {plane === null ? null : <p>{planeWords(plane)}</p>}
+      {plane === null ? null : <p>{describePlane(plane).join(' · ')}</p>}
       {warnings.map((warning) => (
         <Caution key={warning}>{warning}</Caution>
       ))}

@@ -1,5 +1,5 @@
 import { NumberField } from '../../../components/ui/NumberField';
-import type { BitDraft } from '../model/reading-draft';
+import type { BitDraft } from '../model/layout-draft';
 
 export interface BitsFieldProps {
   label: string;

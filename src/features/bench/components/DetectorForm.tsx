@@ -4,6 +4,7 @@ import { NumberField } from '../../../components/ui/NumberField';
 import { Select } from '../../../components/ui/Select';
 import { Toggle } from '../../../components/ui/Toggle';
 import type { DraftErrors } from '../model/draft-errors';
+import { isFrameFormat } from '../model/layout-draft';
 import { type ArrayDraft, emptyArray, type ReadingDraft } from '../model/reading-draft';
 import { FormPart } from './FormPart';
 
@@ -19,7 +20,7 @@ export interface DetectorFormProps {
 
 /** Channel or pixel -> arm, array, x, y; pitch, mask, delays. */
 export function DetectorForm({ draft, errors, proposedFrom, onChange, onPropose }: DetectorFormProps) {
-  const isFrames = draft.format === 'hdf5-frames';
+  const isFrames = isFrameFormat(draft.format);
   return (
     <FormPart
       title="detector map"

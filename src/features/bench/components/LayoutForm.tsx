@@ -1,29 +1,36 @@
 import type { DatasetFact } from '../../../../shared/contracts/engine';
-import type { Column } from '../../../../shared/contracts/layout';
 import { Field } from '../../../components/ui/Field';
 import { NumberField } from '../../../components/ui/NumberField';
 import { Select } from '../../../components/ui/Select';
-import { columnOptions, frameOptions } from '../model/column-options';
 import type { DraftErrors } from '../model/draft-errors';
-import type { ReadingDraft } from '../model/reading-draft';
-import { BitsField } from './BitsField';
+import { isFrameFormat, type LayoutDraft } from '../model/layout-draft';
+import { ColumnFields } from './ColumnFields';
 import { FormPart } from './FormPart';
+import { RecordFields } from './RecordFields';
+import { TextFields } from './TextFields';
 
 export interface LayoutFormProps {
-  draft: ReadingDraft;
+  draft: LayoutDraft;
   errors: DraftErrors;
   datasets: readonly DatasetFact[];
-  onChange(part: Partial<ReadingDraft>): void;
+  /** Kinds that can be chosen; a second clock has tags only. */
+  tagsOnly?: boolean;
+  onChange(part: Partial<LayoutDraft>): void;
 }
 
 const FORMATS = [
   { value: 'hdf5-tags', label: 'HDF5, time tags' },
   { value: 'hdf5-frames', label: 'HDF5, frames' },
+  { value: 'npy-tags', label: 'NumPy, time tags' },
+  { value: 'npy-frames', label: 'NumPy, frames' },
+  { value: 'tiff', label: 'TIFF, frames' },
+  { value: 'text', label: 'text, time tags' },
   { value: 'records', label: 'fixed-width records' },
 ] as const;
 
 /** How the bytes of the file become tags or frames. */
-export function LayoutForm({ draft, errors, datasets, onChange }: LayoutFormProps) {
+export function LayoutForm({ draft, errors, datasets, tagsOnly = false, onChange }: LayoutFormProps) {
+  const fields = { draft, errors, onChange };
   return (
     <FormPart title="layout">
       <div className="flex flex-col gap-3">
@@ -32,7 +39,7 @@ export function LayoutForm({ draft, errors, datasets, onChange }: LayoutFormProp
             <Select
               {...control}
               value={draft.format}
-              options={FORMATS}
+              options={FORMATS.filter(({ value }) => !tagsOnly || !isFrameFormat(value))}
               onValueChange={(value) => {
                 const format = FORMATS.find((option) => option.value === value)?.value;
                 if (format !== undefined) onChange({ format });
@@ -40,196 +47,33 @@ export function LayoutForm({ draft, errors, datasets, onChange }: LayoutFormProp
             />
           )}
         </Field>
-        {draft.format === 'hdf5-tags' ? (
-          <>
-            <ColumnField
-              label="Times"
-              column={draft.time}
-              error={errors.time}
-              datasets={datasets}
-              onChange={(time) => onChange({ time })}
-            />
-            <ColumnField
-              label="Channels"
-              column={draft.channel}
-              error={errors.channel}
-              datasets={datasets}
-              onChange={(channel) => onChange({ channel })}
-            />
-          </>
+        {draft.format === 'records' ? <RecordFields {...fields} /> : null}
+        {draft.format === 'text' ? <TextFields {...fields} /> : null}
+        {draft.format === 'tiff' ? (
+          <p className="text-sm text-dim">
+            Every page is a frame, in the order of the file. There is nothing to choose: all pages must have
+            one size and one type of sample.
+          </p>
         ) : null}
-        {draft.format === 'hdf5-frames' ? (
-          <Field layout="row" label="Frames" error={errors.frames}>
-            {(control) => (
-              <Select
-                {...control}
-                value={draft.frames ?? undefined}
-                placeholder="choose a dataset"
-                options={frameOptions(datasets)}
-                onValueChange={(frames) => onChange({ frames })}
-              />
-            )}
-          </Field>
-        ) : null}
-        {draft.format === 'records' ? (
-          <RecordFields draft={draft} errors={errors} onChange={onChange} />
-        ) : null}
-        {draft.format === 'hdf5-frames' ? null : (
+        {draft.format === 'records' || draft.format === 'text' || draft.format === 'tiff' ? null : (
+          <ColumnFields {...fields} datasets={datasets} />
+        )}
+        {isFrameFormat(draft.format) ? null : (
           <NumberField
             label="Tick length"
             value={draft.tickPs}
             unit="ps"
             placeholder="missing"
             error={errors.tickPs}
-            hint="Time that one count of the clock stands for."
+            hint={
+              draft.format === 'text'
+                ? 'Times are rounded to whole ticks of this length.'
+                : 'Time that one count of the clock stands for.'
+            }
             onChange={(tickPs) => onChange({ tickPs })}
           />
         )}
       </div>
     </FormPart>
-  );
-}
-
-interface ColumnFieldProps {
-  label: string;
-  column: Column | null;
-  error: string | undefined;
-  datasets: readonly DatasetFact[];
-  onChange(column: Column): void;
-}
-
-function ColumnField({ label, column, error, datasets, onChange }: ColumnFieldProps) {
-  const options = columnOptions(datasets);
-  const value = column === null ? undefined : JSON.stringify([column.dataset, column.field ?? null]);
-  return (
-    <Field layout="row" label={label} error={error}>
-      {(control) => (
-        <Select
-          {...control}
-          value={value}
-          placeholder="choose a column"
-          options={options}
-          onValueChange={(chosen) => {
-            const option = options.find((candidate) => candidate.value === chosen);
-            if (option !== undefined) onChange(option.column);
-          }}
-        />
-      )}
-    </Field>
-  );
-}
-
-const ORDERS = [
-  { value: 'little', label: 'little-endian' },
-  { value: 'big', label: 'big-endian' },
-] as const;
-
-const ROLLOVERS = [
-  { value: 'none', label: 'never wraps' },
-  { value: 'wrap', label: 'wraps by itself' },
-  { value: 'marker', label: 'marked by records' },
-] as const;
-
-function RecordFields({ draft, errors, onChange }: Omit<LayoutFormProps, 'datasets'>) {
-  return (
-    <>
-      <NumberField
-        label="Record length"
-        value={draft.recordBytes}
-        unit="bytes"
-        integer
-        min={1}
-        max={16}
-        placeholder="missing"
-        error={errors.recordBytes}
-        onChange={(recordBytes) => onChange({ recordBytes })}
-      />
-      <Field layout="row" label="Byte order">
-        {(control) => (
-          <Select
-            {...control}
-            value={draft.byteOrder}
-            options={ORDERS}
-            onValueChange={(value) => onChange({ byteOrder: value === 'big' ? 'big' : 'little' })}
-          />
-        )}
-      </Field>
-      <NumberField
-        label="Header to skip"
-        value={draft.headerBytes}
-        unit="bytes"
-        integer
-        min={0}
-        max={1e9}
-        error={errors.headerBytes}
-        onChange={(headerBytes) => onChange({ headerBytes })}
-      />
-      <BitsField
-        label="Time"
-        value={draft.timeBits}
-        error={errors.time}
-        onChange={(timeBits) => onChange({ timeBits })}
-      />
-      <BitsField
-        label="Channel"
-        value={draft.channelBits}
-        error={errors.channel}
-        onChange={(channelBits) => onChange({ channelBits })}
-      />
-      <Field layout="row" label="Time counter" hint="Bit 0 is the least significant of the whole record.">
-        {(control) => (
-          <Select
-            {...control}
-            value={draft.rollover}
-            options={ROLLOVERS}
-            onValueChange={(value) => {
-              const rollover = ROLLOVERS.find((option) => option.value === value)?.value;
-              if (rollover !== undefined) onChange({ rollover });
-            }}
-          />
-        )}
-      </Field>
-      {draft.rollover === 'marker' ? (
-        <>
-          <BitsField
-            label="Marker"
-            value={draft.markerBits}
-            error={errors.marker}
-            onChange={(markerBits) => onChange({ markerBits })}
-          />
-          <NumberField
-            label="Marker equals"
-            value={draft.markerEquals}
-            integer
-            min={0}
-            placeholder="missing"
-            error={errors['marker.equals']}
-            onChange={(markerEquals) => onChange({ markerEquals })}
-          />
-          <NumberField
-            label="Ticks one wrap adds"
-            value={draft.advanceTick}
-            integer
-            min={1}
-            placeholder="missing"
-            error={errors['marker.advance']}
-            onChange={(advanceTick) => onChange({ advanceTick })}
-          />
-          <Field layout="row" label="A marker stands for">
-            {(control) => (
-              <Select
-                {...control}
-                value={draft.wraps}
-                options={[
-                  { value: 'one', label: 'one wrap' },
-                  { value: 'time-field', label: 'as many as its time field says' },
-                ]}
-                onValueChange={(value) => onChange({ wraps: value === 'time-field' ? 'time-field' : 'one' })}
-              />
-            )}
-          </Field>
-        </>
-      ) : null}
-    </>
   );
 }

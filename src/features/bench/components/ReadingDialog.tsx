@@ -41,7 +41,7 @@ export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
       acquisition.detector,
       acquisition.detectorGiven,
       acquisition.plane,
-      (first?.datasets.length ?? 0) > 0,
+      first,
     ),
   );
   const [proposedFrom, setProposedFrom] = useState(() => first && becauseOf(acquisition, first));
@@ -73,7 +73,7 @@ export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
     const proposal = proposeDetector(look.state.inspection.facts);
     setProposedFrom(proposal?.because ?? 'No plain arrangement fits the channels seen; describe the arrays.');
     if (proposal === null) return;
-    const { signal, idler, bucket, frameMasked } = draftReading(null, proposal.detector, false, null, false);
+    const { signal, idler, bucket, frameMasked } = draftReading(null, proposal.detector, false, null, null);
     change({ signal, idler, bucket, frameMasked });
   };
   return (

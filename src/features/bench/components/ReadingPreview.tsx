@@ -8,7 +8,7 @@ import { FormPart } from './FormPart';
 import { ProblemText } from './ProblemText';
 import type { Look } from './use-look';
 
-const MOST_RECORDS = 8;
+const MOST_RECORDS = 20;
 const MOST_CHANNELS = 64;
 
 /** What the layout gives: why it was proposed, what looks wrong, the first records, the counts per channel. */
@@ -34,6 +34,7 @@ export function ReadingPreview({ look }: { look: Look }) {
           <p className="font-mono text-xs text-dim">
             {factsWords(state.inspection.facts)} · read by {state.inspection.reader}
           </p>
+          <ReaderReason reader={state.inspection.reader} />
           {state.inspection.warnings.map((warning) => (
             <p key={warning} className="flex gap-2 text-sm">
               <span className="pt-0.5">
@@ -47,6 +48,19 @@ export function ReadingPreview({ look }: { look: Look }) {
       ) : null}
     </FormPart>
   );
+}
+
+/** HDF5 alone has two readers; which one took the file, its headers decided. */
+const REASONS: Record<string, string> = {
+  jsfive:
+    'jsfive, the light reader, takes this file: its headers hold only what that reader is proven to read exactly.',
+  h5wasm:
+    'h5wasm, the HDF5 library itself, takes this file: it is large, or its headers hold something the light reader is not proven to read exactly.',
+};
+
+function ReaderReason({ reader }: { reader: string }) {
+  const reason = REASONS[reader];
+  return reason === undefined ? null : <p className="text-sm text-dim">{reason}</p>;
 }
 
 function Facts({ facts }: { facts: InspectionFacts }) {

@@ -1,4 +1,5 @@
-import type { Column } from '../../../../shared/contracts/layout';
+import type { DatasetFact } from '../../../../shared/contracts/engine';
+import type { ArrayColumn, Column } from '../../../../shared/contracts/layout';
 
 /** One choice in the list of columns. */
 export interface ColumnOption {
@@ -9,11 +10,16 @@ export interface ColumnOption {
 }
 
 const INTEGER = /^u?int/;
+const PIXEL = /^(u?int|float(32|64))/;
 
-/** Integer columns a person can point to: 1-D datasets, members of compounds, columns of narrow 2-D datasets. */
-export function columnOptions(
-  datasets: readonly { path: string; shape: number[]; type: string; fields: string[] }[],
-): ColumnOption[] {
+/** The one array of a NumPy file has no name. */
+const nameOf = (path: string): string => (path === '' ? 'the array' : path);
+
+/**
+ * Integer columns a person can point to: 1-D datasets, members of compounds, columns of narrow 2-D datasets; and the same
+ * of NumPy arrays.
+ */
+export function columnOptions(datasets: readonly DatasetFact[]): ColumnOption[] {
   return datasets.flatMap(({ path, shape, type, fields }): ColumnOption[] => {
     const [rows = 0, columns = 0] = shape;
     const hint = `${type} · ${shape.join(' × ')}`;
@@ -25,19 +31,33 @@ export function columnOptions(
     });
     if (rows === 0) return [];
     if (fields.length > 0 && shape.length === 1)
-      return fields.map((field) => option({ dataset: path, field }, `${path} · ${field}`));
+      return fields.map((field) => option({ dataset: path, field }, `${nameOf(path)} · ${field}`));
     if (!INTEGER.test(type)) return [];
-    if (shape.length === 1) return [option({ dataset: path }, path)];
+    if (shape.length === 1) return [option({ dataset: path }, nameOf(path))];
     if (shape.length === 2 && columns >= 2 && columns <= 16)
       return Array.from({ length: columns }, (_, field) =>
-        option({ dataset: path, field }, `${path} · column ${field}`),
+        option({ dataset: path, field }, `${nameOf(path)} · column ${field}`),
       );
     return [];
   });
 }
 
-export function frameOptions(datasets: readonly { path: string; shape: number[]; type: string }[]) {
+/** The same place in the words of a NumPy layout. */
+export function toArrayColumn({ dataset, field }: Column): ArrayColumn {
+  return {
+    ...(dataset === '' ? {} : { array: dataset }),
+    ...(field === undefined ? {} : { field }),
+  };
+}
+
+/** Stacks a person can point to. */
+export function frameOptions(datasets: readonly Pick<DatasetFact, 'path' | 'shape' | 'type'>[]) {
   return datasets
-    .filter(({ shape, type }) => shape.length === 3 && INTEGER.test(type))
-    .map(({ path, shape, type }) => ({ value: path, label: path, hint: `${type} · ${shape.join(' × ')}` }));
+    .filter(({ shape, type }) => shape.length === 3 && PIXEL.test(type))
+    .map(({ path, shape, type }) => ({
+      value: JSON.stringify(path),
+      path,
+      label: nameOf(path),
+      hint: `${type} · ${shape.join(' × ')}`,
+    }));
 }

@@ -1,6 +1,7 @@
 import { type ArrayMap, type Detector, detectorSchema } from '../../../../shared/contracts/detector';
 import { type Calibrated, type Plane, planeSchema } from '../../../../shared/contracts/plane';
 import { collectIssues, type DraftErrors } from './draft-errors';
+import { isFrameFormat } from './layout-draft';
 import { UNKNOWN_PITCH_UM } from './propose-detector';
 import type { ArrayDraft, NumberDraft, ReadingDraft } from './reading-draft';
 
@@ -47,7 +48,7 @@ export interface DetectorReading {
 export function readDetector(draft: ReadingDraft): DetectorReading {
   const errors: DraftErrors = {};
   const pitchNeeded = draft.plane.kind !== 'none';
-  if (draft.format === 'hdf5-frames') {
+  if (isFrameFormat(draft.format)) {
     if (draft.framePitchUm === null && pitchNeeded) errors['frames.pitchUm'] = PITCH_MISSING;
     const parsed = detectorSchema.safeParse({
       version: 1,

@@ -1,39 +1,17 @@
 import type { ArrayMap, Detector } from '../../../../shared/contracts/detector';
-import type { Column, Layout, RecordsLayout } from '../../../../shared/contracts/layout';
+import type { Inspection } from '../../../../shared/contracts/engine';
+import type { Layout } from '../../../../shared/contracts/layout';
 import type { Plane } from '../../../../shared/contracts/plane';
-import { FS_PER_PS } from '../../../../shared/units/ticks';
+import { draftLayout, type LayoutDraft } from './layout-draft';
 
-/** What stands in the reading dialog while it is being filled: numbers may be missing, nothing is converted yet. */
-export interface ReadingDraft {
-  format: 'hdf5-tags' | 'hdf5-frames' | 'records';
-  time: Column | null;
-  channel: Column | null;
-  frames: string | null;
-  recordBytes: number | null;
-  byteOrder: 'little' | 'big';
-  headerBytes: number | null;
-  timeBits: BitDraft;
-  channelBits: BitDraft;
-  rollover: 'none' | 'wrap' | 'marker';
-  markerBits: BitDraft;
-  markerEquals: number | null;
-  advanceTick: number | null;
-  wraps: 'one' | 'time-field';
-  /** Kept as they came; the dialog does not edit them. */
-  moreWhen: Extract<RecordsLayout['rollover'], { in: 'marker' }>['when'];
-  skip: RecordsLayout['skip'];
-  tickPs: number | null;
+/** What stands in the reading dialog while it is being filled. */
+export interface ReadingDraft extends LayoutDraft {
   signal: ArrayDraft | null;
   idler: ArrayDraft | null;
   bucket: { channel: number | null; delayPs: number | null } | null;
   framePitchUm: number | null;
   frameMasked: string;
   plane: PlaneDraft;
-}
-
-export interface BitDraft {
-  firstBit: number | null;
-  bits: number | null;
 }
 
 export interface ArrayDraft {
@@ -62,7 +40,6 @@ export interface PlaneDraft {
   idlerNm: NumberDraft;
 }
 
-const NO_BITS: BitDraft = { firstBit: null, bits: null };
 const NO_NUMBER: NumberDraft = { value: null, sigma: null };
 
 export function emptyArray(firstChannel: number | null): ArrayDraft {
@@ -103,33 +80,12 @@ export function draftReading(
   detector: Detector | null,
   detectorGiven: boolean,
   plane: Plane | null,
-  isHdf5: boolean,
+  looked: Inspection | null,
 ): ReadingDraft {
-  const records = layout?.format === 'records' ? layout : null;
-  const tags = layout?.format === 'hdf5' && layout.kind === 'tags' ? layout : null;
-  const marker = records?.rollover.in === 'marker' ? records.rollover : null;
   const tagDetector = detector?.kind === 'tags' ? detector : null;
   const frameDetector = detector?.kind === 'frames' ? detector : null;
-  const tickFs = records?.tickFs ?? tags?.tickFs;
-  const framesLayout = layout?.format === 'hdf5' && layout.kind === 'frames' ? layout : null;
   return {
-    format: framesLayout ? 'hdf5-frames' : records || (layout === null && !isHdf5) ? 'records' : 'hdf5-tags',
-    time: tags?.time ?? null,
-    channel: tags?.channel ?? null,
-    frames: framesLayout?.dataset ?? null,
-    recordBytes: records?.recordBytes ?? null,
-    byteOrder: records?.byteOrder ?? 'little',
-    headerBytes: records?.headerBytes ?? 0,
-    timeBits: records?.time ?? NO_BITS,
-    channelBits: records?.channel ?? NO_BITS,
-    rollover: records?.rollover.in ?? 'none',
-    markerBits: marker?.when[0]?.field ?? NO_BITS,
-    markerEquals: marker?.when[0]?.equals ?? null,
-    advanceTick: marker?.advanceTick ?? null,
-    wraps: marker?.wraps ?? 'one',
-    moreWhen: marker?.when.slice(1) ?? [],
-    skip: records?.skip ?? [],
-    tickPs: tickFs === undefined ? null : tickFs / FS_PER_PS,
+    ...draftLayout(layout, looked),
     signal: tagDetector?.signal ? draftArray(tagDetector.signal, detectorGiven) : null,
     idler: tagDetector?.idler ? draftArray(tagDetector.idler, detectorGiven) : null,
     bucket: tagDetector?.bucket ?? null,

@@ -1,6 +1,6 @@
 import type { InputSetting, Preset } from '../../../../shared/contracts/preset';
+import { describeDetector, describeLayout, describePlane } from '../../../components/output/input-words';
 import { type Fact, Facts, Lines } from '../../../components/page/Facts';
-import { describeDetector, describeLayout, describePlane } from '../model/describe-input';
 
 const PROPOSED = <span className="text-dim">proposed from the bytes</span>;
 

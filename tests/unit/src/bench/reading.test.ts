@@ -1,6 +1,10 @@
 import { describe, expect, it } from 'vitest';
-import type { RecordsLayout } from '../../../../shared/contracts/layout';
-import { columnOptions, frameOptions } from '../../../../src/features/bench/model/column-options';
+import type { Layout, RecordsLayout, TextLayout } from '../../../../shared/contracts/layout';
+import {
+  columnOptions,
+  frameOptions,
+  toArrayColumn,
+} from '../../../../src/features/bench/model/column-options';
 import { proposeDetector } from '../../../../src/features/bench/model/propose-detector';
 import { readDetector, readPixels, readPlane } from '../../../../src/features/bench/model/read-detector';
 import { readLayout } from '../../../../src/features/bench/model/read-layout';
@@ -24,6 +28,19 @@ const records: RecordsLayout = {
   },
   skip: [[{ field: { firstBit: 21, bits: 10 }, equals: 1023 }]],
   tickFs: 10_000,
+};
+
+const textLayout: TextLayout = {
+  version: 1,
+  format: 'text',
+  kind: 'tags',
+  delimiter: 'comma',
+  decimal: 'point',
+  headerLines: 1,
+  timeColumn: 0,
+  channelColumn: 2,
+  timeUnitFs: 13_000,
+  tickFs: 13_000,
 };
 
 const seen = (channels: readonly number[], loud?: number) =>
@@ -83,13 +100,13 @@ describe('the detector proposed from channels', () => {
 
 describe('the reading dialog', () => {
   it('gives back the layout it was opened with', () => {
-    const draft = draftReading(records, null, false, null, false);
+    const draft = draftReading(records, null, false, null, null);
     expect(draft.tickPs).toBe(10);
     expect(readLayout(draft)).toEqual({ layout: records, errors: {} });
   });
 
   it('says by the field what is missing or does not fit', () => {
-    const draft = draftReading(records, null, false, null, false);
+    const draft = draftReading(records, null, false, null, null);
     const { layout, errors } = readLayout({
       ...draft,
       tickPs: null,
@@ -100,10 +117,61 @@ describe('the reading dialog', () => {
     expect(errors.tickPs).toContain('picoseconds');
     expect(errors.time).toBe('Bits 20 to 40 do not fit a record of 32 bits.');
     expect(errors.channel).toContain('where the channel begins');
-    const empty = draftReading(null, null, false, null, true);
+    const empty = draftReading(null, null, false, null, inspectionOf('x'));
     expect(readLayout(empty).errors).toMatchObject({
       time: expect.stringContaining('dataset'),
       channel: expect.stringContaining('dataset'),
+    });
+  });
+
+  const layouts: [string, Layout][] = [
+    [
+      'NumPy columns',
+      {
+        version: 1,
+        format: 'npy',
+        kind: 'tags',
+        time: { field: 'stamp' },
+        channel: { array: 'lines', field: 1 },
+        tickFs: 81_000,
+      },
+    ],
+    ['NumPy frames', { version: 1, format: 'npy', kind: 'frames', array: 'stack' }],
+    ['the one array of a NumPy file', { version: 1, format: 'npy', kind: 'frames' }],
+    ['TIFF', { version: 1, format: 'tiff', kind: 'frames' }],
+    ['text in nanoseconds', { ...textLayout, timeUnitFs: 1e6 }],
+    ['text in whole ticks', { ...textLayout, timeUnitFs: textLayout.tickFs }],
+    ['text in a unit of its own', { ...textLayout, timeUnitFs: 12_500 }],
+  ];
+  it.each(layouts)('keeps a layout of %s through the form', (_name, layout) => {
+    expect(readLayout(draftReading(layout, null, false, null, null))).toEqual({ layout, errors: {} });
+  });
+
+  it('says what is wrong in a text layout, and follows the tick where times are whole ticks', () => {
+    const draft = draftReading(textLayout, null, false, null, null);
+    expect(draft.timeUnit).toBe('tick');
+    expect(readLayout({ ...draft, tickPs: 10 }).layout).toMatchObject({ tickFs: 10_000, timeUnitFs: 10_000 });
+    expect(
+      readLayout({
+        ...draft,
+        decimal: 'comma',
+        headerLines: null,
+        channelColumn: draft.timeColumn,
+        timeUnit: 'other',
+        otherUnitPs: null,
+      }).errors,
+    ).toEqual({
+      decimal: 'A comma cannot both part the columns and mark the decimals.',
+      headerLines: 'Write how many lines come before the first tag.',
+      channelColumn: 'Times and channels cannot stand in one column.',
+      timeUnit: 'Write how many picoseconds one unit of the time column is.',
+    });
+    const looked = { ...inspectionOf('x'), layout: null };
+    expect(draftReading(null, null, false, null, { ...looked, reader: 'text' }).format).toBe('text');
+    const npy = draftReading(null, null, false, null, { ...looked, reader: 'npy' });
+    expect(readLayout({ ...npy, tickPs: 1 }).errors).toEqual({
+      time: 'Choose the array that holds the times.',
+      channel: 'Choose the array that holds the channels.',
     });
   });
 
@@ -123,11 +191,13 @@ describe('the reading dialog', () => {
       '/pair · column 1',
     ]);
     expect(frameOptions([{ path: '/stack', shape: [9, 4, 4], type: 'uint16' }])).toHaveLength(1);
+    expect(toArrayColumn({ dataset: '', field: 'stamp' })).toEqual({ field: 'stamp' });
+    expect(toArrayColumn({ dataset: 'lines', field: 1 })).toEqual({ array: 'lines', field: 1 });
   });
 
   it('reads the detector map, its mask and its pitch', () => {
     const proposal = seen(range(0, 17))!.detector;
-    const draft = draftReading(null, proposal, false, null, true);
+    const draft = draftReading(null, proposal, false, null, inspectionOf('x'));
     expect(draft.signal?.pitchUm).toBeNull();
     expect(readDetector(draft)).toMatchObject({ given: false, errors: {} });
     const calibrated = { ...draft, plane: { ...draft.plane, kind: 'near' as const } };
@@ -147,7 +217,7 @@ describe('the reading dialog', () => {
   });
 
   it('asks for every number of a calibration, with its uncertainty', () => {
-    const draft = draftReading(null, null, false, null, true);
+    const draft = draftReading(null, null, false, null, inspectionOf('x'));
     expect(readPlane(draft)).toEqual({ plane: null, errors: {} });
     const far = { ...draft.plane, kind: 'far' as const, focalLengthMm: { value: 150, sigma: null } };
     const { errors } = readPlane({ ...draft, plane: far });

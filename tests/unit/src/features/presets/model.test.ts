@@ -2,12 +2,12 @@ import { describe, expect, it } from 'vitest';
 import { detectorSchema } from '../../../../../shared/contracts/detector';
 import type { DialSpec } from '../../../../../shared/contracts/dial';
 import { layoutSchema } from '../../../../../shared/contracts/layout';
-import { describeDials } from '../../../../../src/features/presets/model/describe-dial';
 import {
   describeDetector,
   describeLayout,
   describePlane,
-} from '../../../../../src/features/presets/model/describe-input';
+} from '../../../../../src/components/output/input-words';
+import { describeDials } from '../../../../../src/features/presets/model/describe-dial';
 import { listDifferences } from '../../../../../src/features/presets/model/differences';
 import { layout, near, preset } from '../../app/fixtures';
 
@@ -70,6 +70,47 @@ describe('inputs in words', () => {
       'after a header of 64 bytes',
       'time in bits 0 to 24, channel in bit 31',
       'tick 1 ps, time wraps at its range',
+    ]);
+  });
+
+  it('says how text, NumPy arrays and TIFF pages are read', () => {
+    const text = layoutSchema.parse({
+      version: 1,
+      format: 'text',
+      kind: 'tags',
+      delimiter: 'semicolon',
+      decimal: 'comma',
+      headerLines: 2,
+      timeColumn: 1,
+      channelColumn: 0,
+      timeUnitFs: 1e6,
+      tickFs: 1000,
+    });
+    expect(describeLayout(text)).toEqual([
+      'time tags in lines of text, semicolons between columns, decimal comma',
+      'after 2 header lines',
+      'time in column 2 in ns, channel in column 1',
+      'tick 1 ps',
+    ]);
+    const npy = layoutSchema.parse({
+      version: 1,
+      format: 'npy',
+      kind: 'tags',
+      time: { field: 'stamp' },
+      channel: { array: 'lines', field: 1 },
+      tickFs: 81_000,
+    });
+    expect(describeLayout(npy)).toEqual([
+      'time tags in NumPy arrays',
+      'time in field stamp',
+      'channel in lines, column 1',
+      'tick 81 ps',
+    ]);
+    expect(describeLayout({ version: 1, format: 'npy', kind: 'frames' })).toEqual([
+      'frames in a NumPy array',
+    ]);
+    expect(describeLayout({ version: 1, format: 'tiff', kind: 'frames' })).toEqual([
+      'frames in the pages of a TIFF file',
     ]);
   });
 
