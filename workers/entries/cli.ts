@@ -13,7 +13,8 @@ function open(workers: number): NodeEngine {
 
 process.once('SIGINT', () => {
   token.cancelled = true;
-  if (running !== null) void running.engine.cancel('run');
+  void running?.engine.cancel('run');
+  void running?.shards.cancel('run');
 });
 
 // Threads would keep the process alive, so it leaves by itself once everything is written.

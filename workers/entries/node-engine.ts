@@ -2,11 +2,17 @@ import { stat } from 'node:fs/promises';
 import { availableParallelism } from 'node:os';
 import { basename, resolve } from 'node:path';
 import { Worker } from 'node:worker_threads';
+import type { Endpoint } from 'comlink';
 import nodeEndpoint from 'comlink/dist/esm/node-adapter.mjs';
 import type { Engine, SourceRef } from '../../shared/contracts/engine';
 import { Problem } from '../../shared/errors/problem';
 import { connectCompute } from '../pipeline/compute-remote';
 import { createEngine } from '../pipeline/engine';
+import { openPathSource } from '../pipeline/node-source';
+import { createShardEngine, type ShardEngine } from '../pipeline/shards';
+
+/** Beside this file, in the sources and in the bundle alike. */
+const built = !import.meta.url.endsWith('.ts');
 
 /** Threads do not inherit the hooks that let Node run TypeScript (Node 20), so each registers them before it starts. */
 const boot = `import('tsx/esm/api').then(({ register }) => {
@@ -16,20 +22,56 @@ const boot = `import('tsx/esm/api').then(({ register }) => {
 
 export interface NodeEngine {
   engine: Engine;
+  /** Pieces of a run, over the same threads: one of the two at a time. */
+  shards: ShardEngine;
   close(): Promise<void>;
 }
 
-/** The engine over worker threads. `onCrash` hears of a thread that died (out of memory, say): its task never answers. */
+/**
+ * The engine over worker threads, each started with its first task. `onCrash` hears of a thread that died (out of
+ * memory, say): its task never answers.
+ */
 export function startNodeEngine(workers: number, onCrash: (error: Error) => void): NodeEngine {
-  const threads = Array.from({ length: workers }, () => {
-    const thread = new Worker(boot, { eval: true, execArgv: [] });
+  const threads: Worker[] = [];
+  const start = (): Endpoint => {
+    const thread = built
+      ? new Worker(new URL('compute.node.js', import.meta.url))
+      : new Worker(boot, { eval: true, execArgv: [] });
     thread.on('error', onCrash);
-    return thread;
-  });
+    threads.push(thread);
+    return nodeEndpoint(thread);
+  };
+  const hosts = Array.from({ length: workers }, () => connectCompute(lazyEndpoint(start)));
   return {
-    engine: createEngine(threads.map((thread) => connectCompute(nodeEndpoint(thread)))),
+    engine: createEngine(hosts),
+    shards: createShardEngine(hosts, openPathSource),
     async close() {
       await Promise.all(threads.map((thread) => thread.terminate()));
+    },
+  };
+}
+
+/** Starts the other end when there is something to say to it. */
+function lazyEndpoint(start: () => Endpoint): Endpoint {
+  type Listener = Parameters<Endpoint['addEventListener']>;
+  const listeners: Listener[] = [];
+  let started: Endpoint | null = null;
+  return {
+    postMessage(message, transfer) {
+      if (started === null) {
+        started = start();
+        for (const listener of listeners) started.addEventListener(...listener);
+      }
+      started.postMessage(message, transfer);
+    },
+    addEventListener(...listener) {
+      listeners.push(listener);
+      started?.addEventListener(...listener);
+    },
+    removeEventListener(...listener) {
+      const at = listeners.findIndex(([type, handler]) => type === listener[0] && handler === listener[1]);
+      if (at >= 0) listeners.splice(at, 1);
+      started?.removeEventListener(...listener);
     },
   };
 }

@@ -28,9 +28,9 @@ class Counting {
   readonly #waiting = new Map<number, Part>();
   #merged = 0;
 
-  constructor(request: CountRequest) {
+  constructor(request: CountRequest, chunks = planChunks(request.studyInput.facts)) {
     this.request = request;
-    this.chunks = planChunks(request.studyInput.facts);
+    this.chunks = chunks;
     this.#accumulator = createAccumulator(request.spec);
   }
 
@@ -51,6 +51,10 @@ class Counting {
 
   tally(): Tally {
     return this.#accumulator.tally();
+  }
+
+  part(): Part {
+    return this.#accumulator.toPart();
   }
 }
 
@@ -99,6 +103,25 @@ export async function countInputs(
   return done;
 }
 
+/** Counts some chunks in a row of every input: the share of one machine. */
+export async function countShard(
+  job: Job,
+  shares: readonly { request: CountRequest; chunks: ReadRange[] }[],
+): Promise<Map<string, Part>> {
+  const countings = shares.map(({ request, chunks }) => new Counting(request, chunks));
+  const bytes = countings.reduce((sum, { request, chunks }) => sum + bytesOf(request, chunks), 0);
+  const stage = createStage(job.id, 'reading', bytes, job.emit);
+  await Promise.all(
+    countings.flatMap((counting) =>
+      counting.chunks.map(async (range, index) => {
+        counting.take(index, await countChunk(job, counting.request, range, stage));
+      }),
+    ),
+  );
+  stage.finish();
+  return new Map(countings.map((counting) => [counting.request.name, counting.part()]));
+}
+
 /** One range counted on its own: the pass that looks for the delay. */
 export async function countRange(
   job: Job,
@@ -109,15 +132,19 @@ export async function countRange(
   const key = { ...memoKey(request), range };
   const kept = memo.find(key);
   if (kept !== null) return kept;
-  const { facts } = request.studyInput;
-  const all = facts.kind === 'tags' ? facts.records : facts.frames;
-  const share = all === 0 ? 0 : (range.end - range.start) / all;
-  const bytes = Math.round(request.input.source.size * share);
+  const bytes = bytesOf(request, [range]);
   const stage = createStage(job.id, `${request.name}: finding the delay`, bytes, job.emit);
   const part = await countChunk(job, request, range, stage);
   const tally = accumulatorFromPart(request.spec, part).tally();
   memo.keep(key, tally);
   return tally;
+}
+
+/** Of the file, as far as its records are of one length. */
+function bytesOf({ input, studyInput: { facts } }: CountRequest, ranges: readonly ReadRange[]): number {
+  const all = facts.kind === 'tags' ? facts.records : facts.frames;
+  const wanted = ranges.reduce((sum, { start, end }) => sum + end - start, 0);
+  return all === 0 ? 0 : Math.round((input.source.size * wanted) / all);
 }
 
 function countChunk(job: Job, request: CountRequest, range: ReadRange, stage: StageProgress): Promise<Part> {

@@ -111,7 +111,7 @@ async function runStudy(
 type GatheredInput = Omit<CountRequest, 'spec'>;
 
 /** Opens every input the study asks for. */
-async function gatherInputs(
+export async function gatherInputs(
   job: Job,
   study: Study,
   given: Record<string, RunInput>,
@@ -161,7 +161,7 @@ function assertKinds(
   }
 }
 
-async function findChosen(
+export async function findChosen(
   job: Job,
   study: Study,
   input: GatheredInput,

@@ -1,5 +1,6 @@
 import { Problem, toProblemData } from '../../../shared/errors/problem';
 import type { NodeEngine } from '../node-engine';
+import { combine, combineUsage } from './combine';
 import type { Console } from './console';
 import { inspect, inspectUsage } from './inspect';
 import { run, runUsage } from './run';
@@ -14,7 +15,7 @@ export interface VerbHost {
   token: { cancelled: boolean };
 }
 
-const usage = [studiesUsage, templateUsage, inspectUsage, runUsage, simulateUsage]
+const usage = [studiesUsage, templateUsage, inspectUsage, runUsage, combineUsage, simulateUsage]
   .map((line) => `  npm run --silent gemel -- ${line}`)
   .join('\n');
 
@@ -46,6 +47,8 @@ async function dispatch([verb, ...args]: readonly string[], host: VerbHost): Pro
       return inspect(args, host.open, host.out);
     case 'run':
       return run(args, host.open, host.out);
+    case 'combine':
+      return combine(args, host.out);
     case 'simulate':
       return simulate(args, host.token, host.out);
     case undefined:

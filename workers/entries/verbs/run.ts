@@ -13,15 +13,17 @@ import { defaultWorkers, type NodeEngine, sourceOfPath } from '../node-engine';
 import { encodeNpy } from '../npy';
 import { readArguments, readJsonFile, requireOne, wholeNumber } from './arguments';
 import { type Console, createProgressLine } from './console';
+import { parseShard, runShard } from './shard';
 
 export const runUsage =
-  'run PRESET.json --input NAME=FILE ... [--set dial=value ...] [--workers n] [--seed n] [--out R.json] [--maps DIR]';
+  'run PRESET.json --input NAME=FILE ... [--set dial=value ...] [--workers n] [--seed n] [--shard i/n] [--out R.json] [--maps DIR]';
 
 const options = {
   input: { type: 'string', multiple: true },
   set: { type: 'string', multiple: true },
   workers: { type: 'string' },
   seed: { type: 'string' },
+  shard: { type: 'string' },
   out: { type: 'string' },
   maps: { type: 'string' },
 } as const;
@@ -37,10 +39,13 @@ export async function run(
   const files = parseFiles(values.input ?? []);
   const dials = parseDials(preset, values.set ?? []);
   const seed = wholeNumber(values.seed, 'seed', 1, 0);
-  const { engine } = open(wholeNumber(values.workers, 'workers', defaultWorkers(), 1));
+  const shard = values.shard === undefined ? null : parseShard(values.shard);
+  const node = open(wholeNumber(values.workers, 'workers', defaultWorkers(), 1));
+  const { engine } = node;
   const inputs: Record<string, RunInput> = {};
   for (const [name, path] of files) inputs[name] = await prepareInput(preset, name, path, engine, out);
   const request: RunRequest = { jobId: 'run', study: preset.study, inputs, dials, seed };
+  if (shard !== null) return runShard({ ...request, preset: preset.name, shard }, values, node, out);
   const line = createProgressLine();
   const outcome = await engine.run(request, (event) => line.show(event));
   line.end();
@@ -157,9 +162,9 @@ async function proposeLayout(source: SourceRef, engine: NodeEngine['engine'], ou
   return outcome.value.layout;
 }
 
-async function writeResult(
+export async function writeResult(
   result: RunResult,
-  preset: Preset,
+  preset: { name: string },
   where: { out?: string | undefined; maps?: string | undefined },
   out: Console,
 ): Promise<void> {
