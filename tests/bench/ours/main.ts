@@ -1,0 +1,34 @@
+import { writeFile } from 'node:fs/promises';
+import { createInterface } from 'node:readline';
+import type { OpenKernel } from './adapter';
+import { decode } from './decode';
+import { frames } from './frames';
+import { histogram } from './histogram';
+
+/** Our kernels as a contender: the same lines as tests/bench/numpy/serve.py. One adapter a row, so that a kernel is
+ * changed for another in one place. */
+const adapters: Record<string, OpenKernel> = { decode, frames, histogram };
+
+const [name = '', folder = '', ...args] = process.argv.slice(2);
+const open = adapters[name];
+if (open === undefined) throw new Error(`No kernel is named ${name}; there are ${Object.keys(adapters)}.`);
+const kernel = await open(folder, args);
+
+function say(facts: object): void {
+  process.stdout.write(`${JSON.stringify(facts)}\n`);
+}
+
+say({ ready: true });
+for await (const line of createInterface({ input: process.stdin })) {
+  const [verb, value = ''] = line.split(' ');
+  if (verb === 'pass') {
+    const start = performance.now();
+    const before = process.cpuUsage();
+    await kernel.work(Number(value));
+    const { user, system } = process.cpuUsage(before);
+    say({ cpu: (user + system) / 1e6, wall: (performance.now() - start) / 1e3 });
+  } else {
+    await writeFile(value, Buffer.from((await kernel.answer()).buffer));
+    say({ done: true });
+  }
+}
