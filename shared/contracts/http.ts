@@ -69,6 +69,12 @@ export const presetListSchema = z.object({ presets: z.array(presetRowSchema) });
 export const presetWriteSchema = z.strictObject({ preset: presetSchema });
 export type PresetRow = z.infer<typeof presetRowSchema>;
 
+const sessionFile = {
+  name: z.string().max(400),
+  bytes: z.int().min(0),
+  sha256: z.string().max(64).nullable(),
+};
+
 /** A session: state of the bench. Files are named by fingerprint; their bytes never leave the machine. */
 export const benchStateSchema = z.strictObject({
   version: z.literal(1),
@@ -78,9 +84,7 @@ export const benchStateSchema = z.strictObject({
   shelf: z
     .array(
       z.strictObject({
-        name: z.string().max(400),
-        bytes: z.int().min(0),
-        sha256: z.string().max(64).nullable(),
+        ...sessionFile,
         input: z.string().max(80).nullable(),
         /** Sample file name when it came with Gemel, so that it reopens by itself. */
         sample: z.string().max(200).nullable(),
@@ -90,6 +94,17 @@ export const benchStateSchema = z.strictObject({
         /** false: the map is a proposal, or its pitch is not known. */
         detectorGiven: z.boolean().optional(),
         plane: planeSchema.nullable().optional(),
+        /** Files that go on where this one ends, in their order. */
+        following: z.array(z.strictObject(sessionFile)).max(1000).optional(),
+        /** A second file on a clock of its own; clock null: to be found. */
+        companion: z
+          .strictObject({
+            ...sessionFile,
+            layout: layoutSchema,
+            channelOffset: z.int().min(0).max(65535),
+            clock: z.strictObject({ offsetPs: z.number(), drift: z.number() }).nullable(),
+          })
+          .optional(),
       }),
     )
     .max(50),

@@ -9,6 +9,7 @@ import { samplesQuery } from '../../lib/query/samples';
 import { takeFiles } from '../../state/dropped-files';
 import { BenchRegions } from './components/BenchRegions';
 import { type Bench, BenchProvider, useBench, useBenchState } from './components/bench-context';
+import { CompanionDialog } from './components/CompanionDialog';
 import { DialsRegion } from './components/DialsRegion';
 import { DropZone } from './components/DropZone';
 import { LedgerRegion } from './components/LedgerRegion';
@@ -34,7 +35,9 @@ function BenchBody() {
   const readOnly = !may(group.role, 'presets.write');
   const picker = useRef<HTMLInputElement>(null);
   const [editing, setEditing] = useState<string | null>(null);
+  const [clocking, setClocking] = useState<string | null>(null);
   const acquisition = useBenchState((state) => state.shelf.find(({ id }) => id === editing) ?? null);
+  const clocked = useBenchState((state) => state.shelf.find(({ id }) => id === clocking) ?? null);
   const samples = useQuery(samplesQuery).data?.presets ?? [];
   const opening = useOpening(group.id);
   const addFiles = (files: readonly File[]): void =>
@@ -82,6 +85,7 @@ function BenchBody() {
             }))}
             onOpen={open}
             onEdit={setEditing}
+            onClock={setClocking}
           />
         }
         stage={<StageRegion readOnly={readOnly} onEdit={setEditing} onOpen={open} />}
@@ -90,6 +94,9 @@ function BenchBody() {
       />
       {acquisition === null ? null : (
         <ReadingDialog key={acquisition.id} acquisition={acquisition} onClose={() => setEditing(null)} />
+      )}
+      {clocked === null ? null : (
+        <CompanionDialog key={clocked.id} acquisition={clocked} onClose={() => setClocking(null)} />
       )}
     </DropZone>
   );

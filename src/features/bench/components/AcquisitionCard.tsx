@@ -1,16 +1,18 @@
-import { SlidersHorizontal, X } from 'lucide-react';
-import type { ReactNode } from 'react';
+import { SlidersHorizontal, Timer, X } from 'lucide-react';
 import type { Detector } from '../../../../shared/contracts/detector';
 import type { InspectionFacts } from '../../../../shared/contracts/engine';
 import { describeDetector, describeLayout, describePlane } from '../../../components/output/input-words';
 import { bytesWords, factsWords } from '../../../components/output/reading-words';
 import { Button } from '../../../components/ui/Button';
-import { CheckMark } from '../../../components/ui/CheckMark';
 import { IconButton } from '../../../components/ui/IconButton';
 import { RateStrip } from '../../../viz/RateStrip';
 import type { Tone } from '../../../viz/types';
-import { type Acquisition, isOtherFile } from '../model/acquisition';
+import { type Acquisition, bytesOf, isOtherFile } from '../model/acquisition';
+import { factsOf } from '../model/companion';
+import { Caution } from './Caution';
+import { CompanionLine } from './CompanionLine';
 import { ProblemText } from './ProblemText';
+import { SequenceFiles } from './SequenceFiles';
 
 export interface AcquisitionCardProps {
   acquisition: Acquisition;
@@ -18,14 +20,18 @@ export interface AcquisitionCardProps {
   input: string | null;
   readOnly: boolean;
   onEdit(): void;
+  /** Opens the dialog of the second clock. */
+  onClock(): void;
+  onTakeOffClock(): void;
   onRemove(): void;
   onLookAgain(): void;
 }
 
 /** One acquisition: what it is called, how it is read, what was seen, what is wrong. */
 export function AcquisitionCard(props: AcquisitionCardProps) {
-  const { acquisition, input, readOnly, onEdit, onRemove, onLookAgain } = props;
-  const { name, bytes, reading, sha256, sample } = acquisition;
+  const { acquisition, input, readOnly, onEdit, onClock, onRemove, onLookAgain } = props;
+  const { name, reading, sha256, sample, following, companion } = acquisition;
+  const mayPair = reading.status === 'read' && acquisition.layout?.kind === 'tags' && companion === null;
   return (
     <li className="py-2.5" aria-label={name} data-acquisition={name}>
       <div className="flex items-start justify-between gap-2">
@@ -38,13 +44,18 @@ export function AcquisitionCard(props: AcquisitionCardProps) {
               <SlidersHorizontal size={14} aria-hidden="true" />
             </IconButton>
           )}
+          {readOnly || !mayPair ? null : (
+            <IconButton label={`Give ${name} a second clock`} onClick={onClock}>
+              <Timer size={14} aria-hidden="true" />
+            </IconButton>
+          )}
           <IconButton label={`Remove ${name}`} onClick={onRemove}>
             <X size={14} aria-hidden="true" />
           </IconButton>
         </span>
       </div>
       <p className="font-mono text-xs text-dim">
-        {input === null ? 'not used by this study' : `serves ${input}`} · {bytesWords(bytes)}
+        {input === null ? 'not used by this study' : `serves ${input}`} · {bytesWords(bytesOf(acquisition))}
         {sample === null ? '' : ' · sample'}
         {sha256 === null ? '' : ` · sha ${sha256.slice(0, 4)}…${sha256.slice(-2)}`}
       </p>
@@ -90,6 +101,15 @@ export function AcquisitionCard(props: AcquisitionCardProps) {
             warnings={reading.inspection.warnings}
           />
         ) : null}
+        {following.length === 0 ? null : <SequenceFiles acquisition={acquisition} readOnly={readOnly} />}
+        {companion === null ? null : (
+          <CompanionLine
+            companion={companion}
+            readOnly={readOnly}
+            onEdit={onClock}
+            onRemove={props.onTakeOffClock}
+          />
+        )}
       </div>
     </li>
   );
@@ -103,10 +123,14 @@ interface KnownProps {
 
 function Known({ acquisition, facts, warnings }: KnownProps) {
   const { layout, detector, detectorGiven, plane } = acquisition;
-  const strip = detector === null ? [] : countsByArm(facts, detector);
+  const seen = factsOf(acquisition) ?? facts;
+  const strip = detector === null ? [] : countsByArm(seen, detector);
   return (
     <div className="flex flex-col gap-0.5 font-mono text-xs text-dim">
-      <p>{factsWords(facts)}</p>
+      <p>
+        {factsWords(facts)}
+        {acquisition.following.length === 0 ? '' : ' in the first file'}
+      </p>
       <p className="wrap-anywhere">
         {layout === null ? 'layout not known' : describeLayout(layout).join(' · ')}
       </p>
@@ -129,17 +153,6 @@ function Known({ acquisition, facts, warnings }: KnownProps) {
         </div>
       )}
     </div>
-  );
-}
-
-function Caution({ children }: { children: ReactNode }) {
-  return (
-    <p className="flex gap-2 font-sans text-sm text-text">
-      <span className="pt-0.5">
-        <CheckMark status="caution" />
-      </span>
-      <span>{children}</span>
-    </p>
   );
 }
 

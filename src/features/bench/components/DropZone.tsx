@@ -39,7 +39,10 @@ export function DropZone({ onFiles, children }: DropZoneProps) {
       {children}
       {over ? (
         <div className="pointer-events-none absolute inset-0 z-30 flex items-center justify-center border-2 border-dashed border-text bg-scrim">
-          <p className="bg-bg px-4 py-2 text-lg">Drop to put on the shelf. The bytes stay on this machine.</p>
+          <p className="bg-bg px-4 py-2 text-lg">
+            Drop to put on the shelf: HDF5, NumPy, TIFF, text or binary records. The bytes stay on this
+            machine.
+          </p>
         </div>
       ) : null}
     </div>

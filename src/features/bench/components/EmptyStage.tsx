@@ -34,7 +34,7 @@ export function EmptyStage({ study, needs, onEdit, onOpen }: EmptyStageProps) {
           <Button variant="primary" onClick={onOpen}>
             Open files
           </Button>
-          or drop them anywhere. The bytes stay on this machine.
+          or drop them anywhere: HDF5, NumPy, TIFF, text or binary records. The bytes stay on this machine.
         </p>
       ) : null}
     </div>

@@ -4,6 +4,7 @@ import { bytesWords } from '../../../components/output/reading-words';
 import { Button } from '../../../components/ui/Button';
 import { Dialog } from '../../../components/ui/Dialog';
 import type { Acquisition } from '../model/acquisition';
+import { jointFacts } from '../model/companion';
 import { proposeDetector } from '../model/propose-detector';
 import { readDetector, readPlane } from '../model/read-detector';
 import { readLayout } from '../model/read-layout';
@@ -24,9 +25,20 @@ function lastInspection({ reading }: Acquisition): Inspection | null {
   return reading.status === 'read' ? reading.inspection : null;
 }
 
+function describe({ bytes, following }: Acquisition): string {
+  const whole =
+    following.length === 0
+      ? `${bytesWords(bytes)}.`
+      : `The first of ${following.length + 1} files; all are read alike.`;
+  return `${whole} What the bytes suggest stands here; correct what is wrong.`;
+}
+
 /** Why the map is as proposed; null once a person gave or corrected it. */
-function becauseOf({ detector, detectorGiven }: Acquisition, { facts }: Inspection): string | null {
-  const proposal = proposeDetector(facts);
+function becauseOf(
+  { detector, detectorGiven, companion }: Acquisition,
+  { facts }: Inspection,
+): string | null {
+  const proposal = proposeDetector(jointFacts(facts, companion));
   const isProposal = !detectorGiven && JSON.stringify(proposal?.detector) === JSON.stringify(detector);
   return isProposal ? (proposal?.because ?? null) : null;
 }
@@ -70,7 +82,7 @@ export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
   };
   const propose = (): void => {
     if (look.state.status !== 'read') return;
-    const proposal = proposeDetector(look.state.inspection.facts);
+    const proposal = proposeDetector(jointFacts(look.state.inspection.facts, acquisition.companion));
     setProposedFrom(proposal?.because ?? 'No plain arrangement fits the channels seen; describe the arrays.');
     if (proposal === null) return;
     const { signal, idler, bucket, frameMasked } = draftReading(null, proposal.detector, false, null, null);
@@ -82,7 +94,7 @@ export function ReadingDialog({ acquisition, onClose }: ReadingDialogProps) {
       onOpenChange={(open) => open || onClose()}
       size="lg"
       title={`Reading of ${acquisition.name}`}
-      description={`${bytesWords(acquisition.bytes)}. What the bytes suggest stands here; correct what is wrong.`}
+      description={describe(acquisition)}
       footer={
         <>
           <span role="status" className="flex-1 text-sm text-dim">

@@ -10,16 +10,19 @@ import { fits } from '../model/study-inputs';
 import { AcquisitionCard } from './AcquisitionCard';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
 import { Region } from './Region';
+import { SequenceOffers } from './SequenceOffers';
 
 export interface ShelfRegionProps {
   readOnly: boolean;
   samples: readonly { label: string; open(): void }[];
   onOpen(): void;
   onEdit(acquisitionId: string): void;
+  /** Opens the dialog of an acquisition's second clock. */
+  onClock(acquisitionId: string): void;
 }
 
 /** What is loaded, and which acquisition serves which input of the study. */
-export function ShelfRegion({ readOnly, samples, onOpen, onEdit }: ShelfRegionProps) {
+export function ShelfRegion({ readOnly, samples, onOpen, onEdit, onClock }: ShelfRegionProps) {
   const shelf = useBenchState((state) => state.shelf);
   const assignment = useBenchPlan(currentAssignment);
   const { store } = useBench();
@@ -37,9 +40,11 @@ export function ShelfRegion({ readOnly, samples, onOpen, onEdit }: ShelfRegionPr
       }
     >
       <Inputs shelf={shelf} />
+      {readOnly ? null : <SequenceOffers />}
       {shelf.length === 0 ? (
         <p className="text-sm text-dim">
-          Nothing on the shelf. Drop files anywhere on the bench, or press <Kbd>Ctrl O</Kbd>
+          Nothing on the shelf. Drop files anywhere on the bench, or press <Kbd>Ctrl O</Kbd>: HDF5, NumPy,
+          TIFF, text and fixed-width binary records, told apart by their bytes.
         </p>
       ) : (
         <ul className="flex flex-col divide-y divide-line border-y border-line">
@@ -50,6 +55,8 @@ export function ShelfRegion({ readOnly, samples, onOpen, onEdit }: ShelfRegionPr
               input={inputOf(acquisition.id)}
               readOnly={readOnly}
               onEdit={() => onEdit(acquisition.id)}
+              onClock={() => onClock(acquisition.id)}
+              onTakeOffClock={() => store.getState().changeCompanion(acquisition.id, null)}
               onRemove={() => store.getState().remove(acquisition.id)}
               onLookAgain={() => store.getState().lookAgain(acquisition.id)}
             />

@@ -22,26 +22,24 @@ export interface Look {
   again(): void;
 }
 
-function firstState(acquisition: Acquisition, inspection: Inspection | null): LookState {
+/** The file that is looked at. */
+export type Looked = Pick<Acquisition, 'name' | 'bytes' | 'file' | 'reading'>;
+
+function firstState({ reading }: Looked, inspection: Inspection | null): LookState {
   if (inspection !== null) return { status: 'read', inspection };
-  const { reading } = acquisition;
   return reading.status === 'failed' ? { status: 'failed', problem: reading.problem } : { status: 'none' };
 }
 
 /** What the bytes give with the layout in the dialog, looked at again whenever it changes. */
-export function useLook(
-  acquisition: Acquisition,
-  layout: Layout | null,
-  inspection: Inspection | null,
-): Look {
+export function useLook(looked: Looked, layout: Layout | null, inspection: Inspection | null): Look {
   const { engine } = useBench();
-  const [state, setState] = useState(() => firstState(acquisition, inspection));
+  const [state, setState] = useState(() => firstState(looked, inspection));
   const [datasets, setDatasets] = useState<readonly DatasetFact[]>(inspection?.datasets ?? []);
   const wanted = JSON.stringify(layout);
   // The first look was made with the layout the dialog opens with.
   const [lookedAt, setLookedAt] = useState(inspection === null ? null : wanted);
   const latest = useRef(0);
-  const { name, bytes, file } = acquisition;
+  const { name, bytes, file } = looked;
 
   const lookAt = useCallback(
     async (key: string): Promise<void> => {

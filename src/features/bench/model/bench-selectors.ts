@@ -89,7 +89,16 @@ export function planRun(state: BenchPlan): Plan {
     study.id,
     study.inputs.map(({ name }) => {
       const input = inputs[name];
-      return input && [name, assignment[name], input.layout, input.detector, input.plane];
+      if (input === undefined) return null;
+      const { source, following = [], companion, ...reading } = input;
+      const files = [source, ...following].map(({ key }) => key);
+      return [
+        name,
+        assignment[name],
+        files,
+        companion && { ...companion, source: companion.source.key },
+        reading,
+      ];
     }),
   ]);
   return {

@@ -10,9 +10,10 @@ import type { StudyId } from '../../../../shared/contracts/study';
 import type { ProblemData } from '../../../../shared/errors/problem';
 import { factsWords } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
-import { type Acquisition, newAcquisition } from './acquisition';
+import { type Acquisition, type CompanionFile, type FilePart, newAcquisition, partsOf } from './acquisition';
 import { baseDials, currentAssignment, currentHistory, currentStudy } from './bench-selectors';
 import { type BenchState, emptyBench, type PresetRef, type SessionRef } from './bench-types';
+import { jointFacts } from './companion';
 import {
   type DialHistory,
   redoDials,
@@ -22,6 +23,7 @@ import {
   undoDials,
 } from './dial-history';
 import { isPitchKnown, proposeDetector } from './propose-detector';
+import { joinAcquisitions, moveFile, splitAcquisition } from './sequence';
 import { benchOfSession } from './session-bench';
 
 /** What a person settles in the reading dialog. */
@@ -53,6 +55,15 @@ export interface BenchActions {
   lookAgain(id: string): void;
   changeReading(id: string, change: ReadingChange): void;
   remove(id: string): void;
+  /** One acquisition of several, in this order; read as the first of them. */
+  join(ids: readonly string[]): void;
+  /** They stay separate acquisitions, and are not offered as one again. */
+  keepApart(ids: readonly string[]): void;
+  /** Another order of the files of one acquisition. */
+  moveFile(id: string, from: number, to: number): void;
+  split(id: string): void;
+  /** Gives an acquisition its second clock, or takes it away; `fromShelf` names where the file came from. */
+  changeCompanion(id: string, companion: CompanionFile | null, fromShelf?: string): void;
   assign(input: string, id: string | null): void;
   chooseStudy(study: StudyId): void;
   turn(values: DialValues): void;
@@ -70,6 +81,17 @@ export interface BenchActions {
 export type BenchStore = StoreApi<BenchState & BenchActions>;
 
 const MOST_LOG_LINES = 200;
+
+function isAwaitedPart({ file, name, bytes }: FilePart, handed: File): boolean {
+  return file === null && name === handed.name && bytes === handed.size;
+}
+
+/** The first file of that name and size that a session still waits for, handed over. */
+function handOver({ following, companion }: Acquisition, file: File): Partial<Acquisition> {
+  const place = following.findIndex((part) => isAwaitedPart(part, file));
+  if (place >= 0) return { following: following.map((part, i) => (i === place ? { ...part, file } : part)) };
+  return companion !== null && isAwaitedPart(companion, file) ? { companion: { ...companion, file } } : {};
+}
 
 /** The bench without its runs: shelf, study, dials. `attachRunner` adds the runs. */
 export function createBenchStore(engine: EngineDoor): BenchStore {
@@ -99,10 +121,11 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
       const inspection = outcome.value;
       const layout = now.layoutGiven ? now.layout : inspection.layout;
       const isMapKept = now.detectorGiven || (keepsMap && now.detector !== null);
+      const seen = jointFacts(inspection.facts, now.companion);
       patch(id, {
         reading: { status: 'read', inspection },
         layout,
-        ...(isMapKept ? {} : { detector: proposeDetector(inspection.facts)?.detector ?? null }),
+        ...(isMapKept ? {} : { detector: proposeDetector(seen)?.detector ?? null }),
       });
       get().say(`${now.name}: ${factsWords(inspection.facts)}.`);
     };
@@ -154,6 +177,7 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
 
       addFiles(files) {
         const added: string[] = [];
+        const drop = ++counter;
         for (const { file, sample, input } of files) {
           const { shelf, waiting } = get();
           const named = shelf.filter((a) => a.reading.status === 'awaited' && a.name === file.name);
@@ -164,6 +188,15 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
           if (awaited !== undefined) {
             patch(awaited.id, { file, bytes: file.size, sample, reading: { status: 'looking' } });
             added.push(awaited.id);
+            continue;
+          }
+          const incomplete = shelf.find((a) =>
+            partsOf(a)
+              .slice(1)
+              .some((part) => isAwaitedPart(part, file)),
+          );
+          if (incomplete !== undefined) {
+            patch(incomplete.id, handOver(incomplete, file));
             continue;
           }
           const almost = named[0];
@@ -177,7 +210,9 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
           const setting = takeSetting(file.name, input, free);
           const fresh = newAcquisition(nextId(), { name: file.name, bytes: file.size, file, sample });
           const acquisition = withSetting(fresh, setting === null ? undefined : waiting[setting]);
-          set({ shelf: [...get().shelf, acquisition] });
+          // What a preset or a sample has a place for is an acquisition of its own.
+          const droppedWith = setting === null && sample === null && files.length > 1 ? drop : null;
+          set({ shelf: [...get().shelf, { ...acquisition, droppedWith }] });
           if (setting !== null) {
             chooseFor(setting, acquisition.id);
             set({ waiting: Object.fromEntries(Object.entries(waiting).filter(([key]) => key !== setting)) });
@@ -201,6 +236,53 @@ export function createBenchStore(engine: EngineDoor): BenchStore {
         const gone = get().shelf.find((a) => a.id === id);
         set(({ shelf }) => ({ shelf: shelf.filter((a) => a.id !== id) }));
         if (gone !== undefined) get().say(`${gone.name} taken off the shelf.`);
+      },
+
+      join(ids) {
+        dropPendingLink();
+        set(({ shelf }) => ({ shelf: joinAcquisitions(shelf, ids) }));
+        const joined = get().shelf.find(({ id }) => id === ids[0]);
+        if (joined !== undefined)
+          get().say(`One acquisition in ${joined.following.length + 1} files from ${joined.name} on.`);
+      },
+
+      keepApart(ids) {
+        const apart = new Set(ids);
+        set(({ shelf }) => ({
+          shelf: shelf.map((a) => (apart.has(a.id) ? { ...a, droppedWith: null } : a)),
+        }));
+      },
+
+      moveFile(id, from, to) {
+        dropPendingLink();
+        const before = get().shelf.find((a) => a.id === id);
+        if (before === undefined) return;
+        const after = moveFile(before, from, to);
+        patch(id, after);
+        // Another file begins it: what was seen was of the other.
+        if (after.file !== before.file) void look(id, { keepsMap: true });
+      },
+
+      split(id) {
+        dropPendingLink();
+        const { shelf, added } = splitAcquisition(get().shelf, id, nextId);
+        set({ shelf });
+        for (const each of added) void look(each, { keepsMap: true });
+      },
+
+      changeCompanion(id, companion, fromShelf) {
+        dropPendingLink();
+        set(({ shelf }) => ({ shelf: shelf.filter((a) => a.id !== fromShelf) }));
+        const now = get().shelf.find((a) => a.id === id);
+        if (now === undefined) return;
+        const before = now.companion;
+        patch(id, { companion });
+        const seen =
+          now.reading.status === 'read' ? jointFacts(now.reading.inspection.facts, companion) : null;
+        if (seen !== null && !now.detectorGiven)
+          patch(id, { detector: proposeDetector(seen)?.detector ?? null });
+        if (companion !== null) get().say(`${companion.name} is the second clock of ${now.name}.`);
+        else if (before !== null) get().say(`${before.name} taken off ${now.name}.`);
       },
 
       assign(input, id) {

@@ -7,6 +7,7 @@ import { samplesQuery } from '../../../lib/query/samples';
 import { sessionQuery } from '../../../lib/query/sessions';
 import { toPreset } from '../../../lib/result-preset';
 import { fetchSample } from '../api/sample-file';
+import { partsOf } from './acquisition';
 import type { BenchStore, SampleFile } from './bench-store';
 import { DEFAULT_SEED } from './bench-types';
 
@@ -48,11 +49,19 @@ async function openSession({ store, queries, groupId }: Opener, id: string): Pro
   const row = await queries.fetchQuery(sessionQuery(groupId, id));
   const actions = store.getState();
   // Files of the session that are still at hand need not be asked for again.
-  const held = actions.shelf.flatMap(({ file, sample }) => (file === null || sample !== null ? [] : [file]));
+  const held = actions.shelf.flatMap((a) =>
+    partsOf(a).flatMap((part) =>
+      part.file === null || (part === a && a.sample !== null) ? [] : [part.file],
+    ),
+  );
   actions.openSession({ id: row.id, name: row.name }, row.state);
   actions.say(`Session ${row.name} opened.`);
-  for (const { name, bytes, sample } of row.state.shelf) {
-    if (sample !== null) continue;
+  const own = row.state.shelf.flatMap((a) => [
+    ...(a.sample === null ? [a] : []),
+    ...(a.following ?? []),
+    ...(a.companion ? [a.companion] : []),
+  ]);
+  for (const { name, bytes } of own) {
     const file = held.find((candidate) => candidate.name === name && candidate.size === bytes);
     if (file !== undefined) actions.addFiles([{ file, sample: null }]);
     else actions.say(`Drop ${name} again: its bytes stayed on your machine.`);

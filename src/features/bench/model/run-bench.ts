@@ -2,7 +2,7 @@ import type { DialValues } from '../../../../shared/contracts/dial';
 import type { RunEvent } from '../../../../shared/contracts/engine';
 import { bytesWords, durationWords, shortCount } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
-import { isOtherFile } from './acquisition';
+import { type Acquisition, type FilePart, isOtherFile, partsOf } from './acquisition';
 import { currentAssignment, currentStudy, type Plan, planRun } from './bench-selectors';
 import type { BenchStore } from './bench-store';
 import type { BenchState, Found, Progress } from './bench-types';
@@ -164,19 +164,38 @@ function needsOnlyFinish(state: BenchState, from: DialValues, to: DialValues): b
   return changed.size > 0 && specs.every(({ id, needs }) => needs === 'finish' || !changed.has(id));
 }
 
-/** Two files may share name and size, so the fingerprint goes to the acquisition that served the input. */
+/**
+ * Two files may share name and size, so the fingerprints go to the acquisition that served the input, one for each of its
+ * files in their order.
+ */
 function rememberHashes(
   shelf: BenchState['shelf'],
   holders: Record<string, string | null>,
   inputs: readonly { name: string; sha256: string }[],
 ): BenchState['shelf'] {
-  const hashes = new Map(inputs.map(({ name, sha256 }) => [holders[name], sha256]));
-  const isNews = shelf.some((a) => (hashes.get(a.id) ?? a.sha256) !== a.sha256);
+  const hashes = new Map<string | null | undefined, string[]>();
+  for (const { name, sha256 } of inputs) {
+    const holder = holders[name];
+    hashes.set(holder, [...(hashes.get(holder) ?? []), sha256]);
+  }
+  const isNews = shelf.some((a) =>
+    partsOf(a).some(({ sha256 }, i) => (hashes.get(a.id)?.[i] ?? sha256) !== sha256),
+  );
   if (!isNews) return shelf;
-  return shelf.map((a) => {
-    const sha256 = hashes.get(a.id) ?? a.sha256;
-    return sha256 === a.sha256 ? a : { ...a, sha256 };
-  });
+  return shelf.map((a) => withHashes(a, hashes.get(a.id) ?? []));
+}
+
+function withHashes(acquisition: Acquisition, found: readonly string[]): Acquisition {
+  const { following, companion } = acquisition;
+  const hashed = <T extends FilePart>(part: T, place: number): T => {
+    const sha256 = found[place] ?? part.sha256;
+    return sha256 === part.sha256 ? part : { ...part, sha256 };
+  };
+  const whole = hashed(acquisition, 0);
+  const rest = following.map((part, i) => hashed(part, i + 1));
+  const second = companion === null ? null : hashed(companion, following.length + 1);
+  const isSame = second === companion && rest.every((part, i) => part === following[i]);
+  return isSame ? whole : { ...whole, following: rest, companion: second };
 }
 
 /** Short, for the line beside the studies: how far, how fast, how long. */

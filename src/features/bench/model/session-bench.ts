@@ -1,6 +1,6 @@
 import type { BenchState as SavedBench } from '../../../../shared/contracts/http';
 import { type StudyId, studyIds } from '../../../../shared/contracts/study';
-import { type Acquisition, newAcquisition } from './acquisition';
+import { type Acquisition, type CompanionFile, type FilePart, newAcquisition } from './acquisition';
 import { presetOfBench } from './bench-records';
 import { currentAssignment, currentDials, linkedResult } from './bench-selectors';
 import type { BenchState } from './bench-types';
@@ -30,9 +30,7 @@ export function sessionOfBench(state: BenchState, name: string): SavedBench {
     study,
     preset: presetOfBench(state, name, { fixProposals: false }),
     shelf: shelf.map((a) => ({
-      name: a.name,
-      bytes: a.bytes,
-      sha256: a.sha256 ?? a.expectedSha256,
+      ...savedPart(a),
       input: inputOf(a.id),
       sample: a.sample,
       // A layout nobody confirmed is proposed anew; a map may have been corrected before its pitch is known.
@@ -40,6 +38,8 @@ export function sessionOfBench(state: BenchState, name: string): SavedBench {
       detector: a.detector,
       detectorGiven: a.detectorGiven,
       plane: a.plane,
+      ...(a.following.length === 0 ? {} : { following: a.following.map(savedPart) }),
+      ...(a.companion === null ? {} : { companion: savedCompanion(a.companion) }),
     })),
     dials: {
       ...Object.fromEntries(Object.entries(state.dials).map(([id, { present }]) => [id, present])),
@@ -52,6 +52,28 @@ export function sessionOfBench(state: BenchState, name: string): SavedBench {
     seed: state.seed,
     resultId: linkedResult(state),
   };
+}
+
+type SavedPart = Pick<SavedBench['shelf'][number], 'name' | 'bytes' | 'sha256'>;
+type SavedCompanion = NonNullable<SavedBench['shelf'][number]['companion']>;
+
+function savedPart({ name, bytes, sha256, expectedSha256 }: FilePart): SavedPart {
+  return { name, bytes, sha256: sha256 ?? expectedSha256 };
+}
+
+function savedCompanion(companion: CompanionFile): SavedCompanion {
+  const { layout, channelOffset, clock } = companion;
+  return { ...savedPart(companion), layout, channelOffset, clock };
+}
+
+/** A file that must be handed over again. */
+function awaitedPart({ name, bytes, sha256 }: SavedPart): FilePart {
+  return { name, bytes, file: null, sha256: null, expectedSha256: sha256 };
+}
+
+function awaitedCompanion(saved: SavedCompanion): CompanionFile {
+  const { layout, channelOffset, clock } = saved;
+  return { ...awaitedPart(saved), layout, channelOffset, clock, facts: null };
 }
 
 function byStudy<T, U>(entries: Record<string, T>, of: (value: T) => U): Partial<Record<StudyId, U>> {
@@ -71,14 +93,16 @@ export function benchOfSession(saved: SavedBench, nextId: () => string): Restore
   const { preset, seed, resultId } = saved;
   const { study } = preset;
   const shelf = saved.shelf.map((entry): Acquisition => {
-    const { name, bytes, sample, sha256, input } = entry;
+    const { name, bytes, sample, input, following = [], companion } = entry;
     // Sessions of before the shelf kept its readings know only those of the inputs.
     const setting = input === null ? undefined : preset.inputs[input];
     const layout = entry.layout ?? setting?.layout ?? null;
     const detector = entry.detector ?? setting?.detector ?? null;
     return {
       ...newAcquisition(nextId(), { name, bytes, file: null, sample }),
-      expectedSha256: sha256,
+      ...awaitedPart(entry),
+      following: following.map(awaitedPart),
+      companion: companion === undefined ? null : awaitedCompanion(companion),
       layout,
       layoutGiven: layout !== null,
       detector,

@@ -1,7 +1,8 @@
 import type { Detector } from '../../../../shared/contracts/detector';
 import type { RunInput } from '../../../../shared/contracts/engine';
 import type { InputSpec, StudyInfo } from '../../../../shared/contracts/study';
-import { type Acquisition, kindOf } from './acquisition';
+import { type Acquisition, kindOf, partsOf } from './acquisition';
+import { sourceOf } from './file-source';
 
 /** Input name -> acquisition id; null where a person took it away on purpose. */
 export type Assignment = Record<string, string | null>;
@@ -86,8 +87,9 @@ export function needOf(spec: InputSpec, acquisition: Acquisition | undefined): N
   const { name, reading, sample } = acquisition;
   if (reading.status === 'awaited' && sample !== null)
     return { sentence: `The sample ${name} is on its way from the server.`, acquisitionId: null };
-  if (reading.status === 'awaited')
-    return { sentence: `Drop ${name} again: its bytes stay on your machine.`, acquisitionId: null };
+  const missing = partsOf(acquisition).find(({ file }) => file === null);
+  if (missing !== undefined)
+    return { sentence: `Drop ${missing.name} again: its bytes stay on your machine.`, acquisitionId: null };
   if (reading.status === 'looking') return { sentence: `Looking at ${name}.`, ...at };
   if (reading.status === 'failed') return { sentence: `${name} could not be read; see the shelf.`, ...at };
   if (acquisition.layout === null) return { sentence: `Say how the bytes of ${name} are laid out.`, ...at };
@@ -114,6 +116,15 @@ export function needOf(spec: InputSpec, acquisition: Acquisition | undefined): N
   return null;
 }
 
+/** The files beside the first, where there are any; all are here, `needOf` saw to it. */
+function restOfFiles({ following, companion }: Acquisition): Pick<RunInput, 'following' | 'companion'> {
+  const files = following.flatMap(({ file }) => file ?? []);
+  const sequence = files.length === 0 ? {} : { following: files.map(sourceOf) };
+  if (companion === null || companion.file === null) return sequence;
+  const { file, layout, channelOffset, clock } = companion;
+  return { ...sequence, companion: { source: sourceOf(file), layout, channelOffset, clock } };
+}
+
 export interface Readiness {
   needs: Need[];
   /** Complete only when nothing is needed. */
@@ -135,12 +146,8 @@ export function readyInputs(
       continue;
     }
     inputs[spec.name] = {
-      source: {
-        name: acquisition.name,
-        size: acquisition.bytes,
-        file: acquisition.file,
-        key: `${acquisition.id} ${acquisition.file.lastModified}`,
-      },
+      source: sourceOf(acquisition.file),
+      ...restOfFiles(acquisition),
       layout: acquisition.layout,
       detector: acquisition.detector,
       plane: spec.plane === 'none' ? null : acquisition.plane,

@@ -34,7 +34,8 @@ export function FileRegion() {
           Go to the bench
         </Link>
         <p className="min-w-0 flex-1 text-dim">
-          Drop HDF5 files or time-tag records here or there. They are read on this machine and never leave it.
+          Drop them here or there: HDF5, NumPy, TIFF, text or fixed-width binary records. They are read on
+          this machine and never leave it.
         </p>
       </div>
     </Region>
