@@ -18,3 +18,14 @@ export function isTextLike(head: Uint8Array): boolean {
     throw thrown;
   }
 }
+
+/** True for the byte-order mark of UTF-16 before Latin letters and digits, which leave every second byte zero. */
+export function isUtf16(head: Uint8Array): boolean {
+  const first = head[0]! * 256 + head[1]!;
+  if (first !== 0xfffe && first !== 0xfeff) return false;
+  const high = first === 0xfffe ? 1 : 0;
+  let zeros = 0;
+  const end = Math.min(head.length, 66);
+  for (let i = 2 + high; i < end; i += 2) if (head[i] === 0) zeros += 1;
+  return zeros >= Math.floor((end - 2) / 2) * 0.9;
+}
