@@ -31,6 +31,33 @@ export function viewNumbers(bytes: Uint8Array, { family, bytes: size }: NumberTy
     : new Uint32Array(buffer, byteOffset, count);
 }
 
+/** IEEE half floats (1 sign, 5 exponent, 10 fraction bits) as floats, exactly. */
+export function halfFloats(bytes: Uint8Array): Float32Array {
+  const halves = viewNumbers(bytes, { family: 'uint', bytes: 2 });
+  const values = new Float32Array(halves.length);
+  for (let i = 0; i < halves.length; i += 1) {
+    const half = halves[i]!;
+    const exponent = (half >> 10) & 31;
+    const fraction = half & 1023;
+    const size =
+      exponent === 0
+        ? fraction * 2 ** -24
+        : exponent === 31
+          ? fraction === 0
+            ? Number.POSITIVE_INFINITY
+            : Number.NaN
+          : (1024 + fraction) * 2 ** (exponent - 25);
+    values[i] = half & 0x8000 ? -size : size;
+  }
+  return values;
+}
+
+/** Little-endian bytes as pixels: 64-bit integers and half floats become floats that hold them exactly. */
+export function viewPixels(bytes: Uint8Array, number: NumberType, place: string): PixelArray {
+  if (number.family === 'float') return number.bytes === 2 ? halfFloats(bytes) : viewNumbers(bytes, number);
+  return number.bytes === 8 ? exactDoubles(bytes, number.family, place) : viewNumbers(bytes, number);
+}
+
 /** Pairs of words, least significant first: the exact and quick view of 64-bit integers. */
 export function viewWordPairs(bytes: Uint8Array): Uint32Array {
   const aligned = bytes.byteOffset % 4 === 0 ? bytes : bytes.slice();
@@ -56,9 +83,9 @@ export function exactDoubles(bytes: Uint8Array, family: NumberType['family'], pl
   return doubles;
 }
 
-/** Any integers as doubles; 64-bit ones past 2^53 are rounded, which is enough to see whether a column rises. */
+/** Any numbers as doubles; 64-bit ones past 2^53 are rounded, which is enough to see whether a column rises. */
 export function roundedDoubles(bytes: Uint8Array, number: NumberType): Float64Array {
-  if (number.bytes < 8) return Float64Array.from(viewNumbers(bytes, number));
+  if (number.bytes < 8 || number.family === 'float') return new Float64Array(viewNumbers(bytes, number));
   const words = viewWordPairs(bytes);
   return Float64Array.from({ length: words.length / 2 }, (_, i) => {
     const high = words[2 * i + 1]!;

@@ -12,11 +12,11 @@ export interface Ticks {
 }
 
 /**
- * Ticks [start, count) of a packed column of integers, as a 64-bit base and exact differences. Times of 64 bits are read
+ * Ticks [start, count) of a packed column of integers, or of floats known to be whole, as a 64-bit base and exact differences. Times of 64 bits are read
  * as pairs of words and never become BigInts one by one: that is sixty times slower.
  */
 export function ticksOf(column: Uint8Array, number: NumberType, start: number): Ticks {
-  if (number.bytes < 8) {
+  if (number.bytes < 8 || number.family === 'float') {
     const deltaTick = new Float64Array(viewNumbers(column, number).subarray(start));
     return { baseTick: 0n, deltaTick, end: start + deltaTick.length };
   }
@@ -58,7 +58,7 @@ export function channelsOf(
   firstRecord: number,
   place: string,
 ): Uint16Array {
-  if (number.bytes === 8) return channelsOfPairs(column, firstRecord, place);
+  if (number.bytes === 8 && number.family !== 'float') return channelsOfPairs(column, firstRecord, place);
   const values = viewNumbers(column, number);
   if (values instanceof Uint16Array) return values;
   if (values instanceof Uint8Array) return Uint16Array.from(values);

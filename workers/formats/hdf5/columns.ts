@@ -1,5 +1,6 @@
 import type { Column } from '../../../shared/contracts/layout';
 import { Problem } from '../../../shared/errors/problem';
+import { gatherBytes } from '../gather';
 import type { NumberType } from '../numbers';
 import { absolutePath, type DatasetEntry, type Hdf5Tree, rowBytesOf, typeName } from './tree';
 
@@ -106,22 +107,5 @@ function elementOfColumn(
 export function gatherColumn(rows: Uint8Array, { rowBytes, offset, number }: ColumnPlace): Uint8Array {
   const { bytes } = number;
   if (rowBytes === bytes) return rows;
-  const count = rows.length / rowBytes;
-  const packed = new Uint8Array(count * bytes);
-  const isAligned = rows.byteOffset % 4 === 0 && rowBytes % 4 === 0 && offset % 4 === 0 && bytes % 4 === 0;
-  if (!isAligned) {
-    for (let byte = 0; byte < bytes; byte += 1) {
-      for (let i = 0, f = offset + byte, t = byte; i < count; i += 1, f += rowBytes, t += bytes)
-        packed[t] = rows[f]!;
-    }
-    return packed;
-  }
-  const from = new Uint32Array(rows.buffer, rows.byteOffset, rows.length / 4);
-  const to = new Uint32Array(packed.buffer);
-  const words = bytes / 4;
-  for (let word = 0; word < words; word += 1) {
-    for (let i = 0, f = offset / 4 + word, t = word; i < count; i += 1, f += rowBytes / 4, t += words)
-      to[t] = from[f]!;
-  }
-  return packed;
+  return gatherBytes(rows, offset, rowBytes, rows.length / rowBytes, bytes);
 }
