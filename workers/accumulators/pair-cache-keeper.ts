@@ -44,9 +44,7 @@ export class PairKeeper {
 
   /** Candidates of a scan, before the windows choose among them. */
   takePairs(candidates: PairSink, count: number, clock: SlotClock): void {
-    const { timeA, tau, pixelA, pixelB } = candidates;
-    const found = this.#found;
-    for (let i = 0; i < count; i++) found.add(tau[i]!, pixelA[i]!, pixelB[i]!, slotOf(clock, timeA[i]!));
+    this.#found.add(candidates, count, clock);
   }
 
   /** Sorted tags [start, stop) with times after `refTick`, which the grid covers already. */

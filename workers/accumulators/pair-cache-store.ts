@@ -1,4 +1,6 @@
-import { SLICE_LIMIT } from './slice-grid';
+import type { KeptColumns, KeptStretch } from '../kernels/pair-recount';
+import type { PairSink } from '../kernels/tag-scan';
+import { SLICE_LIMIT, type SlotClock, slotOf } from './slice-grid';
 
 /** About this many buckets of tau a store: a window then touches few pairs outside it. */
 const BUCKETS = 1024;
@@ -18,17 +20,12 @@ export interface KeptRange {
  * buffers transferable. Bucket k holds min + [k * 2^bucketBits, (k + 1) * 2^bucketBits) and fills [starts[k],
  * starts[k + 1]) of the columns.
  */
-export interface KeptPairs {
+export interface KeptPairs extends KeptColumns {
   /** Slices of 2^bits ticks; `slot` is the absolute slice index modulo 128, all of them at or after `firstSlice`. */
   bits: number;
   firstSlice: number;
   bucketBits: number;
   starts: Uint32Array;
-  /** tau above the start of its bucket. */
-  offset: Uint16Array;
-  pixelA: Uint16Array;
-  pixelB: Uint16Array;
-  slot: Uint8Array;
 }
 
 export function bucketBitsOf({ minTauTick, maxTauTick }: KeptRange): number {
@@ -51,16 +48,25 @@ export class PairColumnsKept {
     this.#range = range;
   }
 
-  add(tau: number, pixelA: number, pixelB: number, slot: number): void {
+  /** The first `count` candidates of a scan; the clock tells the slices of their times. */
+  add({ timeA, tau, pixelA, pixelB }: PairSink, count: number, clock: SlotClock): void {
     const { minTauTick, maxTauTick } = this.#range;
-    if (tau < minTauTick || tau > maxTauTick) return;
-    if (this.count === this.#rise.length) this.#grow();
-    const at = this.count;
-    this.#rise[at] = tau - minTauTick;
-    this.#pixelA[at] = pixelA;
-    this.#pixelB[at] = pixelB;
-    this.#slot[at] = slot;
-    this.count = at + 1;
+    this.#reserve(this.count + count);
+    const toRise = this.#rise;
+    const toA = this.#pixelA;
+    const toB = this.#pixelB;
+    const toSlot = this.#slot;
+    let at = this.count;
+    for (let i = 0; i < count; i++) {
+      const t = tau[i]!;
+      if (t < minTauTick || t > maxTauTick) continue;
+      toRise[at] = t - minTauTick;
+      toA[at] = pixelA[i]!;
+      toB[at] = pixelB[i]!;
+      toSlot[at] = slotOf(clock, timeA[i]!);
+      at += 1;
+    }
+    this.count = at;
   }
 
   /** Slots after the slice length doubled `doublings` times; `firstSlice` was the first in use before. */
@@ -78,6 +84,9 @@ export class PairColumnsKept {
     const mask = 2 ** bucketBits - 1;
     const count = this.count;
     const rise = this.#rise;
+    const fromA = this.#pixelA;
+    const fromB = this.#pixelB;
+    const fromSlot = this.#slot;
     const starts = new Uint32Array(buckets + 1);
     for (let i = 0; i < count; i++) starts[(rise[i]! >>> bucketBits) + 1]! += 1;
     for (let k = 0; k < buckets; k++) starts[k + 1]! += starts[k]!;
@@ -87,22 +96,62 @@ export class PairColumnsKept {
     const pixelB = new Uint16Array(count);
     const slot = new Uint8Array(count);
     for (let i = 0; i < count; i++) {
-      const at = next[rise[i]! >>> bucketBits]!++;
+      const bucket = rise[i]! >>> bucketBits;
+      const at = next[bucket]!;
+      next[bucket] = at + 1;
       offset[at] = rise[i]! & mask;
-      pixelA[at] = this.#pixelA[i]!;
-      pixelB[at] = this.#pixelB[i]!;
-      slot[at] = this.#slot[i]!;
+      pixelA[at] = fromA[i]!;
+      pixelB[at] = fromB[i]!;
+      slot[at] = fromSlot[i]!;
     }
     return { bits, firstSlice, bucketBits, starts, offset, pixelA, pixelB, slot };
   }
 
-  #grow(): void {
-    const size = Math.max(4096, 2 * this.#rise.length);
+  #reserve(pairs: number): void {
+    if (pairs <= this.#rise.length) return;
+    const size = Math.max(4096, pairs, 2 * this.#rise.length);
     this.#rise = grown(this.#rise, new Uint32Array(size));
     this.#pixelA = grown(this.#pixelA, new Uint16Array(size));
     this.#pixelB = grown(this.#pixelB, new Uint16Array(size));
     this.#slot = grown(this.#slot, new Uint8Array(size));
   }
+}
+
+/** Every bucket that holds pairs, and its start above the kept minimum. */
+export function* wholeStretches(pairs: KeptPairs): Generator<{ stretch: KeptStretch; bucketTick: number }> {
+  const { starts, bucketBits } = pairs;
+  const width = 2 ** bucketBits;
+  for (let k = 0; k + 1 < starts.length; k++) {
+    const start = starts[k]!;
+    const stop = starts[k + 1]!;
+    if (start < stop) yield { stretch: { pairs, start, stop, lo: 0, hi: width - 1 }, bucketTick: k * width };
+  }
+}
+
+/** Pairs with tau in [lo, hi] above the kept minimum: only the outermost buckets hold others as well. */
+export function stretchesIn(pairs: KeptPairs, lo: number, hi: number): KeptStretch[] {
+  const { starts, bucketBits } = pairs;
+  const width = 2 ** bucketBits;
+  const first = Math.floor(lo / width);
+  const last = Math.floor(hi / width);
+  const part = (from: number, to: number, least: number, most: number): KeptStretch => ({
+    pairs,
+    start: starts[from]!,
+    stop: starts[to]!,
+    lo: least,
+    hi: most,
+  });
+  const least = lo - first * width;
+  const most = hi - last * width;
+  const parts =
+    first === last
+      ? [part(first, first + 1, least, most)]
+      : [
+          part(first, first + 1, least, width - 1),
+          part(first + 1, last, 0, width - 1),
+          part(last, last + 1, 0, most),
+        ];
+  return parts.filter(({ start, stop }) => start < stop);
 }
 
 export function keptBytes(pairs: KeptPairs): number {
