@@ -1,28 +1,12 @@
-import { isTextLike } from './text-like';
+import { isTextLike, isUtf16 } from './text-like';
 
 const magics: { bytes: number[]; what: string; wayOut: string }[] = [
   { bytes: [0x1f, 0x8b, 0x08], what: 'a gzip archive', wayOut: 'unpack it first' },
-  { bytes: [0x50, 0x4b, 0x03, 0x04], what: 'a zip archive', wayOut: 'unpack it first' },
   { bytes: [0x28, 0xb5, 0x2f, 0xfd], what: 'a zstd archive', wayOut: 'unpack it first' },
   { bytes: [0xfd, 0x37, 0x7a, 0x58, 0x5a], what: 'an xz archive', wayOut: 'unpack it first' },
   { bytes: [0x89, 0x50, 0x4e, 0x47], what: 'a PNG picture', wayOut: 'choose the raw data it was made from' },
   { bytes: [0xff, 0xd8, 0xff], what: 'a JPEG picture', wayOut: 'choose the raw data it was made from' },
   { bytes: [0x25, 0x50, 0x44, 0x46], what: 'a PDF document', wayOut: 'choose the raw data instead' },
-  {
-    bytes: [0x49, 0x49, 0x2a, 0x00],
-    what: 'a TIFF picture',
-    wayOut: 'save the frames as one 3-D dataset of HDF5',
-  },
-  {
-    bytes: [0x4d, 0x4d, 0x00, 0x2a],
-    what: 'a TIFF picture',
-    wayOut: 'save the frames as one 3-D dataset of HDF5',
-  },
-  {
-    bytes: [0x93, 0x4e, 0x55, 0x4d, 0x50, 0x59],
-    what: 'a NumPy array',
-    wayOut: 'save it as a dataset of HDF5',
-  },
 ];
 
 /** What bytes that are no acquisition look like, and the way out; null when they look like nothing known. */
@@ -30,10 +14,12 @@ export function lookAt(head: Uint8Array): { what: string; wayOut: string } | nul
   for (const { bytes, what, wayOut } of magics) {
     if (bytes.every((byte, at) => head[at] === byte)) return { what, wayOut };
   }
+  if (isUtf16(head)) return { what: 'text in UTF-16', wayOut: 'save it as UTF-8 and choose that file' };
   if (!isTextLike(head)) return null;
   return {
     what: describeText(head),
-    wayOut: 'choose the file that the acquisition wrote, or convert the text to HDF5',
+    wayOut:
+      'choose the file that the acquisition wrote: text is read where lines hold a time and a channel in columns',
   };
 }
 

@@ -4,10 +4,13 @@ import type { ByteSource, Format, Reader, ReaderEnvironment } from '../../shared
 import { Problem } from '../../shared/errors/problem';
 import { hdf5Format } from './hdf5/format';
 import { lookAt } from './look';
+import { npyFormat } from './npy/format';
 import { recordsFormat } from './records/format';
+import { textFormat } from './text/format';
+import { tiffFormat } from './tiff/format';
 
 /** Every format that can be read. Adding one: a folder, a line here, a sample. */
-export const formats: readonly Format[] = [hdf5Format, recordsFormat];
+export const formats: readonly Format[] = [hdf5Format, npyFormat, tiffFormat, textFormat, recordsFormat];
 
 export function formatById(id: FormatId): Format {
   const format = formats.find((each) => each.id === id);
@@ -81,15 +84,22 @@ function agreeing(layout: Layout, head: Uint8Array, source: ByteSource): Format 
   const look = lookAt(head);
   // Records may read as text by chance while they are few; what lacks the signature of HDF5 is no HDF5 at any length.
   const isText = look !== null && (format.id === 'hdf5' || head.length >= tellingBytes);
-  if (!surest && isText && format.sniff(head, source) === 0) {
+  // What is described as text may be any: its reader names the line that does not fit.
+  if (!surest && isText && format.id !== 'text' && format.sniff(head, source) === 0) {
     throw foreign(source, `${nameOf(layout.format)}, as the layout says`, look);
   }
   return format;
 }
 
-function nameOf(id: FormatId): string {
-  return id === 'hdf5' ? 'HDF5' : 'binary records';
-}
+const names: Record<FormatId, string> = {
+  hdf5: 'HDF5',
+  records: 'binary records',
+  npy: 'a NumPy array',
+  tiff: 'a TIFF stack',
+  text: 'columns of text',
+};
+
+const nameOf = (id: FormatId): string => names[id];
 
 function foreign(
   source: ByteSource,
