@@ -6,6 +6,7 @@ import { isSignedOut } from '../lib/errors/request-problem';
 import { meQuery } from '../lib/query/me';
 import { queryClient } from '../lib/query/query-client';
 import { signInPath } from '../lib/query/sign-in-path';
+import { useEngineSettings } from '../lib/workers/engine-settings';
 import { Opening } from '../shell/Opening';
 import type { RouteTraits } from '../shell/route-traits';
 import { Shell } from '../shell/Shell';
@@ -13,7 +14,8 @@ import { Shell } from '../shell/Shell';
 /** Signed-in pages start knowing who is there; others are sent to the sign-in and come back. */
 export async function loadMe({ request }: LoaderFunctionArgs): Promise<null> {
   try {
-    await queryClient.ensureQueryData(meQuery);
+    const { user } = await queryClient.ensureQueryData(meQuery);
+    useEngineSettings.getState().openFor(user.id);
     return null;
   } catch (error) {
     if (!isSignedOut(error)) throw error;

@@ -1,19 +1,22 @@
 import { useMutation } from '@tanstack/react-query';
 import { ChevronDown } from 'lucide-react';
+import { useState } from 'react';
 import { useNavigate } from 'react-router-dom';
 import { ProblemNote } from '../components/page/ProblemNote';
 import { Dialog } from '../components/ui/Dialog';
 import { Menu, type MenuItem } from '../components/ui/Menu';
 import { useGroupChoice } from '../lib/query/group-choice';
 import { useGroup, useMe } from '../lib/query/me';
+import { EngineDialog } from './EngineDialog';
 import { signOut } from './sign-out';
 
-/** Name and role; groups when there are several; account and the way out. */
+/** Name and role; groups when there are several; account, engine and the way out. */
 export function PersonMenu() {
   const me = useMe();
   const group = useGroup();
   const choose = useGroupChoice((state) => state.choose);
   const navigate = useNavigate();
+  const [engineOpen, setEngineOpen] = useState(false);
   const leaving = useMutation({ mutationFn: signOut });
   const groups: MenuItem[] =
     me.groups.length < 2
@@ -34,6 +37,7 @@ export function PersonMenu() {
     { kind: 'separator', id: 'person' },
     ...groups,
     { label: 'Account', onSelect: () => void navigate('/account') },
+    { label: 'Engine …', onSelect: () => setEngineOpen(true) },
     { label: 'Sign out', onSelect: () => leaving.mutate() },
   ];
   return (
@@ -52,6 +56,7 @@ export function PersonMenu() {
           </button>
         }
       />
+      {engineOpen ? <EngineDialog onClose={() => setEngineOpen(false)} /> : null}
       <Dialog
         open={leaving.isError}
         onOpenChange={() => leaving.reset()}

@@ -3,25 +3,24 @@ import type { EngineHost } from '../../../shared/contracts/engine';
 import type { Outcome } from '../../../shared/contracts/outcome';
 import { toProblemData } from '../../../shared/errors/problem';
 import type { EngineDoor } from './engine-door';
-
-/** Beyond four the reading of the file is the limit, not the counting. */
-const MOST_WORKERS = 4;
+import { type EngineSettings, useEngineSettings, workerCount } from './engine-settings';
 
 interface Link {
+  /** What it was started with. */
+  settings: EngineSettings;
   host: Remote<EngineHost>;
   /** Resolves, with the outcome every waiting call gets, only when a worker stops. */
   failed: Promise<Outcome<never>>;
   stop(sentence: string): void;
 }
 
-function startLink(): Link {
+function startLink(settings: EngineSettings): Link {
   const coordinator = new Worker(new URL('../../../workers/entries/engine.worker.ts', import.meta.url), {
     type: 'module',
     name: 'gemel engine',
   });
-  const count = Math.max(1, Math.min(MOST_WORKERS, navigator.hardwareConcurrency));
   const hands = Array.from(
-    { length: count },
+    { length: workerCount(settings) },
     (_, i) =>
       new Worker(new URL('../../../workers/entries/compute.worker.ts', import.meta.url), {
         type: 'module',
@@ -53,20 +52,33 @@ function startLink(): Link {
   host.attach(transfer(ports, ports)).catch((thrown: unknown) => {
     stop(`The engine could not reach its compute workers: ${toProblemData(thrown).message} Start it again.`);
   });
-  return { host, failed, stop };
+  return { settings, host, failed, stop };
 }
 
-/** Starts the workers at the first call; one engine serves the page. */
-export function createEngineDoor(): EngineDoor {
+/**
+ * Starts the workers at the first call; one engine serves the page. Other settings start it anew, at the next call that
+ * finds it idle: a run under way goes on as it began.
+ */
+export function createEngineDoor(readSettings: () => EngineSettings): EngineDoor {
   let link: Link | null = null;
+  let waiting = 0;
+  const restart = (): void => {
+    link?.stop('The engine was started again before this was done.');
+    link = null;
+  };
   const call = async <T>(ask: (host: Remote<EngineHost>) => Promise<Outcome<T>>): Promise<Outcome<T>> => {
+    const settings = readSettings();
+    if (waiting === 0 && link !== null && link.settings !== settings) restart();
+    waiting += 1;
     try {
-      link ??= startLink();
+      link ??= startLink(settings);
       const current = link;
       const outcome = await Promise.race([ask(current.host), current.failed.then((o): Outcome<T> => o)]);
       return outcome;
     } catch (thrown) {
       return { status: 'error', problem: toProblemData(thrown) };
+    } finally {
+      waiting -= 1;
     }
   };
   return {
@@ -77,16 +89,13 @@ export function createEngineDoor(): EngineDoor {
       // A cancel that cannot be delivered has nothing left to cancel: `run` already answers with the failure.
       void call(async (host) => ({ status: 'ok', value: await host.cancel(jobId) }));
     },
-    restart: () => {
-      link?.stop('The engine was started again before this was done.');
-      link = null;
-    },
+    restart,
   };
 }
 
 let door: EngineDoor | null = null;
 
 export function getEngine(): EngineDoor {
-  door ??= createEngineDoor();
+  door ??= createEngineDoor(() => useEngineSettings.getState().settings);
   return door;
 }
