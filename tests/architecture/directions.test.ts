@@ -32,6 +32,7 @@ const allowed: Record<string, readonly string[]> = {
     'workers/simulate',
     'shared',
   ],
+  'workers/vite.config.ts': [],
   'samples/generators': ['workers/simulate', 'workers/entries/node-writers.ts', 'shared'],
 
   'server/platform': ['shared'],

@@ -35,7 +35,7 @@ export function gemel(
   onStderr?: (text: string, interrupt: () => void) => void,
 ): Promise<Answer> {
   return new Promise((resolve, reject) => {
-    const child = spawn(process.execPath, ['--import', 'tsx', 'workers/entries/cli.ts', ...args], {
+    const child = spawn(process.execPath, ['workers/entries/start.mjs', ...args], {
       cwd: root,
       env: { PATH: process.env.PATH },
     });

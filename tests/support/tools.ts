@@ -1,7 +1,7 @@
 import { spawnSync } from 'node:child_process';
 import { existsSync } from 'node:fs';
 
-/** Programs the tests need beside Node: a browser, and a second HDF5 writer that is not ours. */
+/** Programs the tests need beside Node: a browser, a second HDF5 writer that is not ours, and a spreader of shards. */
 
 const chromiumPaths = ['/usr/bin/chromium', '/usr/bin/chromium-browser', '/usr/bin/google-chrome'];
 
@@ -18,6 +18,12 @@ export function findPythonWithH5py(): string | null {
   return null;
 }
 
+export function findParallel(): string | null {
+  // Debian's moreutils has another program of this name; only GNU's says whose it is.
+  const { stdout } = spawnSync('parallel', ['--version'], { encoding: 'utf8' });
+  return stdout?.startsWith('GNU parallel') ? 'parallel' : null;
+}
+
 interface Tool {
   debian: string;
   purpose: string;
@@ -27,6 +33,7 @@ interface Tool {
 const tools: readonly Tool[] = [
   { debian: 'chromium', purpose: 'the browser tests', find: findChromium },
   { debian: 'python3-h5py', purpose: 'the tests on files that h5py wrote', find: findPythonWithH5py },
+  { debian: 'parallel', purpose: 'the tests of runs on many machines', find: findParallel },
 ];
 
 /** Installs what is missing from Debian when that is allowed; throws with what to install otherwise. Never skips. */
