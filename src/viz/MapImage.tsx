@@ -1,12 +1,13 @@
 import { HeatmapRect } from '@visx/heatmap';
-import { memo, useEffect, useMemo, useRef } from 'react';
+import { memo, useEffect, useMemo, useRef, useState } from 'react';
 import type { MapData } from '../../shared/contracts/output';
 import { type ColourScale, paletteIndex } from './colour-scale';
+import { runInSteps } from './in-steps';
 import type { BinTransform } from './map-layout';
 import { gridOf, isBlank } from './map-values';
 import type { PlotRect } from './PlotAxes';
 import type { Palette } from './palettes';
-import { buildBlankImage, buildImage, drawRaster } from './raster';
+import { drawRaster, paintRaster, type Raster } from './raster';
 
 interface RectsProps {
   map: MapData;
@@ -47,6 +48,21 @@ export const MapRects = memo(function MapRects({ map, scale, palette }: RectsPro
   );
 });
 
+const NOTHING: Raster = { image: null, blank: null };
+
+/** The map painted, in short tasks; what was painted before stays until it is. */
+function useRaster(map: MapData, scale: ColourScale, palette: Palette, blank: number): Raster {
+  const [raster, setRaster] = useState(NOTHING);
+  useEffect(() => {
+    let painted = NOTHING;
+    const steps = paintRaster(map, scale, palette, blank, (done) => {
+      painted = done;
+    });
+    return runInSteps(steps, () => setRaster(painted));
+  }, [map, scale, palette, blank]);
+  return raster;
+}
+
 interface CanvasProps extends RectsProps {
   blank: number;
   rect: PlotRect;
@@ -56,8 +72,7 @@ interface CanvasProps extends RectsProps {
 /** Large maps: a look-up table of 32-bit pixels, painted once, placed at every zoom. */
 export function MapCanvas({ map, scale, palette, blank, rect, transform }: CanvasProps) {
   const ref = useRef<HTMLCanvasElement>(null);
-  const image = useMemo(() => buildImage(map, scale, palette), [map, scale, palette]);
-  const blankImage = useMemo(() => buildBlankImage(map, blank), [map, blank]);
+  const { image, blank: blankImage } = useRaster(map, scale, palette, blank);
   useEffect(() => {
     const canvas = ref.current;
     const context = canvas?.getContext('2d');

@@ -36,12 +36,13 @@ export function computeExtremes(map: MapData): Extremes {
     maxIndex: -1,
     blank: 0,
   };
-  for (let i = 0; i < map.data.length; i++) {
-    if (isBlank(map, i)) {
+  const { data, masked } = map;
+  for (let i = 0; i < data.length; i++) {
+    const value = data[i]!;
+    if (Number.isNaN(value) || (masked !== undefined && masked[i] !== 0)) {
       found.blank++;
       continue;
     }
-    const value = map.data[i]!;
     if (!Number.isFinite(value)) continue;
     if (value < found.min) found.min = value;
     if (value > 0 && value < found.minPositive) found.minPositive = value;

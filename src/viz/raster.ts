@@ -6,21 +6,44 @@ import { gridOf, isBlank } from './map-values';
 import type { PlotRect } from './PlotAxes';
 import { type Palette, SCALE_SIZE } from './palettes';
 
+/** Bins painted before the page is given a chance to do something else: about a millisecond. */
+const STEP_BINS = 2 ** 17;
+
 /** One pixel a bin, row 0 first; blank bins stay transparent. `out` holds nx * ny pixels. */
-export function paintPixels(map: MapData, scale: ColourScale, palette: Palette, out: Uint32Array): void {
+export function* paintPixels(
+  map: MapData,
+  scale: ColourScale,
+  palette: Palette,
+  out: Uint32Array,
+): Generator<void> {
   // Linear scales take no logarithm and no call a bin.
   const factor = (SCALE_SIZE - 1) / (scale.hi - scale.lo);
   const { pixels } = palette;
-  for (let i = 0; i < out.length; i++) {
-    if (isBlank(map, i)) {
-      out[i] = 0;
-      continue;
+  const { data, masked } = map;
+  const { log, lo } = scale;
+  for (let from = 0; from < out.length; from += STEP_BINS) {
+    const to = Math.min(out.length, from + STEP_BINS);
+    for (let i = from; i < to; i++) {
+      const value = data[i]!;
+      if (Number.isNaN(value) || (masked !== undefined && masked[i] !== 0)) {
+        out[i] = 0;
+        continue;
+      }
+      const place = log
+        ? paletteIndex(scale, value)
+        : Math.min(SCALE_SIZE - 1, Math.max(0, Math.round((value - lo) * factor)));
+      out[i] = pixels[place]!;
     }
-    const value = map.data[i]!;
-    const place = scale.log
-      ? paletteIndex(scale, value)
-      : Math.min(SCALE_SIZE - 1, Math.max(0, Math.round((value - scale.lo) * factor)));
-    out[i] = pixels[place]!;
+    yield;
+  }
+}
+
+/** Opaque where a bin is blank. */
+function* paintBlanks(map: MapData, out: Uint32Array): Generator<void> {
+  for (let from = 0; from < out.length; from += STEP_BINS) {
+    const to = Math.min(out.length, from + STEP_BINS);
+    for (let i = from; i < to; i++) out[i] = isBlank(map, i) ? 0xff000000 : 0;
+    yield;
   }
 }
 
@@ -41,21 +64,30 @@ function imageSurface(
   return context;
 }
 
-/** The map at one pixel a bin, ready to be drawn at any zoom. */
-export function buildImage(map: MapData, scale: ColourScale, palette: Palette): HTMLCanvasElement | null {
-  const { nx, ny } = gridOf(map);
-  const pixels = new Uint32Array(nx * ny);
-  paintPixels(map, scale, palette, pixels);
-  return imageSurface(nx, ny, pixels)?.canvas ?? null;
+/** A map at one pixel a bin, ready to be drawn at any zoom. */
+export interface Raster {
+  image: HTMLCanvasElement | null;
+  /** Opaque where a bin is blank, or null when none is. */
+  blank: HTMLCanvasElement | null;
 }
 
-/** Opaque where a bin is blank, or null when none is. */
-export function buildBlankImage(map: MapData, blank: number): HTMLCanvasElement | null {
-  if (blank === 0) return null;
+/** Paints a map step by step; `onDone` gets it at the end. */
+export function* paintRaster(
+  map: MapData,
+  scale: ColourScale,
+  palette: Palette,
+  blanks: number,
+  onDone: (raster: Raster) => void,
+): Generator<void> {
   const { nx, ny } = gridOf(map);
   const pixels = new Uint32Array(nx * ny);
-  for (let i = 0; i < pixels.length; i++) pixels[i] = isBlank(map, i) ? 0xff000000 : 0;
-  return imageSurface(nx, ny, pixels)?.canvas ?? null;
+  yield* paintPixels(map, scale, palette, pixels);
+  const image = imageSurface(nx, ny, pixels)?.canvas ?? null;
+  if (blanks === 0) return onDone({ image, blank: null });
+  yield;
+  const opaque = new Uint32Array(nx * ny);
+  yield* paintBlanks(map, opaque);
+  onDone({ image, blank: imageSurface(nx, ny, opaque)?.canvas ?? null });
 }
 
 export interface RasterFrame {

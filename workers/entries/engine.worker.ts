@@ -3,6 +3,7 @@ import type { Engine, EngineHost } from '../../shared/contracts/engine';
 import { Problem } from '../../shared/errors/problem';
 import { connectCompute } from '../pipeline/compute-remote';
 import { createEngine } from '../pipeline/engine';
+import { withTransfers } from '../pipeline/engine-remote';
 import { studies } from '../studies/registry';
 
 /** The coordinating worker of the page. It must be attached to its compute workers before anything else. */
@@ -23,4 +24,4 @@ const host: EngineHost = {
   cancel: (jobId) => attached().cancel(jobId),
 };
 
-Comlink.expose(host);
+Comlink.expose(withTransfers(host));

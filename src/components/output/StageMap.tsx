@@ -18,11 +18,13 @@ const NOISE_SHARE = 0.2;
 export function usePresentable(map: MapData): MapData {
   return useMemo(() => {
     if (map.scale !== 'signed' || (map.unit !== 'pairs' && map.unit !== 'counts')) return map;
+    const { data, masked } = map;
     let [lo, hi] = [0, 0];
-    for (let i = 0; i < map.data.length; i++) {
-      if (map.masked?.[i] === 1) continue;
-      lo = Math.min(lo, map.data[i]!);
-      hi = Math.max(hi, map.data[i]!);
+    for (let i = 0; i < data.length; i++) {
+      if (masked?.[i] === 1) continue;
+      const value = data[i]!;
+      if (value < lo) lo = value;
+      if (value > hi) hi = value;
     }
     return -lo < NOISE_SHARE * hi ? { ...map, scale: 'counts' } : map;
   }, [map]);

@@ -113,7 +113,7 @@ describe('colour scale', () => {
     for (const log of [false, true]) {
       const scale = buildColourScale('counts', of(map), undefined, log);
       const out = new Uint32Array(12);
-      paintPixels(map, scale, palette, out);
+      for (const _ of paintPixels(map, scale, palette, out));
       map.data.forEach((value, i) => {
         expect(out[i]).toBe(i === 5 ? 0 : palette.pixels[paletteIndex(scale, value)]);
       });
