@@ -77,8 +77,11 @@ export interface TagSpec {
   histogram: { loTick: number; binTick: number; bins: number };
   /** null: histogram and singles only (the pass that looks for the delay). */
   window: { loTick: number; hiTick: number; shiftsTick: number[] } | null;
-  /** Keep every pair with tau in here, both ends included: windows and histograms inside it then need no bytes. */
-  keepPairs?: { minTauTick: number; maxTauTick: number };
+  /**
+   * Keep every pair with tau in here, both ends included: windows and histograms inside it then need no bytes. A range
+   * with more than `most` of them keeps none.
+   */
+  keepPairs?: { minTauTick: number; maxTauTick: number; most?: number };
 }
 
 export interface ArmSpec {
@@ -121,11 +124,16 @@ export interface FrameTally {
   /** Frame totals per block, for drift: mean total of a frame in each block. */
   blockFrames: Float64Array;
   blockTotals: Float64Array;
-  /** Per bootstrap block (blocks = blockFrames.length), same layout as the totals, without end-frame correction. */
-  blockPlus: Float64Array;
-  blockMinus: Float64Array;
-  blockDiagonal: Float64Array;
   blockDifferences: Float64Array;
+  /** Cut-out of both maps that is kept block by block: first column and row, size. It lies around their middle. */
+  blockWindow: { x: number; y: number; nx: number; ny: number };
+  /**
+   * Per bootstrap block (blocks = blockFrames.length) the sums of D_k D_k / 2 inside the window, row-major, in single
+   * precision: they serve the bootstrap alone. In `blockPlus` i = j is taken out, in `blockMinus` it sits on lag 0. Null
+   * where the block has no difference. Not to be written to: the counts may go on using them.
+   */
+  blockPlus: readonly (Float32Array | null)[];
+  blockMinus: readonly (Float32Array | null)[];
 }
 
 export interface FrameSpec {
@@ -136,6 +144,14 @@ export interface FrameSpec {
   frames: number;
   blocks: number;
   masked: Uint8Array;
+  /** Taken from every pixel; left out: 0. */
+  offset?: number;
+  /** Photon counting: 1 where the value less `offset` is above it, else 0. Null or left out: the value itself. */
+  threshold?: number | null;
+  /** Every frame is scaled to the mean total of all frames. */
+  normalised?: boolean;
+  /** Largest side of the maps that are kept block by block; left out: 511, the whole map of 256 pixels. */
+  blockSide?: number;
 }
 
 export type Tally = TagTally | FrameTally;

@@ -14,9 +14,10 @@ export interface FrameSums {
   plus: Float64Array;
   minus: Float64Array;
   blockTotals: Float64Array;
-  blockPlus: Float64Array;
-  blockMinus: Float64Array;
-  blockDiagonal: Float64Array;
+  /** Cut-out of the maps kept block by block, i = j taken out of `blockPlus`. */
+  blockWindow: { x: number; y: number; nx: number; ny: number };
+  blockPlus: readonly (Float32Array | null)[];
+  blockMinus: readonly (Float32Array | null)[];
 }
 
 /** Sum- and difference-coordinate maps of an image with itself, (2H-1)*(2W-1). */
@@ -42,7 +43,9 @@ export interface FrameMap {
   /** 1 where the bin is left out: overlap under 5 % of the largest, own pairs, neighbour crosstalk. */
   blocked: Uint8Array;
   blocks: number;
-  /** Share of block b in bin `cell`; blocks sum to `value` up to the end frames. */
+  /** Where `blockValue` is known. */
+  blockWindow: FrameSums['blockWindow'];
+  /** Share of block b in bin `cell`; blocks sum to `value` up to the end frames. 0 outside the window. */
   blockValue(block: number, cell: number): number;
 }
 
@@ -65,7 +68,6 @@ export function buildFrameMaps(
   const blocks = sums.blockTotals.length;
   const per = 1 / Math.max(frames - 1, 1);
   const cells = size.nx * size.ny;
-  const pixels = width * height;
   const centre = (height - 1) * size.nx + width - 1;
 
   const plusPairs = overlap.plus.map((n, c) => Math.max(Math.round(n) - ownShare(c, size, open), 0));
@@ -81,10 +83,11 @@ export function buildFrameMaps(
     ),
     blocked: blockedBins(plusPairs),
     blocks,
-    blockValue: (b, c) =>
-      per * ((sums.blockPlus[b * cells + c] as number) - ownShare(c, size, sums.blockDiagonal, b * pixels)),
+    blockWindow: sums.blockWindow,
+    blockValue: blockShare(sums.blockPlus, sums.blockWindow, size.nx, per),
   };
 
+  const minusShare = blockShare(sums.blockMinus, sums.blockWindow, size.nx, per);
   const minusPairs = overlap.minus.map((n, c) => (c === centre ? 0 : Math.round(n)));
   const minusBlocked = blockedBins(minusPairs);
   for (let c = 0; c < cells; c += 1) {
@@ -101,9 +104,25 @@ export function buildFrameMaps(
     variance: noise.minus.map((v) => CONSECUTIVE_VARIANCE * per * Math.max(v, 0)),
     blocked: minusBlocked,
     blocks,
-    blockValue: (b, c) => (c === centre ? 0 : per * (sums.blockMinus[b * cells + c] as number)),
+    blockWindow: sums.blockWindow,
+    blockValue: (b, c) => (c === centre ? 0 : minusShare(b, c)),
   };
   return { plus, minus };
+}
+
+function blockShare(
+  maps: readonly (Float32Array | null)[],
+  window: FrameSums['blockWindow'],
+  nx: number,
+  per: number,
+): (block: number, cell: number) => number {
+  return (block, cell) => {
+    const map = maps[block] ?? null;
+    const x = (cell % nx) - window.x;
+    const y = Math.floor(cell / nx) - window.y;
+    if (map === null || x < 0 || y < 0 || x >= window.nx || y >= window.ny) return 0;
+    return per * (map[y * window.nx + x] as number);
+  };
 }
 
 interface MapSize {
@@ -114,11 +133,11 @@ interface MapSize {
 }
 
 /** Value of the image at i with 2 i = s: own pairs sit on even sums only. */
-function ownShare(cell: number, size: MapSize, image: Float64Array, offset = 0): number {
+function ownShare(cell: number, size: MapSize, image: Float64Array): number {
   const sx = cell % size.nx;
   const sy = Math.floor(cell / size.nx);
   if (sx % 2 === 1 || sy % 2 === 1) return 0;
-  return image[offset + (sy / 2) * size.width + sx / 2] as number;
+  return image[(sy / 2) * size.width + sx / 2] as number;
 }
 
 function fullOverlap(cell: number, size: MapSize, kind: FrameMapKind): number {

@@ -1,10 +1,21 @@
 import type { FrameBlock } from '../../shared/contracts/blocks';
 import type { FrameSpec, FrameTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
-import { FrameSpectra } from '../kernels/frame-spectra';
-import { addDiagonal, addOuter, projectFrame, subtract, takeFrame } from '../kernels/frame-sums';
+import { type FrameMaps, type FrameShape, ReadableFrameMaps } from '../kernels/frame-maps';
+import { borrowFrameMaps, returnFrameMaps } from '../kernels/frame-maps-wasm';
 import type { FrameWasm } from '../kernels/frame-wasm';
-import { assertFramePart, type BlockSums, type FramePart, type Segment } from './frame-part';
+import {
+  assertFramePart,
+  type BlockSums,
+  blockWindow,
+  createTotals,
+  type FramePart,
+  type FrameTotals,
+  frameKey,
+  type Segment,
+  totalNames,
+} from './frame-part';
+import { addEnds, scaleToMean } from './frame-tally';
 import { addInto } from './pair-store';
 
 /**
@@ -13,47 +24,45 @@ import { addInto } from './pair-store';
  *   sum_l [I_l I_l - sym(I_l I_(l+1))] = sum_k D_k D_k / 2 + (I_first I_first - I_last I_last)/2
  * (derived here). Ranges that are not neighbours may be merged: stretches join when the gap between them closes.
  *
- * Memory: 16 (2H-1)(2W-1) + 8 HW bytes a touched block, 270 MB for 64 blocks at 256 x 256. Block maps are not cropped.
+ * Memory: whole maps in doubles for the totals, 16 (2H-1)(2W-1) bytes; 8 bytes per cell of the block window for every
+ * touched block, 134 MB for 64 blocks of 256 x 256. Looks share the block maps, they do not copy them.
  */
 export class FrameAccumulator {
   readonly kind = 'frames';
   readonly #spec: FrameSpec;
-  readonly #spectra: FrameSpectra;
-  readonly #sum: Float64Array;
-  readonly #sumSquares: Float64Array;
-  readonly #jointX: Float64Array;
-  readonly #jointY: Float64Array;
+  readonly #shape: FrameShape;
+  readonly #kernels: FrameWasm | null;
+  #totals: FrameTotals | null = null;
   readonly #blocks = new Map<number, BlockSums>();
+  /** Block maps that a tally has: to be copied before they grow. */
+  readonly #shared = new Set<BlockSums>();
   /** In order of frames. */
   #segments: Segment[] = [];
-  /** Block whose spectra are being summed, null when none. */
+  /** Kernels in use, and the stretch whose end they hold; its `lastImage` is behind. */
+  #maps: FrameMaps | null = null;
+  #readable: ReadableFrameMaps | null = null;
+  #running: Segment | null = null;
+  /** Block whose differences the kernels sum, null when none. */
   #open: number | null = null;
-  /** A difference of the open block that waits for a second one to share its transform. */
-  #waiting = false;
-  #difference: Float64Array;
-  #waitingDifference: Float64Array;
-  #incoming: Float64Array;
-  readonly #columns: Float64Array;
-  readonly #rows: Float64Array;
 
-  constructor(spec: FrameSpec) {
-    const pixels = spec.width * spec.height;
+  constructor(spec: FrameSpec, kernels: FrameWasm | null = null) {
+    const { width, height, masked } = spec;
     this.#spec = spec;
-    this.#spectra = new FrameSpectra(spec.width, spec.height);
-    this.#sum = new Float64Array(pixels);
-    this.#sumSquares = new Float64Array(pixels);
-    this.#jointX = new Float64Array(spec.width * spec.width);
-    this.#jointY = new Float64Array(spec.height * spec.height);
-    this.#difference = new Float64Array(pixels);
-    this.#waitingDifference = new Float64Array(pixels);
-    this.#incoming = new Float64Array(pixels);
-    this.#columns = new Float64Array(spec.width);
-    this.#rows = new Float64Array(spec.height);
+    this.#kernels = kernels;
+    this.#shape = {
+      width,
+      height,
+      masked,
+      offset: spec.offset ?? 0,
+      threshold: spec.threshold ?? null,
+      normalised: spec.normalised ?? false,
+    };
   }
 
   /**
    * Takes the next frames, however many. A jump in the frame index starts a new stretch.
-   * @throws Problem `bad-input` for another shape, or a pixel that is not masked and holds no finite number.
+   * @throws Problem `bad-input` for another shape, a pixel that is not masked and holds no finite number, or a frame
+   * without light that is to be normalised.
    */
   push(block: FrameBlock): void {
     if (block.kind !== 'frames') {
@@ -62,26 +71,14 @@ export class FrameAccumulator {
         'Frames were expected but time tags were found; choose a stack of frames.',
       );
     }
-    const { width, height, masked } = this.#spec;
+    const { width, height } = this.#spec;
     if (block.width !== width || block.height !== height) {
       throw new Problem(
         'bad-input',
         `Frames of ${width} x ${height} were expected, ${block.width} x ${block.height} were found.`,
       );
     }
-    for (let i = 0; i < block.count; i++) {
-      const start = i * width * height;
-      const { total, squares } = takeFrame(
-        block.pixels,
-        start,
-        masked,
-        this.#incoming,
-        this.#sum,
-        this.#sumSquares,
-      );
-      if (!Number.isFinite(squares)) throw notNumber(this.#incoming, width, block.firstFrame + i);
-      this.#append(block.firstFrame + i, total);
-    }
+    for (let i = 0; i < block.count; i++) this.#append(block, i);
     if (this.#segments.length > 1) this.#joinSegments();
   }
 
@@ -97,10 +94,9 @@ export class FrameAccumulator {
   }
 
   tally(): FrameTally {
-    this.#close();
+    this.#settle();
     const { width, height, masked, blocks } = this.#spec;
-    const cells = (2 * width - 1) * (2 * height - 1);
-    const pixels = width * height;
+    const totals = structuredClone(this.#totals ?? createTotals(this.#spec));
     const tally: FrameTally = {
       kind: 'frames',
       width,
@@ -108,37 +104,23 @@ export class FrameAccumulator {
       frames: 0,
       differences: 0,
       masked: masked.slice(),
-      sum: this.#sum.slice(),
-      sumSquares: this.#sumSquares.slice(),
-      diagonal: new Float64Array(pixels),
-      plus: new Float64Array(cells),
-      minus: new Float64Array(cells),
-      jointX: this.#jointX.slice(),
-      jointY: this.#jointY.slice(),
+      ...totals,
       blockFrames: new Float64Array(blocks),
       blockTotals: new Float64Array(blocks),
-      blockPlus: new Float64Array(blocks * cells),
-      blockMinus: new Float64Array(blocks * cells),
-      blockDiagonal: new Float64Array(blocks * pixels),
       blockDifferences: new Float64Array(blocks),
+      blockWindow: blockWindow(this.#spec),
+      blockPlus: Array.from({ length: blocks }, (_, b) => this.#shareBlock(b, 'plus')),
+      blockMinus: Array.from({ length: blocks }, (_, b) => this.#shareBlock(b, 'minus')),
     };
-    for (let block = 0; block < blocks; block++) {
-      const sums = this.#blocks.get(block);
-      if (sums === undefined) continue;
+    for (const [block, sums] of this.#blocks) {
       tally.frames += sums.frames;
       tally.differences += sums.differences;
       tally.blockFrames[block] = sums.frames;
       tally.blockTotals[block] = sums.frames > 0 ? sums.total / sums.frames : 0;
       tally.blockDifferences[block] = sums.differences;
-      tally.blockPlus.set(sums.plus, block * cells);
-      tally.blockMinus.set(sums.minus, block * cells);
-      tally.blockDiagonal.set(sums.diagonal, block * pixels);
-      addInto(tally.plus, sums.plus);
-      addInto(tally.minus, sums.minus);
-      addInto(tally.diagonal, sums.diagonal);
     }
-    this.#correctEnds(tally);
-    return tally;
+    addEnds(tally, this.#segments);
+    return this.#shape.normalised ? scaleToMean(tally) : tally;
   }
 
   /** A copy as plain data; its buffers may be transferred. */
@@ -146,110 +128,139 @@ export class FrameAccumulator {
     return structuredClone(this.#view());
   }
 
-  /** Fills an accumulator that has counted nothing yet. */
+  /** Fills an accumulator that has counted nothing yet; the part's arrays become its own. */
   load(part: FramePart): void {
-    this.#add(part);
+    this.#totals = part.totals;
+    for (const { block, ...sums } of part.touched) this.#blocks.set(block, sums);
+    this.#segments = part.segments;
   }
 
   /** All sums as they are, not copied. */
   #view(): FramePart {
-    this.#close();
-    const { width, height, frames, blocks } = this.#spec;
+    this.#settle();
     return {
-      part: 1,
+      part: 2,
       kind: 'frames',
-      width,
-      height,
-      frames,
-      blocks,
-      sum: this.#sum,
-      sumSquares: this.#sumSquares,
-      jointX: this.#jointX,
-      jointY: this.#jointY,
+      key: frameKey(this.#spec),
+      totals: this.#ownTotals(),
       touched: [...this.#blocks].map(([block, sums]) => ({ ...sums, block })),
       segments: this.#segments,
     };
   }
 
   #add(part: FramePart): void {
-    this.#close();
-    addInto(this.#sum, part.sum);
-    addInto(this.#sumSquares, part.sumSquares);
-    addInto(this.#jointX, part.jointX);
-    addInto(this.#jointY, part.jointY);
+    this.#settle();
+    const totals = this.#ownTotals();
+    for (const name of totalNames) addInto(totals[name], part.totals[name]);
     for (const from of part.touched) {
       const to = this.#blockSums(from.block);
       to.frames += from.frames;
       to.total += from.total;
       to.differences += from.differences;
-      addInto(to.plus, from.plus);
-      addInto(to.minus, from.minus);
-      addInto(to.diagonal, from.diagonal);
+      this.#ownBlock(to);
+      addSingle(to.plus, from.plus);
+      addSingle(to.minus, from.minus);
     }
     // End images are overwritten as frames come, so they are copied.
     this.#segments.push(...structuredClone(part.segments));
     this.#joinSegments();
   }
 
-  #append(index: number, total: number): void {
+  #append(block: FrameBlock, i: number): void {
+    const { width, height } = this.#spec;
+    const index = block.firstFrame + i;
+    const segment = this.#segments.find(({ last }) => last + 1 === index);
+    if (segment === undefined || segment !== this.#running) this.#leaveRun();
+    const maps = this.#openMaps(segment === undefined ? null : this.#blockOf(index - 1));
+    if (segment !== undefined && this.#running === null) maps.resume(segment.lastImage);
+    const { total, finite } = maps.take(block.pixels, i * width * height);
+    if (!finite) throw notNumber(block, i, this.#spec);
+    if (this.#shape.normalised && !(total > 0)) throw noLight(index, total);
     const sums = this.#blockSums(this.#blockOf(index));
     sums.frames += 1;
     sums.total += total;
-    const segment = this.#segments.find(({ last }) => last + 1 === index);
     if (segment === undefined) {
-      const firstImage = this.#incoming.slice();
-      this.#segments.push({ first: index, last: index, firstImage, lastImage: firstImage.slice() });
+      const image = maps.last();
+      this.#running = { first: index, last: index, firstImage: image, lastImage: image };
+      this.#segments.push(this.#running);
       return;
     }
-    this.#addDifference(segment.last, segment.lastImage, this.#incoming);
+    this.#blockSums(this.#blockOf(index - 1)).differences += 1;
     segment.last = index;
-    const free = segment.lastImage;
-    segment.lastImage = this.#incoming;
-    this.#incoming = free;
+    this.#running = segment;
   }
 
-  /** D_k of two consecutive frames, k being the index of the earlier one. */
-  #addDifference(k: number, earlier: Float64Array, later: Float64Array): void {
-    const block = this.#blockOf(k);
-    if (this.#open !== block) {
-      this.#close();
+  /** The kernels, summing differences of `block`; null: whichever, as no difference comes next. */
+  #openMaps(block: number | null): FrameMaps {
+    if (block !== null && block !== this.#open) {
+      this.#closeBlock();
       this.#open = block;
     }
-    const difference = this.#difference;
-    subtract(earlier, later, difference);
-    const sums = this.#blockSums(block);
-    sums.differences += 1;
-    addDiagonal(difference, difference, 0.5, sums.diagonal);
-    projectFrame(difference, this.#columns, this.#rows);
-    addOuter(this.#columns, this.#columns, 0.5, this.#jointX);
-    addOuter(this.#rows, this.#rows, 0.5, this.#jointY);
-    if (this.#waiting) {
-      this.#spectra.addSquares(this.#waitingDifference, difference);
-      this.#waiting = false;
-      return;
+    if (this.#maps === null) {
+      if (this.#kernels === null) {
+        this.#readable ??= new ReadableFrameMaps(this.#shape);
+        this.#maps = this.#readable;
+        this.#maps.pause();
+      } else this.#maps = borrowFrameMaps(this.#kernels, this.#shape, () => this.#settle());
     }
-    this.#difference = this.#waitingDifference;
-    this.#waitingDifference = difference;
-    this.#waiting = true;
+    return this.#maps;
   }
 
-  /** Brings the open block's spectra down to its maps. Maps add, so a block may be closed and opened at any time. */
-  #close(): void {
-    if (this.#open === null) return;
-    if (this.#waiting) this.#spectra.addSquares(this.#waitingDifference, null);
-    const { plus, minus } = this.#blockSums(this.#open);
-    this.#spectra.moveTo(plus, minus, 0.5);
-    this.#waiting = false;
+  /** Brings the end of the running stretch up to date; the next frame begins another. */
+  #leaveRun(): void {
+    if (this.#running === null || this.#maps === null) return;
+    this.#running.lastImage = this.#maps.last();
+    this.#running = null;
+    this.#maps.pause();
+  }
+
+  /** Brings the open block's differences to its maps. Maps add, so a block may be closed and opened at any time. */
+  #closeBlock(): void {
+    const block = this.#open;
     this.#open = null;
+    if (block === null || this.#maps === null) return;
+    const { width, height } = this.#spec;
+    const closed = this.#maps.close();
+    const totals = this.#ownTotals();
+    addInto(totals.plus, closed.plus);
+    addInto(totals.minus, closed.minus);
+    addInto(totals.diagonal, closed.diagonal);
+    const wide = 2 * width - 1;
+    for (let y = 0; y < height; y++) {
+      for (let x = 0; x < width; x++) {
+        closed.plus[2 * y * wide + 2 * x]! -= closed.diagonal[y * width + x]!;
+      }
+    }
+    const sums = this.#blockSums(block);
+    this.#ownBlock(sums);
+    const window = blockWindow(this.#spec);
+    for (let y = 0; y < window.ny; y++) {
+      const from = (window.y + y) * wide + window.x;
+      const to = y * window.nx;
+      for (let x = 0; x < window.nx; x++) {
+        sums.plus[to + x]! += closed.plus[from + x]!;
+        sums.minus[to + x]! += closed.minus[from + x]!;
+      }
+    }
+  }
+
+  /** Takes everything out of the kernels and gives them back. */
+  #settle(): void {
+    if (this.#maps === null) return;
+    this.#leaveRun();
+    this.#closeBlock();
+    this.#maps.drain(this.#ownTotals());
+    this.#maps = null;
+    if (this.#kernels !== null) returnFrameMaps(this.#kernels);
   }
 
   #joinSegments(): void {
-    const ordered = this.#segments.sort((a, b) => a.first - b.first);
+    this.#segments.sort((a, b) => a.first - b.first);
     const joined: Segment[] = [];
-    for (const segment of ordered) {
+    for (const segment of this.#segments) {
       const before = joined[joined.length - 1];
       if (before !== undefined && before.last + 1 === segment.first) {
-        this.#addDifference(before.last, before.lastImage, segment.firstImage);
+        this.#addSeam(before, segment);
         before.last = segment.last;
         before.lastImage = segment.lastImage;
       } else {
@@ -259,27 +270,15 @@ export class FrameAccumulator {
     this.#segments = joined;
   }
 
-  /** Adds (first first - last last)/2 of every stretch, written (first - last)(first + last)/2 to keep its digits. */
-  #correctEnds(tally: FrameTally): void {
-    const { width, height } = this.#spec;
-    const less = new Float64Array(width * height);
-    const more = new Float64Array(width * height);
-    const vectors = [width, height, width, height].map((length) => new Float64Array(length));
-    const [lessX, lessY, moreX, moreY] = vectors as [Float64Array, Float64Array, Float64Array, Float64Array];
-    for (const { firstImage, lastImage } of this.#segments) {
-      subtract(firstImage, lastImage, less);
-      // Nothing to correct, and the transform would leave its rounding behind.
-      if (less.every((value) => value === 0)) continue;
-      more.set(firstImage);
-      addInto(more, lastImage);
-      addDiagonal(less, more, 0.5, tally.diagonal);
-      projectFrame(less, lessX, lessY);
-      projectFrame(more, moreX, moreY);
-      addOuter(lessX, moreX, 0.5, tally.jointX);
-      addOuter(lessY, moreY, 0.5, tally.jointY);
-      this.#spectra.addProduct(less, more);
-    }
-    this.#spectra.moveTo(tally.plus, tally.minus, 0.5);
+  /** The difference across a seam, brought down at once: sums must not depend on when somebody looked. */
+  #addSeam(before: Segment, after: Segment): void {
+    this.#settle();
+    const block = this.#blockOf(before.last);
+    const maps = this.#openMaps(block);
+    maps.resume(before.lastImage);
+    maps.follow(after.firstImage);
+    this.#blockSums(block).differences += 1;
+    this.#settle();
   }
 
   #blockOf(frame: number): number {
@@ -287,44 +286,78 @@ export class FrameAccumulator {
     return Math.max(0, Math.min(blocks - 1, Math.floor((frame * blocks) / frames)));
   }
 
+  #ownTotals(): FrameTotals {
+    this.#totals ??= createTotals(this.#spec);
+    return this.#totals;
+  }
+
   #blockSums(block: number): BlockSums {
     const found = this.#blocks.get(block);
     if (found !== undefined) return found;
-    const { width, height } = this.#spec;
-    const cells = (2 * width - 1) * (2 * height - 1);
+    const { nx, ny } = blockWindow(this.#spec);
     const sums: BlockSums = {
       frames: 0,
       total: 0,
       differences: 0,
-      plus: new Float64Array(cells),
-      minus: new Float64Array(cells),
-      diagonal: new Float64Array(width * height),
+      plus: new Float32Array(nx * ny),
+      minus: new Float32Array(nx * ny),
     };
     this.#blocks.set(block, sums);
     return sums;
   }
+
+  #shareBlock(block: number, name: 'plus' | 'minus'): Float32Array | null {
+    const sums = this.#blocks.get(block);
+    if (sums === undefined || sums.differences === 0) return null;
+    this.#shared.add(sums);
+    return sums[name];
+  }
+
+  #ownBlock(sums: BlockSums): void {
+    if (!this.#shared.delete(sums)) return;
+    sums.plus = sums.plus.slice();
+    sums.minus = sums.minus.slice();
+  }
+}
+
+function addSingle(to: Float32Array, from: Float32Array): void {
+  for (let i = 0; i < to.length; i++) to[i]! += from[i]!;
 }
 
 /** Names the first pixel of a frame whose square is not a finite number. */
-function notNumber(image: Float64Array, width: number, frame: number): Problem {
-  const at = image.findIndex((value) => !Number.isFinite(value * value));
+function notNumber(block: FrameBlock, i: number, { width, height, masked }: FrameSpec): Problem {
+  const pixels = block.pixels.subarray(i * width * height, (i + 1) * width * height);
+  const at = pixels.findIndex((value, p) => masked[p] === 0 && !Number.isFinite(value * value));
   const x = at % width;
   const y = Math.floor(at / width);
+  const frame = block.firstFrame + i;
   return new Problem(
     'bad-input',
-    `Frame ${frame} holds ${image[at]} at pixel (${x}, ${y}), where a finite number was expected; mask pixel ${at} in the detector map, or write numbers in its place.`,
+    `Frame ${frame} holds ${pixels[at]} at pixel (${x}, ${y}), where a finite number was expected; mask pixel ${at} in the detector map, or write numbers in its place.`,
     `frame ${frame}, pixel (${x}, ${y})`,
   );
 }
 
-export function createFrameAccumulator(spec: FrameSpec, _kernels: FrameWasm | null = null): FrameAccumulator {
-  return new FrameAccumulator(spec);
+function noLight(frame: number, total: number): Problem {
+  return new Problem(
+    'bad-input',
+    `Frame ${frame} has a total of ${total}, and frames can only be scaled to the mean total where there is light in each; switch the normalisation off, or correct offset and threshold.`,
+    `frame ${frame}`,
+  );
+}
+
+export function createFrameAccumulator(spec: FrameSpec, kernels: FrameWasm | null = null): FrameAccumulator {
+  return new FrameAccumulator(spec, kernels);
 }
 
 /** @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of another stack. */
-export function frameAccumulatorFromPart(spec: FrameSpec, part: FramePart): FrameAccumulator {
+export function frameAccumulatorFromPart(
+  spec: FrameSpec,
+  part: FramePart,
+  kernels: FrameWasm | null = null,
+): FrameAccumulator {
   assertFramePart(spec, part);
-  const accumulator = new FrameAccumulator(spec);
+  const accumulator = new FrameAccumulator(spec, kernels);
   accumulator.load(part);
   return accumulator;
 }

@@ -1,14 +1,15 @@
 import type { FrameSpec } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
 
-/** Sums of one bootstrap block: frames l of it, and D_k D_k / 2 of the differences k of it. */
+/** Sums of one bootstrap block: frames l of it, and D_k D_k / 2 of the differences k of it inside the block window. */
 export interface BlockSums {
   frames: number;
+  /** Light of its frames, before they were normalised. */
   total: number;
   differences: number;
-  plus: Float64Array;
-  minus: Float64Array;
-  diagonal: Float64Array;
+  /** i = j taken out. */
+  plus: Float32Array;
+  minus: Float32Array;
 }
 
 /** A gapless stretch of frames: both ends are kept, to close gaps and to correct the totals. */
@@ -19,37 +20,75 @@ export interface Segment {
   lastImage: Float64Array;
 }
 
-/** Version 1. Only the bootstrap blocks that the range has touched are in it. */
-export interface FramePart {
-  part: 1;
-  kind: 'frames';
-  width: number;
-  height: number;
-  frames: number;
-  blocks: number;
+/** Sums over all blocks, whole maps, i = j included. */
+export interface FrameTotals {
   sum: Float64Array;
   sumSquares: Float64Array;
   jointX: Float64Array;
   jointY: Float64Array;
+  plus: Float64Array;
+  minus: Float64Array;
+  diagonal: Float64Array;
+}
+
+/** Version 2. Only the bootstrap blocks that the range has touched are in it. */
+export interface FramePart {
+  part: 2;
+  kind: 'frames';
+  /** What was counted, and how: parts of another specification do not add up. */
+  key: string;
+  totals: FrameTotals;
   touched: (BlockSums & { block: number })[];
   segments: Segment[];
 }
 
+export function frameKey(spec: FrameSpec): string {
+  const { width, height, frames, blocks } = spec;
+  const { offset, threshold, normalised, blockSide } = spec;
+  return JSON.stringify([
+    [width, height, frames, blocks],
+    [offset ?? 0, threshold ?? null, normalised ?? false, blockSide ?? BLOCK_SIDE],
+  ]);
+}
+
+/** The whole map of 256 pixels. */
+const BLOCK_SIDE = 511;
+
+/** The part of a map that is kept block by block, around its middle. */
+export function blockWindow(spec: FrameSpec): { x: number; y: number; nx: number; ny: number } {
+  const side = spec.blockSide ?? BLOCK_SIDE;
+  const wide = 2 * spec.width - 1;
+  const high = 2 * spec.height - 1;
+  const nx = Math.min(wide, side);
+  const ny = Math.min(high, side);
+  return { x: Math.floor((wide - nx) / 2), y: Math.floor((high - ny) / 2), nx, ny };
+}
+
+export function createTotals({ width, height }: FrameSpec): FrameTotals {
+  const pixels = width * height;
+  const cells = (2 * width - 1) * (2 * height - 1);
+  return {
+    sum: new Float64Array(pixels),
+    sumSquares: new Float64Array(pixels),
+    jointX: new Float64Array(width * width),
+    jointY: new Float64Array(height * height),
+    plus: new Float64Array(cells),
+    minus: new Float64Array(cells),
+    diagonal: new Float64Array(pixels),
+  };
+}
+
+export const totalNames = ['sum', 'sumSquares', 'jointX', 'jointY', 'plus', 'minus', 'diagonal'] as const;
+
 /** @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of another stack. */
 export function assertFramePart(spec: FrameSpec, part: FramePart): void {
-  if (part.part !== 1) {
+  if (part.part !== 2) {
     throw new Problem(
       'newer-version',
-      `A part of version 1 was expected, version ${String(part.part)} was found; use the engine that wrote it.`,
+      `A part of version 2 was expected, version ${String(part.part)} was found; use the engine that wrote it.`,
     );
   }
-  const fits =
-    part.kind === 'frames' &&
-    part.width === spec.width &&
-    part.height === spec.height &&
-    part.frames === spec.frames &&
-    part.blocks === spec.blocks;
-  if (!fits) {
+  if (part.kind !== 'frames' || part.key !== frameKey(spec)) {
     throw new Problem(
       'bad-input',
       'The part was summed over another stack or other blocks; use parts of one run.',

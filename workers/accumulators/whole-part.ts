@@ -10,7 +10,7 @@ import type {
 import { Problem } from '../../shared/errors/problem';
 import { z } from '../../shared/util/zod';
 import type { Part } from './accumulator';
-import type { FramePart } from './frame-part';
+import { blockWindow, type FramePart, frameKey } from './frame-part';
 import { MATRIX_LIMIT } from './pair-store';
 import { SliceGrid } from './slice-grid';
 import type { TagPart } from './tag-part';
@@ -22,10 +22,11 @@ import type { TagPart } from './tag-part';
  */
 export function assertWholePart(spec: TallySpec, part: unknown): asserts part is Part {
   const version = typeof part === 'object' && part !== null && 'part' in part ? part.part : undefined;
-  if (typeof version === 'number' && version > 1) {
+  const latest = spec.kind === 'tags' ? 1 : 2;
+  if (typeof version === 'number' && version > latest) {
     throw new Problem(
       'newer-version',
-      `Counts of version 1 were expected, version ${version} was found; combine with the engine that wrote them.`,
+      `Counts of version ${latest} were expected, version ${version} was found; combine with the engine that wrote them.`,
     );
   }
   const schema = spec.kind === 'tags' ? tagPartSchema(spec, slicesOf(spec, part)) : framePartSchema(spec);
@@ -47,11 +48,18 @@ function doubles(length: number) {
     .refine(allFinite, 'a finite number was expected everywhere');
 }
 
+function singles(length: number) {
+  return z
+    .instanceof(Float32Array)
+    .refine((array) => array.length === length, `${length} numbers were expected`)
+    .refine(allFinite, 'a finite number was expected everywhere');
+}
+
 function bytes(length: number) {
   return z.instanceof(Uint8Array).refine((array) => array.length === length, `${length} bytes were expected`);
 }
 
-function allFinite(array: Float64Array): boolean {
+function allFinite(array: Float64Array | Float32Array): boolean {
   // Nothing times a number is nothing, times anything else NaN: no branch for each of millions.
   let nothing = 0;
   for (let i = 0; i < array.length; i++) nothing += 0 * array[i]!;
@@ -137,15 +145,15 @@ function framePartSchema(spec: FrameSpec): z.ZodType<FramePart> {
   const { width, height, frames, blocks } = spec;
   const pixels = width * height;
   const cells = (2 * width - 1) * (2 * height - 1);
+  const window = blockWindow(spec);
   const index = z.int().min(0);
   const touched = z.strictObject({
     block: index.max(blocks - 1),
     frames: count,
     total: z.number(),
     differences: count,
-    plus: doubles(cells),
-    minus: doubles(cells),
-    diagonal: doubles(pixels),
+    plus: singles(window.nx * window.ny),
+    minus: singles(window.nx * window.ny),
   });
   const segment = z
     .strictObject({
@@ -159,16 +167,18 @@ function framePartSchema(spec: FrameSpec): z.ZodType<FramePart> {
       'a stretch of frames that begins before it ends was expected',
     );
   return z.strictObject({
-    part: z.literal(1),
+    part: z.literal(2),
     kind: z.literal('frames'),
-    width: z.literal(width),
-    height: z.literal(height),
-    frames: z.literal(frames),
-    blocks: z.literal(blocks),
-    sum: doubles(pixels),
-    sumSquares: doubles(pixels),
-    jointX: doubles(width * width),
-    jointY: doubles(height * height),
+    key: z.literal(frameKey(spec)),
+    totals: z.strictObject({
+      sum: doubles(pixels),
+      sumSquares: doubles(pixels),
+      jointX: doubles(width * width),
+      jointY: doubles(height * height),
+      plus: doubles(cells),
+      minus: doubles(cells),
+      diagonal: doubles(pixels),
+    }),
     touched: z.array(touched),
     segments: z.array(segment),
   });

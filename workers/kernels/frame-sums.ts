@@ -2,30 +2,57 @@ import type { PixelArray } from '../../shared/contracts/blocks';
 
 /** Per-frame sums. All write to or add to the caller's arrays. Images are row-major (y, x). */
 
+/** What is done to every pixel before it counts. */
+export interface FrameTreatment {
+  /** Taken from every pixel first. */
+  offset: number;
+  /** Photon counting: 1 where the value less `offset` is above it, else 0. Null: the value itself. */
+  threshold: number | null;
+  /** Every frame is scaled to a mean of 1 over its unmasked pixels. */
+  normalised: boolean;
+}
+
 /**
- * Copies one frame out of a stack as doubles, masked pixels as 0, and adds it to the sums of I and I^2.
- * Returns the totals of the unmasked pixels and of their squares; where the latter is not finite, neither are the sums
- * any more. `start` is the index of the frame's first pixel.
+ * Takes one frame out of a stack as doubles, treated, masked pixels as 0, and adds it to the sums of I and I^2.
+ * Returns the total of the unmasked pixels before they are normalised, and whether all of them and their squares are finite
+ * numbers; where not, neither are the sums any more. A frame without light cannot be normalised and stays as it is: its
+ * total says so. `start` is the index of the frame's first pixel. O(pixels).
  */
 export function takeFrame(
   pixels: PixelArray,
   start: number,
-  masked: Uint8Array,
+  shape: FrameTreatment & { masked: Uint8Array },
   out: Float64Array,
   sum: Float64Array,
   sumSquares: Float64Array,
-): { total: number; squares: number } {
+): { total: number; finite: boolean } {
+  const { masked, offset } = shape;
   let total = 0;
   let squares = 0;
+  let open = 0;
+  const level = shape.threshold;
   for (let i = 0; i < out.length; i++) {
-    const value = masked[i] === 0 ? pixels[start + i]! : 0;
+    let value = masked[i] === 0 ? pixels[start + i]! - offset : 0;
+    squares += value * value;
+    // A pixel that is no number must not pass for a dark one: `squares` has it before the threshold.
+    if (level !== null) value = masked[i] === 0 && value > level ? 1 : 0;
+    out[i] = value;
+    open += 1 - masked[i]!;
+    total += value;
+  }
+  const factor = shape.normalised ? normalisation(total, open) : 1;
+  for (let i = 0; i < out.length; i++) {
+    const value = factor * out[i]!;
     out[i] = value;
     sum[i]! += value;
     sumSquares[i]! += value * value;
-    total += value;
-    squares += value * value;
   }
-  return { total, squares };
+  return { total, finite: Number.isFinite(squares) };
+}
+
+/** Factor to a mean of 1 over `open` pixels; 1 for a frame that has no light to be scaled. */
+export function normalisation(total: number, open: number): number {
+  return total > 0 ? open / total : 1;
 }
 
 /** out = x - y */

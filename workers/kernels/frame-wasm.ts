@@ -2,7 +2,82 @@ import type { WasmModule } from './wasm-module';
 
 /** What `wasm/frames.ts` exports; addresses and counts are numbers. */
 export interface FrameExports {
-  sumDoubles(at: number, n: number): number;
+  prepareFrame(
+    type: number,
+    from: number,
+    width: number,
+    height: number,
+    columns: number,
+    mask: number,
+    to: number,
+    double: number,
+    offset: number,
+    counting: number,
+    threshold: number,
+    squares: number,
+  ): number;
+  scaleFrame(at: number, n: number, factor: number): void;
+  addSums(
+    double: number,
+    slots: number,
+    slotBytes: number,
+    from: number,
+    count: number,
+    columns: number,
+    rows: number,
+    sum: number,
+    sumSquares: number,
+    diagonal: number,
+    across: number,
+    down: number,
+    downBytes: number,
+    scratch: number,
+  ): void;
+  addOuters(vectors: number, count: number, n: number, joint: number): void;
+  transformColumnsF32: TransformColumns;
+  transformColumnsF64: TransformColumns;
+  addSquares(
+    from: number,
+    frames: number,
+    strips: number,
+    padWidth: number,
+    twiddles: number,
+    work: number,
+    sums: number,
+    stripBytes: number,
+    frameBytes: number,
+  ): void;
+  flushSquares(sums: number, totals: number, n: number): void;
+  invertSquares(
+    totals: number,
+    width: number,
+    height: number,
+    padWidth: number,
+    padHeight: number,
+    twiddlesX: number,
+    twiddlesY: number,
+    positionsX: number,
+    positionsY: number,
+    work: number,
+    field: number,
+    plus: number,
+    minus: number,
+    scale: number,
+  ): void;
 }
+
+type TransformColumns = (
+  first: number,
+  second: number,
+  third: number,
+  columns: number,
+  padHeight: number,
+  twiddles: number,
+  positions: number,
+  work: number,
+  to: number,
+  stripBytes: number,
+  frameBytes: number,
+) => void;
 
 export type FrameWasm = WasmModule<FrameExports>;

@@ -1,5 +1,7 @@
 import type { TallySpec } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
+import { blockWindow } from '../accumulators/frame-part';
+import { compiledLength } from '../kernels/frame-transform-tables';
 
 /** One accumulator may take this much; each compute worker holds one, the coordinator one and a copy. */
 const LIMIT_BYTES = 2 ** 30;
@@ -12,7 +14,11 @@ const STORES = 2;
 export function estimateBytes(spec: TallySpec): number {
   if (spec.kind === 'frames') {
     const { width, height, blocks } = spec;
-    return 16 * (2 * height - 1) * (2 * width - 1) * blocks + 8 * width * height * (blocks + 4);
+    const cells = (2 * height - 1) * (2 * width - 1);
+    const { nx, ny } = blockWindow(spec);
+    // Spectra, maps and a batch of frames in the kernels: 75 to 105 bytes a padded pixel.
+    const kernels = 105 * compiledLength(width) * compiledLength(height);
+    return 8 * nx * ny * blocks + 16 * cells + 8 * (width * width + height * height) + kernels;
   }
   if (spec.window === null) return 8 * spec.histogram.bins;
   const { a, b } = spec;
@@ -27,7 +33,7 @@ export function assertFitsMemory(name: string, spec: TallySpec): void {
   const need = `${(bytes / 2 ** 30).toFixed(1)} GiB a worker, and at most ${LIMIT_BYTES / 2 ** 30} GiB are taken`;
   const wayOut =
     spec.kind === 'frames'
-      ? `Frames of ${spec.width} x ${spec.height} in ${spec.blocks} bootstrap blocks need ${need}; set the dial "blocks" lower, or crop or bin the frames.`
+      ? `Frames of ${spec.width} x ${spec.height} in ${spec.blocks} bootstrap blocks need ${need}; crop or bin the frames, or set the dial "blocks" lower.`
       : `Arrays of ${spec.a.width} x ${spec.a.height} and ${spec.b.width} x ${spec.b.height} pixels need ${need}; describe a smaller part of the arrays in the detector map.`;
   throw new Problem('unsupported', wayOut, name);
 }

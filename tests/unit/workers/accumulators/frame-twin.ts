@@ -58,7 +58,6 @@ export function slowFrameTally(spec: FrameSpec, raw: number[][]): FrameTally {
   const { width, height, blocks } = spec;
   const pixels = width * height;
   const frames = raw.map((frame) => frame.map((value, i) => (spec.masked[i] === 0 ? value : 0)));
-  const cells = (2 * width - 1) * (2 * height - 1);
   const blockOf = (frame: number) => Math.floor((frame * blocks) / spec.frames);
   const tally: FrameTally = {
     kind: 'frames',
@@ -74,11 +73,13 @@ export function slowFrameTally(spec: FrameSpec, raw: number[][]): FrameTally {
     ...projections(slowCovariance([frames], pixels), width, height),
     blockFrames: new Float64Array(blocks),
     blockTotals: new Float64Array(blocks),
-    blockPlus: new Float64Array(blocks * cells),
-    blockMinus: new Float64Array(blocks * cells),
-    blockDiagonal: new Float64Array(blocks * pixels),
     blockDifferences: new Float64Array(blocks),
+    blockWindow: { x: 0, y: 0, nx: 2 * width - 1, ny: 2 * height - 1 },
+    blockPlus: [],
+    blockMinus: [],
   };
+  const blockPlus: (Float32Array | null)[] = [];
+  const blockMinus: (Float32Array | null)[] = [];
   for (let block = 0; block < blocks; block++) {
     const own = frames.filter((_, l) => blockOf(l) === block);
     const total = own.flat().reduce((sum, value) => sum + value, 0);
@@ -94,9 +95,12 @@ export function slowFrameTally(spec: FrameSpec, raw: number[][]): FrameTally {
       }
     }
     const { plus, minus, diagonal } = projections(matrix, width, height);
-    tally.blockPlus.set(plus, block * cells);
-    tally.blockMinus.set(minus, block * cells);
-    tally.blockDiagonal.set(diagonal, block * pixels);
+    for (let i = 0; i < pixels; i++) {
+      plus[2 * Math.floor(i / width) * (2 * width - 1) + 2 * (i % width)]! -= diagonal[i]!;
+    }
+    const filled = tally.blockDifferences[block]! > 0;
+    blockPlus.push(filled ? Float32Array.from(plus) : null);
+    blockMinus.push(filled ? Float32Array.from(minus) : null);
   }
-  return tally;
+  return { ...tally, blockPlus, blockMinus };
 }

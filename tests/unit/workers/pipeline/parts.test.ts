@@ -189,9 +189,10 @@ describe('memory', () => {
 
   it('refuses what a worker cannot hold, with the way out', () => {
     expect(() => assertFitsMemory('near', frames(256, 50))).not.toThrow();
-    // 16 x 2047 x 2047 x 50 bytes of block maps alone.
-    expect(estimateBytes(frames(1024, 50))).toBeGreaterThan(16 * 2047 * 2047 * 50);
-    expect(() => assertFitsMemory('near', frames(1024, 50))).toThrow(/dial "blocks" lower/);
+    // Two block maps of 511 x 511 and two whole ones, whatever the kernels take.
+    expect(estimateBytes(frames(2048, 50))).toBeGreaterThan(8 * 511 * 511 * 50 + 16 * 4095 * 4095);
+    expect(() => assertFitsMemory('near', frames(1024, 50))).not.toThrow();
+    expect(() => assertFitsMemory('near', frames(2048, 50))).toThrow(/crop or bin the frames/);
   });
 });
 
