@@ -1,7 +1,7 @@
 import { spawnSync } from 'node:child_process';
 import { existsSync } from 'node:fs';
 
-/** Programs the tests need beside Node: a browser, a second HDF5 writer that is not ours, and a spreader of shards. */
+/** Programs the tests need beside Node: a browser, writers of files that are not ours, and a spreader of shards. */
 
 const chromiumPaths = ['/usr/bin/chromium', '/usr/bin/chromium-browser', '/usr/bin/google-chrome'];
 
@@ -16,6 +16,12 @@ export function findPythonWithH5py(): string | null {
     if (spawnSync(python, ['-c', 'import h5py'], { stdio: 'ignore' }).status === 0) return python;
   }
   return null;
+}
+
+/** Debian's own, because that is where its packages of Python go. */
+function findDebianPython(module: string): string | null {
+  const python = '/usr/bin/python3';
+  return spawnSync(python, ['-c', `import ${module}`], { stdio: 'ignore' }).status === 0 ? python : null;
 }
 
 export function findParallel(): string | null {
@@ -33,6 +39,21 @@ interface Tool {
 const tools: readonly Tool[] = [
   { debian: 'chromium', purpose: 'the browser tests', find: findChromium },
   { debian: 'python3-h5py', purpose: 'the tests on files that h5py wrote', find: findPythonWithH5py },
+  {
+    debian: 'python3-numpy',
+    purpose: 'the tests on files that NumPy wrote',
+    find: () => findDebianPython('numpy'),
+  },
+  {
+    debian: 'python3-tifffile',
+    purpose: 'the tests on TIFF files that tifffile wrote',
+    find: () => findDebianPython('tifffile'),
+  },
+  {
+    debian: 'python3-pil',
+    purpose: 'the tests on TIFF files that libtiff wrote',
+    find: () => findDebianPython('PIL'),
+  },
   { debian: 'parallel', purpose: 'the tests of runs on many machines', find: findParallel },
 ];
 

@@ -59,6 +59,13 @@ export function placeColumn(array: ArrayEntry, { field }: ArrayColumn, role: str
   if (found) return found;
   const { type, shape, place } = array;
   const called = arrayName(array);
+  if (type.kind !== 'other' && type.bytes > mostRecordBytes) {
+    throw new Problem(
+      'unsupported',
+      `The records of ${called} take ${type.bytes} bytes each, more than ${mostRecordBytes}; save time and channel alone.`,
+      place,
+    );
+  }
   const asked = field === undefined ? 'none named' : `"${field}"`;
   const isField = type.kind === 'fields' && type.fields.some(({ name }) => name === field);
   if (isField || (columns.length === 0 && type.kind !== 'fields')) {
