@@ -22,17 +22,20 @@ export function recordsReader(source: ByteSource, plan: RecordPlan, records: num
       known = { start, offsetTick };
       return offsetTick;
     },
-    read: (range, tickOffset, token) =>
-      readRecords(
+    read: (range, tickOffset, token) => {
+      // An offset from elsewhere (none, or that of files before this one) says nothing of the rollovers in here.
+      const isOwn = known.start === range.start && known.offsetTick === tickOffset;
+      return readRecords(
         source,
         plan,
         assertRange(range, records, 'records', source.name),
         tickOffset,
         token,
         (offsetTick) => {
-          known = { start: range.end, offsetTick };
+          if (isOwn) known = { start: range.end, offsetTick };
         },
-      ),
+      );
+    },
     close: () => source.close(),
   };
 }
