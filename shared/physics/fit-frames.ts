@@ -19,6 +19,8 @@ export interface FramePeak {
   my: number;
   /** Cut-out of the map that was fitted: first bin and size. */
   region: { x: number; y: number; nx: number; ny: number };
+  /** The cut-out reaches past the window that is known block by block: errors would come out too small. */
+  uncovered: boolean;
   /** Share of the peak on bins that were left out (own pairs, crosstalk). */
   hidden: number;
   chi2: number;
@@ -246,6 +248,7 @@ function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null 
     mx: shape.mx,
     my: shape.my,
     region,
+    uncovered: reachesPast(region, map.blockWindow),
     hidden: hiddenShare(fit, use),
     chi2: share * fit.objective,
     ndf: Math.max(Math.round(share * used) - fit.free.length, 0),
@@ -276,6 +279,15 @@ function regionAround(
     nx: Math.max(Math.min(cx + halfX + 1, map.nx) - x, 1),
     ny: Math.max(Math.min(cy + halfY + 1, map.ny) - y, 1),
   };
+}
+
+function reachesPast(region: FramePeak['region'], window: FramePeak['region']): boolean {
+  return (
+    region.x < window.x ||
+    region.y < window.y ||
+    region.x + region.nx > window.x + window.nx ||
+    region.y + region.ny > window.y + window.ny
+  );
 }
 
 function hiddenShare(fit: ShapeFit, use: Uint8Array): number {

@@ -1,4 +1,4 @@
-import type { FrameTally } from '../../shared/contracts/tally';
+import type { FrameSpec, FrameTally } from '../../shared/contracts/tally';
 import type { PairCovariance } from '../../shared/physics/double-gaussian';
 import type { Random } from '../../shared/util/random';
 import { FrameAccumulator } from '../../workers/accumulators/frame-accumulator';
@@ -15,6 +15,15 @@ export interface FrameScene {
   efficiency: number;
   darksPerFrame: number;
   maskedPixels?: readonly number[];
+  /** Read-out: offset + gain * electrons + read noise; left out, pixels hold electrons. */
+  readout?: {
+    offset: number;
+    gain: number;
+    /** Frame-to-frame standard deviation of the gain, relative. */
+    flicker: number;
+    readNoise: number;
+  };
+  treatment?: Pick<FrameSpec, 'offset' | 'threshold' | 'normalised' | 'blockSide'>;
 }
 
 export function simulateFrames(scene: FrameScene, random: Random): FrameTally {
@@ -28,6 +37,7 @@ export function simulateFrames(scene: FrameScene, random: Random): FrameTally {
     frames,
     blocks,
     masked,
+    ...scene.treatment,
   });
   const slope = truth.c / truth.v1;
   const rest = Math.sqrt(truth.v2 - truth.c * slope);
@@ -54,6 +64,11 @@ export function simulateFrames(scene: FrameScene, random: Random): FrameTally {
       }
       for (let k = random.poisson(scene.darksPerFrame); k > 0; k -= 1)
         hit(random.below(size), random.below(size));
+      if (scene.readout === undefined) continue;
+      const { offset, gain, flicker, readNoise } = scene.readout;
+      const scale = gain * (1 + flicker * random.normal());
+      for (let i = f * size * size; i < (f + 1) * size * size; i += 1)
+        pixels[i] = offset + scale * pixels[i]! + readNoise * random.normal();
     }
     accumulator.push({
       kind: 'frames',

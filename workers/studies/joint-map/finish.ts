@@ -6,6 +6,7 @@ import type { FinishRequest } from '../study';
 import { countTags } from '../tag-count';
 import { chosenDials } from '../tag-main';
 import { coincidencesOf } from '../tag-numbers';
+import { frameChoices } from './frame-dials';
 import { analysePlane } from './inputs';
 import { checkCalibration } from './plane-checks';
 import { axisNames, noVariances, type PlaneResult } from './plane-result';
@@ -19,7 +20,7 @@ export function finishJointMap({ inputs, dials, seed, partial }: FinishRequest):
   const plane = analysePlane(input, {
     resamples: partial ? LOOK_RESAMPLES : numberDial(dials, 'resamples'),
     seed,
-    crosstalk: numberDial(dials, 'crosstalk'),
+    frames: frameChoices(dials),
   });
   return {
     study: 'joint-map',

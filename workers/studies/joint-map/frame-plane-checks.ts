@@ -29,6 +29,8 @@ export function checkFramePlane(request: FrameChecksRequest): Check[] {
     checkLightDrift(request),
     checkPixels(request),
   ];
+  const cut = checkBlockWindow(request);
+  if (cut !== null) checks.push(cut);
   const { plane } = request;
   if (plane.kind === 'far' && plane.signalNm.value !== plane.idlerNm.value) {
     checks.push({
@@ -124,6 +126,19 @@ function checkTruncation({ peaks, narrow, maps }: FrameChecksRequest): Check {
   if (room >= 4) return { ...base, status: 'pass', sentence: `${found}.` };
   const sentence = `${found}: peak and pedestal are hard to tell apart. Use more of the sensor.`;
   return { ...base, status: room >= 2 ? 'caution' : 'fail', sentence };
+}
+
+/** Of large maps only a window around the middle is kept block by block. Null where it is the whole map. */
+function checkBlockWindow({ peaks, narrow, maps }: FrameChecksRequest): Check | null {
+  const { nx, ny, blockWindow: window } = maps[narrow];
+  if (window.nx === nx && window.ny === ny) return null;
+  const base = { id: 'peak-in-window', figure: Math.min(window.nx, window.ny), unit: 'bins' };
+  const size = `the ${window.nx} x ${window.ny} bins around the middle of the ${nameOf(narrow)} map that are kept block by block`;
+  if (peaks[narrow]?.uncovered !== true) {
+    return { ...base, status: 'pass', sentence: `The fitted peak lies inside ${size}.` };
+  }
+  const sentence = `The fitted peak reaches past ${size}, so its errors are not known and no width is given; crop the frames around the beam, or bin them.`;
+  return { ...base, status: 'fail', sentence };
 }
 
 function checkEnvelope({ peaks, narrow }: FrameChecksRequest): Check {

@@ -12,6 +12,8 @@ export interface FrameMapsRequest {
   /** Crystal units per pixel. */
   pixel: number;
   scale: PlaneScale;
+  /** Sum and difference maps as means per pixel pair, else as sums over them. */
+  perPair: boolean;
 }
 
 export function framePlaneMaps(request: FrameMapsRequest): Record<string, MapData> {
@@ -43,13 +45,14 @@ function axisOf(
   };
 }
 
-/** Mean covariance per pair of pixels, with its counting noise and, inside the fitted window, the model. */
+/** Covariance of the pairs of pixels in each bin, with its counting noise and, inside the fitted window, the model. */
 function planeMap(request: FrameMapsRequest, kind: FrameMapKind): MapData {
   const map = request.maps[kind];
   const peak = request.peaks[kind];
   const { nx, ny, pairs, blocked } = map;
-  const mean = (values: Float64Array): Float64Array =>
-    values.map((v, c) => (blocked[c] === 1 ? 0 : v / (pairs[c] as number)));
+  const over = (c: number): number => (request.perPair ? (pairs[c] as number) : 1);
+  const shown = (values: Float64Array): Float64Array =>
+    values.map((v, c) => (blocked[c] === 1 ? 0 : v / over(c)));
   const name = kind === 'minus' ? 'difference' : 'sum';
   const axes = [
     axisOf(request, 'x', nx, `${name} of `, '', 'pair'),
@@ -61,9 +64,9 @@ function planeMap(request: FrameMapsRequest, kind: FrameMapKind): MapData {
     axes,
     unit: 'counts^2',
     scale: 'signed',
-    data: mean(map.value),
+    data: shown(map.value),
     masked: blocked,
-    sigma: mean(map.variance.map(Math.sqrt)),
+    sigma: shown(map.variance.map(Math.sqrt)),
   };
   if (peak === null) return out;
   const { region } = peak;
@@ -71,7 +74,7 @@ function planeMap(request: FrameMapsRequest, kind: FrameMapKind): MapData {
   for (let y = 0; y < region.ny; y += 1) {
     for (let x = 0; x < region.nx; x += 1) {
       const c = (region.y + y) * nx + region.x + x;
-      if (blocked[c] === 0) model[c] = (peak.fit.model[y * region.nx + x] as number) / (pairs[c] as number);
+      if (blocked[c] === 0) model[c] = (peak.fit.model[y * region.nx + x] as number) / over(c);
     }
   }
   // Fitted centres are lags for the difference map and index sums for the sum map.

@@ -8,6 +8,7 @@ import { FIT_PARAMETERS } from '../../../shared/physics/fit-shape';
 import { buildFrameMaps, type FrameMapKind, type SelfMaps } from '../../../shared/physics/frame-maps';
 import { FrameSpectra } from '../../kernels/frame-spectra';
 import type { CountedInput } from '../study';
+import { treatmentWords } from './frame-dials';
 import { checkFramePlane } from './frame-plane-checks';
 import { framePlaneMaps } from './frame-plane-maps';
 import { isTrusted } from './frame-trust';
@@ -35,7 +36,8 @@ export function analyseFramePlane(
   }
   const scale = planeScale(plane);
   const pixel = (detector.pitchUm * (scale.signal + scale.idler)) / 2;
-  const maps = buildFrameMaps(tally, selfMapsOf(tally), request.crosstalk);
+  const { crosstalk, perPair, treatment } = request.frames;
+  const maps = buildFrameMaps(tally, selfMapsOf(tally), crosstalk);
   const narrow: FrameMapKind = plane.kind === 'near' ? 'minus' : 'plus';
   const peaks = fitFramePeaks(maps, narrow);
   const blocks = tally.blockTotals.filter((_, b) => (tally.blockDifferences[b] ?? 0) > 0).length;
@@ -52,10 +54,10 @@ export function analyseFramePlane(
       x: axisOf(peaks, 3, pixel, weights, tally.frames, method),
       y: axisOf(peaks, 5, pixel, weights, tally.frames, method),
     },
-    checks: checkFramePlane({ tally, maps, peaks, narrow, blocks, crosstalk: request.crosstalk, plane }),
-    maps: framePlaneMaps({ tally, maps, peaks, pixel, scale }),
+    checks: checkFramePlane({ tally, maps, peaks, narrow, blocks, crosstalk, plane }),
+    maps: framePlaneMaps({ tally, maps, peaks, pixel, scale, perPair }),
     statement: [
-      `${plane.kind === 'near' ? 'Near' : 'Far'} field: covariance of ${tally.frames} frames of ${tally.width} x ${tally.height} pixels less that of consecutive frames, own pairs left out${request.crosstalk > 0 ? `, difference bins up to ${request.crosstalk} pixels left out` : ''}.`,
+      `${plane.kind === 'near' ? 'Near' : 'Far'} field: covariance of ${tally.frames} frames of ${tally.width} x ${tally.height} pixels less that of consecutive frames, own pairs left out${crosstalk > 0 ? `, difference bins up to ${crosstalk} pixels left out` : ''}.${treatmentWords(treatment)}`,
     ],
     blocks,
   };

@@ -9,6 +9,7 @@ export const LEAST_SNR = 5;
 export function isTrusted(peak: FramePeak | null): peak is FramePeak {
   return (
     peak?.fit.converged === true &&
+    !peak.uncovered &&
     peak.hidden < MOST_HIDDEN &&
     // A wide peak takes its amplitude from the narrow one; then its width has to be known.
     peak.fit.amplitude / amplitudeSigma(peak) >= LEAST_SNR &&

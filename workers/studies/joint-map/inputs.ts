@@ -15,28 +15,13 @@ import {
 import { type ArmPair, blindChoice, buildSearchSpec, choosePeak } from '../peak-search';
 import type { CountedInput, Study, StudyInput } from '../study';
 import { buildMainSpec, validateTagInput } from '../tag-main';
+import { frameChoices, frameDials } from './frame-dials';
 import { analyseFramePlane } from './frame-plane';
 import type { PlaneRequest, PlaneResult } from './plane-result';
 import { analyseTagPlane } from './tag-plane';
 
 /** What joint map and witness share: one acquisition in one plane, tags or frames. Arm A is the signal, arm B the idler. */
 const arms: ArmPair = { a: 'signal', b: 'idler' };
-
-const crosstalkDial: DialSpec = {
-  id: 'crosstalk',
-  label: 'Crosstalk radius',
-  reason:
-    'Frames only: difference bins up to this many pixels are left out, because charge smear and optical crosstalk of neighbours land there and feign a narrow peak. 0 leaves out a pixel with itself alone.',
-  needs: 'finish',
-  for: 'frames',
-  type: 'number',
-  unit: 'pixels',
-  default: 1,
-  min: 0,
-  max: 20,
-  step: 0.5,
-  auto: false,
-};
 
 export const planeDials: readonly DialSpec[] = [
   delayDial,
@@ -45,7 +30,7 @@ export const planeDials: readonly DialSpec[] = [
   histogramBinDial,
   shiftStepDial,
   shiftCountDial,
-  crosstalkDial,
+  ...frameDials,
   blocksDial,
   resamplesDial,
 ];
@@ -117,7 +102,7 @@ function frameSpec(input: StudyInput, dials: DialValues): FrameSpec {
   }
   // A block of one frame has no difference of its own.
   const blocks = Math.max(1, Math.min(numberDial(dials, 'blocks'), Math.floor(frames / 2)));
-  return { kind: 'frames', width, height, frames, blocks, masked };
+  return { kind: 'frames', width, height, frames, blocks, masked, ...frameChoices(dials).treatment };
 }
 
 export function analysePlane(input: CountedInput, request: PlaneRequest): PlaneResult {

@@ -1,5 +1,6 @@
 import type { Check, MapData } from '../../../shared/contracts/output';
 import type { PlaneScale } from '../../../shared/physics/calibration';
+import type { FrameChoices } from './frame-dials';
 import type { Resampled } from './resampled';
 
 /** Variances of one transverse axis in crystal units squared (um^2 or rad^2/mm^2). Null where a number would be invented. */
@@ -56,6 +57,5 @@ export const LEAST_BLOCKS = 8;
 export interface PlaneRequest {
   resamples: number;
   seed: number;
-  /** Difference bins of camera maps with |d| up to this many pixels are left out. */
-  crosstalk: number;
+  frames: FrameChoices;
 }

@@ -1,6 +1,7 @@
 import type { MapData, Quantity, StudyOutput, Verdict } from '../../../shared/contracts/output';
 import { LOOK_RESAMPLES, numberDial } from '../dials';
 import { formatMeasured } from '../format-figure';
+import { frameChoices } from '../joint-map/frame-dials';
 import { analysePlane } from '../joint-map/inputs';
 import { axisNames, type PlaneRequest, type PlaneResult } from '../joint-map/plane-result';
 import { addQuantities, type Resampled, widthOf } from '../joint-map/resampled';
@@ -30,7 +31,7 @@ export function finishWitness({ inputs, dials, seed, partial }: FinishRequest): 
   const request: PlaneRequest = {
     resamples: partial ? LOOK_RESAMPLES : numberDial(dials, 'resamples'),
     seed,
-    crosstalk: numberDial(dials, 'crosstalk'),
+    frames: frameChoices(dials),
   };
   const output: StudyOutput = {
     study: 'witness',

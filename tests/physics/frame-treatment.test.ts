@@ -1,0 +1,111 @@
+import { describe, expect, it } from 'vitest';
+import type { DialValues } from '../../shared/contracts/dial';
+import { createRandom } from '../../shared/util/random';
+import { fillDials } from '../../workers/studies/dials';
+import { frameChoices } from '../../workers/studies/joint-map/frame-dials';
+import { jointMapStudy } from '../../workers/studies/joint-map/study';
+import { type FrameScene, simulateFrames } from './simulated-frames';
+import { countedFrames, nearPlane, PITCH_UM } from './study-inputs';
+
+const size = 24;
+const narrow = 1.5 ** 2;
+const wide = 8 ** 2;
+const id = 'width.x.minus.fit';
+/** The blur of two pixels is left in. */
+const truth = (PITCH_UM / 2) * Math.sqrt(narrow + 1 / 6);
+
+const weak: FrameScene = {
+  size,
+  frames: 900,
+  blocks: 50,
+  truth: { v1: (narrow + wide) / 4, v2: (narrow + wide) / 4, c: (wide - narrow) / 4 },
+  centre: 11.3,
+  pairsPerFrame: 15,
+  efficiency: 0.9,
+  darksPerFrame: 2,
+};
+
+function study(scene: FrameScene, seed: number, given: DialValues) {
+  const dials = fillDials(jointMapStudy.info, { resamples: 200, ...given });
+  const tally = simulateFrames({ ...scene, treatment: frameChoices(dials).treatment }, createRandom(seed));
+  const data = countedFrames(tally, nearPlane);
+  return { tally, output: jointMapStudy.finish({ inputs: { data }, dials, seed: 1, partial: false }) };
+}
+
+/** Infinitely uncertain where the study gives none. */
+function widthOf({ output }: ReturnType<typeof study>): { value: number; sigma: number } {
+  const { value, sigma } = output.quantities[id] ?? {};
+  return { value: value ?? Number.NaN, sigma: sigma ?? Number.POSITIVE_INFINITY };
+}
+
+describe('What is done to the pixels of frames', () => {
+  it('a threshold takes out read noise that a linear reading keeps', () => {
+    // 50 counts an electron above an offset of 100, as much noise as a third of an electron.
+    const noisy = { ...weak, readout: { offset: 100, gain: 50, flicker: 0, readNoise: 17 } };
+    const counted = widthOf(study(noisy, 31, { offset: 100, threshold: 35 }));
+    const linear = widthOf(study(noisy, 31, { offset: 100 }));
+    expect(Math.abs(counted.value - truth)).toBeLessThan(3 * counted.sigma);
+    expect(linear.sigma).toBeGreaterThan(1.2 * counted.sigma);
+  });
+
+  it('the offset changes nothing but the mean frame where pixels count what they hold', () => {
+    const raised = { ...weak, frames: 300, readout: { offset: 100, gain: 50, flicker: 0, readNoise: 0 } };
+    const kept = study(raised, 7, {}).tally;
+    const taken = study(raised, 7, { offset: 100 }).tally;
+    // Whole maps differ by the end frames, and so by one frame in 300.
+    expect(taken.blockMinus).toEqual(kept.blockMinus);
+    expect(taken.blockPlus).toEqual(kept.blockPlus);
+    expect(kept.sum[0]! - taken.sum[0]!).toBeCloseTo(100 * 300, 6);
+  });
+
+  it('scaling to the mean total takes out a flickering gain, and its width is that of the pairs', () => {
+    const bright: FrameScene = {
+      ...weak,
+      pairsPerFrame: 150,
+      darksPerFrame: 5,
+      frames: 1500,
+      readout: { offset: 100, gain: 50, flicker: 0.15, readNoise: 5 },
+    };
+    const scaled = study(bright, 11, { offset: 100, normalise: 'on' });
+    const plain = study(bright, 11, { offset: 100 });
+    // All covariances together: the flicker's (0.15 times the mean total)^2 against what the total may still vary.
+    const all = (map: Float64Array) => map.reduce((sum, v) => sum + v, 0);
+    expect(Math.abs(all(scaled.tally.minus))).toBeLessThan(1e-3 * all(plain.tally.minus));
+    const width = widthOf(scaled);
+    expect(Math.abs(width.value - truth)).toBeLessThan(3 * width.sigma);
+    expect(width.sigma).toBeLessThan(0.1 * truth);
+    expect(widthOf(plain).sigma).toBeGreaterThan(1.2 * width.sigma);
+    // The counts are those of the mean frame.
+    expect(all(scaled.tally.sum) / all(plain.tally.sum)).toBeCloseTo(1, 6);
+    expect(scaled.output.statement).toMatch(/every frame was scaled to the mean total/);
+  });
+
+  it('maps as sums are maps as means times the pairs of the bin, and quantities stay', () => {
+    const tally = simulateFrames({ ...weak, frames: 200 }, createRandom(2));
+    const data = countedFrames(tally, nearPlane);
+    const [mean, sum] = ['mean', 'sum'].map((overlap) => {
+      const dials = fillDials(jointMapStudy.info, { resamples: 100, overlap });
+      return jointMapStudy.finish({ inputs: { data }, dials, seed: 1, partial: false });
+    });
+    expect(sum!.quantities).toEqual(mean!.quantities);
+    // One row up and one column to the right: 23 x 23 pairs.
+    const at = size * (2 * size - 1) + size;
+    expect(sum!.maps.minus!.data[at]).toBeCloseTo(23 * 23 * (mean!.maps.minus!.data[at] as number), 9);
+  });
+
+  it('gives no width where the peak reaches past what is kept block by block', () => {
+    const dials = fillDials(jointMapStudy.info, { resamples: 100 });
+    const accepted = [47, 9].map((blockSide) => {
+      const tally = simulateFrames({ ...weak, treatment: { blockSide } }, createRandom(31));
+      const data = countedFrames(tally, nearPlane);
+      const output = jointMapStudy.finish({ inputs: { data }, dials, seed: 1, partial: false });
+      return {
+        width: output.quantities[id],
+        check: output.checks.find((check) => check.id === 'peak-in-window')?.status,
+      };
+    });
+    expect(accepted[0]!.width).toBeDefined();
+    expect(accepted[0]!.check).toBeUndefined();
+    expect(accepted[1]).toEqual({ width: undefined, check: 'fail' });
+  });
+});

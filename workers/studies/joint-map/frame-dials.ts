@@ -1,0 +1,121 @@
+import type { DialSpec, DialValues } from '../../../shared/contracts/dial';
+import type { FrameSpec } from '../../../shared/contracts/tally';
+import { autoDial, numberDial } from '../dials';
+
+const offsetDial: DialSpec = {
+  id: 'offset',
+  label: 'Offset',
+  reason:
+    'Level of a dark pixel, taken from every pixel before anything else. Consecutive frames cancel it by themselves but for the first and last: it matters to a threshold, to frames scaled to one total, and to the mean frame.',
+  needs: 'bytes',
+  for: 'frames',
+  type: 'number',
+  unit: 'counts',
+  default: 0,
+  min: -1e6,
+  max: 1e6,
+  step: 1,
+  auto: false,
+};
+
+const thresholdDial: DialSpec = {
+  id: 'threshold',
+  label: 'Photon-counting threshold',
+  reason:
+    'A pixel above it (offset taken off) counts 1, any other 0: takes out the noise of read-out and gain where light is weak. Two photons on one pixel then count as one, so stay below about 0.2 photons a pixel and frame. Left empty, pixels count what they hold.',
+  needs: 'bytes',
+  for: 'frames',
+  type: 'number',
+  unit: 'counts',
+  default: null,
+  min: -1e6,
+  max: 1e6,
+  step: 1,
+  auto: true,
+};
+
+const normaliseDial: DialSpec = {
+  id: 'normalise',
+  label: 'Frames scaled to the mean total',
+  reason:
+    'Takes out a gain or pump that flickers from frame to frame, which otherwise correlates all pixels alike. It also takes out what pairs add to the total: every bin loses about its share of light times that, a broad negative pedestal, and with few photons a frame the total is mostly shot noise. Off unless the light flickers; set the offset first.',
+  needs: 'bytes',
+  for: 'frames',
+  type: 'choice',
+  options: [
+    { value: 'off', label: 'As they are' },
+    { value: 'on', label: 'Scaled' },
+  ],
+  default: 'off',
+};
+
+const crosstalkDial: DialSpec = {
+  id: 'crosstalk',
+  label: 'Crosstalk radius',
+  reason:
+    'Frames only: difference bins up to this many pixels are left out, because charge smear and optical crosstalk of neighbours land there and feign a narrow peak. 0 leaves out a pixel with itself alone.',
+  needs: 'finish',
+  for: 'frames',
+  type: 'number',
+  unit: 'pixels',
+  default: 1,
+  min: 0,
+  max: 20,
+  step: 0.5,
+  auto: false,
+};
+
+const overlapDial: DialSpec = {
+  id: 'overlap',
+  label: 'Sum and difference maps',
+  reason:
+    'Divided by the number of pixel pairs in each bin, a flat pedestal is flat; not divided, it falls to the edges as the overlap of the array with itself. Only what is shown changes: the fit knows the overlap either way.',
+  needs: 'finish',
+  for: 'frames',
+  type: 'choice',
+  options: [
+    { value: 'mean', label: 'Mean per pixel pair' },
+    { value: 'sum', label: 'Sum over pixel pairs' },
+  ],
+  default: 'mean',
+};
+
+/** What only camera frames have to be asked for. */
+export const frameDials: readonly DialSpec[] = [
+  offsetDial,
+  thresholdDial,
+  normaliseDial,
+  crosstalkDial,
+  overlapDial,
+];
+
+export type FrameTreatmentSpec = Required<Pick<FrameSpec, 'offset' | 'threshold' | 'normalised'>>;
+
+export interface FrameChoices {
+  treatment: FrameTreatmentSpec;
+  /** Difference bins with |d| up to this many pixels are left out. */
+  crosstalk: number;
+  /** Maps are shown as means per pixel pair. */
+  perPair: boolean;
+}
+
+export function frameChoices(dials: DialValues): FrameChoices {
+  return {
+    treatment: {
+      offset: numberDial(dials, 'offset'),
+      threshold: autoDial(dials, 'threshold'),
+      normalised: dials.normalise === 'on',
+    },
+    crosstalk: numberDial(dials, 'crosstalk'),
+    perPair: dials.overlap !== 'sum',
+  };
+}
+
+/** What was done to the pixels, for the statement; empty where nothing was. */
+export function treatmentWords({ offset, threshold, normalised }: FrameTreatmentSpec): string {
+  const words: string[] = [];
+  if (offset !== 0) words.push(`an offset of ${offset} counts was taken from every pixel`);
+  if (threshold !== null) words.push(`pixels above ${threshold} counts counted as one photon`);
+  if (normalised) words.push('every frame was scaled to the mean total');
+  return words.length === 0 ? '' : ` Before that, ${words.join(', ')}.`;
+}
