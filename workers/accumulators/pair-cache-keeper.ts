@@ -1,8 +1,8 @@
 import type { TagSpec } from '../../shared/contracts/tally';
 import type { TagColumns } from '../kernels/tag-columns';
-import type { PairSink } from '../kernels/tag-scan';
+import type { PairCandidates } from '../kernels/tag-scan';
 import { type EdgeTags, joinEdges, noEdges, offerEdges } from './pair-cache-edges';
-import { type KeptPairs, keptBytes, PairColumnsKept } from './pair-cache-store';
+import { BYTES_PER_PAIR, type KeptPairs, keptBytes, PairColumnsKept } from './pair-cache-store';
 import { type SliceGrid, SliceRing, type SlotClock, sliceEnd, slotOf } from './slice-grid';
 
 /** Above this many pixels in both arms singles are not kept per pixel and slice, and another mask needs the bytes. */
@@ -24,27 +24,36 @@ export interface KeptPart {
 export class PairKeeper {
   readonly #found: PairColumnsKept;
   readonly #sites: number;
+  readonly #most: number;
   readonly #singles: SliceRing | null;
   #stores: KeptPairs[] = [];
   #edges = noEdges();
+  #isOverfull = false;
 
   constructor(spec: TagSpec, range: NonNullable<TagSpec['keepPairs']>) {
     this.#found = new PairColumnsKept(range);
+    this.#most = range.most ?? Number.POSITIVE_INFINITY;
     this.#sites = spec.a.width * spec.a.height + spec.b.width * spec.b.height;
     this.#singles = this.#sites <= MASKABLE_SITES ? new SliceRing(this.#sites) : null;
   }
 
+  /** Bytes of the pairs so far. */
   get bytes(): number {
-    return this.#stores.reduce((sum, store) => sum + keptBytes(store), 0);
+    return (
+      this.#found.count * BYTES_PER_PAIR + this.#stores.reduce((sum, store) => sum + keptBytes(store), 0)
+    );
   }
 
-  get pairs(): number {
-    return this.#stores.reduce((sum, store) => sum + store.offset.length, this.#found.count);
+  /** More pairs than asked for were found: none is at hand any more. */
+  get isOverfull(): boolean {
+    return this.#isOverfull;
   }
 
   /** Candidates of a scan, before the windows choose among them. */
-  takePairs(candidates: PairSink, count: number, clock: SlotClock): void {
+  takePairs(candidates: PairCandidates, count: number, clock: SlotClock): void {
+    if (this.#isOverfull) return;
     this.#found.add(candidates, count, clock);
+    this.#checkRoom();
   }
 
   /** Sorted tags [start, stop) with times after `refTick`, which the grid covers already. */
@@ -70,6 +79,7 @@ export class PairKeeper {
   /** Adds what the following range has kept, whose grid is `nextGrid`; this one's covers it already. */
   merge(next: PairKeeper, nextGrid: SliceGrid, doublings: number): void {
     this.#stores.push(...next.#sealed(nextGrid));
+    this.#checkRoom();
     this.#edges = joinEdges(this.#edges, next.#edges);
     if (next.#singles !== null) {
       this.#singles?.addRing(next.#singles, doublings, nextGrid.first, nextGrid.count);
@@ -90,10 +100,17 @@ export class PairKeeper {
     if (part.singles !== null) this.#singles?.addDense(part.singles, grid.first, grid.count);
   }
 
+  #checkRoom(): void {
+    const pairs = this.#stores.reduce((sum, store) => sum + store.offset.length, this.#found.count);
+    if (pairs <= this.#most) return;
+    this.#isOverfull = true;
+    this.#stores = [];
+    this.#found.clear();
+  }
+
   /** Sealed stores are never written again and may be shared. */
   #sealed(grid: SliceGrid): KeptPairs[] {
-    return this.#found.count === 0
-      ? this.#stores
-      : [...this.#stores, this.#found.seal(grid.bits, grid.first)];
+    const sealed = this.#found.count === 0 ? [] : [this.#found.seal(grid.bits, grid.first)];
+    return [...this.#stores, ...sealed];
   }
 }

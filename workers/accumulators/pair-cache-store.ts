@@ -1,5 +1,5 @@
 import type { KeptColumns, KeptStretch } from '../kernels/pair-recount';
-import type { PairSink } from '../kernels/tag-scan';
+import type { PairCandidates } from '../kernels/tag-scan';
 import { SLICE_LIMIT, type SlotClock, slotOf } from './slice-grid';
 
 /** About this many buckets of tau a store: a window then touches few pairs outside it. */
@@ -49,7 +49,7 @@ export class PairColumnsKept {
   }
 
   /** The first `count` candidates of a scan; the clock tells the slices of their times. */
-  add({ timeA, tau, pixelA, pixelB }: PairSink, count: number, clock: SlotClock): void {
+  add({ timeA, tau, pixelA, pixelB }: PairCandidates, count: number, clock: SlotClock): void {
     const { minTauTick, maxTauTick } = this.#range;
     this.#reserve(this.count + count);
     const toRise = this.#rise;
@@ -67,6 +67,15 @@ export class PairColumnsKept {
       at += 1;
     }
     this.count = at;
+  }
+
+  /** Forgets the pairs and their memory. */
+  clear(): void {
+    this.#rise = new Uint32Array(0);
+    this.#pixelA = new Uint16Array(0);
+    this.#pixelB = new Uint16Array(0);
+    this.#slot = new Uint8Array(0);
+    this.count = 0;
   }
 
   /** Slots after the slice length doubled `doublings` times; `firstSlice` was the first in use before. */

@@ -69,7 +69,7 @@ export class PairCache {
    * over all pairs.
    */
   recount(spec: TagSpec): TagTally | null {
-    if (!isInRange(this.range, spec)) return null;
+    if (!asksOnlyForPairs(spec) || !isInRange(this.range, spec)) return null;
     const removed = removedPixels(this.spec, spec);
     if (removed === null) return null;
     const frame = removed.any
@@ -89,6 +89,15 @@ export class PairCache {
     };
     this.#last = { removed, tally: spec.window === null && last !== null ? last.tally : tally, perTick };
     return tally;
+  }
+
+  /** Nothing that `older` tells is lost with it: its map is this one or a mask of it, and its range lies inside. */
+  replaces(older: PairCache): boolean {
+    return (
+      removedPixels(this.spec, older.spec) !== null &&
+      this.range.minTauTick <= older.range.minTauTick &&
+      this.range.maxTauTick >= older.range.maxTauTick
+    );
   }
 
   #countTicks(cells: PairCells): Float64Array | null {
@@ -192,6 +201,13 @@ const shiftedOf: WindowPart = {
  */
 export function isKeepable(tally: TagTally): boolean {
   return tally.outOfOrder === 0;
+}
+
+const known = new Set(['kind', 'tickFs', 'a', 'b', 'histogram', 'window', 'keepPairs']);
+
+/** Whatever else a specification may ask for is not told by pairs. */
+function asksOnlyForPairs(spec: TagSpec): boolean {
+  return Object.entries(spec).every(([key, value]) => known.has(key) || value === undefined);
 }
 
 function isInRange({ minTauTick, maxTauTick }: KeptRange, { histogram, window }: TagSpec): boolean {

@@ -7,6 +7,7 @@ import {
   countSum,
   type PairColumns,
 } from '../kernels/pair-counts';
+import { type CountArray, type PlaceCounts, placeInHeap } from './count-array';
 import { SliceRing } from './slice-grid';
 
 /** Above this many channel pairs the full matrix is not kept. */
@@ -21,27 +22,28 @@ export class PairStore {
   readonly #a: ArmSpec;
   readonly #b: ArmSpec;
   readonly #rings: Record<'pairs' | 'jointX' | 'jointY' | 'imageB' | 'imageA', SliceRing>;
-  readonly #difference: Float64Array;
-  readonly #sum: Float64Array;
-  readonly #matrix: Float64Array | null;
+  readonly #difference: CountArray;
+  readonly #sum: CountArray;
+  readonly #matrix: CountArray | null;
 
-  constructor(a: ArmSpec, b: ArmSpec, enabled: boolean) {
+  /** Counters are placed in this order: pairs, joint X, joint Y, image B, image A, difference, sum, matrix. */
+  constructor(a: ArmSpec, b: ArmSpec, enabled: boolean, place: PlaceCounts = placeInHeap) {
     this.#a = a;
     this.#b = b;
     const one = enabled ? 1 : 0;
     const pixelsA = a.width * a.height;
     const pixelsB = b.width * b.height;
     this.#rings = {
-      pairs: new SliceRing(1),
-      jointX: new SliceRing(one * a.width * b.width),
-      jointY: new SliceRing(one * a.height * b.height),
-      imageB: new SliceRing(one * pixelsB),
-      imageA: new SliceRing(one * pixelsA),
+      pairs: new SliceRing(1, place),
+      jointX: new SliceRing(one * a.width * b.width, place),
+      jointY: new SliceRing(one * a.height * b.height, place),
+      imageB: new SliceRing(one * pixelsB, place),
+      imageA: new SliceRing(one * pixelsA, place),
     };
     const lags = one * (a.width + b.width - 1) * (a.height + b.height - 1);
-    this.#difference = new Float64Array(lags);
-    this.#sum = new Float64Array(lags);
-    this.#matrix = enabled && pixelsA * pixelsB <= MATRIX_LIMIT ? new Float64Array(pixelsA * pixelsB) : null;
+    this.#difference = place(lags);
+    this.#sum = place(lags);
+    this.#matrix = enabled && pixelsA * pixelsB <= MATRIX_LIMIT ? place(pixelsA * pixelsB) : null;
   }
 
   add(pairs: PairColumns, count: number): void {
@@ -55,9 +57,9 @@ export class PairStore {
     countCells(slot, yB, yA, count, heightA, jointY.cells, jointY.counts);
     countCells(slot, yB, xB, count, widthB, imageB.cells, imageB.counts);
     countCells(slot, yA, xA, count, widthA, imageA.cells, imageA.counts);
-    countDifference(pairs, count, widthA, heightA, widthB, this.#difference);
-    countSum(pairs, count, widthA, widthB, this.#sum);
-    if (this.#matrix !== null) countMatrix(pairs, count, widthA * heightA, this.#matrix);
+    countDifference(pairs, count, widthA, heightA, widthB, this.#difference.values);
+    countSum(pairs, count, widthA, widthB, this.#sum.values);
+    if (this.#matrix !== null) countMatrix(pairs, count, widthA * heightA, this.#matrix.values);
   }
 
   fold(doublings: number, first: number, count: number): void {
@@ -66,7 +68,7 @@ export class PairStore {
 
   addStore(other: PairStore, doublings: number, first: number, count: number): void {
     for (const name of ringNames) this.#rings[name].addRing(other.#rings[name], doublings, first, count);
-    this.#addTotals(other.#difference, other.#sum, other.#matrix);
+    this.#addTotals(other.#difference.values, other.#sum.values, other.#matrix?.values ?? null);
   }
 
   addTally(tally: PairTally, first: number, count: number): void {
@@ -82,16 +84,16 @@ export class PairStore {
       jointY: jointY.toDense(first, count),
       imageB: imageB.toDense(first, count),
       imageA: imageA.toDense(first, count),
-      difference: this.#difference.slice(),
-      sum: this.#sum.slice(),
-      matrix: this.#matrix?.slice() ?? null,
+      difference: this.#difference.values.slice(),
+      sum: this.#sum.values.slice(),
+      matrix: this.#matrix?.values.slice() ?? null,
     };
   }
 
   #addTotals(difference: Float64Array, sum: Float64Array, matrix: Float64Array | null): void {
-    addInto(this.#difference, difference);
-    addInto(this.#sum, sum);
-    if (this.#matrix !== null && matrix !== null) addInto(this.#matrix, matrix);
+    addInto(this.#difference.values, difference);
+    addInto(this.#sum.values, sum);
+    if (this.#matrix !== null && matrix !== null) addInto(this.#matrix.values, matrix);
   }
 }
 

@@ -1,3 +1,5 @@
+import { type CountArray, type PlaceCounts, placeInHeap } from './count-array';
+
 /**
  * The slices of time that serve as bootstrap blocks: 2^bits ticks each, counted from tick 0 of the acquisition. The
  * length doubles as the run grows, so that the span of tags needs at most 128. It depends on the first and last tag
@@ -13,11 +15,13 @@ export class SliceGrid {
   firstTick: bigint | null = null;
   lastTick: bigint | null = null;
 
-  constructor(tickFs: number) {
+  /** Slices are at least 2^leastBits ticks long: where it is known that the whole run needs that. */
+  constructor(tickFs: number, leastBits = 0) {
     this.bits = Math.max(0, Math.ceil(Math.log2(SHORTEST_SLICE_FS / tickFs)));
     // log2 may round either way at an exact power of two.
     while (this.bits > 0 && 2 ** (this.bits - 1) * tickFs >= SHORTEST_SLICE_FS) this.bits -= 1;
     while (2 ** this.bits * tickFs < SHORTEST_SLICE_FS) this.bits += 1;
+    this.bits = Math.max(this.bits, leastBits);
   }
 
   get sliceTick(): number {
@@ -82,20 +86,27 @@ function slotOfSlice(slice: number): number {
  */
 export class SliceRing {
   readonly cells: number;
-  counts: Float64Array;
+  readonly #counters: CountArray;
 
-  constructor(cells: number) {
+  constructor(cells: number, place: PlaceCounts = placeInHeap) {
     this.cells = cells;
-    this.counts = new Float64Array(cells * SLICE_LIMIT);
+    this.#counters = place(cells * SLICE_LIMIT);
+  }
+
+  get counts(): Float64Array {
+    return this.#counters.values;
   }
 
   /** Joins slices after the length doubled `doublings` times; [first, first + count) were in use before. */
   fold(doublings: number, first: number, count: number): void {
     if (doublings === 0 || count === 0 || this.cells === 0) return;
-    const before = this.counts;
-    this.counts = new Float64Array(before.length);
+    const before = this.toDense(first, count);
+    const { counts, cells } = this;
     for (let slice = first; slice < first + count; slice++) {
-      this.#addSlot(Math.floor(slice / 2 ** doublings), before, slotOfSlice(slice) * this.cells);
+      counts.fill(0, slotOfSlice(slice) * cells, (slotOfSlice(slice) + 1) * cells);
+    }
+    for (let i = 0; i < count; i++) {
+      this.#addSlot(Math.floor((first + i) / 2 ** doublings), before, i * cells);
     }
   }
 
@@ -114,15 +125,17 @@ export class SliceRing {
   /** A copy in order of time, [slice][cell]. */
   toDense(first: number, count: number): Float64Array {
     const dense = new Float64Array(count * this.cells);
+    const { counts } = this;
     for (let i = 0; i < count; i++) {
       const from = slotOfSlice(first + i) * this.cells;
-      dense.set(this.counts.subarray(from, from + this.cells), i * this.cells);
+      dense.set(counts.subarray(from, from + this.cells), i * this.cells);
     }
     return dense;
   }
 
   #addSlot(slice: number, from: Float64Array, fromIndex: number): void {
     const to = slotOfSlice(slice) * this.cells;
-    for (let i = 0; i < this.cells; i++) this.counts[to + i]! += from[fromIndex + i]!;
+    const { counts, cells } = this;
+    for (let i = 0; i < cells; i++) counts[to + i]! += from[fromIndex + i]!;
   }
 }

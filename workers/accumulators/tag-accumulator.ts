@@ -1,9 +1,7 @@
 import type { TagBlock } from '../../shared/contracts/blocks';
 import type { ArmSpec, ArmTally, TagSpec, TagTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
-import { TagColumns } from '../kernels/tag-columns';
-import { scanBetween, scanHistogram, scanWindows } from '../kernels/tag-scan';
-import { firstAtLeast, sortTags } from '../kernels/tag-sort';
+import { firstAtLeast } from '../kernels/tag-sort';
 import type { TagWasm } from '../kernels/tag-wasm';
 import { type KeptPart, PairKeeper } from './pair-cache-keeper';
 import { addInto } from './pair-store';
@@ -17,9 +15,11 @@ import {
   rebaseTail,
   type TagBorder,
 } from './tag-border';
+import type { TagMachine } from './tag-machine';
+import { CompiledTagMachine, isFree } from './tag-machine-compiled';
+import { ScriptTagMachine } from './tag-machine-script';
 import { assertTagPart, NO_WINDOW, type TagPart } from './tag-part';
 import { planTags, type TagPlan } from './tag-plan';
-import { WindowCounter } from './window-counter';
 
 /**
  * Counts tags and all pairs of one range of an acquisition. At every moment all pairs among the tags so far are
@@ -37,29 +37,29 @@ export class TagAccumulator {
   readonly #spec: TagSpec;
   readonly #plan: TagPlan;
   readonly #grid: SliceGrid;
-  readonly #singles: Float64Array;
+  readonly #machine: TagMachine;
   /** Cells: arm A, arm B. */
   readonly #singlesPerSlice = new SliceRing(2);
-  readonly #histogram: Float64Array;
-  readonly #windows: WindowCounter;
-  readonly #scratch = new TagColumns();
   /** null when no pairs are to be kept, or no longer all of them are. */
   #keeper: PairKeeper | null;
   #head = createBorder();
-  #tail = createBorder();
+  /** Its tags are those the machine works on. */
+  readonly #tail: TagBorder;
   #records = 0;
   #tags = 0;
   #unmapped = 0;
   #outOfOrder = 0;
 
-  constructor(spec: TagSpec) {
+  constructor(spec: TagSpec, kernels: TagWasm | null = null, leastBits = 0) {
     this.#spec = spec;
     this.#plan = planTags(spec);
-    this.#grid = new SliceGrid(spec.tickFs);
-    this.#singles = new Float64Array(this.#plan.sites);
-    this.#histogram = new Float64Array(spec.histogram.bins);
+    this.#grid = new SliceGrid(spec.tickFs, leastBits);
     this.#keeper = spec.keepPairs ? new PairKeeper(spec, spec.keepPairs) : null;
-    this.#windows = new WindowCounter(spec, this.#keeper);
+    this.#machine =
+      kernels !== null && isFree(kernels)
+        ? new CompiledTagMachine(kernels, spec, this.#plan, this.#keeper)
+        : new ScriptTagMachine(spec, this.#plan, this.#keeper);
+    this.#tail = createBorder(this.#machine.work);
   }
 
   /** Takes the next block of this range, whatever its length. */
@@ -68,24 +68,40 @@ export class TagAccumulator {
       throw new Problem('bad-input', 'Time tags were expected but frames were found; choose a tag file.');
     }
     this.#records += block.records;
-    const work = this.#tail.tags;
     rebaseTail(this.#tail, block.baseTick);
+    this.#machine.begin(block);
+    const { count, baseTick } = block;
+    const { pieceTags } = this.#machine;
+    for (let from = 0; from < count; from += pieceTags) {
+      this.#pushPiece(from, Math.min(from + pieceTags, count), baseTick);
+    }
+  }
+
+  /** Tags [from, to) of the block the machine was given. */
+  #pushPiece(from: number, to: number, baseTick: bigint): void {
+    const machine = this.#machine;
+    const { work } = machine;
     const start = work.count;
-    this.#take(block);
+    const { latest, late } = machine.take(from, to, this.#tail.markTick);
+    this.#tail.markTick = latest;
+    this.#outOfOrder += late;
     const stop = work.count;
+    this.#unmapped += to - from - (stop - start);
     if (stop === start) return;
     if (this.#tags === 0) {
-      this.#head.refTick = block.baseTick + BigInt(work.time[start]!);
+      this.#head.refTick = baseTick + BigInt(work.time[start]!);
       this.#head.markTick = this.#plan.horizonTick + this.#plan.reachTick;
     }
     this.#tags += stop - start;
-    sortTags(work, start, stop, this.#scratch);
-    this.#cover(block.baseTick + BigInt(work.time[start]!), block.baseTick + BigInt(work.time[stop - 1]!));
+    machine.sort(start, stop);
+    const { time } = work;
+    this.#cover(baseTick + BigInt(time[start]!), baseTick + BigInt(time[stop - 1]!));
     this.#countPerSlice(start, stop);
-    this.#keeper?.takeTags(work, start, stop, block.baseTick, this.#grid);
-    offerToHead(this.#head, work, start, stop, block.baseTick);
-    this.#pairBetween(this.#tail, start, work, start, stop);
-    this.#pairWithin(start, stop);
+    this.#keeper?.takeTags(work, start, stop, baseTick, this.#grid);
+    offerToHead(this.#head, work, start, stop, baseTick);
+    const clock = this.#grid.clockAt(baseTick);
+    machine.scanBorder(start, work, start, stop, clock);
+    machine.scanWithin(start, stop, clock);
     this.#trimTail();
   }
 
@@ -103,20 +119,22 @@ export class TagAccumulator {
     const { firstTick, lastTick } = next.#grid;
     if (firstTick === null || lastTick === null) return;
     this.#cover(firstTick, lastTick);
-    addInto(this.#singles, next.#singles);
-    addInto(this.#histogram, next.#histogram);
+    next.#machine.settle();
+    addInto(this.#machine.singles, next.#machine.singles);
+    addInto(this.#machine.histogram, next.#machine.histogram);
     const doublings = this.#grid.bits - next.#grid.bits;
     const { first, count } = next.#grid;
     this.#singlesPerSlice.addRing(next.#singlesPerSlice, doublings, first, count);
-    this.#windows.prompt.addStore(next.#windows.prompt, doublings, first, count);
-    this.#windows.shifted.addStore(next.#windows.shifted, doublings, first, count);
-    if (next.#keeper !== null) this.#keeper?.merge(next.#keeper, next.#grid, doublings);
+    this.#machine.prompt.addStore(next.#machine.prompt, doublings, first, count);
+    this.#machine.shifted.addStore(next.#machine.shifted, doublings, first, count);
+    if (next.#keeper !== null && !next.#keeper.isOverfull)
+      this.#keeper?.merge(next.#keeper, next.#grid, doublings);
     else this.dropKept();
     const head = borderFromPart(borderToPart(next.#head));
     const tail = borderFromPart(borderToPart(next.#tail));
     if (this.#tags === 0) {
       this.#head = head;
-      this.#tail = tail;
+      this.#loadTail(tail);
     } else {
       this.#joinBorders(head, tail);
     }
@@ -124,6 +142,7 @@ export class TagAccumulator {
   }
 
   tally(): TagTally {
+    this.#machine.settle();
     const { first, count } = this.#grid;
     const { loTick, binTick } = this.#spec.histogram;
     const window = this.#spec.window ?? NO_WINDOW;
@@ -142,34 +161,40 @@ export class TagAccumulator {
       slices: count,
       a: this.#armTally(this.#spec.a, 0, sitesA, 0),
       b: this.#armTally(this.#spec.b, sitesA, sites, 1),
-      histogram: { loTick, binTick, counts: this.#histogram.slice() },
+      histogram: { loTick, binTick, counts: this.#machine.histogram.slice() },
       window: { loTick: window.loTick, hiTick: window.hiTick, shiftsTick: [...window.shiftsTick] },
-      prompt: this.#windows.prompt.tally(first, count),
-      shifted: this.#windows.shifted.tally(first, count),
+      prompt: this.#machine.prompt.tally(first, count),
+      shifted: this.#machine.shifted.tally(first, count),
     };
   }
 
   /** A copy as plain data; its buffers may be transferred. */
   toPart(): TagPart {
+    const kept = this.kept();
     return {
       part: 1,
       kind: 'tags',
       tally: this.tally(),
       head: borderToPart(this.#head),
       tail: borderToPart(this.#tail),
-      ...(this.#keeper === null ? {} : { kept: this.#keeper.toPart(this.#grid) }),
+      ...(kept === null ? {} : { kept }),
     };
   }
 
   /** What was kept beside the counts; null when `TagSpec.keepPairs` did not ask, or some of it was dropped. */
   kept(): KeptPart | null {
-    return this.#keeper?.toPart(this.#grid) ?? null;
+    return this.#keeper === null || this.#keeper.isOverfull ? null : this.#keeper.toPart(this.#grid);
+  }
+
+  /** Bytes of the pairs kept so far; null where `kept` is. */
+  keptBytes(): number | null {
+    return this.#keeper === null || this.#keeper.isOverfull ? null : this.#keeper.bytes;
   }
 
   /** Keeps no pairs any more and forgets those at hand; the counts go on. */
   dropKept(): void {
     this.#keeper = null;
-    this.#windows.dropKeeper();
+    this.#machine.dropKeeper();
   }
 
   /** Fills an accumulator that has counted nothing yet. */
@@ -182,49 +207,38 @@ export class TagAccumulator {
     if (tally.firstTick !== null && tally.lastTick !== null)
       this.#grid.cover(tally.firstTick, tally.lastTick);
     const { first, count } = this.#grid;
-    this.#singles.set(tally.a.singles, 0);
-    this.#singles.set(tally.b.singles, this.#plan.sitesA);
+    this.#machine.singles.set(tally.a.singles, 0);
+    this.#machine.singles.set(tally.b.singles, this.#plan.sitesA);
     this.#singlesPerSlice.addDense(
       interleave(tally.a.singlesPerSlice, tally.b.singlesPerSlice),
       first,
       count,
     );
-    this.#histogram.set(tally.histogram.counts);
-    this.#windows.prompt.addTally(tally.prompt, first, count);
-    this.#windows.shifted.addTally(tally.shifted, first, count);
+    this.#machine.histogram.set(tally.histogram.counts);
+    this.#machine.prompt.addTally(tally.prompt, first, count);
+    this.#machine.shifted.addTally(tally.shifted, first, count);
     this.#head = borderFromPart(part.head);
-    this.#tail = borderFromPart(part.tail);
+    this.#loadTail(borderFromPart(part.tail));
     if (part.kept) this.#keeper?.load(part.kept, this.#grid);
     else this.dropKept();
   }
 
-  /** Appends the kept tags of a block to the tail's columns, delays applied, and counts singles and disorder. */
-  #take(block: TagBlock): void {
-    const { siteOfChannel, delayOfChannel, horizonTick } = this.#plan;
-    const { deltaTick, channel, count } = block;
-    const singles = this.#singles;
-    const work = this.#tail.tags;
-    work.reserve(work.count + count);
-    const { time, site } = work;
-    let at = work.count;
-    let latest = this.#tail.markTick;
-    let late = 0;
-    for (let i = 0; i < count; i++) {
-      const c = channel[i]!;
-      const s = siteOfChannel[c]!;
-      if (s < 0) continue;
-      const t = deltaTick[i]! + delayOfChannel[c]!;
-      time[at] = t;
-      site[at] = s;
-      at += 1;
-      singles[s]! += 1;
-      if (t > latest) latest = t;
-      else if (latest - t > horizonTick) late += 1;
-    }
-    this.#unmapped += count - (at - work.count);
-    this.#outOfOrder += late;
-    this.#tail.markTick = latest;
-    work.count = at;
+  /** Slices are 2^sliceBits ticks long by now: never shorter later. */
+  get sliceBits(): number {
+    return this.#grid.bits;
+  }
+
+  /** After counting: gives compiled memory back. The accumulator must not be used any more. */
+  release(): void {
+    this.#machine.release();
+  }
+
+  #loadTail({ refTick, markTick, tags }: TagBorder): void {
+    const tail = this.#tail;
+    tail.refTick = refTick;
+    tail.markTick = markTick;
+    tail.tags.count = 0;
+    tail.tags.append(tags.time, tags.site, 0, tags.count, 0);
   }
 
   #cover(fromTick: bigint, toTick: bigint): void {
@@ -233,48 +247,29 @@ export class TagAccumulator {
     if (doublings === 0) return;
     this.#keeper?.fold(doublings, first, count);
     this.#singlesPerSlice.fold(doublings, first, count);
-    this.#windows.prompt.fold(doublings, first, count);
-    this.#windows.shifted.fold(doublings, first, count);
+    this.#machine.prompt.fold(doublings, first, count);
+    this.#machine.shifted.fold(doublings, first, count);
   }
 
   #countPerSlice(start: number, stop: number): void {
-    const { time, site } = this.#tail.tags;
-    const { sitesA } = this.#plan;
+    const { time } = this.#tail.tags;
     const clock = this.#grid.clockAt(this.#tail.refTick);
     const { counts } = this.#singlesPerSlice;
     for (let low = start; low < stop; ) {
       const high = firstAtLeast(time, low + 1, stop, sliceEnd(clock, time[low]!));
       const cell = 2 * slotOf(clock, time[low]!);
-      let ofA = 0;
-      // The sign bit instead of a comparison: arms alternate at random and a branch would be mispredicted.
-      for (let i = low; i < high; i++) ofA += (site[i]! - sitesA) >>> 31;
+      const ofA = this.#machine.countArmA(low, high);
       counts[cell]! += ofA;
       counts[cell + 1]! += high - low - ofA;
       low = high;
     }
   }
 
-  #pairWithin(start: number, stop: number): void {
-    const { tags, refTick } = this.#tail;
-    if (this.#spec.window === null && this.#keeper === null) {
-      scanHistogram(tags, start, stop, this.#plan, this.#histogram);
-      return;
-    }
-    this.#windows.begin(this.#grid, refTick);
-    scanWindows(tags, start, stop, this.#plan, this.#histogram, this.#windows);
-  }
-
-  /** Pairs of a tail's first `tailStop` tags with tags [start, stop) on the same reference. */
-  #pairBetween(tail: TagBorder, tailStop: number, tags: TagColumns, start: number, stop: number): void {
-    this.#windows.begin(this.#grid, tail.refTick);
-    scanBetween(tail.tags, tailStop, tags, start, stop, this.#plan, this.#histogram, this.#windows);
-  }
-
   /** Drops the tags that no later tag can meet. */
   #trimTail(): void {
     const { tags, markTick } = this.#tail;
     const { horizonTick, reachTick } = this.#plan;
-    sortTags(tags, 0, tags.count, this.#scratch);
+    this.#machine.sort(0, tags.count);
     tags.dropBefore(firstAtLeast(tags.time, 0, tags.count, markTick - horizonTick - reachTick));
   }
 
@@ -282,7 +277,8 @@ export class TagAccumulator {
     rebaseTail(this.#tail, head.refTick);
     const { time, count } = head.tags;
     this.#outOfOrder += firstAtLeast(time, 0, count, this.#tail.markTick - this.#plan.horizonTick);
-    this.#pairBetween(this.#tail, this.#tail.tags.count, head.tags, 0, count);
+    const clock = this.#grid.clockAt(this.#tail.refTick);
+    this.#machine.scanBorder(this.#tail.tags.count, head.tags, 0, count, clock);
     joinHeads(this.#head, head);
     rebaseTail(this.#tail, tail.refTick);
     this.#tail.tags.append(tail.tags.time, tail.tags.site, 0, tail.tags.count, 0);
@@ -298,7 +294,7 @@ export class TagAccumulator {
     return {
       width: arm.width,
       height: arm.height,
-      singles: this.#singles.slice(start, stop),
+      singles: this.#machine.singles.slice(start, stop),
       singlesPerSlice,
       masked: arm.masked.slice(),
     };
@@ -314,8 +310,16 @@ function interleave(a: Float64Array, b: Float64Array): Float64Array {
   return both;
 }
 
-export function createTagAccumulator(spec: TagSpec, _kernels: TagWasm | null = null): TagAccumulator {
-  return new TagAccumulator(spec);
+/**
+ * Compiled loops where `kernels` are at hand and no other accumulator holds them. `leastBits`: slices are at least
+ * 2^leastBits ticks long, which is exact where the whole run needs that.
+ */
+export function createTagAccumulator(
+  spec: TagSpec,
+  kernels: TagWasm | null = null,
+  leastBits = 0,
+): TagAccumulator {
+  return new TagAccumulator(spec, kernels, leastBits);
 }
 
 /** @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of other arms or windows. */

@@ -21,8 +21,8 @@ export interface TagBorderPart {
   site: Int32Array;
 }
 
-export function createBorder(): TagBorder {
-  return { refTick: 0n, markTick: Number.NEGATIVE_INFINITY, tags: new TagColumns() };
+export function createBorder(tags = new TagColumns()): TagBorder {
+  return { refTick: 0n, markTick: Number.NEGATIVE_INFINITY, tags };
 }
 
 export function borderToPart(border: TagBorder): TagBorderPart {
@@ -65,9 +65,10 @@ export function offerToHead(
 ): void {
   const shift = rebaseTick(refTick, head.refTick);
   if (Number.isNaN(shift)) return;
+  const { time } = tags;
   let end = start;
-  while (end < stop && tags.time[end]! + shift <= head.markTick) end += 1;
-  head.tags.append(tags.time, tags.site, start, end, shift);
+  while (end < stop && time[end]! + shift <= head.markTick) end += 1;
+  head.tags.append(time, tags.site, start, end, shift);
 }
 
 /** The head of two ranges in order. Each is complete up to its own mark, so together up to the smaller one. */

@@ -3,7 +3,7 @@ import { createPairColumns } from '../kernels/pair-counts';
 import type { PairSink } from '../kernels/tag-scan';
 import type { PairKeeper } from './pair-cache-keeper';
 import { PairStore } from './pair-store';
-import { type SliceGrid, type SlotClock, slotOf } from './slice-grid';
+import { type SlotClock, slotOf } from './slice-grid';
 
 const CAPACITY = 1 << 15;
 
@@ -43,9 +43,9 @@ export class WindowCounter implements PairSink {
     this.#b = createPixelTable(spec.b);
   }
 
-  /** To be called before every scan: the reference of the scanned times. */
-  begin(grid: SliceGrid, refTick: bigint): void {
-    this.#clock = grid.clockAt(refTick);
+  /** To be called before every scan: where the slices are for the scanned times. */
+  begin(clock: SlotClock): void {
+    this.#clock = clock;
   }
 
   dropKeeper(): void {

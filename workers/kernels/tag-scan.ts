@@ -19,14 +19,18 @@ export interface ScanRange {
   hullHiTick: number;
 }
 
-/** Columns of candidate pairs. A scan fills them and calls `drain` when they are full and at its end. */
-export interface PairSink {
+/** Columns of candidate pairs. */
+export interface PairCandidates {
   readonly capacity: number;
   /** Time of the A tag, against the reference of the scanned columns. */
   readonly timeA: Float64Array;
   readonly tau: Float64Array;
   readonly pixelA: Int32Array;
   readonly pixelB: Int32Array;
+}
+
+/** A scan fills the columns and calls `drain` when they are full and at its end. */
+export interface PairSink extends PairCandidates {
   drain(count: number): void;
 }
 

@@ -1,8 +1,110 @@
 import type { WasmModule } from './wasm-module';
 
-/** What `wasm/tags.ts` exports; addresses and counts are numbers. */
+/** What `wasm/tags.ts` exports; addresses (`...At`) and counts are numbers. Each is described there. */
 export interface TagExports {
-  sumDoubles(at: number, n: number): number;
+  decodeRecords(
+    rulesAt: number,
+    sourceAt: number,
+    recordBytes: number,
+    isBig: number,
+    records: number,
+    timeAt: number,
+    channelAt: number,
+  ): number;
+  takeTags(
+    deltaAt: number,
+    channelAt: number,
+    count: number,
+    siteOfAt: number,
+    delayOfAt: number,
+    singlesAt: number,
+    timeAt: number,
+    siteAt: number,
+  ): number;
+  orderOf(timeAt: number, count: number, latest: number, horizon: number, outAt: number): void;
+  isSorted(timeAt: number, count: number): number;
+  sortTags(timeAt: number, siteAt: number, count: number, scratchTimeAt: number, scratchSiteAt: number): void;
+  countBelow(siteAt: number, count: number, sitesA: number): number;
+  dropDead(timeAt: number, siteAt: number, count: number, deadTick: number, lastOfSiteAt: number): number;
+  scanTags(
+    planAt: number,
+    timeAt: number,
+    siteAt: number,
+    start: number,
+    startStop: number,
+    stop: number,
+  ): number;
+  scanBetween(
+    planAt: number,
+    leftTimeAt: number,
+    leftSiteAt: number,
+    leftStop: number,
+    timeAt: number,
+    siteAt: number,
+    stop: number,
+  ): number;
+  countWindows(planAt: number): void;
+  matrixMerged(
+    timeAt: number,
+    siteAt: number,
+    start: number,
+    startStop: number,
+    stop: number,
+    sitesA: number,
+    loTick: number,
+    hiTick: number,
+    outAt: number,
+    listAt: number,
+  ): void;
+  histogramLists(
+    xAt: number,
+    countX: number,
+    yAt: number,
+    countY: number,
+    low: number,
+    loTick: number,
+    binTick: number,
+    bins: number,
+    outAt: number,
+    listAt: number,
+  ): number;
+  matrixLists(
+    xAt: number,
+    siteXAt: number,
+    countX: number,
+    yAt: number,
+    siteYAt: number,
+    countY: number,
+    low: number,
+    loTick: number,
+    hiTick: number,
+    sitesX: number,
+    outAt: number,
+    listAt: number,
+  ): number;
+  imageLists(
+    xAt: number,
+    siteXAt: number,
+    countX: number,
+    yAt: number,
+    countY: number,
+    low: number,
+    loTick: number,
+    hiTick: number,
+    outAt: number,
+    listAt: number,
+  ): number;
+  countTriples(
+    heraldAt: number,
+    heralds: number,
+    oneAt: number,
+    twoAt: number,
+    lo1: number,
+    hi1: number,
+    lo2: number,
+    hi2: number,
+    outAt: number,
+  ): void;
 }
 
 export type TagWasm = WasmModule<TagExports>;

@@ -1,3 +1,4 @@
+import { isDeepStrictEqual } from 'node:util';
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import type { TagSpec } from '../../../../shared/contracts/tally';
@@ -8,6 +9,8 @@ import {
 } from '../../../../workers/accumulators/tag-accumulator';
 import type { TagPart } from '../../../../workers/accumulators/tag-part';
 import { transferablesOf } from '../../../../workers/accumulators/transferables';
+import type { TagWasm } from '../../../../workers/kernels/tag-wasm';
+import { tagKernels } from '../kernels/tag-kernels-compiled';
 import { cutRanges, mergeAnyOrder } from './merge-any';
 import { armSpec, type RawTag, slowTagTally, tagBlock } from './tag-twin';
 
@@ -112,8 +115,15 @@ function tagsOf({ tickFs, start, gap, events }: Case): RawTag[] {
   });
 }
 
-function counted(spec: TagSpec, tags: RawTag[], blockSizes: number[], baseBack: bigint): TagAccumulator {
-  const accumulator = createTagAccumulator(spec);
+function counted(
+  spec: TagSpec,
+  tags: RawTag[],
+  blockSizes: number[],
+  baseBack: bigint,
+  kernels: TagWasm | null = null,
+  leastBits = 0,
+): TagAccumulator {
+  const accumulator = createTagAccumulator(spec, kernels, leastBits);
   for (let at = 0, turn = 0; at < tags.length; turn++) {
     const size = blockSizes[turn % blockSizes.length]!;
     const piece = tags.slice(at, at + size);
@@ -187,6 +197,127 @@ describe('tag accumulator', () => {
     accumulator.merge(next);
     accumulator.push(tagBlock([{ tick: 1_000_000_000n, channel: 3 }], 1_000_000_000n));
     expect(next.tally()).toEqual(before);
+  });
+});
+
+describe('compiled tag accumulator', () => {
+  it('equals the double loop for any chunking and split', async () => {
+    const left = await tagKernels();
+    const right = await tagKernels();
+    fc.assert(
+      fc.property(cases, blockSizes, fc.nat(90), fc.boolean(), (given, sizes, cutAt, isMoved) => {
+        const spec = specOf(given);
+        const tags = tagsOf(given);
+        const cut = Math.min(cutAt, tags.length);
+        const first = counted(spec, tags.slice(0, cut), sizes, 3n, left);
+        const second = counted(spec, tags.slice(cut), sizes, 0n, right);
+        const whole = isMoved ? cloned(spec, first) : first;
+        whole.merge(isMoved ? cloned(spec, second) : second);
+        expect(whole.tally()).toEqual(slowTagTally(spec, tags));
+        first.release();
+        second.release();
+      }),
+      { numRuns: 250 },
+    );
+  });
+
+  it('equals the readable one over many pieces, with candidates that fill their columns again and again', async () => {
+    const kernels = await tagKernels();
+    let state = 12345;
+    const random = (): number => {
+      state = (Math.imul(state, 1103515245) + 12345) >>> 0;
+      return state / 2 ** 32;
+    };
+    for (const [gap, disorder] of [
+      [40, 0],
+      [3, 0],
+      [40, 5000],
+    ] as const) {
+      const spec = plainSpec({
+        tickFs: 1000,
+        a: armSpec(3, 2, 0, { delays: [0, 3, -7, 11, 0, 2] }),
+        histogram: { loTick: -100, binTick: 7, bins: 29 },
+        window: { loTick: -5, hiTick: 5, shiftsTick: [20, -30, 70] },
+        keepPairs: { minTauTick: -50, maxTauTick: 60 },
+      });
+      let tick = 86_399n * 10n ** 12n;
+      const tags = Array.from({ length: 60_000 }, () => {
+        tick += BigInt(Math.floor(random() * gap));
+        const channel = random() < 0.5 ? Math.floor(random() * 6) : 10 + Math.floor(random() * 9);
+        return { tick: tick - BigInt(Math.floor(random() * disorder)), channel };
+      });
+      const compiled = counted(spec, tags, [20_000, 1, 3000], 9n, kernels);
+      const readable = counted(spec, tags, [5000], 9n);
+      expect(isDeepStrictEqual(compiled.tally(), readable.tally())).toBe(true);
+      expect(compiled.tally().prompt.pairs.reduce((sum, n) => sum + n, 0)).toBeGreaterThan(500);
+      expect(compiled.kept()?.stores[0]?.offset.length).toBe(readable.kept()?.stores[0]?.offset.length);
+      compiled.release();
+    }
+  });
+
+  it('takes blocks that lie in its own memory as they are, while the memory grows', async () => {
+    const kernels = await tagKernels();
+    const spec = plainSpec();
+    const tags = Array.from({ length: 40_000 }, (_, i) => ({
+      tick: BigInt(i * 3),
+      channel: i % 2 === 0 ? i % 6 : 10 + (i % 8),
+    }));
+    const { mark } = kernels;
+    const deltaAt = kernels.place(8 * tags.length);
+    const channelAt = kernels.place(2 * tags.length);
+    const outside = tagBlock(tags, 0n);
+    kernels.f64(deltaAt, tags.length).set(outside.deltaTick);
+    kernels.u16(channelAt, tags.length).set(outside.channel);
+    const inside = {
+      ...outside,
+      deltaTick: kernels.f64(deltaAt, tags.length),
+      channel: kernels.u16(channelAt, tags.length),
+    };
+    const accumulator = createTagAccumulator(spec, kernels);
+    const held = createTagAccumulator(spec);
+    // Placed after the views were made: they may have ended.
+    accumulator.push({
+      ...inside,
+      deltaTick: kernels.f64(deltaAt, tags.length),
+      channel: kernels.u16(channelAt, tags.length),
+    });
+    held.push(outside);
+    expect(accumulator.tally()).toEqual(held.tally());
+    accumulator.release();
+    expect(kernels.mark).toBeGreaterThan(mark);
+    kernels.release(mark);
+  });
+
+  it('leaves a module that another holds alone', async () => {
+    const kernels = await tagKernels();
+    const spec = plainSpec();
+    const first = createTagAccumulator(spec, kernels);
+    const { mark } = kernels;
+    const second = createTagAccumulator(spec, kernels);
+    second.push(tagBlock([{ tick: 5n, channel: 1 }], 0n));
+    expect(kernels.mark).toBe(mark);
+    expect(second.tally().tags).toBe(1);
+    first.release();
+    expect(kernels.mark).toBeLessThan(mark);
+  });
+});
+
+describe('slices that begin coarse', () => {
+  it('end as those that grew, for parts of a run that needs them', () => {
+    fc.assert(
+      fc.property(cases, blockSizes, fc.nat(200), (given, sizes, cutAt) => {
+        const spec = specOf(given);
+        const tags = tagsOf(given);
+        const whole = slowTagTally(spec, tags);
+        const cut = cutAt % (tags.length + 1);
+        const merged = counted(spec, tags.slice(0, cut), sizes, 0n);
+        // The coordinator has merged what came before: its slices are at least that long in the end.
+        const leastBits = merged.sliceBits;
+        merged.merge(counted(spec, tags.slice(cut), sizes, 0n, null, leastBits));
+        expect(merged.tally()).toEqual(whole);
+      }),
+      { numRuns: 150 },
+    );
   });
 });
 

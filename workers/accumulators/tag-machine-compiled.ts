@@ -1,0 +1,251 @@
+import type { TagBlock } from '../../shared/contracts/blocks';
+import type { ArmSpec, TagSpec } from '../../shared/contracts/tally';
+import { type PlacedWindow, ScanPlan } from '../kernels/scan-plan';
+import type { TagColumns } from '../kernels/tag-columns';
+import { PlacedTagColumns } from '../kernels/tag-columns-wasm';
+import type { TagWasm } from '../kernels/tag-wasm';
+import { type PlaceCounts, placeInHeap } from './count-array';
+import type { PairKeeper } from './pair-cache-keeper';
+import { PairStore } from './pair-store';
+import type { SlotClock } from './slice-grid';
+import type { Disorder, TagMachine } from './tag-machine';
+import type { TagPlan } from './tag-plan';
+
+/** Tags a turn: with their times and sites they fit the second-level cache. */
+const PIECE = 2 ** 14;
+/** Turns between two foldings of the 32-bit counters: in between no counter can pass 2^32 in any reasonable time. */
+const TURNS = 64;
+
+/** Modules whose memory an accumulator holds: there is one at a time, because memory is given back in reverse. */
+const busy = new WeakSet<TagWasm>();
+
+export function isFree(wasm: TagWasm): boolean {
+  return !busy.has(wasm);
+}
+
+/**
+ * The loops compiled, on columns in the module's memory. Blocks that lie there already are not copied. Memory: the
+ * counters of the two `PairStore`s, about 1 MiB of tables, and 12 bytes a tag of the tail and a piece.
+ */
+export class CompiledTagMachine implements TagMachine {
+  readonly pieceTags = PIECE;
+  readonly work: PlacedTagColumns;
+  readonly prompt: PairStore;
+  readonly shifted: PairStore;
+  readonly singles: Float64Array;
+  readonly histogram: Float64Array;
+  readonly #wasm: TagWasm;
+  readonly #mark: number;
+  readonly #plan: TagPlan;
+  readonly #scan: ScanPlan;
+  readonly #scratch: PlacedTagColumns;
+  readonly #siteOfAt: number;
+  readonly #delayOfAt: number;
+  readonly #singlesAt: number;
+  readonly #orderAt: number;
+  readonly #copyAt: number;
+  #keeper: PairKeeper | null;
+  #source: TagBlock | { deltaAt: number; channelAt: number } = { deltaAt: 0, channelAt: 0 };
+  #turns = 0;
+
+  constructor(wasm: TagWasm, spec: TagSpec, plan: TagPlan, keeper: PairKeeper | null) {
+    busy.add(wasm);
+    this.#wasm = wasm;
+    this.#mark = wasm.mark;
+    this.#plan = plan;
+    this.#keeper = keeper;
+    this.singles = new Float64Array(plan.sites);
+    this.histogram = new Float64Array(spec.histogram.bins);
+    const windows: PlacedWindow[] = [];
+    if (spec.window === null) {
+      this.prompt = new PairStore(spec.a, spec.b, false, placeInHeap);
+      this.shifted = new PairStore(spec.a, spec.b, false, placeInHeap);
+    } else {
+      const tablesAt = placePixels(wasm, spec);
+      const prompt = placeStore(wasm, spec, tablesAt);
+      const shifted = placeStore(wasm, spec, tablesAt);
+      this.prompt = prompt.store;
+      this.shifted = shifted.store;
+      const { loTick, hiTick, shiftsTick } = spec.window;
+      windows.push({ loTick, hiTick, countersAt: prompt.countersAt });
+      for (const shift of shiftsTick) {
+        windows.push({ loTick: loTick + shift, hiTick: hiTick + shift, countersAt: shifted.countersAt });
+      }
+    }
+    const collect = windows.length > 0 || keeper !== null;
+    this.#scan = new ScanPlan(wasm, plan, spec.histogram.bins, windows, collect);
+    this.#siteOfAt = wasm.place(plan.siteOfChannel.byteLength);
+    this.#delayOfAt = wasm.place(plan.delayOfChannel.byteLength);
+    this.#singlesAt = wasm.place(4 * (plan.sites + 1));
+    this.#orderAt = wasm.place(24);
+    this.#copyAt = wasm.place(10 * PIECE);
+    this.#scratch = new PlacedTagColumns(wasm, PIECE);
+    this.work = new PlacedTagColumns(wasm, 8 * PIECE);
+    wasm.i32(this.#siteOfAt, plan.siteOfChannel.length).set(plan.siteOfChannel);
+    wasm.f64(this.#delayOfAt, plan.delayOfChannel.length).set(plan.delayOfChannel);
+    wasm.u32(this.#singlesAt, plan.sites + 1).fill(0);
+  }
+
+  begin(block: TagBlock): void {
+    const { deltaTick, channel } = block;
+    // Addresses instead of views: room made for the tags may grow the memory, and the views would end.
+    this.#source =
+      deltaTick.buffer === this.#wasm.memory.buffer && channel.buffer === deltaTick.buffer
+        ? { deltaAt: deltaTick.byteOffset, channelAt: channel.byteOffset }
+        : block;
+  }
+
+  take(from: number, to: number, latest: number): Disorder {
+    const wasm = this.#wasm;
+    const { work } = this;
+    const count = to - from;
+    // The kernels read one tag past the last.
+    work.reserve(work.count + count + 1);
+    let deltaAt = this.#copyAt;
+    let channelAt = this.#copyAt + 8 * PIECE;
+    const source = this.#source;
+    if ('deltaAt' in source) {
+      deltaAt = source.deltaAt + 8 * from;
+      channelAt = source.channelAt + 2 * from;
+    } else {
+      wasm.f64(deltaAt, count).set(source.deltaTick.subarray(from, to));
+      wasm.u16(channelAt, count).set(source.channel.subarray(from, to));
+    }
+    const timeAt = work.timeAt + 8 * work.count;
+    const siteAt = work.siteAt + 4 * work.count;
+    const kept = wasm.call.takeTags(
+      deltaAt,
+      channelAt,
+      count,
+      this.#siteOfAt,
+      this.#delayOfAt,
+      this.#singlesAt,
+      timeAt,
+      siteAt,
+    );
+    wasm.call.orderOf(timeAt, kept, latest, this.#plan.horizonTick, this.#orderAt);
+    work.count += kept;
+    const order = wasm.f64(this.#orderAt, 2);
+    this.#turns += 1;
+    if (this.#turns >= TURNS) this.settle();
+    return { latest: order[0]!, late: order[1]! };
+  }
+
+  sort(start: number, stop: number): void {
+    const { work } = this;
+    const { call } = this.#wasm;
+    const count = stop - start;
+    if (count < 2 || call.isSorted(work.timeAt + 8 * start, count) !== 0) return;
+    const scratch = this.#scratch;
+    scratch.reserve(count);
+    call.sortTags(work.timeAt + 8 * start, work.siteAt + 4 * start, count, scratch.timeAt, scratch.siteAt);
+  }
+
+  countArmA(start: number, stop: number): number {
+    return this.#wasm.call.countBelow(this.work.siteAt + 4 * start, stop - start, this.#plan.sitesA);
+  }
+
+  scanWithin(start: number, stop: number, clock: SlotClock): void {
+    const { timeAt, siteAt } = this.work;
+    const { call } = this.#wasm;
+    this.#scan.setClock(clock.slot, clock.offsetTick, clock.perTick);
+    while (call.scanTags(this.#scan.at, timeAt, siteAt, start, stop, stop) !== 0) this.#drain(clock);
+    this.#drain(clock);
+  }
+
+  scanBorder(workStop: number, tags: TagColumns, start: number, stop: number, clock: SlotClock): void {
+    if (workStop === 0 || start >= stop) return;
+    const { call } = this.#wasm;
+    const right = this.#placed(tags, start, stop);
+    const { timeAt, siteAt } = this.work;
+    const count = stop - start;
+    const plan = this.#scan.at;
+    this.#scan.setClock(clock.slot, clock.offsetTick, clock.perTick);
+    while (call.scanBetween(plan, timeAt, siteAt, workStop, right.timeAt, right.siteAt, count) !== 0) {
+      this.#drain(clock);
+    }
+    this.#drain(clock);
+  }
+
+  settle(): void {
+    this.#turns = 0;
+    this.#scan.takeHistogram(this.histogram);
+    const counts = this.#wasm.u32(this.#singlesAt, this.singles.length + 1);
+    for (let i = 0; i < this.singles.length; i++) this.singles[i]! += counts[i + 1]!;
+    counts.fill(0);
+  }
+
+  dropKeeper(): void {
+    this.#keeper = null;
+  }
+
+  release(): void {
+    this.#wasm.release(this.#mark);
+    busy.delete(this.#wasm);
+  }
+
+  #placed(tags: TagColumns, start: number, stop: number): { timeAt: number; siteAt: number } {
+    if (tags === this.work) {
+      return { timeAt: this.work.timeAt + 8 * start, siteAt: this.work.siteAt + 4 * start };
+    }
+    const scratch = this.#scratch;
+    scratch.count = 0;
+    scratch.append(tags.time, tags.site, start, stop, 0);
+    const { timeAt, siteAt } = scratch;
+    scratch.count = 0;
+    return { timeAt, siteAt };
+  }
+
+  #drain(clock: SlotClock): void {
+    if (this.#scan.capacity === 0) return;
+    if (this.#keeper !== null) {
+      const { count, columns } = this.#scan.candidates();
+      this.#keeper.takePairs(columns, count, clock);
+    }
+    this.#wasm.call.countWindows(this.#scan.at);
+  }
+}
+
+/** A store whose counters lie in the module, and the settings that tell the kernels where. */
+function placeStore(
+  wasm: TagWasm,
+  { a, b }: TagSpec,
+  tablesAt: readonly number[],
+): { store: PairStore; countersAt: number } {
+  const placed: number[] = [];
+  const place: PlaceCounts = (length) => {
+    const at = wasm.place(8 * length);
+    wasm.f64(at, length).fill(0);
+    placed.push(at);
+    return {
+      get values() {
+        return wasm.f64(at, length);
+      },
+    };
+  };
+  const store = new PairStore(a, b, true, place);
+  const countersAt = wasm.place(64);
+  const matrixAt = placed[7] ?? 0;
+  wasm
+    .i32(countersAt, 16)
+    .set([...placed.slice(0, 7), matrixAt, ...tablesAt, a.width, a.height, b.width, b.height]);
+  return { store, countersAt };
+}
+
+/** Columns and rows of the pixels of both arms: addresses of xA, yA, xB, yB. */
+function placePixels(wasm: TagWasm, { a, b }: TagSpec): number[] {
+  return [a, b].flatMap((arm) => {
+    const tables = pixelTables(arm);
+    return tables.map((table) => {
+      const at = wasm.place(table.byteLength);
+      wasm.i32(at, table.length).set(table);
+      return at;
+    });
+  });
+}
+
+function pixelTables({ width, height }: ArmSpec): [Int32Array, Int32Array] {
+  const x = Int32Array.from({ length: width * height }, (_, pixel) => pixel % width);
+  const y = Int32Array.from({ length: width * height }, (_, pixel) => Math.floor(pixel / width));
+  return [x, y];
+}
