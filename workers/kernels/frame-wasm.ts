@@ -17,6 +17,14 @@ export interface FrameExports {
     squares: number,
   ): number;
   scaleFrame(at: number, n: number, factor: number): void;
+  resampleMaps(
+    maps: number,
+    blocks: number,
+    cells: number,
+    weights: number,
+    resamples: number,
+    out: number,
+  ): void;
   addSums(
     double: number,
     slots: number,

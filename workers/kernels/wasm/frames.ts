@@ -15,6 +15,7 @@ import {
 } from './frames-fft';
 
 export { addOuters, addSums, prepareFrame, scaleFrame } from './frames-pixels';
+export { resampleMaps } from './frames-resample';
 
 const CELL: usize = 32;
 
