@@ -1,5 +1,6 @@
 /**
- * Blocks: what readers yield and accumulators take. Columns, never row objects.
+ * Blocks: what readers yield and accumulators take. Columns, never row objects. A block is to be used up before the next
+ * is asked for: its columns may be views of memory that is used again (`ReaderEnvironment.records`).
  *
  * Precision policy. Time is whole ticks. A day at 1 ps is 8.64e16 ticks, past 2^53, so a block holds one 64-bit base and
  * whole-number differences in doubles (exact below 2^53). Whatever keeps times across blocks re-bases with

@@ -28,9 +28,9 @@ export async function openPathSource(ref: SourceRef): Promise<ByteSource> {
     name,
     size,
     ref: { ...ref, size },
-    read: (start, end) => {
+    read: (start, end, into) => {
       const from = Math.min(Math.max(0, start), size);
-      return readFully(handle, from, Math.min(Math.max(from, end), size), path);
+      return readFully(handle, from, Math.min(Math.max(from, end), size), path, into);
     },
     close: () => handle.close(),
   };
@@ -61,9 +61,18 @@ async function openHandle(path: string): Promise<FileHandle> {
 }
 
 /** A read may give fewer bytes than asked, so it is repeated; a file that became shorter gives what is left. */
-async function readFully(handle: FileHandle, start: number, end: number, path: string): Promise<Uint8Array> {
-  // Not zero-filled and outside the pool of small buffers: its memory can be transferred.
-  const bytes = new Uint8Array(Buffer.allocUnsafeSlow(end - start).buffer);
+async function readFully(
+  handle: FileHandle,
+  start: number,
+  end: number,
+  path: string,
+  into: Uint8Array | undefined,
+): Promise<Uint8Array> {
+  const bytes =
+    into !== undefined && into.length >= end - start
+      ? into.subarray(0, end - start)
+      : // Not zero-filled and outside the pool of small buffers: its memory can be transferred.
+        new Uint8Array(Buffer.allocUnsafeSlow(end - start).buffer);
   let filled = 0;
   while (filled < bytes.length) {
     const { bytesRead } = await readOnce(handle, bytes, filled, start + filled, path);

@@ -20,9 +20,9 @@ export const recordsFormat: Format = {
     if (layout.format !== 'records') throw wrongFormat(layout.format, source.name);
     return inspectAs(source, layout, 'The layout was given.', []);
   },
-  open: async (source, layout) => {
+  open: async (source, layout, environment) => {
     if (layout.format !== 'records') throw wrongFormat(layout.format, source.name);
-    return openRecords(source, layout);
+    return openRecords(source, layout, environment.records);
   },
 };
 

@@ -1,7 +1,14 @@
 import type { TagBlock } from '../../../shared/contracts/blocks';
-import type { ByteSource, CancelToken, ReadRange } from '../../../shared/contracts/reader';
+import type {
+  ByteSource,
+  CancelToken,
+  ReadRange,
+  RecordDecoder,
+  RecordDecoding,
+} from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';
 import { passTurn } from '../turn';
+import { openDecoder } from './compiled';
 import { compileDecode } from './decode-fast';
 import { rebase, timeHigh, timeLow } from './decode-general';
 import {
@@ -12,48 +19,42 @@ import {
   type TagColumns,
 } from './decode-state';
 import type { RecordPlan } from './plan';
+import { type RecordSlice, readRecordBytes, readSlices } from './slices';
 import { isSkipped, toRecordWords, withoutSkipped } from './words';
 
-/** Records a block: 4 to 16 MiB of the source, about 10 MiB of columns. */
-export const recordsPerBlock = 2 ** 20;
-
-/** Bytes of whole records [start, end). Throws `truncated` when the source gives fewer than it promised. */
-export async function readRecordBytes(
-  source: ByteSource,
-  plan: RecordPlan,
-  start: number,
-  end: number,
-): Promise<Uint8Array> {
-  const from = plan.headerBytes + start * plan.recordBytes;
-  const to = plan.headerBytes + end * plan.recordBytes;
-  const bytes = await source.read(from, to);
-  if (bytes.length === to - from) return bytes;
-  throw new Problem(
-    'truncated',
-    `Expected ${to - from} bytes from byte ${from} of ${source.name}, found ${bytes.length}; the file became shorter while it was read, open it again.`,
-    `${source.name}, byte ${from + bytes.length}`,
-  );
+/** What is read, and by what. */
+export interface RecordFile {
+  source: ByteSource;
+  plan: RecordPlan;
+  decoding: RecordDecoding | undefined;
 }
 
+type Slices = AsyncIterable<RecordSlice> | Iterable<RecordSlice>;
+
 /**
- * Blocks of the range, in file order. `tickOffset` is `scanOffset` of its start; `onEnd` hears that of its end. Memory is bounded by one block,
- * whatever the range.
+ * Blocks of the range, in file order. `tickOffset` is `scanOffset` of its start; `onEnd` hears that of its end. Memory
+ * is bounded by two slices, whatever the range. `slices` are those of the range where they are at hand already.
  */
 export async function* readRecords(
-  source: ByteSource,
-  plan: RecordPlan,
+  file: RecordFile,
   range: ReadRange,
   tickOffset: bigint,
   token: CancelToken,
+  slices: Slices = readSlices(file.source, file.plan, range),
   onEnd?: (offsetTick: bigint) => void,
 ): AsyncGenerator<TagBlock> {
+  const { source, plan, decoding } = file;
   const decode = compileDecode(plan);
   const state = await stateBefore(source, plan, range.start, tickOffset);
-  for (let first = range.start; first < range.end; first += recordsPerBlock) {
-    await passTurn(token);
-    const end = Math.min(first + recordsPerBlock, range.end);
-    const bytes = await readRecordBytes(source, plan, first, end);
-    yield* decodeChunk(bytes, first, plan, decode, state, source.name);
+  const decoder = openDecoder(plan, decoding);
+  try {
+    for await (const { first, bytes } of slices) {
+      await passTurn(token);
+      if (decoder === null) yield* decodeChunk(bytes, first, plan, decode, state, source.name);
+      else yield* decodeSlice(bytes, first, plan, decoder, decode, state, source.name);
+    }
+  } finally {
+    decoder?.close();
   }
   onEnd?.(state.offsetTick + BigInt(state.epochTick));
 }
@@ -63,32 +64,89 @@ export async function* readRecords(
  * `start` when the layout rolls over, continuing from `known` when that lies before it.
  */
 export async function scanOffset(
-  source: ByteSource,
-  plan: RecordPlan,
+  file: RecordFile,
   start: number,
   token: CancelToken,
   known: { start: number; offsetTick: bigint },
   onBytes?: (bytes: number) => void,
 ): Promise<bigint> {
-  if (plan.rollover.in === 'none') return 0n;
+  if (file.plan.rollover.in === 'none') return 0n;
   const from = known.start <= start ? known : { start: 0, offsetTick: 0n };
-  const decode = compileDecode(plan);
-  const state = await stateBefore(source, plan, from.start, from.offsetTick);
-  const out = createColumns(Math.max(0, Math.min(recordsPerBlock, start - from.start)));
-  for (let first = from.start; first < start; first += recordsPerBlock) {
-    await passTurn(token);
-    const bytes = await readRecordBytes(source, plan, first, Math.min(first + recordsPerBlock, start));
-    const words = withoutSkipped(toRecordWords(bytes, plan), plan);
-    state.next = 0;
-    state.count = 0;
-    decode(words, state, out);
-    while (state.next * plan.stride < words.length) {
-      rebase(words, state, plan);
-      decode(words, state, out);
-    }
-    onBytes?.(bytes.length);
+  const range = { start: from.start, end: start };
+  const slices = readSlices(file.source, file.plan, range);
+  return from.offsetTick + (await advanceOf(file, range, slices, token, onBytes));
+}
+
+/** Rollover ticks inside the range, whose slices are given. */
+export async function advanceOf(
+  file: RecordFile,
+  range: ReadRange,
+  slices: Slices,
+  token: CancelToken,
+  onBytes?: (bytes: number) => void,
+): Promise<bigint> {
+  let end = 0n;
+  const blocks = readRecords(file, range, 0n, token, slices, (offsetTick) => {
+    end = offsetTick;
+  });
+  for await (const { bytes } of blocks) onBytes?.(bytes);
+  return end;
+}
+
+/** Decodes the bytes of records from `first` on into blocks of as many records as the decoder takes. */
+function* decodeSlice(
+  bytes: Uint8Array,
+  first: number,
+  plan: RecordPlan,
+  decoder: RecordDecoder,
+  decode: Decode,
+  state: DecodeState,
+  name: string,
+): Generator<TagBlock> {
+  const { recordBytes } = plan;
+  const records = bytes.length / recordBytes;
+  settleEpoch(state);
+  const compiled = { epochTick: 0, previousTick: previousOf(state) };
+  for (let start = 0; start < records; ) {
+    const end = Math.min(records, start + decoder.capacity);
+    const decoded = decoder.decode(bytes.subarray(start * recordBytes, end * recordBytes), compiled);
+    yield {
+      kind: 'tags',
+      firstRecord: first + start,
+      records: decoded.records,
+      baseTick: state.offsetTick,
+      deltaTick: decoded.deltaTick,
+      channel: decoded.channel,
+      count: decoded.deltaTick.length,
+      bytes: decoded.records * recordBytes,
+    };
+    start += decoded.records;
+    state.epochTick = compiled.epochTick;
+    setPrevious(state, compiled.previousTick);
+    if (start === end) continue;
+    // The epoch is full: the readable decoder knows how to go on, for as long as there are records in this turn.
+    yield* decodeChunk(
+      bytes.subarray(start * recordBytes, end * recordBytes),
+      first + start,
+      plan,
+      decode,
+      state,
+      name,
+    );
+    settleEpoch(state);
+    compiled.epochTick = 0;
+    compiled.previousTick = previousOf(state);
+    start = end;
   }
-  return state.offsetTick + BigInt(state.epochTick);
+}
+
+function previousOf({ previousHigh, previousLow }: DecodeState): number {
+  return previousHigh < 0 ? -1 : previousHigh * 2 ** 32 + previousLow;
+}
+
+function setPrevious(state: DecodeState, previousTick: number): void {
+  state.previousHigh = previousTick < 0 ? -1 : Math.floor(previousTick / 2 ** 32);
+  state.previousLow = previousTick < 0 ? 0 : previousTick % 2 ** 32;
 }
 
 /** Decodes the bytes of records from `first` on into one block, or several where the base must move. */
