@@ -3,8 +3,8 @@
  *
  * Step: (H + lambda diag H) d = g with H = J^T J, g = J^T (data - model); taken when the sum of squares S does not grow,
  * lambda / 10 then, else lambda * 10 (at least to 1e-3: it begins near Gauss and Newton's step, for warm starts). Ends
- * with an undamped step that promises less than 1e-8 of a variance: it is at most 1e-4 of the parameters' own errors, and
- * what is left after it some 1e-6.
+ * with an undamped step that promises less than 1e-6 of a variance: it is at most 1e-3 of the parameters' own errors, and
+ * what is left after it some 1e-5.
  * Source: Marquardt, J. Soc. Indust. Appl. Math. 11, 431 (1963), from memory. Cost: O(n^3) a step beside `accumulate`.
  */
 export interface LeastSquares {
@@ -23,7 +23,7 @@ export type FitEnd = 'converged' | 'not-finite' | 'singular' | 'no-progress';
 
 const MOST_STEPS = 60;
 const MOST_DAMPING = 1e12;
-const PROMISE = 1e-8;
+const PROMISE = 1e-6;
 /** Rounding of sums over the data, squared against it. */
 const ROUNDING = 1e-26;
 
