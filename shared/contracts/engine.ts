@@ -60,6 +60,11 @@ export interface RunRequest {
   inputs: Record<string, RunInput>;
   dials: DialValues;
   seed: number;
+  /**
+   * A look while a dial is turned: answered at once from what is at hand, with few resamples, as a look while reading
+   * is. Where bytes would have to be read the answer is a problem `needs-bytes`.
+   */
+  quick?: boolean;
 }
 
 /** One entry a file: the files of a sequence follow each other under one name, a companion comes last. */
@@ -73,8 +78,18 @@ export interface InputProvenance {
   plane: Plane | null;
 }
 
+/** Pairs at hand after a run of time tags: dials that need pairs are then answered without the bytes. Or why not. */
+export type PairsKept = { kept: number; bytes: number } | { kept: null; why: string };
+
+export interface EngineOptions {
+  /** Memory for kept pairs; 0 keeps none. Left out: 512 MiB. */
+  pairBytes?: number;
+}
+
 export interface RunResult {
   output: StudyOutput;
+  /** Of all its inputs of time tags together; left out when there are none. */
+  pairs?: PairsKept;
   provenance: {
     inputs: InputProvenance[];
     dials: DialValues;
@@ -166,6 +181,6 @@ export interface Engine {
  * transferred; `shared` has no DOM and so no name for them) and the list of studies.
  */
 export interface EngineHost extends Engine {
-  attach(ports: readonly unknown[]): Promise<void>;
+  attach(ports: readonly unknown[], options?: EngineOptions): Promise<void>;
   studies(): Promise<StudyInfo[]>;
 }

@@ -20,6 +20,7 @@ export type ProblemCode =
   | 'unsupported'
   | 'newer-version'
   | 'unreadable'
+  | 'needs-bytes'
   | 'internal';
 
 export interface ProblemData {

@@ -15,8 +15,8 @@ function attached(): Engine {
 }
 
 const host: EngineHost = {
-  async attach(ports) {
-    engine = createEngine(ports.filter((port) => port instanceof MessagePort).map(connectCompute));
+  async attach(ports, options) {
+    engine = createEngine(ports.filter((port) => port instanceof MessagePort).map(connectCompute), options);
   },
   studies: async () => Object.values(studies).map((study) => study.info),
   inspect: (source, layout) => attached().inspect(source, layout),

@@ -4,7 +4,7 @@ import { basename, resolve } from 'node:path';
 import { Worker } from 'node:worker_threads';
 import type { Endpoint } from 'comlink';
 import nodeEndpoint from 'comlink/dist/esm/node-adapter.mjs';
-import type { Engine, SourceRef } from '../../shared/contracts/engine';
+import type { Engine, EngineOptions, SourceRef } from '../../shared/contracts/engine';
 import { Problem } from '../../shared/errors/problem';
 import { connectCompute } from '../pipeline/compute-remote';
 import { createEngine } from '../pipeline/engine';
@@ -29,9 +29,13 @@ export interface NodeEngine {
 
 /**
  * The engine over worker threads, each started with its first task. `onCrash` hears of a thread that died (out of
- * memory, say): its task never answers.
+ * memory, say): its task never answers. No pairs are kept unless asked for: most often one run is all there is.
  */
-export function startNodeEngine(workers: number, onCrash: (error: Error) => void): NodeEngine {
+export function startNodeEngine(
+  workers: number,
+  onCrash: (error: Error) => void,
+  options: EngineOptions = { pairBytes: 0 },
+): NodeEngine {
   const threads: Worker[] = [];
   const start = (): Endpoint => {
     const thread = built
@@ -43,7 +47,7 @@ export function startNodeEngine(workers: number, onCrash: (error: Error) => void
   };
   const hosts = Array.from({ length: workers }, () => connectCompute(lazyEndpoint(start)));
   return {
-    engine: createEngine(hosts),
+    engine: createEngine(hosts, options),
     shards: createShardEngine(hosts, openPathSource),
     async close() {
       await Promise.all(threads.map((thread) => thread.terminate()));

@@ -6,6 +6,8 @@ import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
  * rolls over, each worker's reader goes on from the rollovers it knows and scans only what another worker read.
  */
 const FIRST_RECORDS = 2 ** 20;
+/** Records of the first look for the coincidence peak: whole chunks, so that their pairs tell it as well. */
+export const SEARCH_RECORDS = 2 * FIRST_RECORDS;
 const RECORDS = 2 ** 22;
 const PIXELS = 2 ** 23;
 const LEAST_FRAMES = 16;
@@ -18,11 +20,11 @@ export function planChunks(facts: ReaderFacts): ReadRange[] {
   return cut(facts.records, FIRST_RECORDS, RECORDS);
 }
 
-/** The first chunk is short, so that there is a picture within the first second. */
+/** The first two chunks are short, so that there is a picture within the first second. */
 function cut(total: number, first: number, next: number): ReadRange[] {
   const ranges: ReadRange[] = [];
   for (let start = 0; start < total; ) {
-    const end = Math.min(total, start + (start === 0 ? first : next));
+    const end = Math.min(total, start + (start < 2 * first ? first : next));
     ranges.push({ start, end });
     start = end;
   }

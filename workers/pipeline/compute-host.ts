@@ -1,18 +1,16 @@
 import { createSHA256 } from 'hash-wasm';
 import type { SourceRef } from '../../shared/contracts/engine';
-import type { Layout } from '../../shared/contracts/layout';
 import type { Outcome } from '../../shared/contracts/outcome';
-import type { ByteSource, CancelToken, Reader, ReaderEnvironment } from '../../shared/contracts/reader';
+import type { ByteSource, CancelToken, Reader } from '../../shared/contracts/reader';
 import { Cancelled } from '../../shared/errors/problem';
 import { createAccumulator } from '../accumulators/accumulator';
-import { inspectSource, openReader } from '../formats/registry';
+import { inspectSource } from '../formats/registry';
 import { answer } from './answer';
 import type { ComputeHost, OnTaskProgress } from './compute';
 import { type CompileKernels, loadKernels } from './kernels';
+import { type InputPlatform, keyOfInput, openInput, type ReadInput } from './read-input';
 
-export interface ComputePlatform {
-  openSource(ref: SourceRef): Promise<ByteSource>;
-  environment: ReaderEnvironment;
+export interface ComputePlatform extends InputPlatform {
   compileKernels: CompileKernels;
 }
 
@@ -25,7 +23,6 @@ const REPORT_EVERY_MS = 100;
 interface OpenReader {
   key: string | null;
   reader: Reader;
-  source: ByteSource;
 }
 
 export function createComputeHost(platform: ComputePlatform): ComputeHost {
@@ -42,24 +39,18 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
     }
   }
 
-  async function readerFor(ref: SourceRef, layout: Layout): Promise<Reader> {
-    const key = ref.key === undefined ? null : JSON.stringify([ref.key, layout]);
+  async function readerFor(input: ReadInput): Promise<Reader> {
+    const key = keyOfInput(input);
     const at = open.findIndex((kept) => kept.key === key);
     if (at >= 0 && key !== null) {
       const [kept] = open.splice(at, 1);
       open.push(kept!);
       return kept!.reader;
     }
-    while (open.length >= READERS_KEPT) await closeKept(open.shift()!);
-    const source = await platform.openSource(ref);
-    try {
-      const reader = await openReader(source, layout, platform.environment);
-      open.push({ key, reader, source });
-      return reader;
-    } catch (thrown) {
-      await source.close();
-      throw thrown;
-    }
+    while (open.length >= READERS_KEPT) await open.shift()!.reader.close();
+    const reader = await openInput(input, platform);
+    open.push({ key, reader });
+    return reader;
   }
 
   async function asTask<T>(taskId: string, work: (token: CancelToken) => Promise<T>): Promise<Outcome<T>> {
@@ -78,10 +69,10 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
         () => withSource(ref, (source) => inspectSource(source, layout, platform.environment)),
         ref.name,
       ),
-    facts: (ref, layout) => answer(async () => (await readerFor(ref, layout)).facts, ref.name),
+    facts: (input) => answer(async () => (await readerFor(input)).facts, input.source.name),
     count: (task, onProgress) =>
       asTask(task.taskId, async (token) => {
-        const reader = await readerFor(task.source, task.layout);
+        const reader = await readerFor(task.input);
         const accumulator = createAccumulator(task.spec, await kernels);
         const report = createReport(onProgress);
         const offset = await reader.tickOffsetAt(task.range.start, token);
@@ -99,11 +90,6 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
       if (token !== undefined) token.cancelled = true;
     },
   };
-}
-
-async function closeKept(kept: OpenReader): Promise<void> {
-  await kept.reader.close();
-  await kept.source.close();
 }
 
 async function hashSource(

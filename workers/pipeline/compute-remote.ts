@@ -24,7 +24,7 @@ export function connectCompute(endpoint: Comlink.Endpoint): ComputeHost {
   const remote = Comlink.wrap<ComputeHost>(endpoint);
   return {
     inspect: (source, layout) => remote.inspect(source, layout),
-    facts: (source, layout) => remote.facts(source, layout),
+    facts: (input) => remote.facts(input),
     count: (task, onProgress) => remote.count(task, Comlink.proxy(onProgress)),
     fingerprint: (taskId, source, onProgress) =>
       remote.fingerprint(taskId, source, Comlink.proxy(onProgress)),

@@ -4,6 +4,7 @@ import type { Outcome } from '../../shared/contracts/outcome';
 import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
 import type { TallySpec } from '../../shared/contracts/tally';
 import type { Part } from '../accumulators/accumulator';
+import type { ReadInput } from './read-input';
 
 /**
  * What one worker does for the engine: small tasks that answer with plain data. The engine decides what to do; compute
@@ -11,8 +12,7 @@ import type { Part } from '../accumulators/accumulator';
  */
 export interface CountTask {
   taskId: string;
-  source: SourceRef;
-  layout: Layout;
+  input: ReadInput;
   spec: TallySpec;
   range: ReadRange;
 }
@@ -26,7 +26,7 @@ export type OnTaskProgress = (progress: TaskProgress) => void;
 
 export interface ComputeHost {
   inspect(source: SourceRef, layout: Layout | null): Promise<Outcome<Inspection>>;
-  facts(source: SourceRef, layout: Layout): Promise<Outcome<ReaderFacts>>;
+  facts(input: ReadInput): Promise<Outcome<ReaderFacts>>;
   count(task: CountTask, onProgress: OnTaskProgress): Promise<Outcome<Part>>;
   /** SHA-256 of the whole source, lower-case hexadecimal. */
   fingerprint(taskId: string, source: SourceRef, onProgress: OnTaskProgress): Promise<Outcome<string>>;

@@ -2,50 +2,66 @@ import type { Detector } from '../../shared/contracts/detector';
 import type { DialValues } from '../../shared/contracts/dial';
 import type {
   Engine,
+  EngineOptions,
   InputProvenance,
+  PairsKept,
+  RunEvent,
   RunInput,
   RunRequest,
   RunResult,
   SourceRef,
 } from '../../shared/contracts/engine';
+import type { ReaderFacts } from '../../shared/contracts/reader';
 import type { Tally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
 import { fillDials } from '../studies/dials';
 import { studyById } from '../studies/registry';
 import type { Chosen, CountedInput, FinishRequest, Study } from '../studies/study';
 import { answer } from './answer';
+import { isSameInput, isSameSource } from './bytes-key';
+import { SEARCH_RECORDS } from './chunks';
 import type { ComputeHost } from './compute';
-import { type CountRequest, countInputs, countRange } from './counting';
+import { type CountRequest, countInputs, countRange, memoKey } from './counting';
 import { Job } from './job';
 import { assertFitsMemory } from './memory';
 import { createPool } from './pool';
 import { createStage } from './progress';
-import { isSameSource, TallyMemo } from './tally-memo';
+import { filesOf, keyOfInput, type ReadInput } from './read-input';
+import { TallyMemo } from './tally-memo';
 import { ENGINE_VERSION } from './version';
 
-/** Records of the first look for the coincidence peak; when nothing stands out, the whole acquisition is searched. */
-const SEARCH_RECORDS = 2 ** 21;
 /** A look may take at most this share of the time, so that looking never holds the reading up. */
 const LOOK_SHARE = 0.15;
 const LOOK_EVERY_MS = 250;
+const PAIR_BYTES = 512 * 2 ** 20;
+
+/** What earlier runs have found out about files, and what they counted. */
+interface Known {
+  counts: TallyMemo;
+  facts: { input: ReadInput; facts: ReaderFacts }[];
+  fingerprints: { source: SourceRef; sha256: string }[];
+}
 
 /** The engine over compute workers it is given; the same in the page and under Node. */
-export function createEngine(hosts: readonly ComputeHost[]): Engine {
+export function createEngine(
+  hosts: readonly ComputeHost[],
+  { pairBytes = PAIR_BYTES }: EngineOptions = {},
+): Engine {
   const pool = createPool(hosts);
-  const memo = new TallyMemo();
-  const fingerprints: { source: SourceRef; sha256: string }[] = [];
+  const known: Known = { counts: new TallyMemo(pairBytes), facts: [], fingerprints: [] };
   const jobs = new Map<string, Job>();
 
   return {
     inspect: (source, layout) => pool.run((host) => host.inspect(source, layout), { cancelled: false }),
     async run(request, onEvent) {
-      const job: Job = new Job(request.jobId, pool, (event) => {
+      const emit = (event: RunEvent): void => {
         // Told, not awaited. One that cannot be delivered means that nobody listens any more.
         Promise.resolve(onEvent(event)).catch(() => job.cancel());
-      });
+      };
+      const job: Job = new Job(request.jobId, pool, emit, request.quick);
       jobs.set(request.jobId, job);
       try {
-        const outcome = await answer(() => runStudy(job, request, memo, fingerprints));
+        const outcome = await answer(() => runStudy(job, request, known));
         if (outcome.status !== 'ok') job.cancel();
         return outcome;
       } finally {
@@ -58,22 +74,17 @@ export function createEngine(hosts: readonly ComputeHost[]): Engine {
   };
 }
 
-async function runStudy(
-  job: Job,
-  request: RunRequest,
-  memo: TallyMemo,
-  fingerprints: { source: SourceRef; sha256: string }[],
-): Promise<RunResult> {
+async function runStudy(job: Job, request: RunRequest, known: Known): Promise<RunResult> {
   const startedAt = new Date();
   const study = studyById(request.study);
   const dials = fillDials(study.info, request.dials);
-  const inputs = await gatherInputs(job, study, request.inputs);
+  const inputs = await gatherInputs(job, study, request.inputs, known.facts);
   study.validate(Object.fromEntries(inputs.map(({ name, studyInput }) => [name, studyInput])), dials);
   job.checkCancelled();
   const chosen = new Map<string, Chosen>();
   const requests: CountRequest[] = [];
   for (const input of inputs) {
-    const found = await findChosen(job, study, input, dials, memo);
+    const found = await findChosen(job, study, input, dials, known.counts);
     chosen.set(input.name, found);
     const spec = study.spec(input.studyInput, dials, found);
     assertFitsMemory(input.name, spec);
@@ -88,15 +99,17 @@ async function runStudy(
   const look = createLook((tallies, fraction) => {
     job.emit({ kind: 'partial', jobId: job.id, output: study.finish(finish(tallies, true)), fraction });
   });
-  const tallies = await countInputs(job, requests, memo, look);
+  const tallies = await countInputs(job, requests, known.counts, look);
   // Hashing reads the file once more; it goes after counting so that the answer does not wait for it in the pool.
   const [hashedInputs, output] = await Promise.all([
-    fingerprintInputs(job, requests, fingerprints),
-    Promise.resolve().then(() => study.finish(finish(tallies, false))),
+    fingerprintInputs(job, requests, known.fingerprints),
+    Promise.resolve().then(() => study.finish(finish(tallies, request.quick === true))),
   ]);
   job.checkCancelled();
+  const pairs = pairsKept(requests, known.counts);
   return {
     output,
+    ...(pairs === null ? {} : { pairs }),
     provenance: {
       inputs: hashedInputs,
       dials,
@@ -115,6 +128,7 @@ export async function gatherInputs(
   job: Job,
   study: Study,
   given: Record<string, RunInput>,
+  known: Known['facts'] = [],
 ): Promise<GatheredInput[]> {
   for (const name of Object.keys(given)) {
     if (study.info.inputs.some((spec) => spec.name === name)) continue;
@@ -132,11 +146,35 @@ export async function gatherInputs(
         );
       }
       assertKinds(spec.name, spec.accepts, input.layout.kind, input.detector);
-      const facts = await job.run(spec.name, (host) => host.facts(input.source, input.layout));
+      const facts = await findFacts(job, spec.name, input, known);
       const { layout, detector, plane } = input;
       return { name: spec.name, input, studyInput: { layout, detector, plane, facts } };
     }),
   );
+}
+
+async function findFacts(
+  job: Job,
+  name: string,
+  input: RunInput,
+  known: Known['facts'],
+): Promise<ReaderFacts> {
+  const before = known.find((entry) => isSameInput(entry.input, input));
+  if (before !== undefined) return before.facts;
+  const facts = await job.run(name, (host) => host.facts(input));
+  if (keyOfInput(input) !== null) known.push({ input, facts });
+  return facts;
+}
+
+/** Of all inputs of time tags together; null when there are none. */
+function pairsKept(requests: readonly CountRequest[], counts: TallyMemo): PairsKept | null {
+  const each = requests
+    .filter(({ spec }) => spec.kind === 'tags')
+    .map((request) => counts.pairs.status(memoKey(request)));
+  return each.reduce<PairsKept | null>((all, one) => {
+    if (all === null || one.kept === null) return one;
+    return all.kept === null ? all : { kept: all.kept + one.kept, bytes: all.bytes + one.bytes };
+  }, null);
 }
 
 function assertKinds(
@@ -172,6 +210,7 @@ export async function findChosen(
   const { facts } = input.studyInput;
   if (spec === null || facts.kind !== 'tags') return {};
   const request = { ...input, spec };
+  // When nothing stands out of the first records, the whole acquisition is searched.
   for (const end of new Set([Math.min(SEARCH_RECORDS, facts.records), facts.records])) {
     const tally = await countRange(job, request, { start: 0, end }, memo);
     const found = tally.kind === 'tags' ? study.choose(tally, input.studyInput, dials) : null;
@@ -210,6 +249,7 @@ function createLook(show: (tallies: Map<string, Tally>, fraction: number) => voi
   };
 }
 
+/** One entry a file, so that every byte the numbers come from is named. */
 async function fingerprintInputs(
   job: Job,
   requests: readonly CountRequest[],
@@ -217,14 +257,13 @@ async function fingerprintInputs(
 ): Promise<InputProvenance[]> {
   const known = (source: SourceRef): string | undefined =>
     kept.find((entry) => isSameSource(entry.source, source))?.sha256;
-  const bytes = requests.reduce(
-    (sum, { input }) => sum + (known(input.source) === undefined ? input.source.size : 0),
-    0,
+  const files = requests.flatMap(({ name, input }) =>
+    filesOf(input).map((file) => ({ ...file, name, detector: input.detector, plane: input.plane })),
   );
+  const bytes = files.reduce((sum, { source }) => sum + (known(source) === undefined ? source.size : 0), 0);
   const stage = bytes > 0 ? createStage(job.id, 'fingerprints of the files', bytes, job.emit) : null;
   return Promise.all(
-    requests.map(async ({ name, input }) => {
-      const { source, layout, detector, plane } = input;
+    files.map(async ({ name, source, layout, detector, plane }) => {
       const sha256 =
         known(source) ??
         (await job.run(name, (host, taskId) =>

@@ -13,10 +13,14 @@ export class Job {
   readonly #running = new Map<string, ComputeHost>();
   #tasks = 0;
 
-  constructor(id: string, pool: Pool, emit: (event: RunEvent) => void) {
+  /** A quick one has no tasks, and so nothing to tell. */
+  readonly #isQuick: boolean;
+
+  constructor(id: string, pool: Pool, emit: (event: RunEvent) => void, isQuick = false) {
     this.id = id;
     this.#pool = pool;
-    this.emit = emit;
+    this.emit = isQuick ? () => undefined : emit;
+    this.#isQuick = isQuick;
   }
 
   cancel(): void {
@@ -30,6 +34,13 @@ export class Job {
 
   /** Runs one task in the pool and unpacks its answer; a Problem names the input it concerns. */
   async run<T>(input: string, task: (host: ComputeHost, taskId: string) => Promise<Outcome<T>>): Promise<T> {
+    if (this.#isQuick) {
+      throw new Problem(
+        'needs-bytes',
+        `A quick answer was asked for, and "${input}" has to be read for it; run the study.`,
+        input,
+      );
+    }
     const taskId = `${this.id}/${this.#tasks++}`;
     const outcome = await this.#pool.run((host) => {
       this.#running.set(taskId, host);

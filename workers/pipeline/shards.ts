@@ -1,6 +1,5 @@
 import { createSHA256 } from 'hash-wasm';
 import type { OnRunEvent, RunInput, RunRequest, SourceRef } from '../../shared/contracts/engine';
-import type { Layout } from '../../shared/contracts/layout';
 import type { Outcome } from '../../shared/contracts/outcome';
 import type { ByteSource } from '../../shared/contracts/reader';
 import type { TallySpec } from '../../shared/contracts/tally';
@@ -19,6 +18,7 @@ import type { PartFile } from './part-file';
 import type { PartFileFacts, PartInput } from './part-head';
 import { createPool } from './pool';
 import { createStage } from './progress';
+import { filesOf } from './read-input';
 import { TallyMemo } from './tally-memo';
 import { ENGINE_VERSION } from './version';
 
@@ -142,12 +142,6 @@ export async function fingerprintSpec(spec: TallySpec): Promise<string> {
     hash.update(new Uint8Array(buffer, byteOffset, byteLength));
   }
   return hash.digest('hex');
-}
-
-/** Every file an input reads from, with the layout it is read by, in order. */
-function filesOf(input: RunInput): { source: SourceRef; layout: Layout }[] {
-  const own = [input.source, ...(input.following ?? [])].map((source) => ({ source, layout: input.layout }));
-  return input.companion === undefined ? own : [...own, input.companion];
 }
 
 async function describeFiles(
