@@ -23,15 +23,21 @@ export interface Accumulator {
   tally(): Tally;
   /** A copy as plain data: structured-clone-able, its buffers (`transferablesOf`) transferable. */
   toPart(): Part;
+  /** After counting: gives compiled memory back. It must not be used any more. */
+  release?(): void;
 }
 
-/** With compiled kernels the counts are the same and come faster. */
+/**
+ * With compiled kernels the counts are the same and come faster. `leastBits`: slices of time are at least 2^leastBits
+ * ticks long, where it is known that the whole acquisition needs that.
+ */
 export function createAccumulator(
   spec: TallySpec,
   kernels: CompiledKernels = NO_COMPILED_KERNELS,
+  leastBits = 0,
 ): Accumulator {
   return spec.kind === 'tags'
-    ? createTagAccumulator(spec, kernels.tags)
+    ? createTagAccumulator(spec, kernels.tags, leastBits)
     : createFrameAccumulator(spec, kernels.frames);
 }
 

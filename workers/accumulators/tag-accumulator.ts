@@ -325,7 +325,7 @@ export function createTagAccumulator(
 /** @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of other arms or windows. */
 export function tagAccumulatorFromPart(spec: TagSpec, part: TagPart): TagAccumulator {
   assertTagPart(spec, part);
-  const accumulator = new TagAccumulator(spec);
+  const accumulator = new TagAccumulator(spec, null, Math.log2(part.tally.sliceTick));
   accumulator.load(part);
   return accumulator;
 }

@@ -1,12 +1,13 @@
 import { createSHA256 } from 'hash-wasm';
 import type { SourceRef } from '../../shared/contracts/engine';
 import type { Outcome } from '../../shared/contracts/outcome';
-import type { ByteSource, CancelToken, Reader } from '../../shared/contracts/reader';
+import type { ByteSource, CancelToken, Reader, ReadRange } from '../../shared/contracts/reader';
 import { Cancelled } from '../../shared/errors/problem';
 import { createAccumulator } from '../accumulators/accumulator';
 import { inspectSource } from '../formats/registry';
+import { createRecordDecoding } from '../kernels/tag-decode';
 import { answer } from './answer';
-import type { ComputeHost, OnTaskProgress } from './compute';
+import type { AskOffset, ComputeHost, OnTaskProgress } from './compute';
 import { type CompileKernels, loadKernels } from './kernels';
 import { type InputPlatform, keyOfInput, openInput, type ReadInput } from './read-input';
 
@@ -27,6 +28,7 @@ interface OpenReader {
 
 export function createComputeHost(platform: ComputePlatform): ComputeHost {
   const kernels = loadKernels(platform.compileKernels);
+  const records = kernels.then(({ tags }) => (tags === null ? undefined : createRecordDecoding(tags)));
   const open: OpenReader[] = [];
   const tokens = new Map<string, { cancelled: boolean }>();
 
@@ -48,7 +50,12 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
       return kept!.reader;
     }
     while (open.length >= READERS_KEPT) await open.shift()!.reader.close();
-    const reader = await openInput(input, platform);
+    // Two files merged hold blocks of one while they read the other: those must own their columns.
+    const environment =
+      input.companion === undefined
+        ? { ...platform.environment, records: await records }
+        : platform.environment;
+    const reader = await openInput(input, { ...platform, environment });
     open.push({ key, reader });
     return reader;
   }
@@ -70,18 +77,22 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
         ref.name,
       ),
     facts: (input) => answer(async () => (await readerFor(input)).facts, input.source.name),
-    count: (task, onProgress) =>
+    count: (task, onProgress, askOffset) =>
       asTask(task.taskId, async (token) => {
         const reader = await readerFor(task.input);
-        const accumulator = createAccumulator(task.spec, await kernels);
-        const report = createReport(onProgress);
-        const offset = await reader.tickOffsetAt(task.range.start, token);
-        for await (const block of reader.read(task.range, offset, token)) {
-          accumulator.push(block);
-          report.add(block.bytes, block.kind === 'tags' ? block.records : block.count);
+        const offset = await offsetOf(reader, task.range, token, askOffset);
+        const accumulator = createAccumulator(task.spec, await kernels, task.leastBits);
+        try {
+          const report = createReport(onProgress);
+          for await (const block of reader.read(task.range, offset, token)) {
+            accumulator.push(block);
+            report.add(block.bytes, block.kind === 'tags' ? block.records : block.count);
+          }
+          report.flush();
+          return accumulator.toPart();
+        } finally {
+          accumulator.release?.();
         }
-        report.flush();
-        return accumulator.toPart();
       }),
     fingerprint: (taskId, ref, onProgress) =>
       asTask(taskId, (token) => withSource(ref, (source) => hashSource(source, token, onProgress))),
@@ -90,6 +101,21 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
       if (token !== undefined) token.cancelled = true;
     },
   };
+}
+
+/** Ticks of the rollovers before the range, from whoever knows them. */
+async function offsetOf(
+  reader: Reader,
+  range: ReadRange,
+  token: CancelToken,
+  askOffset: AskOffset | undefined,
+): Promise<bigint> {
+  if (askOffset === undefined || reader.advanceOf === undefined) {
+    return reader.tickOffsetAt(range.start, token);
+  }
+  const offset = await askOffset(await reader.advanceOf(range, token));
+  if (offset === null) throw new Cancelled();
+  return offset;
 }
 
 async function hashSource(

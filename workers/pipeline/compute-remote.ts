@@ -6,9 +6,10 @@ import type { ComputeHost } from './compute';
 export function exposeCompute(host: ComputeHost, endpoint: Comlink.Endpoint): void {
   const exposed: ComputeHost = {
     ...host,
-    async count(task, onProgress) {
-      const outcome = await host.count(task, onProgress);
+    async count(task, onProgress, askOffset) {
+      const outcome = await host.count(task, onProgress, askOffset);
       release(onProgress);
+      if (askOffset !== undefined) release(askOffset);
       return outcome.status === 'ok' ? Comlink.transfer(outcome, transferablesOf(outcome.value)) : outcome;
     },
     async fingerprint(taskId, source, onProgress) {
@@ -25,7 +26,8 @@ export function connectCompute(endpoint: Comlink.Endpoint): ComputeHost {
   return {
     inspect: (source, layout) => remote.inspect(source, layout),
     facts: (input) => remote.facts(input),
-    count: (task, onProgress) => remote.count(task, Comlink.proxy(onProgress)),
+    count: (task, onProgress, askOffset) =>
+      remote.count(task, Comlink.proxy(onProgress), askOffset && Comlink.proxy(askOffset)),
     fingerprint: (taskId, source, onProgress) =>
       remote.fingerprint(taskId, source, Comlink.proxy(onProgress)),
     cancel: (taskId) => remote.cancel(taskId),

@@ -15,6 +15,8 @@ export interface CountTask {
   input: ReadInput;
   spec: TallySpec;
   range: ReadRange;
+  /** Slices of time are at least 2^leastBits ticks long: what the parts before it came to. */
+  leastBits: number;
 }
 
 export interface TaskProgress {
@@ -23,11 +25,14 @@ export interface TaskProgress {
   records: number;
 }
 export type OnTaskProgress = (progress: TaskProgress) => void;
+/** Tells the rollovers inside a chunk and hears the ticks of those before it; null when the run has ended. */
+export type AskOffset = (advanceTick: bigint) => Promise<bigint | null>;
 
 export interface ComputeHost {
   inspect(source: SourceRef, layout: Layout | null): Promise<Outcome<Inspection>>;
   facts(input: ReadInput): Promise<Outcome<ReaderFacts>>;
-  count(task: CountTask, onProgress: OnTaskProgress): Promise<Outcome<Part>>;
+  /** Without `askOffset` the rollovers before the chunk are found by reading what comes before it. */
+  count(task: CountTask, onProgress: OnTaskProgress, askOffset?: AskOffset): Promise<Outcome<Part>>;
   /** SHA-256 of the whole source, lower-case hexadecimal. */
   fingerprint(taskId: string, source: SourceRef, onProgress: OnTaskProgress): Promise<Outcome<string>>;
   /** Unknown tasks are ignored: they may have ended meanwhile. */

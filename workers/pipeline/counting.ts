@@ -11,7 +11,9 @@ import { isKeepable, PairCache } from '../accumulators/pair-cache';
 import { TagAccumulator } from '../accumulators/tag-accumulator';
 import type { StudyInput } from '../studies/study';
 import { planChunks, SEARCH_RECORDS } from './chunks';
+import type { AskOffset } from './compute';
 import type { Job } from './job';
+import { OffsetChain } from './offsets';
 import { keepingSpec, searchKeepingSpec, tooManyPairs } from './pair-keeping';
 import type { PairMemo } from './pair-memo';
 import { createStage, type StageProgress } from './progress';
@@ -31,6 +33,7 @@ class Counting {
   readonly chunks: ReadRange[];
   readonly #accumulator: Accumulator;
   readonly #waiting = new Map<number, Part>();
+  readonly offsets = new OffsetChain();
   #merged = 0;
   /** What is counted as long as pairs are kept; null when they are not. */
   #keeping: TagSpec | null = null;
@@ -95,6 +98,16 @@ class Counting {
     return kept && isKeepable(tally) ? new PairCache(spec, spec.keepPairs, tally, kept) : null;
   }
 
+  /** Slices of the parts so far: those of later parts need not be shorter. */
+  get leastBits(): number {
+    return this.#accumulator instanceof TagAccumulator ? this.#accumulator.sliceBits : 0;
+  }
+
+  /** One worker reads in order and knows the rollovers before a chunk; several tell each other. */
+  offsetsAt(index: number, job: Job): AskOffset | undefined {
+    return job.workers > 1 ? (advanceTick) => this.offsets.ask(index, advanceTick) : undefined;
+  }
+
   get begun(): boolean {
     return this.#merged > 0;
   }
@@ -146,9 +159,9 @@ export async function countInputs(
     counting.chunks.map((range, index) => ({ counting, range, index, at: index / counting.chunks.length })),
   );
   tasks.sort((a, b) => a.at - b.at);
-  await Promise.all(
+  const counted = Promise.all(
     tasks.map(async ({ counting, range, index }) => {
-      const part = await countChunk(job, counting, range, stage);
+      const part = await countChunk(job, counting, range, stage, counting.offsetsAt(index, job));
       if (!counting.take(index, part)) return;
       keepWithin(memo.pairs, countings);
       if (stage.fraction >= 1 || !look.isWanted()) return;
@@ -158,6 +171,9 @@ export async function countInputs(
       look.show(soFar, stage.fraction);
     }),
   );
+  await counted.finally(() => {
+    for (const counting of countings) counting.offsets.stop();
+  });
   stage.finish();
   for (const counting of countings) {
     const tally = counting.tally();
@@ -252,15 +268,19 @@ function bytesOf({ input, studyInput: { facts } }: CountRequest, ranges: readonl
 /** The specification may ask for more than the request does: for pairs to be kept. */
 function countChunk(
   job: Job,
-  { request, spec }: { request: CountRequest; spec: TallySpec },
+  counting: { request: CountRequest; spec: TallySpec; leastBits?: number },
   range: ReadRange,
   stage: StageProgress,
+  askOffset?: AskOffset,
 ): Promise<Part> {
+  const { request } = counting;
   const { source, layout, following, companion } = request.input;
   const input = { source, layout, following, companion };
-  return job.run(request.name, (host, taskId) =>
-    host.count({ taskId, input, spec, range }, ({ bytes, records }) => stage.add(bytes, records)),
-  );
+  return job.run(request.name, (host, taskId) => {
+    const { spec, leastBits = 0 } = counting;
+    const task = { taskId, input, spec, range, leastBits };
+    return host.count(task, ({ bytes, records }) => stage.add(bytes, records), askOffset);
+  });
 }
 
 export function memoKey(request: CountRequest): MemoKey {

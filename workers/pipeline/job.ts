@@ -23,6 +23,10 @@ export class Job {
     this.#isQuick = isQuick;
   }
 
+  get workers(): number {
+    return this.#pool.size;
+  }
+
   cancel(): void {
     this.token.cancelled = true;
     for (const [taskId, host] of this.#running) void host.cancel(taskId);

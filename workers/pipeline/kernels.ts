@@ -1,7 +1,7 @@
 import { type CompiledKernels, NO_COMPILED_KERNELS } from '../accumulators/compiled-kernels';
 import type { FrameExports } from '../kernels/frame-wasm';
 import type { TagExports } from '../kernels/tag-wasm';
-import { instantiateWasm } from '../kernels/wasm-module';
+import { instantiateWasm, type WasmModule } from '../kernels/wasm-module';
 
 /** Modules of compiled kernels, one file each in `workers/kernels/wasm`. */
 export type KernelName = 'tags' | 'frames';
@@ -12,9 +12,22 @@ export type CompileKernels = (name: KernelName) => Promise<WebAssembly.Module | 
 /** Each worker has its own instances, and so its own memory. */
 export async function loadKernels(compile: CompileKernels): Promise<CompiledKernels> {
   if (typeof WebAssembly !== 'object') return NO_COMPILED_KERNELS;
-  const [tags, frames] = await Promise.all([compile('tags'), compile('frames')]);
-  return {
-    tags: tags && (await instantiateWasm<TagExports>(tags)),
-    frames: frames && (await instantiateWasm<FrameExports>(frames)),
-  };
+  const [tags, frames] = await Promise.all([
+    load<TagExports>(compile, 'tags'),
+    load<FrameExports>(compile, 'frames'),
+  ]);
+  return { tags, frames };
+}
+
+async function load<Exports extends object>(
+  compile: CompileKernels,
+  name: KernelName,
+): Promise<WasmModule<Exports> | null> {
+  try {
+    const compiled = await compile(name);
+    return compiled && (await instantiateWasm<Exports>(compiled));
+  } catch {
+    // A machine without SIMD, a policy that forbids compiling, a file that did not arrive: the twins count the same.
+    return null;
+  }
 }

@@ -9,7 +9,7 @@ import { type RecordSlice, readSlices } from './slices';
 export function openRecords(
   source: ByteSource,
   layout: RecordsLayout,
-  decoding: RecordDecoding | undefined,
+  decoding?: RecordDecoding,
 ): Reader {
   const plan = planRecords(layout);
   const records = countRecords(plan, source.size, source.name);
