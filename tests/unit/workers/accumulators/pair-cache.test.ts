@@ -145,6 +145,26 @@ describe('pair cache', () => {
     expect(isKeepable(disordered.tally())).toBe(false);
   });
 
+  it('holds what was kept when it was made, however far the counting goes on', () => {
+    const random = createRandom(8);
+    const given = scene(random);
+    const asked = specOf(given, [[], []], random);
+    const spec: TagSpec = { ...asked, keepPairs: RANGE };
+    const half = Math.floor(given.tags.length / 2);
+    const part = (tags: RawTag[]): TagAccumulator => {
+      const accumulator = createTagAccumulator(spec);
+      accumulator.push(tagBlock(tags, given.base));
+      return tagAccumulatorFromPart(spec, accumulator.toPart());
+    };
+    const whole = createTagAccumulator(spec);
+    whole.merge(part(given.tags.slice(0, half)));
+    const cache = cacheOf(whole, spec);
+    whole.merge(part(given.tags.slice(half)));
+    const other = specOf(given, [[], []], random);
+    expect(cache.recount(other)).toEqual(countOnce(other, { ...given, tags: given.tags.slice(0, half) }));
+    expect(cacheOf(whole, spec).recount(other)).toEqual(countOnce(other, given));
+  });
+
   it('forgets the pairs when a range without them is merged in, and goes on counting', () => {
     const random = createRandom(6);
     const given = scene(random);
