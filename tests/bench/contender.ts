@@ -1,5 +1,5 @@
 import { type ChildProcess, spawn } from 'node:child_process';
-import { readFileSync } from 'node:fs';
+import { readFileSync, writeFileSync } from 'node:fs';
 import { readFile, rm } from 'node:fs/promises';
 import { createInterface } from 'node:readline';
 import { z } from '../../shared/util/zod';
@@ -13,8 +13,10 @@ export interface Contender {
   pass(items: number): Promise<Pass>;
   /** Numbers of the last pass; `path` is a file it may use meanwhile. */
   answer(path: string): Promise<Float64Array>;
-  /** Largest resident memory so far; null where the system does not tell. */
+  /** Largest resident memory since `forgetPeak`; null where the system does not tell. */
   peakMB(): number | null;
+  /** What loading took is not the work's. */
+  forgetPeak(): void;
   stop(): Promise<void>;
 }
 
@@ -65,6 +67,9 @@ export async function startContender(
       return new Float64Array(bytes.buffer, bytes.byteOffset, bytes.byteLength / 8).slice();
     },
     peakMB: () => readPeakMB(child),
+    forgetPeak() {
+      if (process.platform === 'linux') writeFileSync(`/proc/${child.pid}/clear_refs`, '5');
+    },
     async stop() {
       child.stdin!.end();
       await ended;

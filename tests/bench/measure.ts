@@ -68,6 +68,7 @@ export async function measureRow(row: KernelRow, settings: BenchSettings): Promi
       createTurn(cpp, items),
     ];
     const [whole] = turns;
+    ours.forgetPeak();
     for (let pass = 0; pass <= passes; pass++) {
       // The first round warms up: compiled code, pages and caches.
       for (const turn of turns) await turn.run(pass > 0);

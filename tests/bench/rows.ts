@@ -117,7 +117,7 @@ export const kernelRows: readonly KernelRow[] = [
     ...maps,
     name: 'frames-256',
     kernel: 'frames 256 x 256, sum + difference maps',
-    items: 256,
+    items: 768,
     data: ['frames', '256', '0.15'],
     adapter: ['frames', '256'],
     numpy: ['frames', '256', 'fast'],
@@ -130,7 +130,7 @@ export const kernelRows: readonly KernelRow[] = [
     ...maps,
     name: 'frames-128',
     kernel: 'frames 128 x 128, sum + difference maps',
-    items: 1024,
+    items: 3072,
     data: ['frames', '128', '0.15'],
     adapter: ['frames', '128'],
     numpy: ['frames', '128', 'fast'],
@@ -140,13 +140,13 @@ export const kernelRows: readonly KernelRow[] = [
     cppMark: mark(0.5, 0.4),
   },
   ...([256, 128] as const).map((side): KernelRow => {
-    const items = side === 256 ? 64 : 256;
+    const items = side === 256 ? 768 : 3072;
     return {
       ...maps,
       name: `frames-${side}-plain`,
       kernel: `frames ${side} x ${side}, against fftconvolve frame by frame`,
       items,
-      numpyItems: items / 4 + 1,
+      numpyItems: side === 256 ? 17 : 65,
       growsIn: null,
       data: ['frames', String(side), '0.15'],
       adapter: ['frames', String(side)],

@@ -3,6 +3,7 @@ import { fileURLToPath } from 'node:url';
 import { findPythonWithH5py } from '../support/tools';
 
 export const benchFolder = fileURLToPath(new URL('.', import.meta.url));
+export const rootFolder = fileURLToPath(new URL('../..', import.meta.url));
 
 /** Python with all that the yardsticks need. Throws with what is missing and how to get it. */
 export function requirePython(): string {

@@ -5,7 +5,7 @@ import numpy as np
 
 kind, folder, items = sys.argv[1], sys.argv[2], int(sys.argv[3])
 rest = sys.argv[4:]
-rng = np.random.default_rng([20, sum(kind.encode()), *(int(10 * float(r)) for r in rest)])
+rng = np.random.default_rng([20, *f"{kind} {' '.join(rest)}".encode()])
 
 
 def save(name, values, dtype):
@@ -136,6 +136,56 @@ def bootstrap():
     peak = 40 * np.exp(-((x - centre + 0.7) ** 2) / (2 * 5.1**2) - (y - centre - 0.4) ** 2 / (2 * 6.2**2))
     save("maps.f64", peak + rng.normal(0, 10, (blocks, side, side)), "<f8")
     save("weights.u8", rng.multinomial(blocks, np.full(blocks, 1 / blocks), items), "u1")
+
+
+def long_records():
+    """long_records ITEMS near|far: two 16 x 16 arrays (channels 0..255, 256..511), 3.8 M clicks/s, the idler 20 ns late.
+
+    u64, bit 63 rollover marker (2^40 ticks), 55..40 channel, 39..0 time. Half a second of clicks, again and again.
+    """
+    plane = rest[0]
+    block, period = 1 << 21, 1 << 39
+    half = block // 2
+    pairs = half * 3 // 20
+    start = np.sort(rng.integers(1_000_000, period - 1_000_000, half))
+    x, y = rng.normal(7.5, 2.5, (2, half)), rng.normal(7.5, 2.5, (2, half))
+    spread = rng.normal(0, 0.8, (2, half))
+    sign = 1 if plane == "near" else -1
+    paired = np.arange(half) % (half // pairs) == 0
+    pixel = lambda u, v: np.clip(np.rint(v), 0, 15).astype(np.int64) * 16 + np.clip(np.rint(u), 0, 15).astype(np.int64)
+    signal = pixel(x[0], y[0])
+    u = np.where(paired, 7.5 + sign * (x[0] - 7.5) + spread[0], x[1])
+    v = np.where(paired, 7.5 + sign * (y[0] - 7.5) + spread[1], y[1])
+    late = np.where(paired, start + 20_000 + jitter(half, 300), rng.integers(1_000_000, period - 1_000_000, half))
+    times = np.concatenate([start, late])
+    channels = np.concatenate([signal, 256 + pixel(u, v)])
+    order = np.argsort(times, kind="stable")
+    first = (times[order] | (channels[order] << 40)).astype("<u8")
+    second = ((times[order] + period) | (channels[order] << 40)).astype("<u8")
+    marker = np.array([1 << 63], "<u8")
+    written = 0
+    with open(f"{folder}/{plane}.bin", "wb") as out:
+        while written < items:
+            for part in ([] if written == 0 else [marker]) + [first, second]:
+                part = part[: items - written]
+                part.tofile(out)
+                written += len(part)
+
+
+def long_frames():
+    """long_frames ITEMS: 256 x 256 uint16 in HDF5, not packed; 64 frames of a camera, again and again."""
+    import h5py
+
+    side, some = 256, 64
+    images = (100 + np.rint(4 * rng.standard_normal((some, side, side)))).astype(np.float64)
+    for image in images:
+        x, y = photons(side, 0.15)
+        np.add.at(image, (y, x), np.floor(rng.exponential(80, len(x))) + 40)
+    block = np.clip(images, 0, 65535).astype("<u2")
+    with h5py.File(f"{folder}/frames.h5", "w") as out:
+        stack = out.create_dataset("camera/frames", (items, side, side), "<u2")
+        for at in range(0, items, some):
+            stack[at : at + some] = block[: items - at]
 
 
 globals()[kind]()

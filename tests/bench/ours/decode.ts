@@ -1,8 +1,10 @@
 import { recordsLayoutSchema } from '../../../shared/contracts/layout';
 import type { ByteSource } from '../../../shared/contracts/reader';
 import { openReader } from '../../../workers/formats/registry';
+import { createRecordDecoding } from '../../../workers/kernels/tag-decode';
 import { nodeEnvironment } from '../../../workers/pipeline/hdf5-node';
 import { loadBytes, type OpenKernel } from './adapter';
+import { kernelsOf } from './kernels';
 
 const bit = (firstBit: number, equals = 1, bits = 1) => ({ field: { firstBit, bits }, equals });
 const layouts = {
@@ -41,7 +43,10 @@ export const decode: OpenKernel = async (folder, [width]) => {
     read: async (start, end) => bytes.subarray(start, end),
     close: async () => undefined,
   };
-  const reader = await openReader(source, layout, nodeEnvironment);
+  const reader = await openReader(source, layout, {
+    ...nodeEnvironment,
+    records: createRecordDecoding(await kernelsOf('tags')),
+  });
   let asked = 0;
   const blocks = () => reader.read({ start: 0, end: asked }, 0n, { cancelled: false });
   return {

@@ -1,37 +1,51 @@
+import { CompiledFrameMaps } from '../../../workers/kernels/frame-maps-wasm';
 import { FrameSpectra } from '../../../workers/kernels/frame-spectra';
 import { loadU16, type OpenKernel } from './adapter';
+import { kernelsOf } from './kernels';
 
+/** Sums of differences and the correction of the end frames, as the accumulator of frames puts them together. */
 export const frames: OpenKernel = async (folder, [side]) => {
   const width = Number(side);
   const pixels = width * width;
   const stack = await loadU16(folder, 'frames.u16');
-  const cells = (2 * width - 1) ** 2;
-  let plus = new Float64Array(cells);
-  let minus = new Float64Array(cells);
-  const image = (k: number) => Float64Array.from(stack.subarray(k * pixels, (k + 1) * pixels));
+  const shape = {
+    width,
+    height: width,
+    masked: new Uint8Array(pixels),
+    offset: 0,
+    threshold: null,
+    normalised: false,
+  };
+  const maps = new CompiledFrameMaps(await kernelsOf('frames'), shape);
   const spectra = new FrameSpectra(width, width);
+  const sums = {
+    sum: new Float64Array(pixels),
+    sumSquares: new Float64Array(pixels),
+    jointX: new Float64Array(pixels),
+    jointY: new Float64Array(pixels),
+  };
+  const cells = (2 * width - 1) ** 2;
+  const both = new Float64Array(2 * cells);
+  const plus = both.subarray(0, cells);
+  const minus = both.subarray(cells);
   return {
     work(items) {
-      plus = new Float64Array(cells);
-      minus = new Float64Array(cells);
-      let before = image(0);
-      for (let k = 1; k < items; k++) {
-        const now = image(k);
-        for (let i = 0; i < pixels; i++) before[i]! -= now[i]!;
-        spectra.addSquares(before, null);
-        before = now;
+      maps.pause();
+      for (let k = 0; k < items; k++) maps.take(stack, k * pixels);
+      const closed = maps.close();
+      plus.set(closed.plus);
+      minus.set(closed.minus);
+      maps.drain(sums);
+      const less = new Float64Array(pixels);
+      const more = new Float64Array(pixels);
+      const last = (items - 1) * pixels;
+      for (let i = 0; i < pixels; i++) {
+        less[i] = stack[i]! - stack[last + i]!;
+        more[i] = stack[i]! + stack[last + i]!;
       }
+      spectra.addProduct(less, more);
       spectra.moveTo(plus, minus, 0.5);
-      spectra.addSquares(image(0), null);
-      spectra.moveTo(plus, minus, 0.5);
-      spectra.addSquares(image(items - 1), null);
-      spectra.moveTo(plus, minus, -0.5);
     },
-    answer() {
-      const both = new Float64Array(2 * cells);
-      both.set(plus);
-      both.set(minus, cells);
-      return both;
-    },
+    answer: () => both,
   };
 };

@@ -1,13 +1,23 @@
 import { writeFile } from 'node:fs/promises';
 import { createInterface } from 'node:readline';
 import type { OpenKernel } from './adapter';
+import { bootstrap } from './bootstrap';
 import { decode } from './decode';
 import { frames } from './frames';
-import { histogram } from './histogram';
+import { heralded, histogram, matrixLists } from './lists';
+import { matrixMerged } from './merged';
 
 /** Our kernels as a contender: the same lines as tests/bench/numpy/serve.py. One adapter a row, so that a kernel is
  * changed for another in one place. */
-const adapters: Record<string, OpenKernel> = { decode, frames, histogram };
+const adapters: Record<string, OpenKernel> = {
+  bootstrap,
+  decode,
+  frames,
+  heralded,
+  histogram,
+  'matrix-lists': matrixLists,
+  'matrix-merged': matrixMerged,
+};
 
 const [name = '', folder = '', ...args] = process.argv.slice(2);
 const open = adapters[name];
