@@ -1,6 +1,14 @@
 import { blockInfluence, FIT_PARAMETERS, fitShape, type ShapeFit } from './fit-shape';
+import {
+  type CoarseCells,
+  coarseCells,
+  coarseSide,
+  type MapRegion,
+  shapeInBins,
+  shapeInCells,
+} from './frame-bins';
 import type { FrameMap, FrameMapKind } from './frame-maps';
-import { type CellGrid, centreNode, type PeakShape, triangleNodes } from './gaussian-cells';
+import { centreNode, type PeakShape, triangleNodes } from './gaussian-cells';
 
 /**
  * Chi^2 fit of a two-dimensional Gaussian on a pedestal to a sum or difference map, averaged over the triangle law of two
@@ -17,8 +25,11 @@ export interface FramePeak {
   xy: number;
   mx: number;
   my: number;
-  /** Cut-out of the map that was fitted: first bin and size. */
-  region: { x: number; y: number; nx: number; ny: number };
+  /** The fitted shape, bins; `fit` may be in coarser cells. */
+  shape: PeakShape;
+  /** Cut-out of the map that was fitted: first bin and size; and the model there. */
+  region: MapRegion;
+  model: Float64Array;
   /** The cut-out reaches past the window that is known block by block: errors would come out too small. */
   uncovered: boolean;
   /** Share of the peak on bins that were left out (own pairs, crosstalk). */
@@ -127,7 +138,7 @@ function fitFramePeak(map: FrameMap, given: Given): FramePeak | null {
       Math.abs(peak.region.ny - next.region.ny) <= 0.1 * next.region.ny;
     peak = next;
     if (settled) break;
-    start = { amplitude: next.fit.amplitude, shape: next.fit.shape };
+    start = { amplitude: next.fit.amplitude, shape: next.shape };
   }
   return peak;
 }
@@ -196,49 +207,49 @@ function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null 
   const { other, held } = given;
   const minus = map.kind === 'minus';
   const origin = minus ? { x: map.width - 1, y: map.height - 1 } : { x: 0, y: 0 };
-  const region = regionAround(map, origin, start.shape);
-  const cells = region.nx * region.ny;
-  const cellOf = (c: number): number =>
-    (region.y + Math.floor(c / region.nx)) * map.nx + region.x + (c % region.nx);
-  const pick = (values: Float64Array): Float64Array =>
-    Float64Array.from({ length: cells }, (_, c) => values[cellOf(c)] as number);
-  const variance = pick(map.variance);
-  const use = Uint8Array.from({ length: cells }, (_, c) =>
-    map.blocked[cellOf(c)] === 0 && (variance[c] as number) > 0 ? 1 : 0,
-  );
+  const wanted = regionAround(map, origin, start.shape);
+  const side = coarseSide(wanted, start.shape);
+  const centre = { x: origin.x + Math.round(start.shape.mx), y: origin.y + Math.round(start.shape.my) };
+  const cells = coarseCells(map, wanted, side, centre, origin);
+  const { region } = cells;
+  const area = side * side;
+  const variance = cells.sum((bin) => map.variance[bin] as number);
+  const use = Uint8Array.from(cells.open, (n, c) => (n > 0 && (variance[c] as number) > 0 ? 1 : 0));
   if (use.reduce((n, u) => n + u, 0) < 12) return null;
-  const pairs = pick(map.pairs);
   const most = mostPairs(map);
-  const envelope = envelopeOf(
-    map,
-    other,
-    Array.from({ length: cells }, (_, c) => cellOf(c)),
-  );
-  const grid: CellGrid = { nx: region.nx, ny: region.ny, x0: region.x - origin.x, y0: region.y - origin.y };
-  const data = pick(map.value);
+  const envelopeAt = envelopeOf(map, other);
   // Three pixels wide and more, the triangle law only adds its variance; that is then in the fitted shape already.
   const broad = Math.min(start.shape.xx, start.shape.yy) > 9;
   const blur = broad ? 0 : DIFFERENCE_PIXEL_VARIANCE;
+  const inCells = { amplitude: start.amplitude, shape: shapeInCells(start.shape, side) };
   const fit = fitShape({
-    grid,
+    grid: cells.grid,
     nodes: broad ? centreNode : triangleNodes,
-    data,
+    data: cells.sum((bin) => map.value[bin] as number),
     use,
-    envelope,
-    background: pairs.map((n) => n / most),
+    // A density per cell is spread over its bins.
+    envelope: cells.sum((bin) => envelopeAt(bin) / area),
+    background: cells.sum((bin) => (map.pairs[bin] as number) / most),
     backgroundAmplitude: held?.background ?? 0,
     freeAmplitude: held === null,
     freeBackground: held === null,
     freeCentre: !minus,
     variance,
-    start: held === null ? start : { ...start, amplitude: held.amplitude },
+    start: held === null ? inCells : { ...inCells, amplitude: held.amplitude },
     leastVariance: LEAST_VARIANCE,
   });
-  const { shape } = fit;
+  const shape = shapeInBins(fit.shape, side);
   if (!Number.isFinite(fit.objective) || !(fit.amplitude > 0)) return null;
   const used = use.reduce((n, u) => n + u, 0);
   // Difference bins d and -d are copies: half of the chi^2 and half of the bins.
   const share = minus ? 0.5 : 1;
+  const influence = blockInfluence(
+    fit,
+    map.blocks,
+    byBlock(use, (b) => cells.sum((bin) => map.blockValue(b, bin))),
+    held === null ? () => ({ amplitude: 0, background: 0 }) : held.share,
+  );
+  scaleInfluence(influence, side);
   return {
     kind: map.kind,
     fit,
@@ -247,26 +258,68 @@ function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null 
     xy: shape.xy,
     mx: shape.mx,
     my: shape.my,
+    shape,
     region,
+    model: side === 1 ? fit.model : fineModel(map, fit, region, origin, shape, envelopeAt),
     uncovered: reachesPast(region, map.blockWindow),
-    hidden: hiddenShare(fit, use),
+    hidden: hiddenShare(fit, cells, use),
     chi2: share * fit.objective,
     ndf: Math.max(Math.round(share * used) - fit.free.length, 0),
     enveloped: other !== null,
-    influence: blockInfluence(
-      fit,
-      map.blocks,
-      (b, c) => (use[c] === 1 ? map.blockValue(b, cellOf(c)) : 0),
-      held === null ? () => ({ amplitude: 0, background: 0 }) : held.share,
-    ),
+    influence,
   };
 }
 
-function regionAround(
+/** Cells of one block after the other: each block is summed once. */
+function byBlock(
+  use: Uint8Array,
+  sumOf: (block: number) => Float64Array,
+): (block: number, cell: number) => number {
+  let current = -1;
+  let values: Float64Array = new Float64Array(0);
+  return (block, cell) => {
+    if (block !== current) {
+      values = sumOf(block);
+      current = block;
+    }
+    return use[cell] === 1 ? (values[cell] as number) : 0;
+  };
+}
+
+/** Influences on a fit in cells of `side` bins, brought to bins. */
+function scaleInfluence(influence: Float64Array, side: number): void {
+  const area = side * side;
+  const scale = [1, side, side, area, area, area, 1];
+  for (let k = 0; k < influence.length; k += 1) {
+    influence[k] = (influence[k] as number) * (scale[k % FIT_PARAMETERS] as number);
+  }
+}
+
+/** Model of every bin of the region, where the fit was in coarser cells. */
+function fineModel(
   map: FrameMap,
+  fit: ShapeFit,
+  region: MapRegion,
   origin: { x: number; y: number },
   shape: PeakShape,
-): FramePeak['region'] {
+  envelopeAt: (bin: number) => number,
+): Float64Array {
+  const { mx, my, xx, xy, yy } = shape;
+  const det = xx * yy - xy * xy;
+  const norm = fit.amplitude / (2 * Math.PI * Math.sqrt(det));
+  const most = mostPairs(map);
+  return Float64Array.from({ length: region.nx * region.ny }, (_, c) => {
+    const x = region.x + (c % region.nx);
+    const y = region.y + Math.floor(c / region.nx);
+    const u = x - origin.x - mx;
+    const v = y - origin.y - my;
+    const bin = y * map.nx + x;
+    const bell = norm * Math.exp(-(yy * u * u - 2 * xy * u * v + xx * v * v) / (2 * det));
+    return envelopeAt(bin) * bell + (fit.background * (map.pairs[bin] as number)) / most;
+  });
+}
+
+function regionAround(map: FrameMap, origin: { x: number; y: number }, shape: PeakShape): MapRegion {
   const halfX = Math.max(LEAST_REACH, Math.ceil(REACH * Math.sqrt(shape.xx)));
   const halfY = Math.max(LEAST_REACH, Math.ceil(REACH * Math.sqrt(shape.yy)));
   const cx = origin.x + Math.round(shape.mx);
@@ -281,7 +334,7 @@ function regionAround(
   };
 }
 
-function reachesPast(region: FramePeak['region'], window: FramePeak['region']): boolean {
+function reachesPast(region: MapRegion, window: MapRegion): boolean {
   return (
     region.x < window.x ||
     region.y < window.y ||
@@ -290,12 +343,12 @@ function reachesPast(region: FramePeak['region'], window: FramePeak['region']): 
   );
 }
 
-function hiddenShare(fit: ShapeFit, use: Uint8Array): number {
+function hiddenShare(fit: ShapeFit, { side, open }: CoarseCells, use: Uint8Array): number {
   let all = 0;
   let hidden = 0;
   fit.bare.forEach((v, c) => {
     all += v;
-    if (use[c] !== 1) hidden += v;
+    hidden += use[c] === 1 ? v * (1 - (open[c] as number) / (side * side)) : v;
   });
   return all > 0 ? hidden / all : 1;
 }
@@ -305,22 +358,22 @@ function hiddenShare(fit: ShapeFit, use: Uint8Array): number {
  * E(s) = 2 sum_i phi(s - 2i) per axis, E(d) = 2 sum_i phi(2i + d); own pairs are taken out, masked pixels thin it by
  * pairs / full pairs.
  */
-function envelopeOf(map: FrameMap, other: FramePeak | null, cells: readonly number[]): Float64Array {
+function envelopeOf(map: FrameMap, other: FramePeak | null): (bin: number) => number {
   if (other === null) {
     const most = mostPairs(map);
-    return Float64Array.from(cells, (c) => (map.pairs[c] as number) / most);
+    return (bin) => (map.pairs[bin] as number) / most;
   }
   const ex = axisEnvelope(map.kind, map.width, other.mx, other.xx);
   const ey = axisEnvelope(map.kind, map.height, other.my, other.yy);
   const own = (2 / Math.sqrt(2 * Math.PI * other.xx)) * (2 / Math.sqrt(2 * Math.PI * other.yy));
-  return Float64Array.from(cells, (c) => {
-    const x = c % map.nx;
-    const y = Math.floor(c / map.nx);
-    const full = map.fullPairs[c] as number;
+  return (bin) => {
+    const x = bin % map.nx;
+    const y = Math.floor(bin / map.nx);
+    const full = map.fullPairs[bin] as number;
     const removed = map.kind === 'plus' && x % 2 === 0 && y % 2 === 0 ? own : 0;
     const value = (ex[x] as number) * (ey[y] as number) - removed;
-    return full > 0 ? Math.max((value * (map.pairs[c] as number)) / full, 0) : 0;
-  });
+    return full > 0 ? Math.max((value * (map.pairs[bin] as number)) / full, 0) : 0;
+  };
 }
 
 function axisEnvelope(kind: FrameMapKind, n: number, mean: number, variance: number): Float64Array {

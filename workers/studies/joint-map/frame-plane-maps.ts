@@ -74,7 +74,7 @@ function planeMap(request: FrameMapsRequest, kind: FrameMapKind): MapData {
   for (let y = 0; y < region.ny; y += 1) {
     for (let x = 0; x < region.nx; x += 1) {
       const c = (region.y + y) * nx + region.x + x;
-      if (blocked[c] === 0) model[c] = (peak.fit.model[y * region.nx + x] as number) / over(c);
+      if (blocked[c] === 0) model[c] = (peak.model[y * region.nx + x] as number) / over(c);
     }
   }
   // Fitted centres are lags for the difference map and index sums for the sum map.
