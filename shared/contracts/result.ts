@@ -105,7 +105,7 @@ export const resultFileSchema = z.strictObject({
           plane: planeSchema.nullable(),
         }),
       )
-      .max(20),
+      .max(10_000),
     preset: z.strictObject({ name: z.string().max(200), version: z.int().nullable() }).nullable(),
     dials: named(dialValueSchema),
     engine: z.string().max(40),

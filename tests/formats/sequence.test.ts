@@ -7,7 +7,15 @@ import { openSequence } from '../../workers/formats/sequence';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
 import { writeHdf5 } from './support/hdf5-writer';
 import { place, readReference, recordsLayout, writeRecords } from './support/record-writer';
-import { fileSource, makeFolder, memorySource, problemOf, readPixels, readTags } from './support/sources';
+import {
+  fileSource,
+  makeFolder,
+  memorySource,
+  never,
+  problemOf,
+  readPixels,
+  readTags,
+} from './support/sources';
 
 /** Several files of bytes as one acquisition; the first is called a, the next b. */
 async function sequence(layout: Layout, files: readonly Uint8Array[]): Promise<Reader> {
@@ -16,6 +24,24 @@ async function sequence(layout: Layout, files: readonly Uint8Array[]): Promise<R
     return { name, reader: await openReader(memorySource(bytes, name), layout, nodeEnvironment) };
   });
   return openSequence(await Promise.all(opened), layout);
+}
+
+/** The ranges read as workers do that tell each other their rollovers. */
+async function readTold(reader: Reader, cuts: readonly number[]): Promise<bigint[]> {
+  if (reader.facts.kind !== 'tags') throw new Error('expected tags');
+  const borders = [0, ...[...cuts].sort((a, b) => a - b), reader.facts.records];
+  const ticks: bigint[] = [];
+  let offset = 0n;
+  for (let k = 1; k < borders.length; k += 1) {
+    const range = { start: borders[k - 1]!, end: borders[k]! };
+    const advance = (await reader.advanceOf?.(range, never)) ?? 0n;
+    for await (const block of reader.read(range, offset, never)) {
+      if (block.kind !== 'tags') throw new Error('expected tags');
+      for (let i = 0; i < block.count; i += 1) ticks.push(block.baseTick + BigInt(block.deltaTick[i]!));
+    }
+    offset += advance;
+  }
+  return ticks;
 }
 
 const field = (firstBit: number, bits: number) => ({ firstBit, bits });
@@ -56,7 +82,9 @@ describe('records that roll over go on from file to file', () => {
         const reader = await sequence(layout, files);
         expect(reader.facts).toMatchObject({ records: values.length });
         const cuts = rangeCuts.map((cut) => Math.min(cut, values.length));
-        expect(await readTags(reader, cuts)).toEqual(readReference(layout, values));
+        const wanted = readReference(layout, values);
+        expect(await readTags(reader, cuts)).toEqual(wanted);
+        expect(await readTold(reader, cuts)).toEqual(wanted.ticks);
       }),
       { numRuns: 150 },
     );

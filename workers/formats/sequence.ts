@@ -43,53 +43,84 @@ export async function openSequence(files: readonly SequenceFile[], layout: Layou
     total += length;
   }
   if (facts.kind === 'tags' && !rolls) assertFollowing(placed, BigInt(Math.ceil(disorderFs / facts.tickFs)));
-  const advances = new Map<PlacedFile, bigint>();
-
-  /** Rollovers in the whole file, and the one that a time field makes between it and the next file with tags. */
-  const advanceOf = async (
-    file: PlacedFile,
-    token: CancelToken,
-    onBytes?: (bytes: number) => void,
-  ): Promise<bigint> => {
-    const known = advances.get(file);
-    if (known !== undefined) return known;
-    const inside = await file.reader.tickOffsetAt(file.length, token, onBytes);
-    const next = placed.slice(placed.indexOf(file) + 1).find((each) => each.border !== null);
-    const advance = inside + (wrapTick !== null && wrapsBetween(file, next, wrapTick) ? wrapTick : 0n);
-    advances.set(file, advance);
-    return advance;
-  };
   const name = files[0]!.name;
+  const inside = (range: ReadRange): ReadRange =>
+    assertRange(range, total, facts.kind === 'tags' ? 'records' : 'frames', name);
+  /** The rollover that a time field makes between a file and the next one with tags. */
+  const wrapAfter = (file: PlacedFile): bigint => {
+    const next = placed.slice(placed.indexOf(file) + 1).find((each) => each.border !== null);
+    return wrapTick !== null && wrapsBetween(file, next, wrapTick) ? wrapTick : 0n;
+  };
+  const wholes = new Map<PlacedFile, bigint>();
+  /** Rollovers from record `start` of a file to where the next file begins. */
+  const restOf = async (file: PlacedFile, own: bigint, token: CancelToken): Promise<bigint> => {
+    const whole = wholes.get(file) ?? (await file.reader.tickOffsetAt(file.length, token));
+    wholes.set(file, whole);
+    return whole - own + wrapAfter(file);
+  };
+  // What was found of the last range asked about, which is mostly read next.
+  let asked: { start: number; own: bigint } | null = null;
+  let advanced: { range: ReadRange; parts: bigint[] } | null = null;
+
   return {
     facts,
     async tickOffsetAt(start, token, onBytes) {
-      assertRange({ start, end: total }, total, 'records', name);
+      inside({ start, end: total });
       let offset = 0n;
       for (const file of placed) {
         if (start < file.start + file.length) {
-          return offset + (await file.reader.tickOffsetAt(start - file.start, token, onBytes));
+          const own = await file.reader.tickOffsetAt(start - file.start, token, onBytes);
+          asked = { start, own };
+          return offset + own;
         }
-        offset += await advanceOf(file, token, onBytes);
+        offset += await restOf(file, 0n, token);
       }
       return offset;
     },
+    ...(rolls
+      ? {
+          advanceOf: async (range, token) => {
+            const parts: bigint[] = [];
+            for (const { file, part } of partsOf(inside(range), placed)) {
+              const within = (await file.reader.advanceOf?.(part, token)) ?? 0n;
+              parts.push(within + (part.end === file.length ? wrapAfter(file) : 0n));
+            }
+            advanced = { range, parts };
+            return parts.reduce((sum, each) => sum + each, 0n);
+          },
+        }
+      : {}),
     async *read(range, tickOffset, token) {
-      assertRange(range, total, facts.kind === 'tags' ? 'records' : 'frames', name);
+      inside(range);
+      const known =
+        advanced?.range.start === range.start && advanced.range.end === range.end ? advanced : null;
       let offset = tickOffset;
-      for (const file of placed) {
-        const part = partOf(range, file);
-        if (part === null) continue;
-        const own = await file.reader.tickOffsetAt(part.start, token);
+      for (const [k, { file, part }] of partsOf(range, placed).entries()) {
+        const isCut = range.end > file.start + file.length;
+        // Readers that know where they are need not look again; those of absolute times always answer 0n.
+        const isKnown = asked !== null && asked.start === range.start && k === 0;
+        const own = isKnown
+          ? asked!.own
+          : isCut && known === null
+            ? await file.reader.tickOffsetAt(part.start, token)
+            : 0n;
         for await (const block of file.reader.read(part, own, token)) {
           yield shifted(block, file.start, offset - own);
         }
-        if (range.end > file.start + file.length) offset += (await advanceOf(file, token)) - own;
+        if (isCut) offset += known?.parts[k] ?? (await restOf(file, own, token));
       }
     },
     async close() {
       for (const file of placed) await file.reader.close();
     },
   };
+}
+
+function partsOf(range: ReadRange, files: readonly PlacedFile[]): { file: PlacedFile; part: ReadRange }[] {
+  return files.flatMap((file) => {
+    const part = partOf(range, file);
+    return part === null ? [] : [{ file, part }];
+  });
 }
 
 const lengthOf = (facts: ReaderFacts): number => (facts.kind === 'tags' ? facts.records : facts.frames);

@@ -16,7 +16,7 @@ import { type Console, createProgressLine } from './console';
 import { parseShard, runShard } from './shard';
 
 export const runUsage =
-  'run PRESET.json --input NAME=FILE ... [--set dial=value ...] [--workers n] [--seed n] [--shard i/n] [--out R.json] [--maps DIR]';
+  'run PRESET.json --input NAME=FILE[,FILE] ... [--set dial=value ...] [--workers n] [--seed n] [--shard i/n] [--out R.json] [--maps DIR]';
 
 const options = {
   input: { type: 'string', multiple: true },
@@ -66,7 +66,11 @@ function parseFiles(given: readonly string[]): Map<string, string> {
     }
     const name = text.slice(0, at);
     if (files.has(name)) {
-      throw new Problem('bad-input', `--input names "${name}" twice; give each input one file.`, '--input');
+      throw new Problem(
+        'bad-input',
+        `--input names "${name}" twice; name the files of one input behind each other, with commas.`,
+        '--input',
+      );
     }
     files.set(name, text.slice(at + 1));
   }
@@ -119,7 +123,7 @@ async function prepareInput(
   engine: NodeEngine['engine'],
   out: Console,
 ): Promise<RunInput> {
-  const source = await sourceOfInput(path);
+  const [source, ...following] = await sourcesOfInput(path);
   const setting = preset.inputs[name];
   if (setting === undefined || setting.detector === null) {
     throw new Problem(
@@ -129,20 +133,18 @@ async function prepareInput(
     );
   }
   const layout = setting.layout ?? (await proposeLayout(source, engine, out));
-  return { source, layout, detector: setting.detector, plane: setting.plane };
+  return { source, following, layout, detector: setting.detector, plane: setting.plane };
 }
 
-async function sourceOfInput(path: string): Promise<SourceRef> {
+/** One file, or several between commas that follow each other; a comma may also be part of one file's name. */
+async function sourcesOfInput(paths: string): Promise<[SourceRef, ...SourceRef[]]> {
   try {
-    return await sourceOfPath(path);
+    return [await sourceOfPath(paths)];
   } catch (thrown) {
-    if (!path.includes(',')) throw thrown;
-    throw new Problem(
-      'unsupported',
-      `${path} is not a file, and several files in sequence cannot be read as one acquisition yet; join them first.`,
-      '--input',
-    );
+    if (!paths.includes(',')) throw thrown;
   }
+  const [first, ...rest] = paths.split(',');
+  return [await sourceOfPath(first!), ...(await Promise.all(rest.map(sourceOfPath)))];
 }
 
 async function proposeLayout(source: SourceRef, engine: NodeEngine['engine'], out: Console): Promise<Layout> {

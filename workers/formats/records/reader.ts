@@ -6,11 +6,7 @@ import { advanceOf, type RecordFile, readRecords, scanOffset } from './read';
 import { type RecordSlice, readSlices } from './slices';
 
 /** Opens a file of fixed-width records. Throws `empty-file`, `wrong-length` or `bad-layout`. */
-export function openRecords(
-  source: ByteSource,
-  layout: RecordsLayout,
-  decoding?: RecordDecoding,
-): Reader {
+export function openRecords(source: ByteSource, layout: RecordsLayout, decoding?: RecordDecoding): Reader {
   const plan = planRecords(layout);
   const records = countRecords(plan, source.size, source.name);
   return recordsReader(source, plan, records, layout.tickFs, decoding);
@@ -56,10 +52,20 @@ export function recordsReader(
             return advance;
           },
         }),
-    read: (range, tickOffset, token) =>
-      readRecords(file, inside(range), tickOffset, token, takeKept(range) ?? undefined, (offsetTick) => {
-        known = { start: range.end, offsetTick };
-      }),
+    read: (range, tickOffset, token) => {
+      // An offset from elsewhere (none, or that of files before this one) says nothing of the rollovers in here.
+      const isOwn = known.start === range.start && known.offsetTick === tickOffset;
+      return readRecords(
+        file,
+        inside(range),
+        tickOffset,
+        token,
+        takeKept(range) ?? undefined,
+        (offsetTick) => {
+          if (isOwn) known = { start: range.end, offsetTick };
+        },
+      );
+    },
     close: () => source.close(),
   };
 }
