@@ -19,8 +19,10 @@ interface DialBase {
   label: string;
   /** One line: what it does and why one would turn it. */
   reason: string;
-  /** `bytes`: turning it reads the file again; `finish`: it does not. */
-  needs: 'bytes' | 'finish';
+  /**
+   * `bytes`: turning it reads the file again; `pairs`: only where the pairs of the last run were not kept; `finish`: never.
+   */
+  needs: 'bytes' | 'pairs' | 'finish';
   /** Kind of input it concerns; left out where it concerns any. */
   for?: 'tags' | 'frames';
 }

@@ -16,8 +16,8 @@ import { useBox } from './use-box';
 import { useMapGestures } from './use-map-gestures';
 import { useMapView, useWheelZoom } from './use-map-view';
 
-/** Largest side drawn as SVG: beyond it a canvas is faster by an order of magnitude. */
-const SVG_SIDE = 64;
+/** Largest side drawn as SVG: ten maps of more rectangles than that are a long task of the page; a canvas is none. */
+const SVG_SIDE = 16;
 
 const KEYS_HELP =
   'Arrow keys move the cursor, with Shift by ten bins. Enter picks or sets a corner. Plus and minus zoom, 0 shows all.';

@@ -1,4 +1,4 @@
-import { type RefObject, useLayoutEffect, useRef, useState } from 'react';
+import { type RefObject, startTransition, useLayoutEffect, useRef, useState } from 'react';
 
 export interface Box {
   width: number;
@@ -21,7 +21,8 @@ export function useBox<T extends HTMLElement>(): [RefObject<T | null>, Box] {
         old.width === width && old.height === height && old.em === em ? old : { width, height, em },
       );
     };
-    measure();
+    // Ten plots that appear together are drawn one after the other, not in one long task.
+    startTransition(measure);
     const observer = new ResizeObserver(measure);
     observer.observe(element);
     // A theme changes the text size and not the box.

@@ -29,7 +29,7 @@ function useFocus(mark: WindowMark | null): Span | null {
 
 /** A delay histogram with the coincidence window on it; the window is a dial where the bench gives one. */
 export function HistogramCell(props: HistogramCellProps) {
-  const { cell, note, specs, dials, onTurn, chosen, logScale, height = HEIGHTS.wide } = props;
+  const { cell, note, specs, dials, onTurn, turnCost, chosen, logScale, height = HEIGHTS.wide } = props;
   const { id, map } = cell;
   const part = splitVariant(id).base.replace(/^delay\.histogram\.?/, '');
   const mark = findWindow(map.axes[0]!, part, specs, dials, chosen);
@@ -51,7 +51,8 @@ export function HistogramCell(props: HistogramCellProps) {
                 {isWhole ? 'Show the peak' : 'Show the whole range'}
               </Button>
             )}
-            {noteOf(cell, note)}
+            {onTurn === undefined || mark?.turn == null || turnCost === null ? null : <span>{turnCost}</span>}
+            <span>{noteOf(cell, note)}</span>
           </span>
         }
         style="steps"

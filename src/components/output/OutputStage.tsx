@@ -1,4 +1,4 @@
-import { type ReactNode, useMemo, useState } from 'react';
+import { memo, type ReactNode, useMemo, useState } from 'react';
 import type { DialSpec, DialValues } from '../../../shared/contracts/dial';
 import type { Check, StudyOutput } from '../../../shared/contracts/output';
 import type { Theme } from '../../viz/types';
@@ -19,13 +19,27 @@ export interface OutputStageProps {
   specs?: readonly DialSpec[];
   dials?: DialValues;
   onTurn?(values: DialValues): void;
+  /** What moving the window costs, in words; left out where it costs nothing. */
+  turnCost?: string | null;
   /** Left in the line above the plots: the study, the progress. */
   children?: ReactNode;
 }
 
+const NO_SPECS: readonly DialSpec[] = [];
+const NO_DIALS: DialValues = {};
+
 /** Everything a study found that is drawn: verdicts on their rulers over the maps they rest on, then the rest. */
-export function OutputStage(props: OutputStageProps) {
-  const { output, theme, note = null, specs = [], dials = {}, onTurn, children } = props;
+export const OutputStage = memo(function OutputStage(props: OutputStageProps) {
+  const {
+    output,
+    theme,
+    note = null,
+    specs = NO_SPECS,
+    dials = NO_DIALS,
+    onTurn,
+    turnCost = null,
+    children,
+  } = props;
   const [variant, setVariant] = useState<Variant>('net');
   const [logScale, setLogScale] = useState(false);
   const cursor = useLinkedCursor();
@@ -37,7 +51,7 @@ export function OutputStage(props: OutputStageProps) {
     () => interleave(sections, judgedRows(output.verdicts, output.quantities)),
     [sections, output.verdicts, output.quantities],
   );
-  const shared = { theme, note, specs, dials, onTurn, cursor, logScale, chosen: output.chosen };
+  const shared = { theme, note, specs, dials, onTurn, turnCost, cursor, logScale, chosen: output.chosen };
   return (
     <div className="flex flex-col gap-5">
       <div className="flex flex-wrap items-start justify-between gap-x-5 gap-y-1">
@@ -72,7 +86,7 @@ export function OutputStage(props: OutputStageProps) {
       {sections.length === 0 ? <p className="text-dim">This study drew no maps.</p> : null}
     </div>
   );
-}
+});
 
 /** What failed stands over the pictures too: no verdict is read without it. */
 function FailedChecks({ checks }: { checks: readonly Check[] }) {

@@ -11,6 +11,8 @@ export interface CellContext {
   specs: readonly DialSpec[];
   dials: DialValues;
   onTurn: ((values: DialValues) => void) | undefined;
+  /** What moving the window costs, in words; null where it costs nothing. */
+  turnCost: string | null;
   cursor: LinkedCursor | null;
   logScale: boolean;
   chosen: Record<string, number>;

@@ -5,6 +5,8 @@ import { toProblemData } from '../../../shared/errors/problem';
 import type { EngineDoor } from './engine-door';
 import { type EngineSettings, useEngineSettings, workerCount } from './engine-settings';
 
+const BYTES_PER_MIB = 2 ** 20;
+
 interface Link {
   /** What it was started with. */
   settings: EngineSettings;
@@ -49,7 +51,8 @@ function startLink(settings: EngineSettings): Link {
     worker.postMessage({ kind: 'port', port: channel.port1 }, [channel.port1]);
     return channel.port2;
   });
-  host.attach(transfer(ports, ports)).catch((thrown: unknown) => {
+  const options = { pairBytes: settings.pairMiB * BYTES_PER_MIB };
+  host.attach(transfer(ports, ports), options).catch((thrown: unknown) => {
     stop(`The engine could not reach its compute workers: ${toProblemData(thrown).message} Start it again.`);
   });
   return { settings, host, failed, stop };

@@ -59,6 +59,7 @@ export function AcquisitionCard(props: AcquisitionCardProps) {
         {sample === null ? '' : ' · sample'}
         {sha256 === null ? '' : ` · sha ${sha256.slice(0, 4)}…${sha256.slice(-2)}`}
       </p>
+      {following.length === 0 ? null : <SequenceFiles acquisition={acquisition} readOnly={readOnly} />}
       <div className="mt-1">
         {reading.status === 'looking' ? (
           <p role="status" className="font-mono text-xs text-dim">
@@ -101,7 +102,6 @@ export function AcquisitionCard(props: AcquisitionCardProps) {
             warnings={reading.inspection.warnings}
           />
         ) : null}
-        {following.length === 0 ? null : <SequenceFiles acquisition={acquisition} readOnly={readOnly} />}
         {companion === null ? null : (
           <CompanionLine
             companion={companion}

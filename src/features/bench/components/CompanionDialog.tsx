@@ -35,6 +35,11 @@ function shelfSource(acquisition: Acquisition): CompanionSource {
   return { part, looked: acquisition, layout, fromShelf: id };
 }
 
+/** What stands in the list of the shelf needs no name beside it. */
+function chosenName(source: CompanionSource | null): string {
+  return source === null || source.fromShelf !== null ? '' : source.part.name;
+}
+
 /** A second file of the same acquisition, written by a tagger whose clock runs on its own. */
 export function CompanionDialog({ acquisition, onClose }: CompanionDialogProps) {
   const { engine } = useBench();
@@ -116,7 +121,7 @@ export function CompanionDialog({ acquisition, onClose }: CompanionDialogProps) 
           {source === null ? 'Choose a file' : 'Choose another file'}
         </Button>
         <p role="status" className="min-w-0 self-center text-sm wrap-anywhere text-dim">
-          {looking === null ? (source?.part.name ?? '') : `looking at ${looking}`}
+          {looking === null ? chosenName(source) : `looking at ${looking}`}
         </p>
       </div>
       {problem === null ? null : <ProblemText problem={problem} />}

@@ -25,6 +25,7 @@ export function DialHistogram({ readOnly }: { readOnly: boolean }) {
         dials={dials}
         chosen={output.chosen}
         onTurn={readOnly ? undefined : store.getState().turn}
+        turnCost={null}
         cursor={null}
         logScale
         height={HEIGHT}

@@ -11,19 +11,50 @@ import {
   isReadingChanged,
 } from '../model/bench-selectors';
 import { changedDials } from '../model/dial-history';
+import { pairsWords } from '../model/run-words';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
 import { type ChosenValue, DialControl } from './DialControl';
 import { DialHistogram } from './DialHistogram';
 import { Region } from './Region';
+import { type TurnCost, useTurnCost } from './use-turn-cost';
 
 export interface DialsRegionProps {
   readOnly: boolean;
 }
 
-const GROUPS = [
-  { needs: 'bytes', title: 'counted again when turned' },
-  { needs: 'finish', title: 'answered at once' },
-] as const;
+interface DialGroup {
+  id: string;
+  title: string;
+  /** What turning one of them costs. */
+  note: string | null;
+  dials: readonly DialSpec[];
+}
+
+/** Grouped by what turning them costs now: where the pairs are at hand, those that need pairs cost nothing. */
+function groupDials(dials: readonly DialSpec[], { pairs, reading }: TurnCost): DialGroup[] {
+  const isKept = pairs !== null && pairs.kept !== null;
+  const needing = (...needs: readonly DialSpec['needs'][]): DialSpec[] =>
+    orderDials(dials.filter((spec) => needs.includes(spec.needs)));
+  const cost = reading === null ? null : `reads ${reading}`;
+  const why = pairs !== null && pairs.kept === null ? pairs.why : null;
+  const groups: DialGroup[] = isKept
+    ? [
+        { id: 'pairs', title: 'answered while they turn', note: pairsWords(pairs), dials: needing('pairs') },
+        { id: 'bytes', title: 'counted again when turned', note: cost, dials: needing('bytes') },
+      ]
+    : [
+        {
+          id: 'bytes',
+          title: 'counted again when turned',
+          note: [cost, why === null ? null : `pairs not kept: ${why}`]
+            .filter((part) => part !== null)
+            .join(' · '),
+          dials: needing('pairs', 'bytes'),
+        },
+      ];
+  groups.push({ id: 'finish', title: 'answered at once', note: null, dials: needing('finish') });
+  return groups.filter((group) => group.dials.length > 0);
+}
 
 /** The parameters of the study, grouped by what turning them costs. */
 export function DialsRegion({ readOnly }: DialsRegionProps) {
@@ -36,6 +67,7 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
   const isReadOtherwise = useBenchPlan(isReadingChanged);
   const preset = useBenchState((state) => (state.preset?.study === state.study ? state.preset : null));
   const chosen = useBenchState((state) => state.found[state.study]?.output.chosen);
+  const cost = useTurnCost();
   if (study === null) return <Region title="dials">{null}</Region>;
   const changed = changedDials(study.dials, values, base);
   const { turn, undo, redo, resetDials } = store.getState();
@@ -76,12 +108,11 @@ export function DialsRegion({ readOnly }: DialsRegionProps) {
           As a runner you run presets as they are: the inputs can be chosen, the dials stand.
         </p>
       ) : null}
-      {GROUPS.map(({ needs, title }) => {
-        const dials = orderDials(concerned.filter((spec) => spec.needs === needs));
-        if (dials.length === 0) return null;
+      {groupDials(concerned, cost).map(({ id, title, note: costNote, dials }) => {
         return (
-          <div key={needs} className="mb-5">
+          <div key={id} className="mb-5" data-dials={id}>
             <h3 className="font-mono text-xs text-dim">{title}</h3>
+            {costNote ? <p className="font-mono text-xs wrap-anywhere text-faint">{costNote}</p> : null}
             <div className="mt-1 flex flex-col divide-y divide-line border-t border-line">
               {dials.map((spec) => (
                 <div key={spec.id} className="py-2">

@@ -1,8 +1,9 @@
+import { useDeferredValue } from 'react';
 import { LedgerSection } from '../../../components/output/LedgerSection';
 import { OutputLedger } from '../../../components/output/OutputLedger';
 import { planRun } from '../model/bench-selectors';
 import type { LogLine } from '../model/bench-types';
-import { stageWords } from '../model/run-bench';
+import { stageWords } from '../model/run-words';
 import { useBenchPlan, useBenchState } from './bench-context';
 import { Region } from './Region';
 import { SaveActions, type SaveActionsProps } from './SaveActions';
@@ -10,7 +11,7 @@ import { noteOfFound } from './StageRegion';
 
 /** The numbers, the checks and the job log. */
 export function LedgerRegion(props: SaveActionsProps) {
-  const found = useBenchState((state) => state.found[state.study] ?? null);
+  const found = useDeferredValue(useBenchState((state) => state.found[state.study] ?? null));
   const key = useBenchPlan(planRun).key;
   const note = found === null ? null : noteOfFound(found, key);
   return (
@@ -23,7 +24,7 @@ export function LedgerRegion(props: SaveActionsProps) {
           <LogSection />
         </div>
       ) : (
-        <OutputLedger output={found.output} provenance={found.result?.provenance ?? null}>
+        <OutputLedger output={found.output} provenance={found.provenance}>
           <LogSection />
         </OutputLedger>
       )}

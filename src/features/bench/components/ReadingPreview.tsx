@@ -76,25 +76,32 @@ function Facts({ facts }: { facts: InspectionFacts }) {
   const seconds = facts.sampledSeconds;
   return (
     <div className="grid grid-cols-2 gap-x-6">
-      <Table label="First records">
-        <thead>
-          <tr>
-            <Th numeric>tick</Th>
-            <Th numeric>channel</Th>
-          </tr>
-        </thead>
-        <tbody>
-          {facts.first.slice(0, MOST_RECORDS).map(({ tick, channel }, i) => (
-            // biome-ignore lint/suspicious/noArrayIndexKey: records have no other identity than their place
-            <tr key={i}>
-              <Td numeric>{tick}</Td>
-              <Td numeric>{channel}</Td>
-            </tr>
-          ))}
-        </tbody>
-      </Table>
       <section
-        className="max-h-60 overflow-y-auto"
+        className="max-h-72 overflow-y-auto"
+        aria-label="First records"
+        // biome-ignore lint/a11y/noNoninteractiveTabindex: a region that scrolls must be reachable by keyboard
+        tabIndex={0}
+      >
+        <Table label="First records">
+          <thead>
+            <tr>
+              <Th numeric>tick</Th>
+              <Th numeric>channel</Th>
+            </tr>
+          </thead>
+          <tbody>
+            {facts.first.slice(0, MOST_RECORDS).map(({ tick, channel }, i) => (
+              // biome-ignore lint/suspicious/noArrayIndexKey: records have no other identity than their place
+              <tr key={i}>
+                <Td numeric>{tick}</Td>
+                <Td numeric>{channel}</Td>
+              </tr>
+            ))}
+          </tbody>
+        </Table>
+      </section>
+      <section
+        className="max-h-72 overflow-y-auto"
         aria-label="Counts per channel"
         // biome-ignore lint/a11y/noNoninteractiveTabindex: a region that scrolls must be reachable by keyboard
         tabIndex={0}

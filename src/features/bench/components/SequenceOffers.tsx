@@ -9,7 +9,7 @@ export function SequenceOffers() {
   const { store } = useBench();
   const offers = useBenchPlan(offersOf);
   return offers.map(({ ids, names }) => (
-    <section key={ids[0]} aria-label="Files of one kind" className="mb-4 border-y border-line py-2.5">
+    <section key={ids[0]} aria-label="Files of one kind" className="mb-4 border-t border-line pt-2.5">
       <p className="text-sm wrap-anywhere">
         {names[0]} to {names[names.length - 1]} have one extension and one layout.
       </p>

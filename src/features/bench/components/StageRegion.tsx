@@ -1,3 +1,4 @@
+import { useDeferredValue, useMemo } from 'react';
 import { OutputStage } from '../../../components/output/OutputStage';
 import { Button } from '../../../components/ui/Button';
 import { CheckMark } from '../../../components/ui/CheckMark';
@@ -5,11 +6,12 @@ import { ProgressBar } from '../../../components/ui/ProgressBar';
 import { useTheme } from '../../../lib/theme/theme';
 import { currentDials, currentStudy, guessedReadings, planRun } from '../model/bench-selectors';
 import type { Found } from '../model/bench-types';
-import { progressWords, stageWords } from '../model/run-bench';
+import { progressWords, stageWords } from '../model/run-words';
 import { useBench, useBenchPlan, useBenchState } from './bench-context';
 import { EmptyStage } from './EmptyStage';
 import { ProblemText } from './ProblemText';
 import { StudyPicker } from './StudyPicker';
+import { useTurnCost } from './use-turn-cost';
 
 export interface StageRegionProps {
   readOnly: boolean;
@@ -17,8 +19,9 @@ export interface StageRegionProps {
   onOpen(): void;
 }
 
-/** "41 % read", "from earlier settings": what keeps a number from being final. */
+/** "preview", "41 % read", "from earlier settings": what keeps a number from being final. */
 export function noteOfFound(found: Found, key: string): string | null {
+  if (found.isPreview) return 'preview';
   if (found.fraction !== null) return `${Math.floor(found.fraction * 100)} % read`;
   return found.key === key ? null : 'from earlier settings';
 }
@@ -30,7 +33,13 @@ export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
   const study = useBenchPlan(currentStudy);
   const plan = useBenchPlan(planRun);
   const dials = useBenchPlan(currentDials);
-  const found = useBenchState((state) => state.found[state.study] ?? null);
+  // Ten maps are drawn between clicks and keys, not instead of them.
+  const found = useDeferredValue(useBenchState((state) => state.found[state.study] ?? null));
+  const cost = useTurnCost();
+  const answers = useMemo(
+    () => <p className="max-w-prose text-sm text-dim">{study?.answers}</p>,
+    [study?.answers],
+  );
   return (
     <section aria-label="stage" className="flex h-full min-h-0 flex-col">
       <header className="flex min-h-9 shrink-0 flex-wrap items-stretch justify-between gap-x-4 border-b border-line px-4">
@@ -59,8 +68,9 @@ export function StageRegion({ readOnly, onEdit, onOpen }: StageRegionProps) {
             specs={study?.dials}
             dials={dials}
             onTurn={readOnly ? undefined : store.getState().turn}
+            turnCost={cost.window}
           >
-            <p className="max-w-prose text-sm text-dim">{study?.answers}</p>
+            {answers}
           </OutputStage>
         )}
         {found === null && plan.needs.length === 0 ? <Waiting isKnown={study !== null} /> : null}
@@ -112,6 +122,7 @@ function Waiting({ isKnown }: { isKnown: boolean }) {
 function RunLine() {
   const { runner } = useBench();
   const run = useBenchState((state) => state.run);
+  const isPreview = useBenchState((state) => state.found[state.study]?.isPreview ?? false);
   if (run.status === 'cancelled') {
     return (
       <span className="flex items-center gap-3 font-mono text-xs text-dim" role="status">
@@ -119,6 +130,13 @@ function RunLine() {
         <Button size="sm" onClick={runner.again}>
           Run again
         </Button>
+      </span>
+    );
+  }
+  if (isPreview && run.status === 'done') {
+    return (
+      <span className="flex items-center font-mono text-xs text-warn" role="status">
+        preview
       </span>
     );
   }

@@ -1,5 +1,5 @@
 import type { DialValues } from '../../../../shared/contracts/dial';
-import type { RunEvent, RunResult } from '../../../../shared/contracts/engine';
+import type { PairsKept, RunEvent, RunResult } from '../../../../shared/contracts/engine';
 import type { StudyOutput } from '../../../../shared/contracts/output';
 import type { InputSetting } from '../../../../shared/contracts/preset';
 import type { StudyId, StudyInfo } from '../../../../shared/contracts/study';
@@ -20,8 +20,12 @@ export type RunState =
 /** What a study found last; never edited in place, so its large arrays are shared and not copied. */
 export interface Found {
   output: StudyOutput;
-  /** null while the file is still being read. */
+  /** null while the file is still being read, and for a preview. */
   result: RunResult | null;
+  /** Where it came from; null while the file is still being read. */
+  provenance: RunResult['provenance'] | null;
+  /** Answered while a dial was turned, with few resamples; the exact run follows. */
+  isPreview: boolean;
   /** Share of the bytes behind a partial output; null when complete. */
   fraction: number | null;
   /** Which inputs and dials it belongs to. */
@@ -72,6 +76,10 @@ export interface BenchState {
   session: SessionRef | null;
   seed: number;
   run: RunState;
+  /** By study: what the last whole run kept of its pairs; null where it counted none. */
+  pairs: Partial<Record<StudyId, PairsKept | null>>;
+  /** Of the last run that read the files; null before one has. */
+  bytesPerSecond: number | null;
   found: Partial<Record<StudyId, Found>>;
   saved: Partial<Record<StudyId, SavedResult>>;
   log: readonly LogLine[];
@@ -91,6 +99,8 @@ export const emptyBench: BenchState = {
   session: null,
   seed: DEFAULT_SEED,
   run: { status: 'idle' },
+  pairs: {},
+  bytesPerSecond: null,
   found: {},
   saved: {},
   log: [],

@@ -1,24 +1,36 @@
 import type { DialValues } from '../../../../shared/contracts/dial';
-import type { RunEvent } from '../../../../shared/contracts/engine';
-import { bytesWords, durationWords, shortCount } from '../../../components/output/reading-words';
+import type { RunEvent, RunResult } from '../../../../shared/contracts/engine';
+import type { StudyId } from '../../../../shared/contracts/study';
+import { durationWords } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
-import { type Acquisition, type FilePart, isOtherFile, partsOf } from './acquisition';
+import { isOtherFile } from './acquisition';
 import { currentAssignment, currentStudy, type Plan, planRun } from './bench-selectors';
 import type { BenchStore } from './bench-store';
-import type { BenchState, Found, Progress } from './bench-types';
+import type { BenchState, Found } from './bench-types';
 import { changedDials } from './dial-history';
+import { attachPreviews } from './preview-runs';
+import { rememberHashes } from './remember-hashes';
+import { readingCost } from './run-cost';
+import { pairsWords } from './run-words';
 
 /** While a hand moves a dial that counts anew, one run after it rests this long. */
 const DIAL_REST_MS = 150;
-/** Dials that only finish anew are answered while the hand moves, at most this often and one at a time. */
-const DIAL_PACE_MS = 100;
+/** The same where the file is long to read: nobody wants it begun for every stop of the hand. */
+const LONG_REST_MS = 600;
+const LONG_READING_S = 3;
 
 interface ActiveRun {
   jobId: string;
   key: string;
   inputsKey: string;
   dials: DialValues;
-  startedAt: number;
+}
+
+/** Counts and pairs of the last whole run, from which dials may be answered without the bytes. */
+interface AtHand {
+  inputsKey: string;
+  dials: DialValues;
+  pairs: boolean;
 }
 
 export interface Runner {
@@ -39,16 +51,37 @@ function isSamePlanSource(a: BenchState, b: BenchState): boolean {
   );
 }
 
-/** Runs the study whenever what it needs is there and something changed; the newest request wins. */
+/**
+ * Runs the study whenever what it needs is there and something changed; the newest request wins. While a dial is turned
+ * that needs no byte, previews answer; the exact run follows once the hand rests.
+ */
 export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
   let timer: ReturnType<typeof setTimeout> | null = null;
   let active: ActiveRun | null = null;
-  /** The run started last, under way or not: what a dial was turned from. */
-  let last: ActiveRun | null = null;
+  /** The last whole answer of each study: an undo may lead back to it past previews. */
+  const exact = new Map<StudyId, Found>();
+  const atHand = new Map<StudyId, AtHand>();
   let jobs = 0;
+  const nextJob = (): string => `job-${++jobs}`;
 
-  const keep = (found: Found, study: BenchState['study']): void =>
+  const keep = (found: Found, study: StudyId): void =>
     store.setState(({ found: all }) => ({ found: { ...all, [study]: found } }));
+
+  /** What was at hand is of other inputs, or the engine has let it go. */
+  const forget = (study: StudyId): void => {
+    atHand.delete(study);
+    store.setState(({ pairs }) => ({ pairs: { ...pairs, [study]: null } }));
+  };
+
+  const previews = attachPreviews({
+    engine,
+    nextJob,
+    show: (study, inputsKey, found) => {
+      // The inputs may be others by now.
+      if (planRun(store.getState()).inputsKey === inputsKey) keep(found, study);
+    },
+    refuse: forget,
+  });
 
   const dropActive = (): void => {
     if (timer !== null) clearTimeout(timer);
@@ -61,18 +94,22 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     const { request, key, inputsKey } = plan;
     if (request === null) return;
     dropActive();
-    const jobId = `job-${++jobs}`;
-    active = { jobId, key, inputsKey, dials: request.dials, startedAt: Date.now() };
-    last = active;
+    previews.drop();
+    const jobId = nextJob();
+    active = { jobId, key, inputsKey, dials: request.dials };
     const isCurrent = (): boolean => active?.jobId === jobId;
     const holders = currentAssignment(store.getState());
+    if (atHand.get(request.study)?.inputsKey !== inputsKey) forget(request.study);
+    let bytesRead = 0;
     store.setState({ run: { status: 'running', jobId, key, progress: null } });
     const onEvent = (event: RunEvent): void => {
       if (!isCurrent()) return;
       if (event.kind === 'progress') {
+        bytesRead = Math.max(bytesRead, event.bytesDone);
         store.setState({ run: { status: 'running', jobId, key, progress: event } });
       } else {
-        keep({ output: event.output, result: null, fraction: event.fraction, key }, request.study);
+        const { output, fraction } = event;
+        keep({ output, result: null, provenance: null, isPreview: false, fraction, key }, request.study);
       }
     };
     const outcome = await engine.run({ ...request, jobId }, onEvent);
@@ -80,18 +117,13 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     active = null;
     const { say } = store.getState();
     if (outcome.status === 'ok') {
-      const { output, provenance } = outcome.value;
-      keep({ output, result: outcome.value, fraction: null, key }, request.study);
-      const before = store.getState().shelf;
-      const shelf = rememberHashes(before, holders, provenance.inputs);
-      store.setState({ run: { status: 'done', key, seconds: provenance.seconds }, shelf });
-      for (const other of shelf.filter((a) => isOtherFile(a) && !before.includes(a))) {
-        say(`${other.name} is not the file the session was made with: its fingerprint differs.`, 'problem');
-        // The session's result was found in the other file.
-        store.setState(({ saved }) => ({ saved: { ...saved, [request.study]: undefined } }));
-      }
-      const label = currentStudy(store.getState())?.label ?? request.study;
-      say(`${label} done in ${durationWords(provenance.seconds)}.`);
+      const { pairs } = outcome.value;
+      atHand.set(request.study, {
+        inputsKey,
+        dials: request.dials,
+        pairs: pairs !== undefined && pairs.kept !== null,
+      });
+      finish(outcome.value, { key, study: request.study, holders, bytesRead });
     } else if (outcome.status === 'cancelled') {
       store.setState({ run: { status: 'cancelled', key } });
       say('Cancelled.');
@@ -104,6 +136,34 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     settle();
   };
 
+  const finish = (
+    result: RunResult,
+    of: { key: string; study: StudyId; holders: Record<string, string | null>; bytesRead: number },
+  ): void => {
+    const { output, provenance, pairs } = result;
+    const { key, study, holders, bytesRead } = of;
+    const found = { output, result, provenance, isPreview: false, fraction: null, key };
+    exact.set(study, found);
+    keep(found, study);
+    store.setState((state) => ({ pairs: { ...state.pairs, [study]: pairs ?? null } }));
+    const before = store.getState().shelf;
+    const shelf = rememberHashes(before, holders, provenance.inputs);
+    store.setState({ run: { status: 'done', key, seconds: provenance.seconds }, shelf });
+    const bytes = readingCost(store.getState()).bytes;
+    // Only a run that read the files tells how long reading takes.
+    if (bytesRead > bytes / 2 && provenance.seconds > 0)
+      store.setState({ bytesPerSecond: bytes / provenance.seconds });
+    const { say } = store.getState();
+    for (const other of shelf.filter((a) => isOtherFile(a) && !before.includes(a))) {
+      say(`${other.name} is not the file the session was made with: its fingerprint differs.`, 'problem');
+      // The session's result was found in the other file.
+      store.setState(({ saved }) => ({ saved: { ...saved, [study]: undefined } }));
+    }
+    const label = currentStudy(store.getState())?.label ?? study;
+    const keptPairs = pairs === undefined ? '' : `; ${pairsWords(pairs)}`;
+    say(`${label} done in ${durationWords(provenance.seconds)}${keptPairs}.`);
+  };
+
   const settle = (): void => {
     if (timer !== null) clearTimeout(timer);
     timer = null;
@@ -111,6 +171,7 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     const { run, found, saved, study } = store.getState();
     if (plan.request === null) {
       dropActive();
+      previews.drop();
       if (run.status !== 'idle') store.setState({ run: { status: 'idle' } });
       return;
     }
@@ -119,21 +180,31 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
       store.setState({ saved: { ...saved, [study]: { ...saved[study], key: plan.key } } });
     if (active?.key === plan.key) return;
     const known = found[study];
-    if (known?.key === plan.key && known.result !== null) {
+    const whole = [known, exact.get(study)].find((each) => each?.key === plan.key && each.result !== null);
+    if (whole?.result) {
       dropActive();
-      const seconds = known.result.provenance.seconds;
-      store.setState({ run: { status: 'done', key: plan.key, seconds } });
+      previews.drop();
+      if (whole !== known) keep(whole, study);
+      store.setState({ run: { status: 'done', key: plan.key, seconds: whole.result.provenance.seconds } });
       return;
     }
     if ((run.status === 'failed' || run.status === 'cancelled') && run.key === plan.key) return;
-    const isFinishOnly =
-      last?.inputsKey === plan.inputsKey && needsOnlyFinish(store.getState(), last.dials, plan.request.dials);
+    const { request } = plan;
+    if (isAnswerable(store.getState(), plan, atHand.get(study))) {
+      // What runs from the counts at hand is overtaken; the hand is seen to first.
+      dropActive();
+      previews.ask(plan, request);
+      timer = setTimeout(() => void start(planRun(store.getState())), DIAL_REST_MS);
+      return;
+    }
     // The counts under way serve the new dials as well; to begin again would throw them away.
-    if (isFinishOnly && active !== null) return;
+    if (
+      active?.inputsKey === plan.inputsKey &&
+      needsOnly(store.getState(), active.dials, request.dials, ['finish'])
+    )
+      return;
     const onlyDials = known?.key.startsWith(plan.inputsKey) ?? false;
-    const pace = last === null ? 0 : Math.max(0, last.startedAt + DIAL_PACE_MS - Date.now());
-    const wait = isFinishOnly ? pace : onlyDials ? DIAL_REST_MS : 0;
-    timer = setTimeout(() => void start(planRun(store.getState())), wait);
+    timer = setTimeout(() => void start(planRun(store.getState())), onlyDials ? restOf(store.getState()) : 0);
   };
 
   const unsubscribe = store.subscribe((state, before) => {
@@ -153,66 +224,29 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
     detach: () => {
       unsubscribe();
       dropActive();
+      previews.drop();
     },
   };
 }
 
-/** Do two settings of the dials differ only in what is done after the counting? */
-function needsOnlyFinish(state: BenchState, from: DialValues, to: DialValues): boolean {
+function restOf(state: BenchState): number {
+  return (readingCost(state).seconds ?? 0) > LONG_READING_S ? LONG_REST_MS : DIAL_REST_MS;
+}
+
+/** Do two settings of the dials differ, and only in dials of these needs? */
+function needsOnly(
+  state: BenchState,
+  from: DialValues,
+  to: DialValues,
+  needs: readonly ('finish' | 'pairs' | 'bytes')[],
+): boolean {
   const specs = currentStudy(state)?.dials ?? [];
   const changed = changedDials(specs, to, from);
-  return changed.size > 0 && specs.every(({ id, needs }) => needs === 'finish' || !changed.has(id));
+  return changed.size > 0 && specs.every((spec) => needs.includes(spec.needs) || !changed.has(spec.id));
 }
 
-/**
- * Two files may share name and size, so the fingerprints go to the acquisition that served the input, one for each of its
- * files in their order.
- */
-function rememberHashes(
-  shelf: BenchState['shelf'],
-  holders: Record<string, string | null>,
-  inputs: readonly { name: string; sha256: string }[],
-): BenchState['shelf'] {
-  const hashes = new Map<string | null | undefined, string[]>();
-  for (const { name, sha256 } of inputs) {
-    const holder = holders[name];
-    hashes.set(holder, [...(hashes.get(holder) ?? []), sha256]);
-  }
-  const isNews = shelf.some((a) =>
-    partsOf(a).some(({ sha256 }, i) => (hashes.get(a.id)?.[i] ?? sha256) !== sha256),
-  );
-  if (!isNews) return shelf;
-  return shelf.map((a) => withHashes(a, hashes.get(a.id) ?? []));
-}
-
-function withHashes(acquisition: Acquisition, found: readonly string[]): Acquisition {
-  const { following, companion } = acquisition;
-  const hashed = <T extends FilePart>(part: T, place: number): T => {
-    const sha256 = found[place] ?? part.sha256;
-    return sha256 === part.sha256 ? part : { ...part, sha256 };
-  };
-  const whole = hashed(acquisition, 0);
-  const rest = following.map((part, i) => hashed(part, i + 1));
-  const second = companion === null ? null : hashed(companion, following.length + 1);
-  const isSame = second === companion && rest.every((part, i) => part === following[i]);
-  return isSame ? whole : { ...whole, following: rest, companion: second };
-}
-
-/** Short, for the line beside the studies: how far, how fast, how long. */
-export function progressWords({
-  bytesDone,
-  bytesTotal,
-  counted,
-  recordsPerSecond,
-  secondsLeft,
-}: Progress): string {
-  const share = bytesTotal > 0 ? `${Math.floor((100 * bytesDone) / bytesTotal)} %` : '';
-  const rate = recordsPerSecond > 0 ? `${shortCount(recordsPerSecond)} ${counted}/s` : '';
-  const left = secondsLeft === null ? '' : `${durationWords(secondsLeft)} left`;
-  return [share, rate, left].filter((part) => part !== '').join(' · ');
-}
-
-/** Long, for the ledger: what is going on and how much was read. */
-export function stageWords({ stage, counted, recordsDone, bytesDone, bytesTotal }: Progress): string {
-  return `${stage} · ${shortCount(recordsDone)} ${counted} · ${bytesWords(bytesDone)} of ${bytesWords(bytesTotal)}`;
+/** Can the plan be answered from the counts and pairs of the last whole run? */
+function isAnswerable(state: BenchState, { inputsKey, request }: Plan, at: AtHand | undefined): boolean {
+  if (at === undefined || request === null || at.inputsKey !== inputsKey) return false;
+  return needsOnly(state, at.dials, request.dials, at.pairs ? ['finish', 'pairs'] : ['finish']);
 }
