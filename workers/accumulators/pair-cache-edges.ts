@@ -2,6 +2,8 @@ import type { TagColumns } from '../kernels/tag-columns';
 
 /** Tags held at either end: a mask that takes all of them away needs the bytes. */
 const EDGE_TAGS = 256;
+/** Blocks whose last tags wait to be told apart. */
+const MOST_WAITING = 32;
 
 export interface EdgeTag {
   tick: bigint;
@@ -14,37 +16,67 @@ export interface EdgeTags {
   latest: EdgeTag[];
 }
 
-export function noEdges(): EdgeTags {
-  return { earliest: [], latest: [] };
-}
+/** Follows the earliest and the latest tags of blocks; nothing is sorted while blocks come in order. */
+export class EdgeKeeper {
+  #edges: EdgeTags;
+  /** Last tags of blocks that may be among the latest. */
+  #waiting: { refTick: bigint; time: Float64Array; site: Int32Array }[] = [];
 
-/** Takes the sorted tags [start, stop) into account; most calls look at two times only. */
-export function offerEdges(
-  edges: EdgeTags,
-  tags: TagColumns,
-  start: number,
-  stop: number,
-  refTick: bigint,
-): void {
-  const at = (i: number): EdgeTag => ({ tick: refTick + BigInt(tags.time[i]!), site: tags.site[i]! });
-  const last = edges.earliest[EDGE_TAGS - 1];
-  if (last === undefined || at(start).tick < last.tick) {
-    const length = Math.min(EDGE_TAGS, stop - start);
-    edges.earliest = earliestOf([...edges.earliest, ...Array.from({ length }, (_, i) => at(start + i))]);
+  constructor(edges: EdgeTags = { earliest: [], latest: [] }) {
+    this.#edges = edges;
   }
-  const first = edges.latest.length < EDGE_TAGS ? undefined : edges.latest[0];
-  if (first === undefined || at(stop - 1).tick > first.tick) {
-    const length = Math.min(EDGE_TAGS, stop - start);
-    const tail = Array.from({ length }, (_, i) => at(stop - length + i));
-    edges.latest = latestOf([...edges.latest, ...tail]);
-  }
-}
 
-export function joinEdges(edges: EdgeTags, next: EdgeTags): EdgeTags {
-  return {
-    earliest: earliestOf([...edges.earliest, ...next.earliest]),
-    latest: latestOf([...edges.latest, ...next.latest]),
-  };
+  /** Takes the sorted tags [start, stop) into account. */
+  offer({ time, site }: TagColumns, start: number, stop: number, refTick: bigint): void {
+    if (stop === start) return;
+    const last = this.#edges.earliest[EDGE_TAGS - 1];
+    if (last === undefined || refTick + BigInt(time[start]!) < last.tick) {
+      const end = Math.min(stop, start + EDGE_TAGS);
+      const first = toTags({ refTick, time: time.slice(start, end), site: site.slice(start, end) });
+      this.#edges = {
+        ...this.#edges,
+        earliest: inOrder([...this.#edges.earliest, ...first]).slice(0, EDGE_TAGS),
+      };
+    }
+    const from = Math.max(start, stop - EDGE_TAGS);
+    const late = { refTick, time: time.slice(from, stop), site: site.slice(from, stop) };
+    const isFull = late.time.length === EDGE_TAGS;
+    if (isFull && this.#isBefore(refTick + BigInt(late.time[0]!))) {
+      this.#waiting = [late];
+      this.#edges = { ...this.#edges, latest: [] };
+    } else {
+      this.#waiting.push(late);
+      if (this.#waiting.length > MOST_WAITING) this.#settle();
+    }
+  }
+
+  join(next: EdgeKeeper): void {
+    const [own, others] = [this.edges(), next.edges()];
+    this.#edges = {
+      earliest: inOrder([...own.earliest, ...others.earliest]).slice(0, EDGE_TAGS),
+      latest: inOrder([...own.latest, ...others.latest]).slice(-EDGE_TAGS),
+    };
+  }
+
+  edges(): EdgeTags {
+    this.#settle();
+    return this.#edges;
+  }
+
+  /** Are all of the latest so far before this tick? */
+  #isBefore(tick: bigint): boolean {
+    const latest = this.#edges.latest[this.#edges.latest.length - 1];
+    return (
+      (latest === undefined || latest.tick < tick) &&
+      this.#waiting.every(({ refTick, time }) => refTick + BigInt(time[time.length - 1]!) < tick)
+    );
+  }
+
+  #settle(): void {
+    const tags = [...this.#edges.latest, ...this.#waiting.flatMap(toTags)];
+    this.#edges = { ...this.#edges, latest: inOrder(tags).slice(-EDGE_TAGS) };
+    this.#waiting = [];
+  }
 }
 
 /**
@@ -60,12 +92,16 @@ export function edgeTicks(
   return first === undefined || last === undefined ? null : { firstTick: first.tick, lastTick: last.tick };
 }
 
-function earliestOf(tags: EdgeTag[]): EdgeTag[] {
-  return inOrder(tags).slice(0, EDGE_TAGS);
-}
-
-function latestOf(tags: EdgeTag[]): EdgeTag[] {
-  return inOrder(tags).slice(-EDGE_TAGS);
+function toTags({
+  refTick,
+  time,
+  site,
+}: {
+  refTick: bigint;
+  time: Float64Array;
+  site: Int32Array;
+}): EdgeTag[] {
+  return Array.from(time, (tick, i) => ({ tick: refTick + BigInt(tick), site: site[i]! }));
 }
 
 function inOrder(tags: EdgeTag[]): EdgeTag[] {

@@ -1,7 +1,7 @@
 import type { TagSpec } from '../../shared/contracts/tally';
 import type { TagColumns } from '../kernels/tag-columns';
 import type { PairCandidates } from '../kernels/tag-scan';
-import { type EdgeTags, joinEdges, noEdges, offerEdges } from './pair-cache-edges';
+import { EdgeKeeper, type EdgeTags } from './pair-cache-edges';
 import { BYTES_PER_PAIR, type KeptPairs, keptBytes, PairColumnsKept } from './pair-cache-store';
 import { type SliceGrid, SliceRing, type SlotClock, sliceEnd, slotOf } from './slice-grid';
 
@@ -27,7 +27,7 @@ export class PairKeeper {
   readonly #most: number;
   readonly #singles: SliceRing | null;
   #stores: KeptPairs[] = [];
-  #edges = noEdges();
+  #edges = new EdgeKeeper();
   #isOverfull = false;
 
   constructor(spec: TagSpec, range: NonNullable<TagSpec['keepPairs']>) {
@@ -58,7 +58,7 @@ export class PairKeeper {
 
   /** Sorted tags [start, stop) with times after `refTick`, which the grid covers already. */
   takeTags(tags: TagColumns, start: number, stop: number, refTick: bigint, grid: SliceGrid): void {
-    offerEdges(this.#edges, tags, start, stop, refTick);
+    this.#edges.offer(tags, start, stop, refTick);
     if (this.#singles === null) return;
     const { time, site } = tags;
     const { counts } = this.#singles;
@@ -80,7 +80,7 @@ export class PairKeeper {
   merge(next: PairKeeper, nextGrid: SliceGrid, doublings: number): void {
     this.#stores.push(...next.#sealed(nextGrid));
     this.#checkRoom();
-    this.#edges = joinEdges(this.#edges, next.#edges);
+    this.#edges.join(next.#edges);
     if (next.#singles !== null) {
       this.#singles?.addRing(next.#singles, doublings, nextGrid.first, nextGrid.count);
     }
@@ -90,13 +90,13 @@ export class PairKeeper {
     return {
       stores: this.#sealed(grid),
       singles: this.#singles?.toDense(grid.first, grid.count) ?? null,
-      edges: { earliest: [...this.#edges.earliest], latest: [...this.#edges.latest] },
+      edges: this.#edges.edges(),
     };
   }
 
   load(part: KeptPart, grid: SliceGrid): void {
     this.#stores = [...part.stores];
-    this.#edges = part.edges;
+    this.#edges = new EdgeKeeper(part.edges);
     if (part.singles !== null) this.#singles?.addDense(part.singles, grid.first, grid.count);
   }
 

@@ -2,8 +2,8 @@ import type { KeptColumns, KeptStretch } from '../kernels/pair-recount';
 import type { PairCandidates } from '../kernels/tag-scan';
 import { SLICE_LIMIT, type SlotClock, slotOf } from './slice-grid';
 
-/** About this many buckets of tau a store: a window then touches few pairs outside it. */
-const BUCKETS = 1024;
+/** At most this many buckets of tau a store: a window that moves a little then touches few pairs outside it. */
+const BUCKETS = 8192;
 /** Offsets inside a bucket are 16 bits wide. */
 const MOST_BUCKET_BITS = 16;
 /** Bytes of the columns for one pair: offset, both pixels, slot. */

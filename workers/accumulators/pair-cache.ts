@@ -147,9 +147,10 @@ export class PairCache {
     const counts = isLess ? copyPairs(from[part.name]) : emptyPairs(spec, frame.slices);
     const { stretches, pairs } = isLess ? changed : anew;
     const { matrix } = counts;
+    const slices = new Map(this.#kept.stores.map((store) => [store, frameSlices(store, frame)]));
     const fromMatrix = matrix !== null && pairs > matrix.length;
     for (const { stretch, weight, store } of stretches) {
-      recountMaps(stretch, weight, frameSlices(store, frame), cells, counts);
+      recountMaps(stretch, weight, slices.get(store)!, cells, counts);
       if (!fromMatrix) recountLags(stretch, weight, cells, counts);
     }
     if (fromMatrix) lagsOfMatrix(matrix, cells, counts);

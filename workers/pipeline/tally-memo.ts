@@ -43,7 +43,13 @@ export class TallyMemo {
 }
 
 function isSameKey(a: MemoKey, b: MemoKey): boolean {
-  return isSameBytes(a, b) && isSameValue(a.spec, b.spec);
+  return isSameBytes(a, b) && isSameAim(a.spec, b.spec) && isSameValue(a.spec, b.spec);
+}
+
+/** First what most often differs: the maps of channels are long. */
+function isSameAim(a: TallySpec, b: TallySpec): boolean {
+  if (a.kind === 'frames' || b.kind === 'frames') return a.kind === b.kind;
+  return isSameValue(a.histogram, b.histogram) && isSameValue(a.window, b.window);
 }
 
 function countBytes(value: unknown): number {
