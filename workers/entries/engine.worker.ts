@@ -4,6 +4,7 @@ import { Problem } from '../../shared/errors/problem';
 import { connectCompute } from '../pipeline/compute-remote';
 import { createEngine } from '../pipeline/engine';
 import { withTransfers } from '../pipeline/engine-remote';
+import { compileKernels } from '../pipeline/kernels-browser';
 import { studies } from '../studies/registry';
 
 /** The coordinating worker of the page. It must be attached to its compute workers before anything else. */
@@ -16,7 +17,8 @@ function attached(): Engine {
 
 const host: EngineHost = {
   async attach(ports, options) {
-    engine = createEngine(ports.filter((port) => port instanceof MessagePort).map(connectCompute), options);
+    const hosts = ports.filter((port) => port instanceof MessagePort).map(connectCompute);
+    engine = createEngine(hosts, options, compileKernels);
   },
   studies: async () => Object.values(studies).map((study) => study.info),
   inspect: (source, layout) => attached().inspect(source, layout),

@@ -8,6 +8,7 @@ import type { Engine, EngineOptions, SourceRef } from '../../shared/contracts/en
 import { Problem } from '../../shared/errors/problem';
 import { connectCompute } from '../pipeline/compute-remote';
 import { createEngine } from '../pipeline/engine';
+import { compileKernels } from '../pipeline/kernels-node';
 import { openPathSource } from '../pipeline/node-source';
 import { createShardEngine, type ShardEngine } from '../pipeline/shards';
 
@@ -47,7 +48,7 @@ export function startNodeEngine(
   };
   const hosts = Array.from({ length: workers }, () => connectCompute(lazyEndpoint(start)));
   return {
-    engine: createEngine(hosts, options),
+    engine: createEngine(hosts, options, compileKernels),
     shards: createShardEngine(hosts, openPathSource),
     async close() {
       await Promise.all(threads.map((thread) => thread.terminate()));

@@ -7,6 +7,7 @@ import {
   createAccumulator,
   type Part,
 } from '../accumulators/accumulator';
+import { type CompiledKernels, NO_COMPILED_KERNELS } from '../accumulators/compiled-kernels';
 import { isKeepable, PairCache } from '../accumulators/pair-cache';
 import { TagAccumulator } from '../accumulators/tag-accumulator';
 import type { StudyInput } from '../studies/study';
@@ -42,7 +43,12 @@ class Counting {
   /** Pairs of the records in which the delay is looked for. */
   #first: PairCache | null = null;
 
-  constructor(request: CountRequest, chunks = planChunks(request.studyInput.facts), pairBytes = 0) {
+  constructor(
+    request: CountRequest,
+    chunks = planChunks(request.studyInput.facts),
+    pairBytes = 0,
+    kernels: CompiledKernels = NO_COMPILED_KERNELS,
+  ) {
     this.request = request;
     this.chunks = chunks;
     if (request.spec.kind === 'tags' && pairBytes > 0) {
@@ -50,7 +56,8 @@ class Counting {
       if ('why' in keeping) this.#refusal = keeping.why;
       else this.#keeping = keeping;
     }
-    this.#accumulator = createAccumulator(this.spec);
+    // Tags of chunks only add up here; frames have a difference across every seam.
+    this.#accumulator = createAccumulator(this.spec, { ...kernels, tags: null });
   }
 
   /** What the next chunk is to be counted with: what was asked, and pairs kept beside it where they fit. */
@@ -142,12 +149,13 @@ export async function countInputs(
   requests: readonly CountRequest[],
   memo: TallyMemo,
   look: { isWanted(): boolean; show(tallies: Map<string, Tally>, fraction: number): void },
+  kernels: CompiledKernels,
 ): Promise<Map<string, Tally>> {
   const done = new Map<string, Tally>();
   const countings: Counting[] = [];
   for (const request of requests) {
     const kept = memo.find(memoKey(request));
-    if (kept === null) countings.push(new Counting(request, undefined, pairBytesFor(request, memo)));
+    if (kept === null) countings.push(new Counting(request, undefined, pairBytesFor(request, memo), kernels));
     else done.set(request.name, kept);
   }
   if (countings.length === 0) return done;

@@ -14,6 +14,7 @@ import type {
 import type { ReaderFacts } from '../../shared/contracts/reader';
 import type { Tally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
+import { type CompiledKernels, NO_COMPILED_KERNELS } from '../accumulators/compiled-kernels';
 import { fillDials } from '../studies/dials';
 import { studyById } from '../studies/registry';
 import type { Chosen, CountedInput, FinishRequest, Study } from '../studies/study';
@@ -23,6 +24,7 @@ import { SEARCH_RECORDS } from './chunks';
 import type { ComputeHost } from './compute';
 import { type CountRequest, countInputs, countRange, memoKey } from './counting';
 import { Job } from './job';
+import { type CompileKernels, loadKernels } from './kernels';
 import { assertFitsMemory } from './memory';
 import { createPool } from './pool';
 import { createStage } from './progress';
@@ -40,15 +42,18 @@ interface Known {
   counts: TallyMemo;
   facts: { input: ReadInput; facts: ReaderFacts }[];
   fingerprints: { source: SourceRef; sha256: string }[];
+  /** For the seams between chunks of frames. */
+  kernels: Promise<CompiledKernels> | null;
 }
 
 /** The engine over compute workers it is given; the same in the page and under Node. */
 export function createEngine(
   hosts: readonly ComputeHost[],
   { pairBytes = PAIR_BYTES }: EngineOptions = {},
+  compileKernels: CompileKernels = async () => null,
 ): Engine {
   const pool = createPool(hosts);
-  const known: Known = { counts: new TallyMemo(pairBytes), facts: [], fingerprints: [] };
+  const known: Known = { counts: new TallyMemo(pairBytes), facts: [], fingerprints: [], kernels: null };
   const jobs = new Map<string, Job>();
 
   return {
@@ -61,6 +66,7 @@ export function createEngine(
       const job: Job = new Job(request.jobId, pool, emit, request.quick);
       jobs.set(request.jobId, job);
       try {
+        known.kernels ??= loadKernels(compileKernels);
         const outcome = await answer(() => runStudy(job, request, known));
         if (outcome.status !== 'ok') job.cancel();
         return outcome;
@@ -99,7 +105,13 @@ async function runStudy(job: Job, request: RunRequest, known: Known): Promise<Ru
   const look = createLook((tallies, fraction) => {
     job.emit({ kind: 'partial', jobId: job.id, output: study.finish(finish(tallies, true)), fraction });
   });
-  const tallies = await countInputs(job, requests, known.counts, look);
+  const tallies = await countInputs(
+    job,
+    requests,
+    known.counts,
+    look,
+    (await known.kernels) ?? NO_COMPILED_KERNELS,
+  );
   // Hashing reads the file once more; it goes after counting so that the answer does not wait for it in the pool.
   const [hashedInputs, output] = await Promise.all([
     fingerprintInputs(job, requests, known.fingerprints),
