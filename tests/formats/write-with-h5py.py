@@ -39,6 +39,18 @@ for version in ("earliest", "latest"):
             c[start:] = where[start : start + 1000]
     with h5py.File(path("frames"), "w", libver=version) as f:
         f.create_dataset("camera/shots", data=stack.astype(">u2"), chunks=(7, 5, 20), compression="gzip", shuffle=True)
+    with h5py.File(path("mixed-order"), "w", libver=version) as f:
+        rows = np.zeros(n, dtype=[("t", ">u8"), ("c", "<u2"), ("d", ">i4")])
+        rows["t"], rows["c"], rows["d"] = when, where, -where.astype("i4")
+        f["events"] = rows
+    with h5py.File(path("lzf"), "w", libver=version) as f:
+        f.create_dataset("t", data=when, compression="lzf")
+        f.create_dataset("c", data=where)
+    for name, shape in [("channel", (30, 1, 12, 20)), ("colour", (30, 12, 20, 1)), ("run", (1, 30, 12, 20))]:
+        with h5py.File(path(f"frames-{name}"), "w", libver=version) as f:
+            f.create_dataset("shots", data=stack.astype(">u2").reshape(shape), chunks=True, compression="gzip")
+    with h5py.File(path("frames-half"), "w", libver=version) as f:
+        f["shots"] = stack.astype("f2")
     with h5py.File(path("frames-plain"), "w", libver=version) as f:
         f["shots"] = stack.astype("u1")
     with h5py.File(path("holes"), "w", libver=version) as f:
@@ -54,4 +66,3 @@ for version in ("earliest", "latest"):
         layout = h5py.VirtualLayout(shape=(n,), dtype="u2")
         layout[:] = h5py.VirtualSource(f"gone-{version}", "c16", shape=(n,))
         f.create_virtual_dataset("joined", layout)
-        f["half"] = stack.astype("f2")

@@ -26,8 +26,8 @@ export function candidatesOf(tree: Hdf5Tree): { candidates: Candidate[]; warning
     if (columns.length === 0 || rows === 0) continue;
     const sample = readSample(tree, dataset, Math.min(rows, sampledRows), warnings);
     if (sample === null) continue;
-    for (const { field, offset, number } of columns) {
-      const place: ColumnPlace = { dataset, rows, rowBytes: rowBytesOf(dataset), offset, number };
+    for (const { field, offset, number, isBig } of columns) {
+      const place: ColumnPlace = { dataset, rows, rowBytes: rowBytesOf(dataset), offset, number, isBig };
       const values = roundedDoubles(gatherColumn(sample, place), number);
       const name = typeof field === 'string' ? field : dataset.path.slice(dataset.path.lastIndexOf('/') + 1);
       candidates.push({ ...place, field, ...scoreColumn(values, number.bytes, name) });
@@ -54,18 +54,23 @@ function readSample(
 function columnsIn({
   shape,
   type,
-}: DatasetEntry): { field?: string | number; offset: number; number: NumberType }[] {
+}: DatasetEntry): { field?: string | number; offset: number; number: NumberType; isBig: boolean }[] {
   if (type.kind === 'other') return [];
   if (type.kind === 'compound') {
     if (shape.length !== 1) return [];
-    return type.members.flatMap(({ name, offset, number }) =>
-      number !== null && number.family !== 'float' ? [{ field: name, offset, number }] : [],
+    return type.members.flatMap(({ name, offset, number, isBig }) =>
+      number !== null && number.family !== 'float' ? [{ field: name, offset, number, isBig }] : [],
     );
   }
   const { number, bytes } = type;
   if (number.family === 'float') return [];
-  if (shape.length === 1) return [{ offset: 0, number }];
+  if (shape.length === 1) return [{ offset: 0, number, isBig: false }];
   const columns = shape[1] ?? 0;
   if (shape.length !== 2 || columns < 2 || columns > 16) return [];
-  return Array.from({ length: columns }, (_, field) => ({ field, offset: field * bytes, number }));
+  return Array.from({ length: columns }, (_, field) => ({
+    field,
+    offset: field * bytes,
+    number,
+    isBig: false,
+  }));
 }

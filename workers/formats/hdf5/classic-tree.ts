@@ -85,11 +85,11 @@ function treeOf(file: File, datasets: ClassicEntry[]): Hdf5Tree {
         return isWanted(name) && typeof single === 'number' ? [[name, single] as [string, number]] : [];
       });
     },
-    readRows: (entry, start, end) => {
+    readRows: (entry, start, end, axis) => {
       const known = datasets.find(({ path }) => path === entry.path)!;
       const bytes = values.get(entry.path) ?? readAll(known);
       values.set(entry.path, bytes);
-      const rowBytes = rowBytesOf(entry);
+      const rowBytes = rowBytesOf(entry, axis);
       return bytes.slice(start * rowBytes, end * rowBytes);
     },
     close: () => values.clear(),

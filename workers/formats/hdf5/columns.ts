@@ -1,6 +1,6 @@
 import type { Column } from '../../../shared/contracts/layout';
 import { Problem } from '../../../shared/errors/problem';
-import { gatherBytes } from '../gather';
+import { gatherBytes, swapBytes } from '../gather';
 import type { NumberType } from '../numbers';
 import { absolutePath, type DatasetEntry, type Hdf5Tree, rowBytesOf, typeName } from './tree';
 
@@ -11,6 +11,8 @@ export interface ColumnPlace {
   rowBytes: number;
   offset: number;
   number: NumberType;
+  /** Most significant byte first. */
+  isBig: boolean;
 }
 
 const mostColumns = 16;
@@ -43,8 +45,8 @@ export function findDataset(tree: Hdf5Tree, path: string, fileName: string): Dat
 /** Where the column lies. Throws `missing-dataset`, `wrong-type`, `bad-layout` or `unsupported`. */
 export function placeColumn(tree: Hdf5Tree, column: Column, role: string, fileName: string): ColumnPlace {
   const dataset = findDataset(tree, column.dataset, fileName);
-  const { offset, number } = elementOfColumn(dataset, column, role, `${fileName}, ${dataset.path}`);
-  return { dataset, rows: dataset.shape[0]!, rowBytes: rowBytesOf(dataset), offset, number };
+  const element = elementOfColumn(dataset, column, role, `${fileName}, ${dataset.path}`);
+  return { dataset, rows: dataset.shape[0]!, rowBytes: rowBytesOf(dataset), ...element };
 }
 
 function elementOfColumn(
@@ -52,7 +54,7 @@ function elementOfColumn(
   { field }: Column,
   role: string,
   place: string,
-): { offset: number; number: NumberType } {
+): { offset: number; number: NumberType; isBig: boolean } {
   const { shape, type, path } = dataset;
   const wrong = (found: string, wayOut: string): Problem =>
     new Problem(
@@ -75,12 +77,12 @@ function elementOfColumn(
     if (member.number === null || member.number.family === 'float') {
       throw wrong(`"${member.name}" of ${typeName(type)}`, 'point to a member of integers');
     }
-    return { offset: member.offset, number: member.number };
+    return { offset: member.offset, number: member.number, isBig: member.isBig };
   }
   if (type.number.family === 'float')
     throw wrong(typeName(type), 'save the times as whole ticks and channels as integers');
   if (shape.length === 1) {
-    if (field === undefined) return { offset: 0, number: type.number };
+    if (field === undefined) return { offset: 0, number: type.number, isBig: false };
     throw new Problem(
       'bad-layout',
       `${path} has one column only, but the ${role} asks for "${field}"; leave the field out.`,
@@ -95,7 +97,7 @@ function elementOfColumn(
     );
   }
   if (typeof field === 'number' && field < columns)
-    return { offset: field * type.bytes, number: type.number };
+    return { offset: field * type.bytes, number: type.number, isBig: false };
   throw new Problem(
     'bad-layout',
     `Expected a column from 0 to ${columns - 1} of ${path} for the ${role}, found ${field === undefined ? 'none' : `"${field}"`}; name one.`,
@@ -103,9 +105,10 @@ function elementOfColumn(
   );
 }
 
-/** The bytes of one column, packed. Rows that are the column itself are answered as they are. */
-export function gatherColumn(rows: Uint8Array, { rowBytes, offset, number }: ColumnPlace): Uint8Array {
+/** The bytes of one column, packed and little-endian. Rows that are the column itself are answered as they are. */
+export function gatherColumn(rows: Uint8Array, { rowBytes, offset, number, isBig }: ColumnPlace): Uint8Array {
   const { bytes } = number;
   if (rowBytes === bytes) return rows;
-  return gatherBytes(rows, offset, rowBytes, rows.length / rowBytes, bytes);
+  const packed = gatherBytes(rows, offset, rowBytes, rows.length / rowBytes, bytes);
+  return isBig ? swapBytes(packed, bytes) : packed;
 }

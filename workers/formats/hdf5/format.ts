@@ -37,6 +37,13 @@ export const hdf5Format: Format = {
   },
 };
 
+/** Which reader reads it, and why that one. */
+const readerWords: Record<Hdf5Tree['reader'], string> = {
+  jsfive:
+    'The file is small and of the first kind of HDF5, which the light reader (jsfive) is proved to read exactly.',
+  h5wasm: 'The library of HDF5 itself (h5wasm) reads it.',
+};
+
 function openLayout(tree: Hdf5Tree, source: ByteSource, layout: Layout): Reader {
   if (layout.format !== 'hdf5') {
     throw new Problem(
@@ -55,7 +62,7 @@ async function inspectTree(tree: Hdf5Tree, source: ByteSource, given: Layout | n
     fileName: source.name,
     bytes: source.size,
     layout,
-    because,
+    because: `${because} ${readerWords[tree.reader]}`,
     warnings: [...outsideWarnings(tree), ...warnings],
     reader: tree.reader,
     facts: { kind: 'none' },

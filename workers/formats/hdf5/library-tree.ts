@@ -39,7 +39,7 @@ export async function openLibraryTree(source: ByteSource, environment: ReaderEnv
     datasets,
     outside,
     attributes: (path, isWanted) => numbersOf(file, absolutePath(path), isWanted),
-    readRows: (dataset, start, end) => readRows(file, module, dataset, start, end),
+    readRows: (dataset, start, end, axis) => readRows(file, module, dataset, start, end, axis),
     close: () => library.close(),
   };
 }
@@ -74,6 +74,9 @@ function listGroup(
   }
 }
 
+/** Filters up to here are HDF5's own; others are plugins (HDF5 File Format Specification 3.0, IV.A.2.l). */
+const lastOwnFilter = 255;
+
 function entryOf(path: string, dataset: H5Dataset): DatasetEntry {
   const { metadata } = dataset;
   const entry = {
@@ -89,8 +92,12 @@ function entryOf(path: string, dataset: H5Dataset): DatasetEntry {
       refusal: `is put together from other files ("${foreign.file_name}"), which are not read; copy the data into one dataset`,
     };
   }
-  if (hasMixedOrder(metadata)) {
-    return { ...entry, refusal: 'mixes byte orders among its members; save them in one byte order' };
+  const filter = dataset.filters.find(({ id }) => id > lastOwnFilter);
+  if (filter) {
+    return {
+      ...entry,
+      refusal: `is packed by the filter ${filter.name || 'number'} (${filter.id}), which is not at hand; save it with gzip`,
+    };
   }
   return { ...entry, refusal: null };
 }
@@ -100,10 +107,12 @@ function elementOf(metadata: H5Metadata): ElementType {
   const number = numberOf(metadata);
   if (number !== null) return { kind: 'number', number, bytes };
   if (compound_type === undefined) return { kind: 'other', name: otherName(metadata), bytes };
+  const isMixed = hasMixedOrder(metadata);
   const members = compound_type.members.map((member) => ({
     name: member.name,
     offset: member.offset,
     number: numberOf(member),
+    isBig: isMixed && !member.littleEndian,
   }));
   return { kind: 'compound', members, bytes };
 }
@@ -160,11 +169,11 @@ function readRows(
   dataset: DatasetEntry,
   start: number,
   end: number,
+  axis: 0 | 1 = 0,
 ): Uint8Array {
-  const bytes = rowBytesOf(dataset) * (end - start);
+  const bytes = rowBytesOf(dataset, axis) * (end - start);
   // Slices outside, or empty ones, ask the library for impossible memory.
   if (bytes === 0) return new Uint8Array(0);
-  const rest = dataset.shape.slice(1);
   const pointer = module._malloc(bytes);
   if (pointer === 0) {
     throw new Problem(
@@ -177,8 +186,8 @@ function readRows(
     const status = module.get_dataset_data(
       file.file_id,
       dataset.path,
-      [end - start, ...rest].map(BigInt),
-      [start, ...rest.map(() => 0)].map(BigInt),
+      dataset.shape.map((size, k) => BigInt(k === axis ? end - start : size)),
+      dataset.shape.map((_, k) => BigInt(k === axis ? start : 0)),
       dataset.shape.map(() => 1n),
       BigInt(pointer),
     );

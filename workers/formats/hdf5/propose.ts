@@ -1,5 +1,6 @@
 import type { Column, Layout } from '../../../shared/contracts/layout';
 import { FS_PER_PS } from '../../../shared/units/ticks';
+import { stackShape } from '../stack-shape';
 import { type Candidate, candidatesOf } from './candidates';
 import { namedTick } from './tick-attribute';
 import { type DatasetEntry, type Hdf5Tree, rowBytesOf } from './tree';
@@ -44,12 +45,7 @@ function sizeOf(dataset: DatasetEntry): number {
 
 function likeliestStack(datasets: readonly DatasetEntry[]): DatasetEntry | null {
   const stacks = datasets.filter(
-    ({ shape, type, refusal }) =>
-      refusal === null &&
-      type.kind === 'number' &&
-      !(type.number.family === 'float' && type.bytes === 2) &&
-      shape.length === 3 &&
-      shape.every((size) => size >= 2),
+    ({ shape, type, refusal }) => refusal === null && type.kind === 'number' && isStack(shape),
   );
   return stacks.reduce<DatasetEntry | null>(
     (best, each) => (best && sizeOf(best) >= sizeOf(each) ? best : each),
@@ -57,8 +53,13 @@ function likeliestStack(datasets: readonly DatasetEntry[]): DatasetEntry | null 
   );
 }
 
+function isStack(shape: readonly number[]): boolean {
+  const sizes = stackShape(shape);
+  return sizes !== null && sizes.frames >= 2 && sizes.height >= 2 && sizes.width >= 2;
+}
+
 function framesProposal(dataset: DatasetEntry, hasTags: boolean): Hdf5Proposal {
-  const [frames, height, width] = dataset.shape;
+  const { frames, height, width } = stackShape(dataset.shape)!;
   return {
     layout: { version: 1, format: 'hdf5', kind: 'frames', dataset: dataset.path },
     because: `${dataset.path} is a stack of ${frames} frames of ${width} x ${height} pixels.`,

@@ -8,8 +8,11 @@ export interface Hdf5Tree {
   outside: readonly OutsideLink[];
   /** Numbers among the attributes of a dataset, group or the file ("/"), by name, of those names that are wanted. */
   attributes(path: string, isWanted: (name: string) => boolean): [name: string, value: number][];
-  /** Rows [start, end) of the first dimension, packed, little-endian. Throws `unreadable`. */
-  readRows(dataset: DatasetEntry, start: number, end: number): Uint8Array;
+  /**
+   * Rows [start, end) of the first dimension, or of the given one where those before have length 1; packed, and
+   * little-endian but for members that say otherwise. Throws `unreadable`.
+   */
+  readRows(dataset: DatasetEntry, start: number, end: number, axis?: 0 | 1): Uint8Array;
   close(): void;
 }
 
@@ -39,6 +42,8 @@ export interface Member {
   offset: number;
   /** Null when the member is no plain number. */
   number: NumberType | null;
+  /** Left most significant byte first, because other members are not. */
+  isBig: boolean;
 }
 
 export function typeName(type: ElementType): string {
@@ -48,8 +53,8 @@ export function typeName(type: ElementType): string {
   return `compound{${members.join(',')}}`;
 }
 
-export function rowBytesOf({ shape, type }: DatasetEntry): number {
-  return shape.slice(1).reduce((product, size) => product * size, type.bytes);
+export function rowBytesOf({ shape, type }: DatasetEntry, axis: 0 | 1 = 0): number {
+  return shape.slice(axis + 1).reduce((product, size) => product * size, type.bytes);
 }
 
 export function absolutePath(path: string): string {

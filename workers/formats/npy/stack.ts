@@ -1,4 +1,5 @@
 import { Problem } from '../../../shared/errors/problem';
+import { stackShape } from '../stack-shape';
 import type { ArrayEntry, FoundArray } from './arrays';
 import { arrayName } from './columns';
 import { type StoredNumber, typeName } from './element-type';
@@ -14,14 +15,6 @@ export interface Stack extends StoredNumber {
 /** A frame is held whole. */
 const mostFrameBytes = 2 ** 28;
 
-/** Frame, y, x of a shape, or null. An axis of length 1 is left out: where colours, channels or a run would stand first. */
-export function stackShape(shape: readonly number[]): [frames: number, height: number, width: number] | null {
-  if (shape.length === 3) return shape as [number, number, number];
-  if (shape.length !== 4) return null;
-  const axis = [1, 3, 0, 2].find((each) => shape[each] === 1);
-  return axis === undefined ? null : (shape.filter((_, each) => each !== axis) as [number, number, number]);
-}
-
 /** The stack in an array. Throws `wrong-type` or `unsupported`. */
 export function placeStack(array: ArrayEntry): Stack {
   const { type, shape, place } = array;
@@ -33,7 +26,7 @@ export function placeStack(array: ArrayEntry): Stack {
       place,
     );
   }
-  const [frames, height, width] = sizes;
+  const { frames, height, width } = sizes;
   if (shape.some((size) => size === 0)) {
     throw new Problem(
       'wrong-type',
@@ -57,7 +50,7 @@ export function likeliestStack(found: readonly FoundArray[]): ArrayEntry | null 
   for (const each of found) {
     if (!('array' in each) || each.array.type.kind !== 'number') continue;
     const sizes = stackShape(each.array.shape);
-    const isStack = sizes?.every((size) => size >= 2) ?? false;
+    const isStack = sizes !== null && sizes.frames >= 2 && sizes.height >= 2 && sizes.width >= 2;
     if (isStack && (best === null || each.array.dataBytes > best.dataBytes)) best = each.array;
   }
   return best;
