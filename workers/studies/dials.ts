@@ -88,7 +88,7 @@ export const delayDial: DialSpec = {
   label: 'Delay',
   reason:
     'Centre of the coincidence window; left empty, the study looks for the peak and says where it found it.',
-  needs: 'bytes',
+  needs: 'pairs',
   for: 'tags',
   type: 'number',
   unit: 'ps',
@@ -104,7 +104,7 @@ export const windowDial: DialSpec = {
   label: 'Coincidence window',
   reason:
     'Full width of the window; wider keeps more pairs and more accidentals. Left empty it is four sigma of the fitted peak, which keeps 95.4 % of a Gaussian one.',
-  needs: 'bytes',
+  needs: 'pairs',
   for: 'tags',
   type: 'number',
   unit: 'ps',
@@ -120,7 +120,7 @@ export const histogramRangeDial: DialSpec = {
   label: 'Histogram half range',
   reason:
     'How far the delay histogram reaches to either side of the peak; the search for the peak looks five times as far around zero.',
-  needs: 'bytes',
+  needs: 'pairs',
   for: 'tags',
   type: 'number',
   unit: 'ns',
@@ -135,7 +135,7 @@ export const histogramBinDial: DialSpec = {
   id: 'histogram.bin',
   label: 'Histogram bin',
   reason: 'Width of a bin of the delay histogram; left empty it is a third of the sigma of the peak.',
-  needs: 'bytes',
+  needs: 'pairs',
   for: 'tags',
   type: 'number',
   unit: 'ps',
@@ -151,7 +151,7 @@ export const shiftStepDial: DialSpec = {
   label: 'Shifted-window step',
   reason:
     'Distance from the peak to the first window that counts accidentals, and between those windows; a multiple of the pump period when the pump is pulsed. Left empty it is 20 ns, or two windows or ten sigma of the peak where those are more.',
-  needs: 'bytes',
+  needs: 'pairs',
   for: 'tags',
   type: 'number',
   unit: 'ps',
@@ -167,7 +167,7 @@ export const shiftCountDial: DialSpec = {
   label: 'Shifted windows',
   reason:
     'How many shifted windows are averaged, half on either side; more make the accidentals more certain.',
-  needs: 'bytes',
+  needs: 'pairs',
   for: 'tags',
   type: 'integer',
   unit: '',
