@@ -43,8 +43,10 @@ export async function startContender(
   name: string,
   command: string,
   args: readonly string[],
+  variables: Record<string, string> = {},
 ): Promise<Contender> {
-  const child = spawn(command, args, { env: environment, stdio: ['pipe', 'pipe', 'inherit'] });
+  const env = { ...environment, ...variables };
+  const child = spawn(command, args, { env, stdio: ['pipe', 'pipe', 'inherit'] });
   const ended = new Promise<void>((resolve) => child.once('close', () => resolve()));
   const lines = createInterface({ input: child.stdout! })[Symbol.asyncIterator]();
   const reply = async (): Promise<unknown> => {

@@ -19,16 +19,22 @@ export interface BenchSettings {
   share: number;
 }
 
-/** Runs all contenders of a row on the same data, one pass of each after the other. */
-export async function measureRow(row: KernelRow, settings: BenchSettings): Promise<Finding> {
-  const { python, folder, passes, share } = settings;
+/** The invented data of a row, in a folder of their own. */
+export function makeData(row: KernelRow, settings: BenchSettings): { data: string; items: number } {
+  const { python, folder, share } = settings;
   const data = mkdtempSync(join(folder, `${row.name}-`));
   const items = even(row.items * share);
   const [kind, ...rest] = row.data;
-  const made = spawnSync(python, [`${benchFolder}/numpy/make_data.py`, kind, data, String(items), ...rest], {
-    stdio: 'inherit',
-  });
+  const script = `${benchFolder}/numpy/make_data.py`;
+  const made = spawnSync(python, [script, kind, data, String(items), ...rest], { stdio: 'inherit' });
   if (made.status !== 0) throw new Error(`The data of ${row.name} could not be made.`);
+  return { data, items };
+}
+
+/** Runs all contenders of a row on the same data, one pass of each after the other. */
+export async function measureRow(row: KernelRow, settings: BenchSettings): Promise<Finding> {
+  const { python, passes } = settings;
+  const { data, items } = makeData(row, settings);
   const contenders: Contender[] = [];
   const start = async (name: string, command: string, args: readonly string[]): Promise<Contender> => {
     const contender = await startContender(name, command, args);

@@ -1,4 +1,5 @@
 import { writeFile } from 'node:fs/promises';
+import { Session } from 'node:inspector/promises';
 import { createInterface } from 'node:readline';
 import type { OpenKernel } from './adapter';
 import { bootstrap } from './bootstrap';
@@ -28,6 +29,15 @@ function say(facts: object): void {
   process.stdout.write(`${JSON.stringify(facts)}\n`);
 }
 
+/** Follows the passes asked for from here on, loading left out; a file named by the environment gets the profile. */
+const profilePath = process.env.BENCH_PROFILE;
+const session = new Session();
+if (profilePath !== undefined) {
+  session.connect();
+  await session.post('Profiler.enable');
+  await session.post('Profiler.start');
+}
+
 say({ ready: true });
 for await (const line of createInterface({ input: process.stdin })) {
   const [verb, value = ''] = line.split(' ');
@@ -41,4 +51,9 @@ for await (const line of createInterface({ input: process.stdin })) {
     await writeFile(value, Buffer.from((await kernel.answer()).buffer));
     say({ done: true });
   }
+}
+
+if (profilePath !== undefined) {
+  const { profile } = await session.post('Profiler.stop');
+  await writeFile(profilePath, JSON.stringify(profile));
 }
