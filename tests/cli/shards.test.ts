@@ -228,6 +228,7 @@ describe('parts that do not belong together: exit 2, one sentence with the place
       [(part) => (part.tally.a.singles = new Float64Array(3)), /tally\.a\.singles/],
       [(part) => part.tally.histogram.counts.fill(Number.NaN), /tally\.histogram\.counts.*finite/],
       [(part) => part.tail.site.fill(70_000), /tail\.site/],
+      [(part) => (part.tally.sliceTick = 3), /tally\.sliceTick/],
       [(part) => (part.tally.lastTick = 2n ** 90n), /not whole at tally/],
     ];
     for (const [alter, sentence] of alterations) {
@@ -251,6 +252,7 @@ interface TagLike {
   part: number;
   tally: {
     lastTick: bigint;
+    sliceTick: number;
     a: { singles: Float64Array };
     histogram: { counts: Float64Array };
   };

@@ -29,7 +29,7 @@ export function assertWholePart(spec: TallySpec, part: unknown): asserts part is
       `Counts of version ${latest} were expected, version ${version} was found; combine with the engine that wrote them.`,
     );
   }
-  const schema = spec.kind === 'tags' ? tagPartSchema(spec, slicesOf(spec, part)) : framePartSchema(spec);
+  const schema = spec.kind === 'tags' ? tagPartSchema(spec, gridOf(spec, part)) : framePartSchema(spec);
   const parsed = schema.safeParse(part);
   if (parsed.success) return;
   const [issue] = parsed.error.issues;
@@ -66,18 +66,21 @@ function allFinite(array: Float64Array | Float32Array): boolean {
   return nothing === 0;
 }
 
-/** How many slices the ticks of a part need: it decides the lengths of most arrays. */
-function slicesOf(spec: TagSpec, part: unknown): number {
+/** The slices that the ticks of a part need, or longer ones where it says so: they decide the lengths of most arrays. */
+function gridOf(spec: TagSpec, part: unknown): SliceGrid {
   const tick = z.bigint().nullable();
-  const ticks = z.looseObject({ tally: z.looseObject({ firstTick: tick, lastTick: tick }) }).safeParse(part);
-  if (!ticks.success) return 0;
-  const { firstTick, lastTick } = ticks.data.tally;
-  const grid = new SliceGrid(spec.tickFs);
+  const read = z
+    .looseObject({ tally: z.looseObject({ firstTick: tick, lastTick: tick, sliceTick: z.int().min(1) }) })
+    .safeParse(part);
+  if (!read.success) return new SliceGrid(spec.tickFs);
+  const { firstTick, lastTick, sliceTick } = read.data.tally;
+  const grid = new SliceGrid(spec.tickFs, Math.floor(Math.log2(sliceTick)));
   if (firstTick !== null && lastTick !== null && lastTick >= firstTick) grid.cover(firstTick, lastTick);
-  return grid.count;
+  return grid;
 }
 
-function tagPartSchema(spec: TagSpec, slices: number): z.ZodType<TagPart> {
+function tagPartSchema(spec: TagSpec, grid: SliceGrid): z.ZodType<TagPart> {
+  const slices = grid.count;
   const pixelsA = spec.a.width * spec.a.height;
   const pixelsB = spec.b.width * spec.b.height;
   const border = z
@@ -124,8 +127,8 @@ function tagPartSchema(spec: TagSpec, slices: number): z.ZodType<TagPart> {
     firstTick: z.bigint().nullable(),
     lastTick: z.bigint().nullable(),
     outOfOrder: count,
-    sliceTick: count,
-    firstSlice: z.number(),
+    sliceTick: z.literal(grid.sliceTick),
+    firstSlice: z.literal(grid.first),
     slices: z.literal(slices),
     a: arm(a),
     b: arm(b),

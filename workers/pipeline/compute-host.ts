@@ -13,6 +13,13 @@ import { type InputPlatform, keyOfInput, openInput, type ReadInput } from './rea
 
 export interface ComputePlatform extends InputPlatform {
   compileKernels: CompileKernels;
+  /** The platform's own SHA-256, where it has one that takes bytes piece by piece: several times as fast. */
+  createSha256?: () => Sha256;
+}
+
+interface Sha256 {
+  update(bytes: Uint8Array): unknown;
+  digest(encoding: 'hex'): string;
 }
 
 /** Opened readers kept between tasks: opening HDF5 costs tens of milliseconds, and a file is read in many tasks. */
@@ -95,7 +102,9 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
         }
       }),
     fingerprint: (taskId, ref, onProgress) =>
-      asTask(taskId, (token) => withSource(ref, (source) => hashSource(source, token, onProgress))),
+      asTask(taskId, (token) =>
+        withSource(ref, async (source) => hashSource(source, await createHash(platform), token, onProgress)),
+      ),
     async cancel(taskId) {
       const token = tokens.get(taskId);
       if (token !== undefined) token.cancelled = true;
@@ -118,13 +127,16 @@ async function offsetOf(
   return offset;
 }
 
+async function createHash({ createSha256 }: ComputePlatform): Promise<Sha256> {
+  return createSha256 === undefined ? (await createSHA256()).init() : createSha256();
+}
+
 async function hashSource(
   source: ByteSource,
+  hash: Sha256,
   token: CancelToken,
   onProgress: OnTaskProgress,
 ): Promise<string> {
-  const hash = await createSHA256();
-  hash.init();
   const report = createReport(onProgress);
   for (let start = 0; start < source.size; start += HASH_BYTES) {
     if (token.cancelled) throw new Cancelled();

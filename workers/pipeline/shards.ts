@@ -38,8 +38,8 @@ export interface ShardRequest extends RunRequest {
  * chunks of every input, which the file alone decides, so the parts merge as the chunks of one machine would.
  *
  * Cost of a shard beside its chunks: the search for the delay over the first two million records (over all of them when
- * no peak stands out), unless the dials say delay and window; and, where a counter rolls over, one scan of what comes
- * before its chunks.
+ * no peak stands out), unless the dials say delay and window; and, where a counter rolls over, a scan of what comes
+ * before its chunks, by each of its workers.
  */
 export interface ShardEngine {
   run(request: ShardRequest, onEvent: OnRunEvent): Promise<Outcome<PartFile>>;
