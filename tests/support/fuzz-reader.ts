@@ -1,3 +1,6 @@
+import { rm, writeFile } from 'node:fs/promises';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
 import type { Block } from '../../shared/contracts/blocks';
 import type { Layout } from '../../shared/contracts/layout';
 import type { ByteSource, Reader } from '../../shared/contracts/reader';
@@ -5,6 +8,7 @@ import { Problem } from '../../shared/errors/problem';
 import { createRandom, type Random } from '../../shared/util/random';
 import { inspectSource, openReader } from '../../workers/formats/registry';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
+import { openPathSource } from '../../workers/pipeline/node-source';
 import { openBlobSource } from '../../workers/pipeline/sources';
 
 /** A good file and the layout that reads it. */
@@ -75,14 +79,35 @@ export async function fuzzReader(
 
 /** The code of the problem that opening or reading ended in, or null. */
 async function readDamaged(seed: FuzzSeed, bytes: Uint8Array, isUnknown: boolean): Promise<string | null> {
-  const source = openBlobSource({
-    name: 'damaged',
-    size: bytes.length,
-    file: new Blob([Uint8Array.from(bytes)]),
-  });
-  if (isUnknown) await problemIn(() => inspectSource(source, null, nodeEnvironment));
-  await problemIn(() => inspectSource(source, seed.layout, nodeEnvironment));
-  return problemIn(() => readTwice(source, seed.layout));
+  const open = await opener(seed.layout, bytes);
+  try {
+    if (isUnknown) await problemIn(async () => inspected(await open(), null));
+    await problemIn(async () => inspected(await open(), seed.layout));
+    return await problemIn(async () => readTwice(await open(), seed.layout));
+  } finally {
+    await rm(damagedPath, { force: true });
+  }
+}
+
+const damagedPath = join(tmpdir(), `damaged-${process.pid}`);
+
+/** The library of HDF5 reads files only, in Node; all else is read from memory. */
+async function opener(layout: Layout, bytes: Uint8Array): Promise<() => Promise<ByteSource>> {
+  const named = { name: 'damaged', size: bytes.length };
+  if (layout.format !== 'hdf5') {
+    const file = new Blob([Uint8Array.from(bytes)]);
+    return async () => openBlobSource({ ...named, file });
+  }
+  await writeFile(damagedPath, bytes);
+  return () => openPathSource({ ...named, path: damagedPath });
+}
+
+async function inspected(source: ByteSource, layout: Layout | null): Promise<void> {
+  try {
+    await inspectSource(source, layout, nodeEnvironment);
+  } finally {
+    await source.close();
+  }
 }
 
 async function problemIn(work: () => Promise<unknown>): Promise<string | null> {
@@ -99,7 +124,10 @@ async function problemIn(work: () => Promise<unknown>): Promise<string | null> {
 
 /** The end first, so that the second reading goes back. */
 async function readTwice(source: ByteSource, layout: Layout): Promise<void> {
-  const reader = await openReader(source, layout, nodeEnvironment);
+  const reader = await openReader(source, layout, nodeEnvironment).catch(async (thrown: unknown) => {
+    await source.close();
+    throw thrown;
+  });
   try {
     const { facts } = reader;
     const total = facts.kind === 'tags' ? facts.records : facts.frames;
@@ -178,9 +206,9 @@ function injure(bytes: Uint8Array, random: Random): Uint8Array {
     case 2:
       return bytes.slice(0, at);
     case 3:
-      return join(bytes.subarray(0, at + length), bytes.subarray(at));
+      return concatenate(bytes.subarray(0, at + length), bytes.subarray(at));
     case 4:
-      return join(bytes.subarray(0, at), bytes.subarray(at + length));
+      return concatenate(bytes.subarray(0, at), bytes.subarray(at + length));
     case 5:
       return writeWord(bytes, at, random);
     default:
@@ -188,7 +216,7 @@ function injure(bytes: Uint8Array, random: Random): Uint8Array {
   }
 }
 
-function join(first: Uint8Array, second: Uint8Array): Uint8Array {
+function concatenate(first: Uint8Array, second: Uint8Array): Uint8Array {
   const joined = new Uint8Array(first.length + second.length);
   joined.set(first);
   joined.set(second, first.length);
@@ -214,5 +242,7 @@ function writeDigits(bytes: Uint8Array, at: number, random: Random): Uint8Array 
   for (let k = start; k < bytes.length && k < start + 1 + random.below(4); k += 1)
     bytes[k] = 48 + random.below(10);
   const more = new TextEncoder().encode('9'.repeat(random.below(14)));
-  return random.below(2) === 0 ? bytes : join(join(bytes.slice(0, start), more), bytes.slice(start));
+  return random.below(2) === 0
+    ? bytes
+    : concatenate(concatenate(bytes.slice(0, start), more), bytes.slice(start));
 }

@@ -1,7 +1,7 @@
 import { readFile } from 'node:fs/promises';
 import type { ArrayColumn, Layout, NpyFramesLayout } from '../../../shared/contracts/layout';
 import type { FuzzSeed } from '../../support/fuzz-reader';
-import { runPython } from './python';
+import { runPython, writePython } from './python';
 import { recordsLayout, writeTags } from './record-writer';
 import { makeFolder } from './sources';
 
@@ -55,6 +55,39 @@ export async function foreignSeeds(): Promise<{ npy: FuzzSeed[]; npz: FuzzSeed[]
       npz: await Promise.all(npz.map(([name, layout]) => seed(name, layout))),
       tiff: await Promise.all(stacks.map((name) => seed(name, tiff))),
     };
+  } finally {
+    await folder.remove();
+  }
+}
+
+/** Good files of HDF5, of both kinds of file. */
+export async function hdf5Seeds(): Promise<FuzzSeed[]> {
+  const folder = await makeFolder();
+  const tags = (time: string, channel: string): Layout => ({
+    version: 1,
+    format: 'hdf5',
+    kind: 'tags',
+    time: { dataset: time },
+    channel: { dataset: channel },
+    tickFs: 1000,
+  });
+  const frames = (dataset: string): Layout => ({ version: 1, format: 'hdf5', kind: 'frames', dataset });
+  const files: [string, Layout][] = [
+    ['small-earliest', tags('/t32', '/c16')],
+    ['big-endian-latest', tags('/run/zeit', '/run/ort')],
+    ['resizable-earliest', tags('/t', '/c')],
+    ['frames-earliest', frames('/camera/shots')],
+    ['frames-plain-latest', frames('/shots')],
+  ];
+  try {
+    await writePython('write-with-h5py.py', ['h5py', 'numpy'], folder.path(''));
+    return await Promise.all(
+      files.map(async ([name, layout]) => ({
+        name,
+        bytes: new Uint8Array(await readFile(folder.path(name))),
+        layout,
+      })),
+    );
   } finally {
     await folder.remove();
   }

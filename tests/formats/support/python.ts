@@ -9,12 +9,21 @@ import type { Tags } from './sources';
 const python = '/usr/bin/python3';
 const run = promisify(execFile);
 
-/** Runs a script beside the tests and answers what it printed as JSON. Fails, never skips, where a library is missing. */
+/** Runs a script beside the tests and answers what it printed as JSON. */
 export async function runPython(
   script: string,
   modules: readonly string[],
-  ...given: string[]
+  folder: string,
 ): Promise<unknown> {
+  return JSON.parse(await writePython(script, modules, folder));
+}
+
+/** Runs a script beside the tests. Fails, never skips, where a library is missing. */
+export async function writePython(
+  script: string,
+  modules: readonly string[],
+  folder: string,
+): Promise<string> {
   try {
     await access(python);
     await run(python, ['-c', `import ${modules.join(', ')}`]);
@@ -26,8 +35,8 @@ export async function runPython(
     );
   }
   const path = new URL(`../${script}`, import.meta.url).pathname;
-  const { stdout } = await run(python, [path, ...given], { maxBuffer: 2 ** 26 });
-  return JSON.parse(stdout);
+  const { stdout } = await run(python, [path, folder], { maxBuffer: 2 ** 26 });
+  return stdout;
 }
 
 /** Lines of "time channel", as the writers hash them. */
