@@ -46,9 +46,7 @@ function groupDials(dials: readonly DialSpec[], { pairs, reading }: TurnCost): D
         {
           id: 'bytes',
           title: 'counted again when turned',
-          note: [cost, why === null ? null : `pairs not kept: ${why}`]
-            .filter((part) => part !== null)
-            .join(' · '),
+          note: [cost, why].filter((part) => part !== null).join('. '),
           dials: needing('pairs', 'bytes'),
         },
       ];

@@ -1,7 +1,6 @@
 import type { DialValues } from '../../../../shared/contracts/dial';
 import type { RunEvent, RunResult } from '../../../../shared/contracts/engine';
 import type { StudyId } from '../../../../shared/contracts/study';
-import { durationWords } from '../../../components/output/reading-words';
 import type { EngineDoor } from '../../../lib/workers/engine-door';
 import { isOtherFile } from './acquisition';
 import { currentAssignment, currentStudy, type Plan, planRun } from './bench-selectors';
@@ -11,7 +10,7 @@ import { changedDials } from './dial-history';
 import { attachPreviews } from './preview-runs';
 import { rememberHashes } from './remember-hashes';
 import { readingCost } from './run-cost';
-import { pairsWords } from './run-words';
+import { doneWords } from './run-words';
 
 /** While a hand moves a dial that counts anew, one run after it rests this long. */
 const DIAL_REST_MS = 150;
@@ -160,8 +159,7 @@ export function attachRunner(store: BenchStore, engine: EngineDoor): Runner {
       store.setState(({ saved }) => ({ saved: { ...saved, [study]: undefined } }));
     }
     const label = currentStudy(store.getState())?.label ?? study;
-    const keptPairs = pairs === undefined ? '' : `; ${pairsWords(pairs)}`;
-    say(`${label} done in ${durationWords(provenance.seconds)}${keptPairs}.`);
+    say(doneWords(label, provenance.seconds, pairs));
   };
 
   const settle = (): void => {

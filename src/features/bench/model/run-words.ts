@@ -22,10 +22,16 @@ export function stageWords({ stage, counted, recordsDone, bytesDone, bytesTotal 
   return `${stage} · ${shortCount(recordsDone)} ${counted} · ${bytesWords(bytesDone)} of ${bytesWords(bytesTotal)}`;
 }
 
-/** "5.1 M pairs kept, 46.0 MB", or why none are. */
-export function pairsWords(pairs: PairsKept): string {
-  if (pairs.kept === null) return `pairs not kept: ${pairs.why}`;
-  return `${shortCount(pairs.kept)} pairs kept, ${bytesWords(pairs.bytes)}`;
+/** "5.1 M pairs kept, 46.0 MB"; null where none are, which the engine says in a sentence of its own. */
+export function pairsWords(pairs: PairsKept): string | null {
+  return pairs.kept === null ? null : `${shortCount(pairs.kept)} pairs kept, ${bytesWords(pairs.bytes)}`;
+}
+
+/** What the job log says of a run that is done. */
+export function doneWords(study: string, seconds: number, pairs: PairsKept | undefined): string {
+  const done = `${study} done in ${durationWords(seconds)}`;
+  if (pairs === undefined) return `${done}.`;
+  return pairs.kept === null ? `${done}. ${pairs.why}` : `${done}; ${pairsWords(pairs)}.`;
 }
 
 /** "41.2 MB, about 3 s": what reading the inputs again takes. */

@@ -268,9 +268,9 @@ describe('dials while the hand moves', () => {
   });
 
   it('say what they cost and read again where no pairs were kept', async () => {
-    const why = 'they need 900 MB, and 512 MB are set aside';
+    const why = 'The pairs take about 900 MiB, more than the 512 MiB set for them.';
     const { engine, store } = await benchWithDials({ kept: null, why });
-    expect(store.getState().log.at(-1)?.text).toBe(`Delay done in 1.5 s; pairs not kept: ${why}.`);
+    expect(store.getState().log.at(-1)?.text).toBe(`Delay done in 1.5 s. ${why}`);
     store.getState().turn({ window: 100 });
     expect(engine.runs).toHaveLength(1);
     await vi.advanceTimersByTimeAsync(200);
