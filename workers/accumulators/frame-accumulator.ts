@@ -1,8 +1,8 @@
 import type { FrameBlock } from '../../shared/contracts/blocks';
 import type { FrameSpec, FrameTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
+import { borrowFrameMaps, returnFrameMaps } from '../kernels/frame-loans';
 import { type FrameMaps, type FrameShape, ReadableFrameMaps } from '../kernels/frame-maps';
-import { borrowFrameMaps, returnFrameMaps } from '../kernels/frame-maps-wasm';
 import type { FrameWasm } from '../kernels/frame-wasm';
 import {
   assertFramePart,

@@ -1,20 +1,16 @@
 import type { PixelArray } from '../../shared/contracts/blocks';
+import { CELL, pairLimit, placeArrays, SKEW, SQUARES } from './frame-arrays-wasm';
 import type { DifferenceSums, FrameLight, FrameMaps, FrameShape, PixelSums } from './frame-maps';
 import { normalisation } from './frame-sums';
-import { compiledLength, digitReversed, twiddles } from './frame-transform-tables';
+import { compiledLength } from './frame-transform-tables';
 import type { FrameWasm } from './frame-wasm';
 
-/** A value of a column of transforms: {re, im} of four f32 (two f64) columns. */
-const CELL = 32;
-/** Re^2 - Im^2, Re Im, |F|^2 of four columns in f32, and in f64. */
-const SQUARES = 48;
-/** Distances that are powers of two would put the same row of all frames into the same cache set. */
-const SKEW = 128;
 /** Differences summed in f32 before they go to f64. */
 const FLUSH = 64;
 
 /**
- * Compiled twin of `ReadableFrameMaps`. Frames gather in slots; a full batch is summed and transformed at once.
+ * Compiled twin of `ReadableFrameMaps`. Frames gather in slots; a full batch is summed and transformed at once. A batch in
+ * which every frame has few lit pixels (`pairLimit`), all small whole numbers, is counted pair by pair instead, exactly.
  *
  * Precision. Differences are exact: slots are f32 where that holds every value (8- and 16-bit pixels, f32 pixels, whole
  * offsets), else f64. The transform is f32, up to 64 squares are added in f32, all further sums and the one inverse
@@ -44,6 +40,15 @@ export class CompiledFrameMaps implements FrameMaps {
   #fresh = false;
   /** Differences in the f32 sums. */
   #unflushed = 0;
+  /** Squares of spectra wait for the inverse transform. */
+  #transformed = false;
+  /** Lit pixels of the slots, and the most of them for which pairs are counted. */
+  readonly #lit: { count: number; squares: number; ones: number }[];
+  readonly #limit: number;
+  /** No bin of the pair maps holds more. */
+  #mostInPairs = 0;
+  /** The maps were handed out and are to be cleared before they grow. */
+  #closed = false;
 
   constructor(wasm: FrameWasm, shape: FrameShape) {
     const { width, height } = shape;
@@ -58,6 +63,8 @@ export class CompiledFrameMaps implements FrameMaps {
     this.#stripBytes = (this.#padWidth / 2) * CELL + SKEW / 2;
     this.#frameBytes = this.#strips * this.#stripBytes;
     this.#batch = Math.max(2, Math.min(8, 2 * Math.floor(2 ** 19 / (width * height))));
+    this.#lit = Array.from({ length: this.#batch + 1 }, () => ({ count: 0, squares: 0, ones: 0 }));
+    this.#limit = pairLimit(this.#padWidth, this.#padHeight);
     this.#double = shape.normalised || !Number.isInteger(shape.offset);
     this.#at = placeArrays(wasm, {
       shape,
@@ -67,6 +74,7 @@ export class CompiledFrameMaps implements FrameMaps {
       strips: this.#strips,
       frameBytes: this.#frameBytes,
       batch: this.#batch,
+      limit: this.#limit,
     });
   }
 
@@ -137,6 +145,19 @@ export class CompiledFrameMaps implements FrameMaps {
   close(): DifferenceSums {
     this.#run();
     this.#flush();
+    this.#clearClosed();
+    this.#flushPairs();
+    if (this.#transformed) this.#invert();
+    this.#closed = true;
+    const { width, height } = this.#shape;
+    const cells = (2 * width - 1) * (2 * height - 1);
+    const diagonal = new Float64Array(width * height);
+    this.#moveImage(this.#at.diagonal, diagonal);
+    const { plus, minus } = this.#at;
+    return { plus: this.#wasm.f64(plus, cells), minus: this.#wasm.f64(minus, cells), diagonal };
+  }
+
+  #invert(): void {
     const { width, height } = this.#shape;
     const at = this.#at;
     // Spectra of pairs come doubled, squares fourfold; 1/2 is the estimator's.
@@ -157,11 +178,8 @@ export class CompiledFrameMaps implements FrameMaps {
       at.minus,
       scale,
     );
-    const cells = (2 * width - 1) * (2 * height - 1);
     this.#wasm.f64(at.totals, this.#strips * this.#padWidth * 12).fill(0);
-    const diagonal = new Float64Array(width * height);
-    this.#moveImage(at.diagonal, diagonal);
-    return { plus: this.#wasm.f64(at.plus, cells), minus: this.#wasm.f64(at.minus, cells), diagonal };
+    this.#transformed = false;
   }
 
   drain(into: PixelSums): void {
@@ -207,63 +225,161 @@ export class CompiledFrameMaps implements FrameMaps {
     const { call } = this.#wasm;
     const at = this.#at;
     const count = this.#filled - 1;
+    const listed = count > 0 && !this.#double && this.#list(count);
     const sum = counted ? at.sum : at.spare;
     const sumSquares = counted ? at.sumSquares : at.spare;
-    call.addSums(
-      this.#double ? 1 : 0,
-      at.slots,
-      at.slotBytes,
-      this.#fresh ? 0 : 1,
-      count,
-      this.#columns,
-      height,
-      sum,
-      sumSquares,
-      at.diagonal,
-      at.across,
-      at.down,
-      at.downBytes,
-      at.scratch,
-    );
+    if (listed) this.#addPairs(count, sum, sumSquares);
+    else
+      call.addSums(
+        this.#double ? 1 : 0,
+        at.slots,
+        at.slotBytes,
+        this.#fresh ? 0 : 1,
+        count,
+        this.#columns,
+        height,
+        sum,
+        sumSquares,
+        at.diagonal,
+        at.across,
+        at.down,
+        at.downBytes,
+        at.scratch,
+      );
     if (count > 0) {
       call.addOuters(at.across, count, this.#columns, at.jointX);
       call.addOuters(at.down, count, at.downBytes / 8, at.jointY);
-      const transform = this.#double ? call.transformColumnsF64 : call.transformColumnsF32;
-      for (let k = 0; k < count; k += 2) {
-        const second = this.#slot(k + 1);
-        transform(
-          this.#slot(k),
-          second,
-          // An odd difference out has the difference of a frame with itself beside it.
-          k + 1 < count ? this.#slot(k + 2) : second,
-          this.#columns,
-          this.#padHeight,
-          at.twiddlesY,
-          at.positionsY,
-          at.work,
-          at.half + k * this.#frameBytes,
-          this.#stripBytes,
-          this.#frameBytes,
-        );
-      }
-      call.addSquares(
-        at.half,
-        count,
-        this.#strips,
-        this.#padWidth,
-        at.twiddlesX,
-        at.work,
-        at.squares,
-        this.#stripBytes,
-        this.#frameBytes,
-      );
-      this.#unflushed += count;
-      if (this.#unflushed >= FLUSH) this.#flush();
+      if (!listed) this.#addTransforms(count);
       const bytes = this.#columns * height * (this.#double ? 8 : 4);
       this.#wasm.u8(this.#slot(0), bytes).set(this.#wasm.u8(this.#slot(count), bytes));
     }
     this.#filled = 1;
     this.#fresh = false;
+  }
+
+  /** Lists the lit pixels of all slots; false where one has too many, or another number than a small whole one. */
+  #list(count: number): boolean {
+    const { height } = this.#shape;
+    const { call } = this.#wasm;
+    const { lists, listBytes, pad, scratch, slots, slotBytes } = this.#at;
+    for (let k = 0; k <= count; k++) {
+      const lit = this.#lit[k]!;
+      const slot = slots + k * slotBytes;
+      lit.count = call.listLit(
+        slot,
+        this.#columns,
+        height,
+        pad,
+        this.#limit,
+        lists + k * listBytes,
+        listBytes / 3,
+        scratch,
+      );
+      if (lit.count < 0) return false;
+      lit.squares = this.#wasm.f64(scratch, 1)[0]!;
+      if (mostAdded(lit.squares) > MOST_IN_PAIRS) return false;
+      lit.ones = this.#wasm.i32(scratch, 3)[2]!;
+    }
+    return true;
+  }
+
+  #addPairs(count: number, sum: number, sumSquares: number): void {
+    const { call } = this.#wasm;
+    const at = this.#at;
+    this.#wasm.u8(at.across, count * this.#columns * 8).fill(0);
+    this.#wasm.u8(at.down, count * at.downBytes).fill(0);
+    const span = at.listBytes / 3;
+    for (let k = 0; k <= count; k++) {
+      const list = at.lists + k * at.listBytes;
+      const lit = this.#lit[k]!;
+      const most = mostAdded(Math.max(lit.squares, this.#lit[k + 1]?.squares ?? 0));
+      if (this.#mostInPairs + most > MOST_IN_PAIRS) this.#flushPairs();
+      this.#mostInPairs += most;
+      call.addOwnPairs(list, lit.count, span, k === 0 || k === count ? 1 : 2, lit.ones, at.pairs, at.middle);
+      if (k === count) break;
+      const next = this.#lit[k + 1]!;
+      call.takeCrossPairs(
+        list,
+        lit.count,
+        list + at.listBytes,
+        next.count,
+        span,
+        lit.ones & next.ones,
+        at.pairs,
+        at.middle,
+      );
+      call.addListSums(
+        list,
+        lit.count,
+        list + at.listBytes,
+        next.count,
+        span,
+        this.#slot(k),
+        k === 0 && this.#fresh ? 1 : 0,
+        this.#columns,
+        sum,
+        sumSquares,
+        at.diagonal,
+        at.across + k * this.#columns * 8,
+        at.down + k * at.downBytes,
+      );
+    }
+  }
+
+  #flushPairs(): void {
+    if (this.#mostInPairs === 0) return;
+    const { width, height } = this.#shape;
+    const { pairs, middle, pairsBytes, pad, plus, minus } = this.#at;
+    this.#clearClosed();
+    this.#wasm.call.flushPairs(pairs, middle, pairsBytes, width, height, pad, plus, minus);
+    this.#mostInPairs = 0;
+  }
+
+  /** What `close` handed out is added to from now on. */
+  #clearClosed(): void {
+    if (!this.#closed) return;
+    const { width, height } = this.#shape;
+    const cells = (2 * width - 1) * (2 * height - 1);
+    this.#wasm.f64(this.#at.plus, cells).fill(0);
+    this.#wasm.f64(this.#at.minus, cells).fill(0);
+    this.#closed = false;
+  }
+
+  #addTransforms(count: number): void {
+    const { call } = this.#wasm;
+    const at = this.#at;
+    const transform = this.#double ? call.transformColumnsF64 : call.transformColumnsF32;
+    for (let k = 0; k < count; k += 2) {
+      const second = this.#slot(k + 1);
+      transform(
+        this.#slot(k),
+        second,
+        // An odd difference out has the difference of a frame with itself beside it.
+        k + 1 < count ? this.#slot(k + 2) : second,
+        this.#columns,
+        this.#padHeight,
+        at.twiddlesY,
+        at.positionsY,
+        at.work,
+        at.half + k * this.#frameBytes,
+        this.#stripBytes,
+        this.#frameBytes,
+      );
+    }
+    call.addSquares(
+      at.half,
+      count,
+      this.#strips,
+      this.#padWidth,
+      at.twiddlesX,
+      at.work,
+      at.squares,
+      this.#stripBytes,
+      this.#frameBytes,
+    );
+    this.#unflushed += count;
+    if (this.#unflushed >= FLUSH) this.#flush();
+    this.#transformed = true;
   }
 
   #flush(): void {
@@ -305,112 +421,12 @@ export class CompiledFrameMaps implements FrameMaps {
   }
 }
 
-interface Sizes {
-  shape: FrameShape;
-  columns: number;
-  padWidth: number;
-  padHeight: number;
-  strips: number;
-  frameBytes: number;
-  batch: number;
-}
+/** What a bin of i32 may hold. */
+const MOST_IN_PAIRS = 2 ** 31 - 1;
 
-/** Places every array and fills the tables. What `release` gave back is not zero, so all that must be is cleared. */
-function placeArrays(wasm: FrameWasm, sizes: Sizes) {
-  const { shape, columns, padWidth, padHeight, strips, frameBytes, batch } = sizes;
-  const { width, height } = shape;
-  const from = wasm.mark;
-  const image = columns * height;
-  const downBytes = Math.ceil(height / 4) * 32;
-  // Rows below the image are read as zeros up to half the padded height.
-  const slotBytes = (padHeight / 2) * columns * 8 + SKEW;
-  const cells = (2 * width - 1) * (2 * height - 1);
-  const at = {
-    scratch: wasm.place(16 * batch),
-    raw: wasm.place(width * height * 8 + 64),
-    mask: wasm.place(4 * image),
-    slots: wasm.place((batch + 1) * slotBytes),
-    slotBytes,
-    sum: wasm.place(8 * image),
-    sumSquares: wasm.place(8 * image),
-    spare: wasm.place(8 * image),
-    diagonal: wasm.place(8 * image),
-    across: wasm.place(batch * columns * 8),
-    down: wasm.place(batch * downBytes),
-    downBytes,
-    jointX: wasm.place(columns * columns * 8),
-    jointY: wasm.place((downBytes / 8) ** 2 * 8),
-    twiddlesX: wasm.place(16 * padWidth),
-    twiddlesY: wasm.place(16 * padHeight),
-    twiddlesX64: wasm.place(32 * padWidth),
-    twiddlesY64: wasm.place(32 * padHeight),
-    positionsX: wasm.place(4 * padWidth),
-    positionsY: wasm.place(4 * padHeight),
-    work: wasm.place(Math.max(padWidth, padHeight) * CELL),
-    half: wasm.place((batch + 1) * frameBytes),
-    squares: wasm.place(strips * padWidth * SQUARES),
-    totals: wasm.place(strips * padWidth * 2 * SQUARES),
-    field: wasm.place((padWidth / 2) * padHeight * CELL),
-    plus: wasm.place(8 * cells),
-    minus: wasm.place(8 * cells),
-  };
-  wasm.u8(from, wasm.mark - from).fill(0);
-  const mask = wasm.i32(at.mask, image);
-  for (let y = 0; y < height; y++) {
-    for (let x = 0; x < width; x++) mask[y * columns + x] = shape.masked[y * width + x] === 0 ? -1 : 0;
-  }
-  for (const [single, double, positions, n] of [
-    [at.twiddlesX, at.twiddlesX64, at.positionsX, padWidth],
-    [at.twiddlesY, at.twiddlesY64, at.positionsY, padHeight],
-  ] as const) {
-    const table = twiddles(n);
-    wasm.f32(single, table.length).set(table);
-    wasm.f64(double, table.length).set(table);
-    const places = wasm.u32(positions, n);
-    for (let k = 0; k < n; k++) places[k] = CELL * digitReversed(k, n);
-  }
-  return at;
-}
-
-interface Loan {
-  key: string;
-  maps: CompiledFrameMaps;
-  /** Null: nobody uses them. */
-  handBack: (() => void) | null;
-}
-
-/** One set of arrays a module: they are large, and a worker counts one range at a time. */
-const loans = new WeakMap<FrameWasm, Loan>();
-
-/**
- * The module's frame maps, empty. Whoever had them is asked by its `handBack` to close and drain them first, and must
- * then forget them.
- */
-export function borrowFrameMaps(wasm: FrameWasm, shape: FrameShape, handBack: () => void): CompiledFrameMaps {
-  const before = loans.get(wasm);
-  before?.handBack?.();
-  const key = [
-    shape.width,
-    shape.height,
-    shape.offset,
-    shape.threshold,
-    shape.normalised,
-    shape.masked,
-  ].join();
-  let maps = before?.maps;
-  if (maps === undefined || before?.key !== key) {
-    maps?.dispose();
-    maps = new CompiledFrameMaps(wasm, shape);
-  }
-  maps.pause();
-  loans.set(wasm, { key, maps, handBack });
-  return maps;
-}
-
-/** To be called by a borrower that has closed and drained the maps of its own accord. */
-export function returnFrameMaps(wasm: FrameWasm): void {
-  const loan = loans.get(wasm);
-  if (loan !== undefined) loan.handBack = null;
+/** By how much a frame changes a bin at most: 4 sum x(i) x(j) of its own and 2 sum x(i) y(j), each at most the squares. */
+function mostAdded(squares: number): number {
+  return 6 * squares;
 }
 
 /** Types from this one on need f64. */

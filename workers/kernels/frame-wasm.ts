@@ -41,6 +41,60 @@ export interface FrameExports {
     downBytes: number,
     scratch: number,
   ): void;
+  listLit(
+    slot: number,
+    columns: number,
+    rows: number,
+    pad: number,
+    limit: number,
+    list: number,
+    span: number,
+    squares: number,
+  ): number;
+  addOwnPairs(
+    list: number,
+    n: number,
+    span: number,
+    weight: number,
+    ones: number,
+    plus: number,
+    middle: number,
+  ): void;
+  takeCrossPairs(
+    a: number,
+    countA: number,
+    b: number,
+    countB: number,
+    span: number,
+    ones: number,
+    plus: number,
+    middle: number,
+  ): void;
+  addListSums(
+    now: number,
+    countNow: number,
+    next: number,
+    countNext: number,
+    span: number,
+    slot: number,
+    fresh: number,
+    columns: number,
+    sum: number,
+    sumSquares: number,
+    diagonal: number,
+    across: number,
+    down: number,
+  ): void;
+  flushPairs(
+    pairs: number,
+    middle: number,
+    pairsBytes: number,
+    width: number,
+    height: number,
+    pad: number,
+    plus: number,
+    minus: number,
+  ): void;
   addOuters(vectors: number, count: number, n: number, joint: number): void;
   transformColumnsF32: TransformColumns;
   transformColumnsF64: TransformColumns;

@@ -14,6 +14,7 @@ import {
   openButterfly,
 } from './frames-fft';
 
+export { addListSums, addOwnPairs, flushPairs, listLit, takeCrossPairs } from './frames-pairs';
 export { addOuters, addSums, prepareFrame, scaleFrame } from './frames-pixels';
 export { resampleMaps } from './frames-resample';
 
@@ -184,7 +185,7 @@ export function flushSquares(sums: usize, totals: usize, n: i32): void {
 
 /**
  * Both maps from their summed squares, by one inverse transform in f64: rows ky of S + i Q and S - i Q along x, S the
- * spectrum of the sum map and Q that of the difference map, then columns along y, two at a time. Writes
+ * spectrum of the sum map and Q that of the difference map, then columns along y, two at a time. Adds to
  * plus[(2H-1)(2W-1)] and minus (lag (0, 0) in the middle, mean of d and -d), both times `scale`.
  */
 export function invertSquares(
@@ -251,9 +252,9 @@ export function invertSquares(
       const value = load<f64>(field + <usize>(x >> 1) * columnBytes + (<usize>(x & 1) << 3) + rowPlus, 16);
       const one = load<f64>(field + <usize>(there >> 1) * columnBytes + (<usize>(there & 1) << 3) + rowThere);
       const other = load<f64>(field + <usize>(back >> 1) * columnBytes + (<usize>(back & 1) << 3) + rowBack);
-      store<f64>(plus + to, scale * value);
+      store<f64>(plus + to, load<f64>(plus + to) + scale * value);
       // Equal but for rounding, and the map is to be symmetric to the last bit.
-      store<f64>(minus + to, scale * 0.5 * (one + other));
+      store<f64>(minus + to, load<f64>(minus + to) + scale * 0.5 * (one + other));
       to += 8;
     }
   }

@@ -1,8 +1,9 @@
 import { describe, expect, it } from 'vitest';
 import type { PixelArray } from '../../../../shared/contracts/blocks';
 import { createRandom } from '../../../../shared/util/random';
+import { borrowFrameMaps } from '../../../../workers/kernels/frame-loans';
 import { type FrameMaps, type FrameShape, ReadableFrameMaps } from '../../../../workers/kernels/frame-maps';
-import { borrowFrameMaps, CompiledFrameMaps } from '../../../../workers/kernels/frame-maps-wasm';
+import { CompiledFrameMaps } from '../../../../workers/kernels/frame-maps-wasm';
 import type { FrameExports } from '../../../../workers/kernels/frame-wasm';
 import { instantiateWasm } from '../../../../workers/kernels/wasm-module';
 import { compileKernels } from '../../../../workers/pipeline/kernels-node';
@@ -80,6 +81,36 @@ describe('compiled frame maps', () => {
     [70, 5, 7],
   ])('are those of the readable twin: %i x %i, %i frames', (width, height, frames) => {
     expectTwins(shapeOf(width, height), fill(new Uint16Array(frames * width * height), 4000), frames);
+  });
+
+  it.each([
+    [1, 0],
+    [3, 0],
+    [1, 0.4],
+  ])('count pairs where few pixels are lit: up to %i, dense in %f of the frames', (most, dense) => {
+    const shape = shapeOf(40, 30);
+    const random = createRandom(9);
+    const pixels = new Uint16Array(50 * 1200);
+    for (let k = 0; k < 50; k++) {
+      const lit = random.uniform() < dense ? 600 : 25;
+      for (let i = 0; i < lit; i++) pixels[k * 1200 + random.below(1200)] = 1 + random.below(most);
+    }
+    expectTwins(shape, pixels, 50);
+  });
+
+  it('count pairs exactly, and without overflow', () => {
+    const shape = shapeOf(16, 16);
+    const pixels = new Uint16Array(40 * 256);
+    for (let k = 0; k < 40; k++) for (let i = 0; i < 6; i++) pixels[k * 256 + 40 * i + k] = 4095 - k;
+    const mark = wasm.mark;
+    const got = sumsOf(new CompiledFrameMaps(wasm, shape), shape, pixels, 40);
+    wasm.release(mark);
+    const wanted = sumsOf(new ReadableFrameMaps(shape), shape, pixels, 40);
+    // Six pixels of 4000 squared over 40 frames do not fit 32 bits.
+    expect(Math.max(...wanted.minus)).toBeGreaterThan(2 ** 31);
+    wanted.minus.forEach((v, i) => {
+      expect(got.minus[i]).toBe(Math.round(2 * v) / 2 + 0);
+    });
   });
 
   it('keep small fluctuations of large numbers', () => {
