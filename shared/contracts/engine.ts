@@ -65,6 +65,8 @@ export interface RunRequest {
    * is. Where bytes would have to be read the answer is a problem `needs-bytes`.
    */
   quick?: boolean;
+  /** False where nobody would see a partial answer: finishing one costs up to a tenth of the reading. Left out: true. */
+  looks?: boolean;
 }
 
 /** One entry a file: the files of a sequence follow each other under one name, a companion comes last. */

@@ -102,7 +102,7 @@ async function runStudy(job: Job, request: RunRequest, known: Known): Promise<Ru
     seed: request.seed,
     partial,
   });
-  const look = createLook((tallies, fraction) => {
+  const look = createLook(request.looks !== false, (tallies, fraction) => {
     job.emit({ kind: 'partial', jobId: job.id, output: study.finish(finish(tallies, true)), fraction });
   });
   const tallies = await countInputs(
@@ -245,11 +245,14 @@ function countedInputs(
 }
 
 /** Looks keep a distance of several times what the last one cost. */
-function createLook(show: (tallies: Map<string, Tally>, fraction: number) => void): {
+function createLook(
+  wanted: boolean,
+  show: (tallies: Map<string, Tally>, fraction: number) => void,
+): {
   isWanted(): boolean;
   show(tallies: Map<string, Tally>, fraction: number): void;
 } {
-  let notBefore = 0;
+  let notBefore = wanted ? 0 : Number.POSITIVE_INFINITY;
   return {
     isWanted: () => performance.now() >= notBefore,
     show(tallies, fraction) {

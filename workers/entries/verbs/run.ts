@@ -44,7 +44,7 @@ export async function run(
   const { engine } = node;
   const inputs: Record<string, RunInput> = {};
   for (const [name, path] of files) inputs[name] = await prepareInput(preset, name, path, engine, out);
-  const request: RunRequest = { jobId: 'run', study: preset.study, inputs, dials, seed };
+  const request: RunRequest = { jobId: 'run', study: preset.study, inputs, dials, seed, looks: false };
   if (shard !== null) return runShard({ ...request, preset: preset.name, shard }, values, node, out);
   const line = createProgressLine();
   const outcome = await engine.run(request, (event) => line.show(event));
