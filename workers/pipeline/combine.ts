@@ -93,8 +93,8 @@ async function mergePart(countings: readonly Counting[], place: string, file: Pa
   }
 }
 
-function studyInputOf({ layout, detector, plane, facts }: PartInput): StudyInput {
-  return { layout, detector, plane, facts };
+function studyInputOf({ layout, detector, plane, facts, clock }: PartInput): StudyInput {
+  return { layout, detector, plane, facts, ...(clock === undefined ? {} : { clock }) };
 }
 
 /** Shards 1 to n, each once. */
@@ -159,6 +159,7 @@ function assertSameRun(first: GivenPart, other: GivenPart): void {
       [`layout ${of}`, [input.layout, input.facts], [twin.layout, twin.facts]],
       [`detector map ${of}`, input.detector, twin.detector],
       [`plane ${of}`, input.plane, twin.plane],
+      [`clock ${of}`, input.clock ?? null, twin.clock ?? null],
       [`delay and window ${of}`, [input.chosen, input.spec], [twin.chosen, twin.spec]],
     );
   });

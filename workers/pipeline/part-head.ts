@@ -10,6 +10,21 @@ const hex = z.string().regex(/^[0-9a-f]{64}$/);
 const count = z.int().min(0);
 const side = z.int().min(1).max(65536);
 
+const estimate = z.strictObject({ value: z.number(), sigma: z.number() });
+const clockSchema = z.strictObject({
+  offset: estimate,
+  drift: estimate,
+  line: z
+    .strictObject({
+      stretches: count,
+      found: count,
+      residualPs: z.number(),
+      chi2PerDof: z.number(),
+      peakSigmaPs: z.number(),
+    })
+    .nullable(),
+});
+
 const factsSchema = z.discriminatedUnion('kind', [
   z.strictObject({
     kind: z.literal('tags'),
@@ -46,6 +61,7 @@ const partInputSchema = z.strictObject({
   detector: detectorSchema,
   plane: planeSchema.nullable(),
   facts: factsSchema,
+  clock: clockSchema.optional(),
   chosen: z.record(z.string(), z.number()),
   /** SHA-256 of the specification counted with. */
   spec: hex,
