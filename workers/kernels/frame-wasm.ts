@@ -95,6 +95,26 @@ export interface FrameExports {
     plus: number,
     minus: number,
   ): void;
+  packDifferences(rows: number, count: number, n: number, panels: number): void;
+  addJoint(panels: number, count: number, n: number, joint: number): void;
+  addOwnJoint(
+    list: number,
+    count: number,
+    span: number,
+    weight: number,
+    ones: number,
+    joint: number,
+    n: number,
+  ): void;
+  takeCrossJoint(
+    a: number,
+    countA: number,
+    b: number,
+    countB: number,
+    span: number,
+    joint: number,
+    n: number,
+  ): void;
   addOuters(vectors: number, count: number, n: number, joint: number): void;
   transformColumnsF32: TransformColumns;
   transformColumnsF64: TransformColumns;
