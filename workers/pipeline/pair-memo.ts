@@ -2,6 +2,14 @@ import type { PairsKept } from '../../shared/contracts/engine';
 import type { TagSpec, TagTally } from '../../shared/contracts/tally';
 import type { PairCache } from '../accumulators/pair-cache';
 import { type BytesKey, isSameBytes } from './bytes-key';
+import { SEARCH_RECORDS } from './chunks';
+
+interface Entry {
+  key: BytesKey;
+  cache: PairCache;
+  /** The same pairs, those of the records alone in which the delay is looked for. */
+  first: PairCache | null;
+}
 
 /**
  * Pairs kept of the last acquisitions, within one budget; the oldest go first. Tallies are counted from them again
@@ -10,7 +18,7 @@ import { type BytesKey, isSameBytes } from './bytes-key';
 export class PairMemo {
   /** 0: nothing is kept. */
   readonly limitBytes: number;
-  #entries: { key: BytesKey; cache: PairCache }[] = [];
+  #entries: Entry[] = [];
   #refusals: { key: BytesKey; why: string }[] = [];
 
   constructor(limitBytes: number) {
@@ -20,7 +28,7 @@ export class PairMemo {
   /** The tally that counting the bytes would give; null when no kept pairs tell. */
   recount(key: BytesKey, spec: TagSpec): TagTally | null {
     for (const entry of this.#entries) {
-      const tally = isSameBytes(entry.key, key) ? entry.cache.recount(spec) : null;
+      const tally = cacheFor(entry, key)?.recount(spec) ?? null;
       if (tally === null) continue;
       this.#entries = [...this.#entries.filter((other) => other !== entry), entry];
       return tally;
@@ -28,12 +36,12 @@ export class PairMemo {
     return null;
   }
 
-  keep(key: BytesKey, cache: PairCache): void {
+  keep(key: BytesKey, cache: PairCache, first: PairCache | null = null): void {
     this.#entries = this.#entries.filter(
       (entry) => !isSameBytes(entry.key, key) || !cache.replaces(entry.cache),
     );
     this.makeRoom(cache.bytes);
-    this.#entries.push({ key, cache });
+    this.#entries.push({ key, cache, first });
     this.#refusals = this.#refusals.filter((entry) => !isSameBytes(entry.key, key));
   }
 
@@ -59,4 +67,9 @@ export class PairMemo {
       'Its pairs gave way to those of acquisitions opened later; a run that reads it keeps them again.';
     return { kept: null, why: this.limitBytes > 0 ? why : 'Keeping pairs is switched off.' };
   }
+}
+
+function cacheFor({ key, cache, first }: Entry, wanted: BytesKey): PairCache | null {
+  if (isSameBytes(key, wanted)) return cache;
+  return isSameBytes({ ...key, range: { start: 0, end: SEARCH_RECORDS } }, wanted) ? first : null;
 }
