@@ -1,7 +1,7 @@
 import type { ByteSource } from '../../../shared/contracts/reader';
 import { Problem } from '../../../shared/errors/problem';
 import { type ArrayBytes, openEntry, plainBytes } from './array-bytes';
-import { type ArrayHeader, assertWhole, hasMagic, readHeader } from './header';
+import { type ArrayHeader, assertWhole, hasMagic, isCutMagic, readHeader } from './header';
 import { readZipDirectory, type ZipEntry } from './zip-directory';
 
 /** An array whose header was read and whose bytes are there, as far as can be told without unpacking. */
@@ -57,12 +57,6 @@ export async function openArrayFile(source: ByteSource): Promise<ArrayFile> {
       );
     },
   };
-}
-
-/** A file so short that only part of the magic is there. */
-export function isCutMagic(head: Uint8Array): boolean {
-  const magic = [0x93, 0x4e, 0x55, 0x4d, 0x50, 0x59];
-  return head.length >= 3 && head.length < magic.length && head.every((byte, k) => byte === magic[k]);
 }
 
 async function readArray(

@@ -4,10 +4,10 @@ import type { ByteSource, Format, Reader } from '../../../shared/contracts/reade
 import { Problem } from '../../../shared/errors/problem';
 import { summariseFrames } from '../frame-summary';
 import { summariseTags } from '../tag-summary';
-import { type ArrayFile, type FoundArray, isCutMagic, openArrayFile } from './arrays';
+import { type ArrayFile, type FoundArray, openArrayFile } from './arrays';
 import { typeName } from './element-type';
 import { openFrames } from './frames-reader';
-import { hasMagic } from './header';
+import { hasMagic, isCutMagic } from './header';
 import { proposeNpy } from './propose';
 import { placeStack } from './stack';
 import { countPasses } from './strided-frames';

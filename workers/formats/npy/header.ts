@@ -9,6 +9,11 @@ export function hasMagic(head: Uint8Array): boolean {
   return magic.every((byte, at) => head[at] === byte);
 }
 
+/** A file so short that only part of the magic is there. */
+export function isCutMagic(head: Uint8Array): boolean {
+  return head.length >= 3 && head.length < magic.length && head.every((byte, k) => byte === magic[k]);
+}
+
 export interface ArrayHeader {
   shape: number[];
   /** First index fastest, as Fortran and MATLAB store. */

@@ -50,16 +50,13 @@ export function parseTiffHead(head: Uint8Array): TiffShape | null {
 /** Whether a file cut within its head began as a TIFF. */
 export function isCutTiffHead(head: Uint8Array): boolean {
   const starts = [
-    [0x49, 0x49, 0x2a, 0, 0xff],
-    [0x4d, 0x4d, 0, 0x2a, 0xff],
-    [0x49, 0x49, 0x2b, 0, 8, 0, 0, 0],
-    [0x4d, 0x4d, 0, 0x2b, 0, 8, 0, 0],
+    [0x49, 0x49, 0x2a, 0],
+    [0x4d, 0x4d, 0, 0x2a],
+    [0x49, 0x49, 0x2b, 0],
+    [0x4d, 0x4d, 0, 0x2b],
   ];
-  return (
-    head.length >= 4 &&
-    head.length < 16 &&
-    starts.some((start) => start.slice(0, 4).every((byte, k) => head[k] === byte))
-  );
+  const isStart = starts.some((start) => start.every((byte, k) => head[k] === byte));
+  return isStart && head.length < 16;
 }
 
 export function viewOf(bytes: Uint8Array): DataView {
