@@ -1,16 +1,23 @@
+import { isDeepStrictEqual } from 'node:util';
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
+import type { Block } from '../../shared/contracts/blocks';
 import type { RecordsLayout } from '../../shared/contracts/layout';
 import { tickSpanToSeconds } from '../../shared/units/ticks';
+import { createRandom } from '../../shared/util/random';
 import { compileDecode } from '../../workers/formats/records/decode-fast';
 import { compileGeneralDecode } from '../../workers/formats/records/decode-general';
 import { createDecodeState } from '../../workers/formats/records/decode-state';
 import { planRecords } from '../../workers/formats/records/plan';
 import { openRecords } from '../../workers/formats/records/reader';
+import { createRecordDecoding } from '../../workers/kernels/tag-decode';
+import { tagKernels } from '../unit/workers/kernels/tag-kernels-compiled';
 import { place, readReference, recordsLayout, writeRecords, writeTags } from './support/record-writer';
 import { memorySource, never, problemOf, readTags } from './support/sources';
 
 fc.configureGlobal({ seed: 1 });
+
+const compiled = createRecordDecoding(await tagKernels());
 
 const marker: RecordsLayout['rollover'] = {
   in: 'marker',
@@ -116,18 +123,61 @@ function recordValues(layout: RecordsLayout): fc.Arbitrary<bigint[]> {
   return fc.oneof(any, rising);
 }
 
+async function ticksIn(blocks: AsyncIterable<Block>): Promise<bigint[]> {
+  const ticks: bigint[] = [];
+  for await (const block of blocks) {
+    if (block.kind !== 'tags') throw new Error('expected tags');
+    for (let i = 0; i < block.count; i += 1) ticks.push(block.baseTick + BigInt(block.deltaTick[i]!));
+  }
+  return ticks;
+}
+
 describe.each(Object.entries(layouts))('records: %s', (_name, layout) => {
   it('decode as the contract says, whatever the cuts into ranges', async () => {
     await fc.assert(
       fc.asyncProperty(recordValues(layout), fc.array(fc.nat(), { maxLength: 3 }), async (values, cuts) => {
-        const reader = openRecords(memorySource(writeRecords(layout, values)), layout);
         const expected = readReference(layout, values);
-        expect(await readTags(reader)).toEqual(expected);
         const inside = cuts.map((cut) => cut % (values.length + 1));
-        expect(await readTags(reader, inside)).toEqual(expected);
+        for (const way of [undefined, compiled]) {
+          const reader = openRecords(memorySource(writeRecords(layout, values)), layout, way);
+          expect(await readTags(reader)).toEqual(expected);
+          expect(await readTags(reader, inside)).toEqual(expected);
+        }
       }),
       { numRuns: 60 },
     );
+  });
+
+  it('decode many records alike compiled and not, and tell the rollovers inside any range', async () => {
+    const random = createRandom(5);
+    const range = 2 ** Math.min(layout.time.bits, 50);
+    let tick = 0;
+    const values = Array.from({ length: 20_000 }, () => {
+      tick += Math.floor(random.uniform() * random.uniform() * 0.02 * range);
+      const isOdd = random.uniform() < 0.03;
+      const bits = BigInt(Math.floor(random.uniform() * 2 ** 50));
+      const tag =
+        place(BigInt(tick) % (1n << BigInt(layout.time.bits)), layout.time) |
+        place(bits % (1n << BigInt(layout.channel.bits)), layout.channel);
+      return isOdd ? tag ^ (bits % (1n << BigInt(8 * layout.recordBytes))) : tag;
+    });
+    const source = memorySource(writeRecords(layout, values));
+    const readable = openRecords(source, layout);
+    const quick = openRecords(source, layout, compiled);
+    const expected = await readTags(readable);
+    expect(isDeepStrictEqual(await readTags(quick, [7, 16_384, 16_391]), expected)).toBe(true);
+    for (const [start, end] of [
+      [0, 20_000],
+      [5, 5],
+      [999, 18_456],
+    ] as const) {
+      const advance = (await quick.advanceOf?.({ start, end }, never)) ?? 0n;
+      const before = await readable.tickOffsetAt(start, never);
+      expect(advance).toBe((await readable.tickOffsetAt(end, never)) - before);
+      const kept = await ticksIn(quick.read({ start, end }, before, never));
+      const again = await ticksIn(readable.read({ start, end }, before, never));
+      expect(isDeepStrictEqual(kept, again)).toBe(true);
+    }
   });
 
   it('decode alike by the fast and the general way', () => {
@@ -245,8 +295,10 @@ describe('time past its limits', () => {
     });
     const mark = 3n << 62n;
     const values = [5n, mark | 1000n, 6n, mark | 1n, mark | 1n, 7n];
-    const reader = openRecords(memorySource(writeRecords(layout, values)), layout);
-    expect((await readTags(reader)).ticks).toEqual(readReference(layout, values).ticks);
+    for (const way of [undefined, compiled]) {
+      const reader = openRecords(memorySource(writeRecords(layout, values)), layout, way);
+      expect((await readTags(reader)).ticks).toEqual(readReference(layout, values).ticks);
+    }
   });
 });
 

@@ -16,7 +16,7 @@ import {
   type TagBorder,
 } from './tag-border';
 import type { TagMachine } from './tag-machine';
-import { CompiledTagMachine, isFree } from './tag-machine-compiled';
+import { CompiledTagMachine, canCompile } from './tag-machine-compiled';
 import { ScriptTagMachine } from './tag-machine-script';
 import { assertTagPart, NO_WINDOW, type TagPart } from './tag-part';
 import { planTags, type TagPlan } from './tag-plan';
@@ -56,7 +56,7 @@ export class TagAccumulator {
     this.#grid = new SliceGrid(spec.tickFs, leastBits);
     this.#keeper = spec.keepPairs ? new PairKeeper(spec, spec.keepPairs) : null;
     this.#machine =
-      kernels !== null && isFree(kernels)
+      kernels !== null && canCompile(kernels, this.#plan)
         ? new CompiledTagMachine(kernels, spec, this.#plan, this.#keeper)
         : new ScriptTagMachine(spec, this.#plan, this.#keeper);
     this.#tail = createBorder(this.#machine.work);

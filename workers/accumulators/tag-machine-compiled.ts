@@ -19,8 +19,12 @@ const TURNS = 64;
 /** Modules whose memory an accumulator holds: there is one at a time, because memory is given back in reverse. */
 const busy = new WeakSet<TagWasm>();
 
-export function isFree(wasm: TagWasm): boolean {
-  return !busy.has(wasm);
+/** The scans find a bin by rounding, exact for so many bins away from the first. */
+const MOST_BINS = 2 ** 50;
+
+/** Whether the compiled loops can serve the plan: nobody else holds the module, and its delays are within their range. */
+export function canCompile(wasm: TagWasm, { reachTick, loTick, binTick }: TagPlan): boolean {
+  return !busy.has(wasm) && (reachTick + Math.abs(loTick)) / binTick < MOST_BINS;
 }
 
 /**
@@ -39,8 +43,7 @@ export class CompiledTagMachine implements TagMachine {
   readonly #plan: TagPlan;
   readonly #scan: ScanPlan;
   readonly #scratch: PlacedTagColumns;
-  readonly #siteOfAt: number;
-  readonly #delayOfAt: number;
+  readonly #tableAt: number;
   readonly #singlesAt: number;
   readonly #orderAt: number;
   readonly #copyAt: number;
@@ -74,15 +77,12 @@ export class CompiledTagMachine implements TagMachine {
     }
     const collect = windows.length > 0 || keeper !== null;
     this.#scan = new ScanPlan(wasm, plan, spec.histogram.bins, windows, collect);
-    this.#siteOfAt = wasm.place(plan.siteOfChannel.byteLength);
-    this.#delayOfAt = wasm.place(plan.delayOfChannel.byteLength);
     this.#singlesAt = wasm.place(4 * (plan.sites + 1));
+    this.#tableAt = placeChannels(wasm, plan, this.#singlesAt);
     this.#orderAt = wasm.place(24);
     this.#copyAt = wasm.place(10 * PIECE);
     this.#scratch = new PlacedTagColumns(wasm, PIECE);
     this.work = new PlacedTagColumns(wasm, 8 * PIECE);
-    wasm.i32(this.#siteOfAt, plan.siteOfChannel.length).set(plan.siteOfChannel);
-    wasm.f64(this.#delayOfAt, plan.delayOfChannel.length).set(plan.delayOfChannel);
     wasm.u32(this.#singlesAt, plan.sites + 1).fill(0);
   }
 
@@ -113,16 +113,7 @@ export class CompiledTagMachine implements TagMachine {
     }
     const timeAt = work.timeAt + 8 * work.count;
     const siteAt = work.siteAt + 4 * work.count;
-    const kept = wasm.call.takeTags(
-      deltaAt,
-      channelAt,
-      count,
-      this.#siteOfAt,
-      this.#delayOfAt,
-      this.#singlesAt,
-      timeAt,
-      siteAt,
-    );
+    const kept = wasm.call.takeTags(deltaAt, channelAt, count, this.#tableAt, timeAt, siteAt);
     wasm.call.orderOf(timeAt, kept, latest, this.#plan.horizonTick, this.#orderAt);
     work.count += kept;
     const order = wasm.f64(this.#orderAt, 2);
@@ -204,6 +195,20 @@ export class CompiledTagMachine implements TagMachine {
     }
     this.#wasm.call.countWindows(this.#scan.at);
   }
+}
+
+/** The table of `takeTags`: of each channel the delay, the site and where it is counted. */
+function placeChannels(wasm: TagWasm, { siteOfChannel, delayOfChannel }: TagPlan, singlesAt: number): number {
+  const channels = siteOfChannel.length;
+  const at = wasm.place(16 * channels);
+  const delays = wasm.f64(at, 2 * channels);
+  const sites = wasm.i32(at, 4 * channels);
+  for (let c = 0; c < channels; c++) {
+    delays[2 * c] = delayOfChannel[c]!;
+    sites[4 * c + 2] = siteOfChannel[c]!;
+    sites[4 * c + 3] = singlesAt + 4 * (siteOfChannel[c]! + 1);
+  }
+  return at;
 }
 
 /** A store whose counters lie in the module, and the settings that tell the kernels where. */

@@ -15,9 +15,7 @@ export interface TagExports {
     deltaAt: number,
     channelAt: number,
     count: number,
-    siteOfAt: number,
-    delayOfAt: number,
-    singlesAt: number,
+    tableAt: number,
     timeAt: number,
     siteAt: number,
   ): number;

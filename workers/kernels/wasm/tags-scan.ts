@@ -59,6 +59,7 @@ const STORE_HEIGHT_B: usize = 60;
 /** Tags a round: their times, sites and list stay in the first-level cache. */
 const ROUND: i32 = 2048;
 const SLOT_MASK: i32 = 127;
+const ROUNDER: f64 = 6755399441055744;
 
 /** For each byte of eight answers, the indices of the ones that are set, as eight 16-bit numbers. */
 const PLACES = memory.data(4096, 16);
@@ -81,6 +82,26 @@ function within(time: usize, reach: v128): v128 {
 @inline
 function lows(a: v128, b: v128): v128 {
   return i8x16.shuffle(a, b, 0, 1, 2, 3, 8, 9, 10, 11, 16, 17, 18, 19, 24, 25, 26, 27);
+}
+
+/** The difference where `first` is -1, its negative where it is 0. */
+// @ts-ignore: decorator
+@inline
+function signed(difference: f64, first: i32): f64 {
+  return reinterpret<f64>(reinterpret<i64>(difference) ^ (<i64>~first << 63));
+}
+
+/**
+ * floor(from / bin) for whole numbers, quotients below 2^51: rounded by adding 1.5 * 2^52, whose last bits then are the
+ * integer, and lowered where that is too large. Fewer steps than a division and a checked conversion.
+ */
+// @ts-ignore: decorator
+@inline
+function binOf(from: f64, bin: f64, perBin: f64): i64 {
+  const rounded = from * perBin + ROUNDER;
+  const excess = from - (rounded - ROUNDER) * bin;
+  // A comparison and not the sign bit: the excess may be -0.
+  return reinterpret<i64>(rounded) - reinterpret<i64>(ROUNDER) - <i64>(excess < 0);
 }
 
 /** Lists those i of [start, stop) - start with time[i + 1] - time[i] <= reach. time[stop] is read: it must be there. */
@@ -132,7 +153,7 @@ function scan(
   const reachB = load<f64>(plan + REACH_B);
   const lo = load<f64>(plan + LO);
   const bin = load<f64>(plan + BIN);
-  const span = bin * <f64>bins;
+  const perBin = 1 / bin;
   const hullLo = load<f64>(plan + HULL_LO);
   const hullHi = load<f64>(plan + HULL_HI);
   const capacity = load<i32>(plan + CAPACITY);
@@ -177,21 +198,23 @@ function scan(
         const other = load<i32>(siteOf + (<usize>(i + k) << 2));
         const first = (s - sitesA) >> 31;
         const differ = (first ^ ((other - sitesA) >> 31)) & 1;
-        const later = load<f64>(there);
-        const tau = first != 0 ? later - t : t - later;
-        const from = tau - lo;
-        const isIn = differ & <i32>(from >= 0) & <i32>(from < span);
-        const counter = histogram + (<usize>(isIn ? <i32>(from / bin) : bins) << 2);
+        // Which arm is first is a matter of chance too: choices are made by masks.
+        const tau = signed(load<f64>(there) - t, first);
+        const cell = binOf(tau - lo, bin, perBin);
+        const isIn = differ & <i32>(<u64>cell < <u64>bins);
+        const counter = histogram + (<usize>(bins + ((<i32>cell - bins) & -isIn)) << 2);
         store<u32>(counter, load<u32>(counter) + 1);
         if (collects) {
-          store<f64>(candidateTime + (<usize>filled << 3), first != 0 ? t : later);
+          const a = other ^ ((s ^ other) & first);
+          store<f64>(candidateTime + (<usize>filled << 3), load<f64>(here + <usize>((k << 3) & ~first)));
           store<f64>(candidateTau + (<usize>filled << 3), tau);
-          store<i32>(candidateA + (<usize>filled << 2), first != 0 ? s : other);
-          store<i32>(candidateB + (<usize>filled << 2), (first != 0 ? other : s) - sitesA);
+          store<i32>(candidateA + (<usize>filled << 2), a);
+          store<i32>(candidateB + (<usize>filled << 2), (s ^ other ^ a) - sitesA);
           filled += differ & <i32>(tau >= hullLo) & <i32>(tau <= hullHi);
         }
         store<u16>(list + (<usize>survivors << 1), <u16>i);
-        survivors += <i32>(i < room) & <i32>(load<f64>(there, 8) - t <= (first != 0 ? reachA : reachB));
+        const reachOf = load<f64>(plan + REACH_A + <usize>(~first & 8));
+        survivors += <i32>(i < room) & <i32>(load<f64>(there, 8) - t <= reachOf);
       }
       near = survivors;
     }

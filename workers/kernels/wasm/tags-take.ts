@@ -1,28 +1,37 @@
 // Taking, ordering and thinning tags. Twins of the functions of the same names in ../tag-take.ts and ../tag-sort.ts.
 
+// @ts-ignore: decorator
+@inline
+function takeOne(entry: usize, delta: f64, time: usize, site: usize, at: i32): i32 {
+  const s = load<i32>(entry, 8);
+  store<f64>(time + (<usize>at << 3), delta + load<f64>(entry));
+  store<i32>(site + (<usize>at << 2), s);
+  const counter = load<usize>(entry, 12);
+  store<u32>(counter, load<u32>(counter) + 1);
+  return at + 1 - (<u32>s >>> 31);
+}
+
 /**
- * Keeps the tags whose channel has a site, with the channel's delay added; counts them per site. `singles` has one
- * counter more in front, where tags without a site go, so that nothing branches. Returns how many were kept; the
- * columns need room for all.
+ * Keeps the tags whose channel has a site, with the channel's delay added; counts them per site. `table` has 16 bytes a
+ * channel: delay (f64), site or -1 (i32), address of its counter (u32), where channels without a site share one, so
+ * that nothing branches. Returns how many were kept; the columns need room for all.
  */
-export function takeTags(
-  delta: usize, channel: usize, n: i32, siteOf: usize, delayOf: usize, singles: usize, time: usize, site: usize,
-): i32 {
-  const first = time;
-  for (let i = 0; i < n; i++) {
-    const c = <usize>load<u16>(channel);
-    const s = load<i32>(siteOf + (c << 2));
-    store<f64>(time, load<f64>(delta) + load<f64>(delayOf + (c << 3)));
-    store<i32>(site, s);
-    const counter = singles + (<usize>(s + 1) << 2);
-    store<u32>(counter, load<u32>(counter) + 1);
-    const kept = <usize>(1 - (<u32>s >>> 31));
-    time += kept << 3;
-    site += kept << 2;
-    delta += 8;
-    channel += 2;
+export function takeTags(delta: usize, channel: usize, n: i32, table: usize, time: usize, site: usize): i32 {
+  let at = 0;
+  let i = 0;
+  for (; i + 4 <= n; i += 4) {
+    const from = delta + (<usize>i << 3);
+    const channels = load<u64>(channel + (<usize>i << 1));
+    at = takeOne(table + <usize>((channels << 4) & 0xffff0), load<f64>(from), time, site, at);
+    at = takeOne(table + <usize>((channels >> 12) & 0xffff0), load<f64>(from, 8), time, site, at);
+    at = takeOne(table + <usize>((channels >> 28) & 0xffff0), load<f64>(from, 16), time, site, at);
+    at = takeOne(table + <usize>((channels >> 44) & 0xffff0), load<f64>(from, 24), time, site, at);
   }
-  return <i32>((time - first) >> 3);
+  for (; i < n; i++) {
+    const entry = table + (<usize>load<u16>(channel + (<usize>i << 1)) << 4);
+    at = takeOne(entry, load<f64>(delta + (<usize>i << 3)), time, site, at);
+  }
+  return at;
 }
 
 const PIECE: i32 = 512;
@@ -135,11 +144,14 @@ function mergeRuns(
     const t = load<f64>(scratchTime + (<usize>i << 3));
     const u = load<f64>(time + (<usize>j << 3));
     const isLeft = <i32>(t <= u);
-    store<f64>(time + (<usize>at << 3), isLeft ? t : u);
-    store<i32>(
-      site + (<usize>at << 2),
-      load<i32>(isLeft ? scratchSite + (<usize>i << 2) : site + (<usize>j << 2)),
-    );
+    // Which run is next is a matter of chance: chosen by a mask.
+    const mask = <usize>-isLeft;
+    const fromTime = time + (<usize>j << 3);
+    const fromSite = site + (<usize>j << 2);
+    const timeFrom = fromTime ^ ((fromTime ^ (scratchTime + (<usize>i << 3))) & mask);
+    const siteFrom = fromSite ^ ((fromSite ^ (scratchSite + (<usize>i << 2))) & mask);
+    store<f64>(time + (<usize>at << 3), load<f64>(timeFrom));
+    store<i32>(site + (<usize>at << 2), load<i32>(siteFrom));
     i += isLeft;
     j += 1 - isLeft;
     at++;
