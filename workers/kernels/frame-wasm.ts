@@ -97,23 +97,18 @@ export interface FrameExports {
   ): void;
   packDifferences(rows: number, count: number, n: number, panels: number): void;
   addJoint(panels: number, count: number, n: number, joint: number): void;
-  addOwnJoint(
-    list: number,
-    count: number,
-    span: number,
-    weight: number,
+  addJointPairs(
+    lists: number,
+    listBytes: number,
+    counts: number,
+    frames: number,
     ones: number,
+    cross: number,
     joint: number,
     n: number,
-  ): void;
-  takeCrossJoint(
-    a: number,
-    countA: number,
-    b: number,
-    countB: number,
-    span: number,
-    joint: number,
-    n: number,
+    heads: number,
+    starts: number,
+    links: number,
   ): void;
   addOuters(vectors: number, count: number, n: number, joint: number): void;
   transformColumnsF32: TransformColumns;

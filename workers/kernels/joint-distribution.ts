@@ -66,15 +66,12 @@ export class CompiledJoint implements JointDistribution {
   readonly #n: number;
   readonly #padded: number;
   readonly #limit: number;
-  readonly #at: {
-    joint: number;
-    rows: number;
-    panels: number;
-    lists: number;
-    listBytes: number;
-    scratch: number;
-  };
-  readonly #lit: { count: number; ones: number }[];
+  readonly #at: Record<
+    'joint' | 'rows' | 'panels' | 'lists' | 'listBytes' | 'counts' | 'heads' | 'starts' | 'links' | 'scratch',
+    number
+  >;
+  /** Every lit pixel of the batch holds 1. */
+  #ones = true;
   #filled = 0;
 
   constructor(wasm: FrameWasm, n: number) {
@@ -82,7 +79,6 @@ export class CompiledJoint implements JointDistribution {
     this.#n = n;
     this.#padded = Math.ceil(n / 8) * 8;
     this.#limit = Math.floor(SPARSE * n) + 4;
-    this.#lit = Array.from({ length: BATCH + 1 }, () => ({ count: 0, ones: 0 }));
     const from = wasm.mark;
     const listBytes = 12 * this.#limit;
     this.#at = {
@@ -91,6 +87,10 @@ export class CompiledJoint implements JointDistribution {
       panels: wasm.place(4 * this.#padded * BATCH),
       lists: wasm.place((BATCH + 1) * listBytes),
       listBytes,
+      counts: wasm.place(4 * (BATCH + 1)),
+      heads: wasm.place(4 * this.#padded),
+      starts: wasm.place(4 * (BATCH + 1)),
+      links: wasm.place(4 * (BATCH + 1) * this.#limit),
       scratch: wasm.place(16),
     };
     wasm.u8(from, wasm.mark - from).fill(0);
@@ -138,8 +138,9 @@ export class CompiledJoint implements JointDistribution {
   }
 
   #list(count: number): boolean {
-    const { rows, lists, listBytes, scratch } = this.#at;
+    const { rows, lists, listBytes, counts, scratch } = this.#at;
     const n = this.#padded;
+    this.#ones = true;
     for (let k = 0; k <= count; k++) {
       const to = lists + k * listBytes;
       const found = this.#wasm.call.listLit(
@@ -153,25 +154,29 @@ export class CompiledJoint implements JointDistribution {
         scratch,
       );
       if (found < 0) return false;
-      this.#lit[k]!.count = found;
-      this.#lit[k]!.ones = this.#wasm.i32(scratch, 3)[2]!;
+      this.#wasm.i32(counts + 4 * k, 1)[0] = found;
+      this.#ones = this.#ones && this.#wasm.i32(scratch, 3)[2] === 1;
     }
     return true;
   }
 
   #addPairs(count: number): void {
-    const { call } = this.#wasm;
-    const { joint, lists, listBytes } = this.#at;
-    const span = listBytes / 3;
-    for (let k = 0; k <= count; k++) {
-      const list = lists + k * listBytes;
-      const lit = this.#lit[k]!;
-      const weight = k === 0 || k === count ? 0.5 : 1;
-      call.addOwnJoint(list, lit.count, span, weight, lit.ones, joint, this.#padded);
-      if (k === count) break;
-      const next = this.#lit[k + 1]!.count;
-      call.takeCrossJoint(list, lit.count, list + listBytes, next, span, joint, this.#padded);
-    }
+    const { joint, lists, listBytes, counts, heads, starts, links } = this.#at;
+    const ones = this.#ones ? 1 : 0;
+    const frames = count + 1;
+    this.#wasm.call.addJointPairs(
+      lists,
+      listBytes,
+      counts,
+      frames,
+      ones,
+      1,
+      joint,
+      this.#padded,
+      heads,
+      starts,
+      links,
+    );
   }
 }
 

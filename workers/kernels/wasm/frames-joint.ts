@@ -84,43 +84,67 @@ function bump(at: usize, by: f32): void {
   store<f32>(at, load<f32>(at) + by);
 }
 
-/** J(i, j) += weight x(i) x(j), i <= j, of one list in order of pixels. */
-export function addOwnJoint(
-  list: usize, count: i32, span: usize, weight: f32, ones: bool, joint: usize, n: i32,
+/** J(i, j) += scale x(i) x(j) for the lit pixels j of a list from `q` to `end`. */
+@inline
+function addRow(row: usize, scale: f32, q: usize, end: usize, span: usize, ones: bool): void {
+  if (ones) for (; q < end; q += LIT) bump(row + <usize>load<i32>(q), scale);
+  else for (; q < end; q += LIT) bump(row + <usize>load<i32>(q), scale * <f32>load<i32>(q + 2 * span));
+}
+
+/**
+ * Pairs of the lit pixels of `frames` consecutive frames, i <= j: with `cross` what their differences give,
+ * x_k x_k (half of the first and last) - (x_k y_(k+1) + y_(k+1) x_k)/2; without, x_k x_k of all. Row by row of J, so
+ * that a row stays in the first cache while all frames add to it. `counts` has the lengths of the lists; `heads` room
+ * for n, `starts` for `frames` and `links` for all entries.
+ */
+export function addJointPairs(
+  lists: usize, listBytes: usize, counts: usize, frames: i32, ones: bool, cross: bool, joint: usize, n: i32,
+  heads: usize, starts: usize, links: usize,
 ): void {
-  const end = list + <usize>count * LIT;
-  for (let p = list; p < end; p += LIT) {
-    const row = joint + <usize>load<i32>(p) * <usize>n;
-    const value = weight * <f32>load<i32>(p + 2 * span);
-    if (ones) {
-      for (let q = p; q < end; q += LIT) bump(row + <usize>load<i32>(q), weight);
-    } else {
-      for (let q = p; q < end; q += LIT) bump(row + <usize>load<i32>(q), value * <f32>load<i32>(q + 2 * span));
+  const span = listBytes / 3;
+  const capacity = <i32>(span >> 2);
+  memory.fill(heads, 0xff, <usize>n << 2);
+  // Frames that light a pixel, as a chain from its head.
+  for (let k = frames - 1; k >= 0; k--) {
+    const list = lists + <usize>k * listBytes;
+    const count = load<i32>(counts + (<usize>k << 2));
+    store<i32>(starts + (<usize>k << 2), 0);
+    for (let e = 0; e < count; e++) {
+      const head = heads + <usize>load<i32>(list + (<usize>e << 2));
+      const entry = k * capacity + e;
+      store<i32>(links + (<usize>entry << 2), load<i32>(head));
+      store<i32>(head, entry);
+    }
+  }
+  for (let i = 0; i < n; i++) {
+    const row = joint + <usize>i * <usize>n * 4;
+    let entry = load<i32>(heads + (<usize>i << 2));
+    while (entry >= 0) {
+      const k = entry / capacity;
+      const list = lists + <usize>k * listBytes;
+      const p = list + (<usize>(entry - k * capacity) << 2);
+      const value = <f32>load<i32>(p + 2 * span);
+      const end = list + (<usize>load<i32>(counts + (<usize>k << 2)) << 2);
+      const weight: f32 = cross && (k == 0 || k == frames - 1) ? 0.5 : 1;
+      addRow(row, weight * value, p, end, span, ones);
+      if (cross) {
+        if (k > 0) takeNeighbour(row, i, value, list - listBytes, k - 1, counts, starts, span, ones);
+        if (k + 1 < frames) takeNeighbour(row, i, value, list + listBytes, k + 1, counts, starts, span, ones);
+      }
+      entry = load<i32>(links + (<usize>entry << 2));
     }
   }
 }
 
-/** J(i, j) -= (x(i) y(j) + y(i) x(j))/2, i <= j, of two lists in order of pixels. */
-export function takeCrossJoint(
-  a: usize, countA: i32, b: usize, countB: i32, span: usize, joint: usize, n: i32,
+/** Rows come in order, so where a frame's pixels from i on begin only moves up. */
+@inline
+function takeNeighbour(
+  row: usize, i: i32, value: f32, list: usize, k: i32, counts: usize, starts: usize, span: usize, ones: bool,
 ): void {
-  const endA = a + <usize>countA * LIT;
-  const endB = b + <usize>countB * LIT;
-  for (let p = a; p < endA; p += LIT) {
-    const place = load<i32>(p);
-    const half = <f32>-0.5 * <f32>load<i32>(p + 2 * span);
-    const column = joint + <usize>place;
-    const row = joint + <usize>place * <usize>n;
-    let q = b;
-    for (; q < endB; q += LIT) {
-      const other = load<i32>(q);
-      if (other >= place) break;
-      bump(column + <usize>other * <usize>n, half * <f32>load<i32>(q + 2 * span));
-    }
-    if (q < endB && load<i32>(q) == place) {
-      bump(row + <usize>place, 2 * half * <f32>load<i32>(q + 2 * span));
-      q += LIT;
-    }
-    for (; q < endB; q += LIT) bump(row + <usize>load<i32>(q), half * <f32>load<i32>(q + 2 * span));
-  }
+  const count = load<i32>(counts + (<usize>k << 2));
+  const mark = starts + (<usize>k << 2);
+  let e = load<i32>(mark);
+  while (e < count && load<i32>(list + (<usize>e << 2)) < i << 2) e++;
+  store<i32>(mark, e);
+  addRow(row, <f32>-0.5 * value, list + (<usize>e << 2), list + (<usize>count << 2), span, ones);
 }

@@ -14,7 +14,7 @@ import {
   openButterfly,
 } from './frames-fft';
 
-export { addJoint, addOwnJoint, packDifferences, takeCrossJoint } from './frames-joint';
+export { addJoint, addJointPairs, packDifferences } from './frames-joint';
 export { addListSums, addOwnPairs, flushPairs, listLit, takeCrossPairs } from './frames-pairs';
 export { addOuters, addSums, prepareFrame, scaleFrame } from './frames-pixels';
 export { resampleMaps } from './frames-resample';
