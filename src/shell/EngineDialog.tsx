@@ -26,7 +26,7 @@ export function EngineDialog({ onClose }: { onClose(): void }) {
             Reset to defaults
           </Button>
           <Button variant="primary" onClick={onClose}>
-            Close
+            Done
           </Button>
         </>
       }

@@ -21,9 +21,14 @@ export function useBox<T extends HTMLElement>(): [RefObject<T | null>, Box] {
         old.width === width && old.height === height && old.em === em ? old : { width, height, em },
       );
     };
-    // Ten plots that appear together are drawn one after the other, not in one long task.
-    startTransition(measure);
-    const observer = new ResizeObserver(measure);
+    // The observer tells the first size too, after the layout: asking for it here would force one in the middle of drawing.
+    // Ten plots that appear together are then drawn one after the other, not in one long task.
+    let isFirst = true;
+    const observer = new ResizeObserver(() => {
+      if (isFirst) startTransition(measure);
+      else measure();
+      isFirst = false;
+    });
     observer.observe(element);
     // A theme changes the text size and not the box.
     const themes = new MutationObserver(measure);

@@ -11,7 +11,11 @@ function canonical(value: unknown): string {
 }
 
 /** Is an input read as the preset says? What the preset leaves open (null) may be anything. */
-export function isReadAs(spec: InputSpec, given: InputSetting, read: InputSetting): boolean {
+export function isReadAs(
+  spec: InputSpec,
+  given: InputSetting,
+  read: Pick<InputSetting, 'layout' | 'detector' | 'plane'>,
+): boolean {
   const parts = (['layout', 'detector', 'plane'] as const).filter(
     // A study without calibration is never handed the plane.
     (part) => given[part] !== null && !(part === 'plane' && spec.plane === 'none'),

@@ -7,7 +7,14 @@ export function stageOf(width: number, height: number): void {
     vi.stubGlobal(
       'ResizeObserver',
       class {
-        observe(): void {}
+        readonly #tell: ResizeObserverCallback;
+        constructor(tell: ResizeObserverCallback) {
+          this.#tell = tell;
+        }
+        /** The first size is told, as browsers do. */
+        observe(): void {
+          this.#tell([], this);
+        }
         unobserve(): void {}
         disconnect(): void {}
       },
