@@ -5,11 +5,24 @@ import { layoutSchema } from './layout';
 import { planeSchema } from './plane';
 import { studyIds } from './study';
 
+/** How a second file with a clock of its own is read. */
+export const companionSettingSchema = z.strictObject({
+  layout: layoutSchema.nullable().default(null),
+  /** Added to its channels. */
+  channelOffset: z.int().min(0).max(65535).default(0),
+  /** t_main = t_companion (1 + drift) + offset; null: found from the coincidences. */
+  clock: z
+    .strictObject({ offsetPs: z.number(), drift: z.number().gt(-0.5).lt(0.5) })
+    .nullable()
+    .default(null),
+});
+
 /** How one input of a study is read: layout, detector map, plane. `null` layout: propose one from the bytes. */
 export const inputSettingSchema = z.strictObject({
   layout: layoutSchema.nullable().default(null),
   detector: detectorSchema.nullable().default(null),
   plane: planeSchema.nullable().default(null),
+  companion: companionSettingSchema.optional(),
 });
 export type InputSetting = z.infer<typeof inputSettingSchema>;
 

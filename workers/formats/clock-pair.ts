@@ -92,7 +92,11 @@ const emptyPage = (): TagPage => ({
 /** One border before every main page, one before what is left of the companion, one at the end. */
 async function findBorders(a: TimeIndex, b: TimeIndex, map: ClockMap, token: CancelToken): Promise<Border[]> {
   const borders: Border[] = [{ companionTag: 0, merged: 0 }];
-  let held = { page: -1, zeroTick: 0n, mapped: new Float64Array(0) };
+  let held: { page: number; zeroTick: bigint; mapped: Float64Array } = {
+    page: -1,
+    zeroTick: 0n,
+    mapped: new Float64Array(0),
+  };
   for (let k = 1; k <= a.pages.length; k += 1) {
     const tagsBefore = a.pages[k]?.tagsBefore ?? a.tags;
     const latest = k < a.pages.length ? a.pages[k]!.latestBefore : a.lastTick;

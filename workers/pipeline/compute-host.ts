@@ -8,6 +8,7 @@ import { inspectSource } from '../formats/registry';
 import { createRecordDecoding } from '../kernels/tag-decode';
 import { answer } from './answer';
 import type { AskOffset, ComputeHost, OnTaskProgress } from './compute';
+import { findClock } from './find-clock';
 import { type CompileKernels, loadKernels } from './kernels';
 import { type InputPlatform, keyOfInput, openInput, type ReadInput } from './read-input';
 
@@ -100,6 +101,13 @@ export function createComputeHost(platform: ComputePlatform): ComputeHost {
         } finally {
           accumulator.release?.();
         }
+      }),
+    findClock: (taskId, input, onProgress) =>
+      asTask(taskId, async (token) => {
+        const report = createReport(onProgress);
+        const clock = await findClock(input, platform, token, (bytes) => report.add(bytes, 0));
+        report.flush();
+        return clock;
       }),
     fingerprint: (taskId, ref, onProgress) =>
       asTask(taskId, (token) =>

@@ -12,6 +12,11 @@ export function exposeCompute(host: ComputeHost, endpoint: Comlink.Endpoint): vo
       if (askOffset !== undefined) release(askOffset);
       return outcome.status === 'ok' ? Comlink.transfer(outcome, transferablesOf(outcome.value)) : outcome;
     },
+    async findClock(taskId, input, onProgress) {
+      const outcome = await host.findClock(taskId, input, onProgress);
+      release(onProgress);
+      return outcome;
+    },
     async fingerprint(taskId, source, onProgress) {
       const outcome = await host.fingerprint(taskId, source, onProgress);
       release(onProgress);
@@ -28,6 +33,7 @@ export function connectCompute(endpoint: Comlink.Endpoint): ComputeHost {
     facts: (input) => remote.facts(input),
     count: (task, onProgress, askOffset) =>
       remote.count(task, Comlink.proxy(onProgress), askOffset && Comlink.proxy(askOffset)),
+    findClock: (taskId, input, onProgress) => remote.findClock(taskId, input, Comlink.proxy(onProgress)),
     fingerprint: (taskId, source, onProgress) =>
       remote.fingerprint(taskId, source, Comlink.proxy(onProgress)),
     cancel: (taskId) => remote.cancel(taskId),

@@ -4,6 +4,7 @@ import type { Outcome } from '../../shared/contracts/outcome';
 import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
 import type { TallySpec } from '../../shared/contracts/tally';
 import type { Part } from '../accumulators/accumulator';
+import type { ClockFacts } from '../studies/study';
 import type { ReadInput } from './read-input';
 
 /**
@@ -33,6 +34,8 @@ export interface ComputeHost {
   facts(input: ReadInput): Promise<Outcome<ReaderFacts>>;
   /** Without `askOffset` the rollovers before the chunk are found by reading what comes before it. */
   count(task: CountTask, onProgress: OnTaskProgress, askOffset?: AskOffset): Promise<Outcome<Part>>;
+  /** The clock of the companion against the main one. */
+  findClock(taskId: string, input: ReadInput, onProgress: OnTaskProgress): Promise<Outcome<ClockFacts>>;
   /** SHA-256 of the whole source, lower-case hexadecimal. */
   fingerprint(taskId: string, source: SourceRef, onProgress: OnTaskProgress): Promise<Outcome<string>>;
   /** Unknown tasks are ignored: they may have ended meanwhile. */

@@ -17,7 +17,7 @@ import { Problem } from '../../shared/errors/problem';
 import { type CompiledKernels, NO_COMPILED_KERNELS } from '../accumulators/compiled-kernels';
 import { fillDials } from '../studies/dials';
 import { studyById } from '../studies/registry';
-import type { Chosen, CountedInput, FinishRequest, Study } from '../studies/study';
+import type { Chosen, ClockFacts, CountedInput, FinishRequest, Study } from '../studies/study';
 import { answer } from './answer';
 import { isSameInput, isSameSource } from './bytes-key';
 import { SEARCH_RECORDS } from './chunks';
@@ -29,7 +29,7 @@ import { type CompileKernels, loadKernels } from './kernels';
 import { assertFitsMemory } from './memory';
 import { createPool } from './pool';
 import { createStage } from './progress';
-import { filesOf, keyOfInput, type ReadInput } from './read-input';
+import { bytesOfInput, filesOf, keyOfInput, type ReadInput } from './read-input';
 import { TallyMemo } from './tally-memo';
 import { ENGINE_VERSION } from './version';
 
@@ -40,6 +40,7 @@ const PAIR_BYTES = 512 * 2 ** 20;
 
 /** What earlier runs have found out about files, and what they counted. */
 interface Known {
+  clocks: { input: ReadInput; clock: ClockFacts }[];
   counts: TallyMemo;
   facts: { input: ReadInput; facts: ReaderFacts }[];
   fingerprints: { source: SourceRef; sha256: string }[];
@@ -54,7 +55,13 @@ export function createEngine(
   compileKernels: CompileKernels = async () => null,
 ): Engine {
   const pool = createPool(hosts);
-  const known: Known = { counts: new TallyMemo(pairBytes), facts: [], fingerprints: [], kernels: null };
+  const known: Known = {
+    clocks: [],
+    counts: new TallyMemo(pairBytes),
+    facts: [],
+    fingerprints: [],
+    kernels: null,
+  };
   const jobs = new Map<string, Job>();
 
   return {
@@ -85,7 +92,7 @@ async function runStudy(job: Job, request: RunRequest, known: Known): Promise<Ru
   const startedAt = new Date();
   const study = studyById(request.study);
   const dials = fillDials(study.info, request.dials);
-  const inputs = await gatherInputs(job, study, request.inputs, known.facts);
+  const inputs = await gatherInputs(job, study, request.inputs, known);
   study.validate(Object.fromEntries(inputs.map(({ name, studyInput }) => [name, studyInput])), dials);
   job.checkCancelled();
   const chosen = new Map<string, Chosen>();
@@ -141,7 +148,7 @@ export async function gatherInputs(
   job: Job,
   study: Study,
   given: Record<string, RunInput>,
-  known: Known['facts'] = [],
+  before: Pick<Known, 'facts' | 'clocks'> = { facts: [], clocks: [] },
 ): Promise<GatheredInput[]> {
   for (const name of Object.keys(given)) {
     if (study.info.inputs.some((spec) => spec.name === name)) continue;
@@ -150,20 +157,47 @@ export async function gatherInputs(
   }
   return Promise.all(
     study.info.inputs.map(async (spec) => {
-      const input = given[spec.name];
-      if (input === undefined) {
+      const asked = given[spec.name];
+      if (asked === undefined) {
         throw new Problem(
           'missing-input',
           `${study.info.label} needs an acquisition for "${spec.name}" (${spec.label}); choose one.`,
           spec.name,
         );
       }
-      assertKinds(spec.name, spec.accepts, input.layout.kind, input.detector);
-      const facts = await findFacts(job, spec.name, input, known);
+      assertKinds(spec.name, spec.accepts, asked.layout.kind, asked.detector);
+      const { input, clock } = await withClock(job, spec.name, asked, before.clocks);
+      const facts = await findFacts(job, spec.name, input, before.facts);
       const { layout, detector, plane } = input;
-      return { name: spec.name, input, studyInput: { layout, detector, plane, facts } };
+      return { name: spec.name, input, studyInput: { layout, detector, plane, facts, ...clock } };
     }),
   );
+}
+
+/** The input with the clock of its companion, found where it is not given, and what is known of it. */
+async function withClock(
+  job: Job,
+  name: string,
+  input: RunInput,
+  before: Known['clocks'],
+): Promise<{ input: RunInput; clock: { clock?: ClockFacts } }> {
+  const { companion } = input;
+  if (companion === undefined) return { input, clock: {} };
+  if (companion.clock !== null) {
+    const { offsetPs, drift } = companion.clock;
+    const given = { offset: { value: offsetPs, sigma: 0 }, drift: { value: drift, sigma: 0 }, line: null };
+    return { input, clock: { clock: given } };
+  }
+  const known = before.find((entry) => isSameInput(entry.input, input))?.clock;
+  const stage = createStage(job.id, `${name}: finding the clock offset`, bytesOfInput(input), job.emit);
+  const clock =
+    known ??
+    (await job.run(name, (host, taskId) =>
+      host.findClock(taskId, input, ({ bytes }) => stage.add(bytes, 0)),
+    ));
+  if (known === undefined && keyOfInput(input) !== null) before.push({ input, clock });
+  const found = { offsetPs: clock.offset.value, drift: clock.drift.value };
+  return { input: { ...input, companion: { ...companion, clock: found } }, clock: { clock } };
 }
 
 async function findFacts(

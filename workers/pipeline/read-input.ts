@@ -1,6 +1,7 @@
 import type { RunInput, SourceRef } from '../../shared/contracts/engine';
 import type { Layout } from '../../shared/contracts/layout';
 import type { ByteSource, Reader, ReaderEnvironment } from '../../shared/contracts/reader';
+import { openClockPair } from '../formats/clock-pair';
 import { openReader } from '../formats/registry';
 import { openSequence } from '../formats/sequence';
 
@@ -35,8 +36,32 @@ export function keyOfInput(input: ReadInput): string | null {
   ]);
 }
 
-/** Opens all files of an input as one reader, or none of them. Closing the reader closes them. */
+/**
+ * Opens all files of an input as one reader, or none of them. Closing the reader closes them. The clock of a companion
+ * must be known by then.
+ */
 export async function openInput(input: ReadInput, platform: InputPlatform): Promise<Reader> {
+  const { companion } = input;
+  const main = await openMain(input, platform);
+  if (companion === undefined) return main;
+  const opened = [main];
+  try {
+    if (companion.clock === null) throw new Error('A companion is read before its clock is known.');
+    const second = await openCompanion(input, platform);
+    opened.push(second);
+    return await openClockPair(
+      { name: input.source.name, reader: main, bytes: bytesOfInput({ ...input, companion: undefined }) },
+      { name: companion.source.name, reader: second, bytes: companion.source.size },
+      { channelOffset: companion.channelOffset, clock: companion.clock },
+    );
+  } catch (thrown) {
+    for (const reader of opened) await reader.close();
+    throw thrown;
+  }
+}
+
+/** The files of the main clock. */
+export async function openMain(input: ReadInput, platform: InputPlatform): Promise<Reader> {
   const opened: { name: string; reader: Reader }[] = [];
   try {
     for (const source of sourcesOf(input)) {
@@ -47,6 +72,14 @@ export async function openInput(input: ReadInput, platform: InputPlatform): Prom
     for (const { reader } of opened) await reader.close();
     throw thrown;
   }
+}
+
+export async function openCompanion(
+  { source, companion }: ReadInput,
+  platform: InputPlatform,
+): Promise<Reader> {
+  if (companion !== undefined) return openFile(companion.source, companion.layout, platform);
+  throw new Error(`${source.name} has no companion.`);
 }
 
 async function openFile(ref: SourceRef, layout: Layout, platform: InputPlatform): Promise<Reader> {

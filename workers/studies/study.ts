@@ -6,6 +6,21 @@ import type { Plane } from '../../shared/contracts/plane';
 import type { ReaderFacts } from '../../shared/contracts/reader';
 import type { StudyInfo } from '../../shared/contracts/study';
 import type { TagSpec, TagTally, Tally, TallySpec } from '../../shared/contracts/tally';
+import type { Estimate } from '../../shared/physics/estimate';
+
+/** Clock of a second file against that of the first: t_main = t_companion (1 + drift) + offset, in ps. */
+export interface ClockFacts {
+  offset: Estimate;
+  drift: Estimate;
+  /** How well the line holds through the peaks it was found from; null where the clock was given, without errors. */
+  line: {
+    stretches: number;
+    found: number;
+    residualPs: number;
+    chi2PerDof: number;
+    peakSigmaPs: number;
+  } | null;
+}
 
 /** What a study knows of an input before anything is counted. */
 export interface StudyInput {
@@ -13,6 +28,8 @@ export interface StudyInput {
   detector: Detector;
   plane: Plane | null;
   facts: ReaderFacts;
+  /** Where tags of two clocks were merged. */
+  clock?: ClockFacts;
 }
 
 /** Numbers the study chose for dials left to it (null), by dial id, in the dial's unit. */

@@ -16,10 +16,11 @@ import { type Console, createProgressLine } from './console';
 import { parseShard, runShard } from './shard';
 
 export const runUsage =
-  'run PRESET.json --input NAME=FILE[,FILE] ... [--set dial=value ...] [--workers n] [--seed n] [--shard i/n] [--out R.json] [--maps DIR]';
+  'run PRESET.json --input NAME=FILE[,FILE] ... [--second NAME=FILE] [--set dial=value ...] [--workers n] [--seed n] [--shard i/n] [--out R.json] [--maps DIR]';
 
 const options = {
   input: { type: 'string', multiple: true },
+  second: { type: 'string', multiple: true },
   set: { type: 'string', multiple: true },
   workers: { type: 'string' },
   seed: { type: 'string' },
@@ -36,14 +37,25 @@ export async function run(
 ): Promise<number> {
   const { values, positionals } = readArguments(args, options, runUsage);
   const preset = await readJsonFile(requireOne(positionals, 'preset', runUsage), presetSchema, 'preset');
-  const files = parseFiles(values.input ?? []);
+  const files = parseFiles(values.input ?? [], '--input');
+  const seconds = parseFiles(values.second ?? [], '--second');
+  for (const name of seconds.keys()) {
+    if (files.has(name)) continue;
+    throw new Problem(
+      'bad-input',
+      `--second names "${name}", but there is no --input ${name}=FILE; give both.`,
+      '--second',
+    );
+  }
   const dials = parseDials(preset, values.set ?? []);
   const seed = wholeNumber(values.seed, 'seed', 1, 0);
   const shard = values.shard === undefined ? null : parseShard(values.shard);
   const node = open(wholeNumber(values.workers, 'workers', defaultWorkers(), 1));
   const { engine } = node;
   const inputs: Record<string, RunInput> = {};
-  for (const [name, path] of files) inputs[name] = await prepareInput(preset, name, path, engine, out);
+  for (const [name, path] of files) {
+    inputs[name] = await prepareInput(preset, name, path, seconds.get(name), engine, out);
+  }
   const request: RunRequest = { jobId: 'run', study: preset.study, inputs, dials, seed, looks: false };
   if (shard !== null) return runShard({ ...request, preset: preset.name, shard }, values, node, out);
   const line = createProgressLine();
@@ -57,19 +69,19 @@ export async function run(
   return outcome.value.output.checks.some((check) => check.status === 'fail') ? 3 : 0;
 }
 
-function parseFiles(given: readonly string[]): Map<string, string> {
+function parseFiles(given: readonly string[], option: '--input' | '--second'): Map<string, string> {
   const files = new Map<string, string>();
   for (const text of given) {
     const at = text.indexOf('=');
     if (at < 1 || at === text.length - 1) {
-      throw new Problem('bad-input', `--input takes NAME=FILE, found "${text}".`, '--input');
+      throw new Problem('bad-input', `${option} takes NAME=FILE, found "${text}".`, option);
     }
     const name = text.slice(0, at);
     if (files.has(name)) {
       throw new Problem(
         'bad-input',
-        `--input names "${name}" twice; name the files of one input behind each other, with commas.`,
-        '--input',
+        `${option} names "${name}" twice; name the files of one input behind each other, with commas.`,
+        option,
       );
     }
     files.set(name, text.slice(at + 1));
@@ -120,6 +132,7 @@ async function prepareInput(
   preset: Preset,
   name: string,
   path: string,
+  second: string | undefined,
   engine: NodeEngine['engine'],
   out: Console,
 ): Promise<RunInput> {
@@ -133,7 +146,17 @@ async function prepareInput(
     );
   }
   const layout = setting.layout ?? (await proposeLayout(source, engine, out));
-  return { source, following, layout, detector: setting.detector, plane: setting.plane };
+  const input = { source, following, layout, detector: setting.detector, plane: setting.plane };
+  if (second === undefined) return input;
+  const file = await sourceOfPath(second);
+  const { channelOffset = 0, clock = null, layout: own = null } = setting.companion ?? {};
+  const companion = {
+    source: file,
+    layout: own ?? setting.layout ?? (await proposeLayout(file, engine, out)),
+    channelOffset,
+    clock,
+  };
+  return { ...input, companion };
 }
 
 /** One file, or several between commas that follow each other; a comma may also be part of one file's name. */

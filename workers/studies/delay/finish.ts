@@ -1,12 +1,13 @@
 import type { DialValues } from '../../../shared/contracts/dial';
 import type { StudyOutput } from '../../../shared/contracts/output';
 import type { TagTally } from '../../../shared/contracts/tally';
+import { checkClock, clockQuantities } from '../clock';
 import { LOOK_RESAMPLES, numberDial } from '../dials';
 import { formatFigure } from '../format-figure';
 import { type ArmPair, describeArms } from '../peak-search';
 import { listQuantities, settingQuantity } from '../quantities';
 import { resampleSlices } from '../resample-slices';
-import type { Chosen } from '../study';
+import type { Chosen, ClockFacts } from '../study';
 import { countTags, type TagCount } from '../tag-count';
 import { chosenDials } from '../tag-main';
 import { histogramMap, rateMap, singlesMap } from '../tag-maps';
@@ -27,12 +28,13 @@ export interface DelayRequest {
   arms: ArmPair;
   dials: DialValues;
   chosen: Chosen;
+  clock?: ClockFacts | undefined;
   seed: number;
   partial: boolean;
 }
 
 export function finishDelay(request: DelayRequest): StudyOutput {
-  const { tally, arms, dials, chosen, seed, partial } = request;
+  const { tally, arms, dials, chosen, clock, seed, partial } = request;
   const count = countTags(tally);
   const resamples = partial ? LOOK_RESAMPLES : numberDial(dials, 'resamples');
   const draws = resampleSlices(sliceColumns(count), resamples, seed);
@@ -54,6 +56,7 @@ export function finishDelay(request: DelayRequest): StudyOutput {
     study: 'delay',
     quantities: {
       ...list.quantities,
+      ...clockQuantities(clock),
       'window.width': settingQuantity(
         count.windowPs,
         'ps',
@@ -62,7 +65,7 @@ export function finishDelay(request: DelayRequest): StudyOutput {
       ),
     },
     verdicts: {},
-    checks: checkDelay(count, arms, numberDial(dials, 'dead.time'), list.excess),
+    checks: [...checkDelay(count, arms, numberDial(dials, 'dead.time'), list.excess), ...checkClock(clock)],
     maps: {
       'delay.histogram': histogramMap(count),
       [`rates.${arms.a}`]: rateMap(count, 'a', arms.a),

@@ -46,6 +46,6 @@ export const delayStudy: Study = {
   spec: (input, dials, chosen) => buildMainSpec(input, armsOf(input), dials, chosen),
   finish({ inputs, dials, seed, partial }) {
     const { tally, chosen, input } = requireTagInput(inputs, 'tags');
-    return finishDelay({ tally, chosen, arms: armsOf(input), dials, seed, partial });
+    return finishDelay({ tally, chosen, clock: input.clock, arms: armsOf(input), dials, seed, partial });
   },
 };

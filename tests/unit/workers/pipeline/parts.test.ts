@@ -24,6 +24,7 @@ function idleHost(): ComputeHost {
     inspect: nothing,
     facts: nothing,
     count: nothing,
+    findClock: nothing,
     fingerprint: nothing,
     cancel: async () => undefined,
   };
