@@ -5,6 +5,7 @@ import type { OpenKernel } from './adapter';
 import { bootstrap } from './bootstrap';
 import { decode } from './decode';
 import { frames } from './frames';
+import { joint } from './joint';
 import { heralded, histogram, matrixLists } from './lists';
 import { matrixMerged } from './merged';
 
@@ -16,6 +17,7 @@ const adapters: Record<string, OpenKernel> = {
   frames,
   heralded,
   histogram,
+  joint,
   'matrix-lists': matrixLists,
   'matrix-merged': matrixMerged,
 };
