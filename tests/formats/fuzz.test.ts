@@ -1,8 +1,13 @@
 import { describe, expect, it } from 'vitest';
 import { fuzzReader } from '../support/fuzz-reader';
-import { foreignSeeds, hdf5Seeds, recordSeeds } from './support/fuzz-seeds';
+import { foreignSeeds, hdf5Seeds, recordSeeds, textSeeds } from './support/fuzz-seeds';
 
-const seeds = { ...(await foreignSeeds()), hdf5: await hdf5Seeds(), records: recordSeeds() };
+const seeds = {
+  ...(await foreignSeeds()),
+  hdf5: await hdf5Seeds(),
+  records: recordSeeds(),
+  text: textSeeds(),
+};
 
 /** `npm run validate` goes on with many thousands. */
 describe('damaged files', () => {

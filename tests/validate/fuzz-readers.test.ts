@@ -1,10 +1,15 @@
 import { describe, expect, it } from 'vitest';
-import { foreignSeeds, hdf5Seeds, recordSeeds } from '../formats/support/fuzz-seeds';
+import { foreignSeeds, hdf5Seeds, recordSeeds, textSeeds } from '../formats/support/fuzz-seeds';
 import { fuzzReader } from '../support/fuzz-reader';
 
 const cases = Number(process.env.GEMEL_FUZZ_CASES ?? 20_000);
 const seed = Number(process.env.GEMEL_FUZZ_SEED ?? 11);
-const seeds = { ...(await foreignSeeds()), hdf5: await hdf5Seeds(), records: recordSeeds() };
+const seeds = {
+  ...(await foreignSeeds()),
+  hdf5: await hdf5Seeds(),
+  records: recordSeeds(),
+  text: textSeeds(),
+};
 
 describe(`${cases} damaged files of each kind`, () => {
   it.each(Object.entries(seeds))(

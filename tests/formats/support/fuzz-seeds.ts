@@ -1,5 +1,5 @@
 import { readFile } from 'node:fs/promises';
-import type { ArrayColumn, Layout, NpyFramesLayout } from '../../../shared/contracts/layout';
+import type { ArrayColumn, Layout, NpyFramesLayout, TextLayout } from '../../../shared/contracts/layout';
 import type { FuzzSeed } from '../../support/fuzz-reader';
 import { runPython, writePython } from './python';
 import { recordsLayout, writeTags } from './record-writer';
@@ -120,4 +120,40 @@ export function recordSeeds(): FuzzSeed[] {
     bytes: writeTags(layout, ticks, channels),
     layout,
   }));
+}
+
+/** Columns of text in every way they are cut: signs, marks, line ends, quotes, exponents, remarks. */
+export function textSeeds(): FuzzSeed[] {
+  const lines = (line: (i: number) => string, end: string): Uint8Array =>
+    new TextEncoder().encode(Array.from({ length: 120 }, (_, i) => line(i) + end).join(''));
+  const layout: TextLayout = {
+    version: 1,
+    format: 'text',
+    kind: 'tags',
+    delimiter: 'comma',
+    decimal: 'point',
+    headerLines: 0,
+    timeColumn: 0,
+    channelColumn: 1,
+    timeUnitFs: 1000,
+    tickFs: 1000,
+  };
+  return [
+    { name: 'whole.csv', bytes: lines((i) => `${i * 1_234_567},${i % 9}`, '\n'), layout },
+    {
+      name: 'seconds.txt',
+      bytes: lines((i) => (i % 40 === 0 ? '# pause' : `${i} ${86_399 + i / 1024}`), '\r\n'),
+      layout: { ...layout, delimiter: 'space', timeColumn: 1, channelColumn: 0, timeUnitFs: 1e15 },
+    },
+    {
+      name: 'sheet.csv',
+      bytes: lines((i) => (i === 0 ? 'Zeit;Kanal' : `"${i * 12},5";"${i % 4}"`), '\r'),
+      layout: { ...layout, delimiter: 'semicolon', decimal: 'comma', headerLines: 1, tickFs: 500 },
+    },
+    {
+      name: 'floats.tsv',
+      bytes: lines((i) => `${(i * 1.5e6).toExponential(18)}\t${(i % 3).toExponential(18)}`, '\n'),
+      layout: { ...layout, delimiter: 'tab', tickFs: 81_000 },
+    },
+  ];
 }
