@@ -29,8 +29,17 @@ const { values } = parseArgs({
   },
 });
 
+function pythonOrLeave(): string {
+  try {
+    return requirePython();
+  } catch (thrown) {
+    console.error(thrown instanceof Error ? thrown.message : String(thrown));
+    process.exit(2);
+  }
+}
+
 const settings: BenchSettings = {
-  python: requirePython(),
+  python: pythonOrLeave(),
   cpp: hasCompiler(),
   folder: mkdtempSync(join(tmpdir(), 'gemel-bench-')),
   passes: values.quick ? 3 : 7,

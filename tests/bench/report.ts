@@ -70,14 +70,15 @@ export function printTable(rows: readonly ReportRow[]): string {
   return lines.map((line) => line.map((cell, i) => cell.padEnd(widths[i]!)).join('  ')).join('\n');
 }
 
-/** For DEVELOPERS.md: ratios alone, because rates belong to a machine. */
+/** For DEVELOPERS.md: what is held to a goal, and ratios where there are any, because rates belong to a machine. */
 export function printMarkdown(rows: readonly ReportRow[]): string {
-  const lines = rows.map((row) => {
-    const all = cells(row);
-    // A row that compares us with ourselves has its ratio as its figure.
-    const own = row.unit.startsWith('x ') || row.unit === '' ? all[1]! : '';
-    return [all[0]!, all[2] === '-' && own !== '' ? own : all[2]!, all[3]!, all[5]!, all[6]!, all[7]!];
-  });
-  const head = ['kernel', 'x NumPy', 'x C++', 'growth', 'goal (least)', 'met'];
+  const lines = rows
+    .filter(({ goal }) => goal !== '')
+    .map((row) => {
+      const [kernel, rate, numpy, cpp, , growth, goal, met] = cells(row);
+      const isRatio = row.ratioNumpy !== null || row.ratioCpp !== null;
+      return [kernel, isRatio ? '' : rate, numpy, cpp, growth, goal, met];
+    });
+  const head = ['kernel', 'figure', 'x NumPy', 'x C++', 'growth', 'goal (least)', 'met'];
   return [head, head.map(() => '---'), ...lines].map((line) => `| ${line.join(' | ')} |`).join('\n');
 }
