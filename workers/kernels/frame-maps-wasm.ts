@@ -18,7 +18,7 @@ const FLUSH = 64;
  * diagonal and projections within 1e-12.
  *
  * Any frame: sides are padded to powers of two from twice their size less one, so 256 -> 512, 257 -> 1024, each side for
- * itself. O(P log P) a frame for P = padWidth * padHeight; memory 75 to 105 bytes a padded pixel.
+ * itself. O(P log P) a frame for P = padWidth * padHeight; memory 70 to 115 bytes a padded pixel.
  */
 export class CompiledFrameMaps implements FrameMaps {
   readonly #wasm: FrameWasm;

@@ -16,8 +16,8 @@ export function estimateBytes(spec: TallySpec): number {
     const { width, height, blocks } = spec;
     const cells = (2 * height - 1) * (2 * width - 1);
     const { nx, ny } = blockWindow(spec);
-    // Spectra, maps and a batch of frames in the kernels: 75 to 105 bytes a padded pixel.
-    const kernels = 105 * compiledLength(width) * compiledLength(height);
+    // Spectra, maps and a batch of frames in the kernels: 70 to 115 bytes a padded pixel.
+    const kernels = 115 * compiledLength(width) * compiledLength(height);
     return 8 * nx * ny * blocks + 16 * cells + 8 * (width * width + height * height) + kernels;
   }
   if (spec.window === null) return 8 * spec.histogram.bins;
