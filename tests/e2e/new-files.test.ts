@@ -66,6 +66,37 @@ describe('one acquisition in several files', () => {
   });
 });
 
+describe('a second clock', () => {
+  it('is taken off the shelf onto the first, and its pairs are found', async () => {
+    const { page, dir } = scene;
+    const tags = pairTags(30_000);
+    writeTagsNpy(
+      `${dir}/signal.npy`,
+      tags.filter(([, channel]) => channel < 16),
+    );
+    // Five microseconds behind, and 0.2 ppm slow.
+    const own = tags.filter(([time, channel]) => channel >= 16 && time > 5e6);
+    writeTagsNpy(
+      `${dir}/idler.npy`,
+      own.map(([time, channel]) => [Math.floor((time - 5e6) / (1 + 2e-7)), channel - 16] as const),
+    );
+    await freshBench(['signal.npy', 'idler.npy']);
+    await card('signal.npy').getByRole('button', { name: 'Give signal.npy a second clock' }).click();
+    const dialog = page.getByRole('dialog', { name: 'Second clock of signal.npy' });
+    await dialog.getByLabel('From the shelf').click();
+    await page.getByRole('option', { name: /idler\.npy/ }).click();
+    expect(await dialog.getByLabel('Added to its channels').inputValue()).toBe('16');
+    await expectAccessible('the dialog of the second clock');
+    await dialog.getByRole('button', { name: 'Apply' }).click();
+    await card('idler.npy').waitFor({ state: 'detached' });
+    await waitUntilDone(page);
+    const [, rate] = (await quantityRow(page, 'coincidences')).split(' | ');
+    // 30 000 pairs in ten seconds, in a window that keeps about 95 % of them.
+    expect(Number.parseFloat(rate!)).toBeGreaterThan(2.7);
+    expect(Number.parseFloat(rate!)).toBeLessThan(3.05);
+  });
+});
+
 describe('text', () => {
   it('shows its first records anew as its unit is changed, with the reader named', async () => {
     const { page, dir } = scene;
