@@ -1,5 +1,5 @@
 import type { RecordDecoder, RecordDecoding, RecordRules, RecordState } from '../../shared/contracts/reader';
-import type { TagWasm } from './tag-wasm';
+import type { DecodeRecords, TagWasm } from './tag-wasm';
 
 /** Records a call: bytes and columns together fit the second-level cache. */
 const CAPACITY = 2 ** 14;
@@ -25,23 +25,15 @@ export function createRecordDecoding(wasm: TagWasm): RecordDecoding {
       isTaken = true;
       let isOpen = true;
       const { recordBytes } = rules;
-      const isBig = rules.bigEndian ? 1 : 0;
       writeRules(wasm, rulesAt, rules);
+      const decode = decoderOf(wasm, rules);
       return {
         capacity: CAPACITY,
         decode(bytes: Uint8Array, state: RecordState) {
           wasm.u8(sourceAt, bytes.length).set(bytes);
           wasm.f64(rulesAt + 48, 2).set([state.epochTick, state.previousTick]);
           const records = bytes.length / recordBytes;
-          const count = wasm.call.decodeRecords(
-            rulesAt,
-            sourceAt,
-            recordBytes,
-            isBig,
-            records,
-            timeAt,
-            channelAt,
-          );
+          const count = decode(rulesAt, sourceAt, records, timeAt, channelAt);
           const [epochTick = 0, previousTick = -1] = wasm.f64(rulesAt + 48, 2);
           state.epochTick = epochTick;
           state.previousTick = previousTick;
@@ -60,6 +52,15 @@ export function createRecordDecoding(wasm: TagWasm): RecordDecoding {
   };
 }
 
+/** The quickest loop that takes such records. */
+function decoderOf({ call }: TagWasm, { recordBytes, bigEndian, channel, odd }: RecordRules): DecodeRecords {
+  if (recordBytes === 4) return bigEndian ? call.decodeFourBig : call.decodeFour;
+  if (recordBytes !== 8) return (...places) => call.decodeAny(...places, recordBytes, bigEndian ? 1 : 0);
+  if (bigEndian) return call.decodeEightBig;
+  const isHigh = channel.firstBit >= 32 && odd.every(({ mask }) => (mask & 0xffffffffn) === 0n);
+  return isHigh ? call.decodeEightHigh : call.decodeEight;
+}
+
 /** Byte offsets as in wasm/tags-decode.ts. */
 function writeRules(wasm: TagWasm, at: number, rules: RecordRules): void {
   const view = new DataView(wasm.memory.buffer, at, RULES_BYTES);
@@ -72,8 +73,6 @@ function writeRules(wasm: TagWasm, at: number, rules: RecordRules): void {
   view.setFloat64(32, rules.advanceTick, true);
   view.setInt32(40, modes[rules.rollover], true);
   view.setInt32(44, odd.length, true);
-  const isHigh = channel.firstBit >= 32 && odd.every(({ mask }) => (mask & 0xffffffffn) === 0n);
-  view.setInt32(72, isHigh ? 1 : 0, true);
   // What no record passes, for the kernel that always makes the first test.
   const tests = odd.length > 0 ? odd : [{ mask: 0n, value: 1n }];
   tests.forEach(({ mask, value }, k) => {

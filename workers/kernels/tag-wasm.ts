@@ -1,16 +1,30 @@
 import type { WasmModule } from './wasm-module';
 
+/** Decodes records into columns of as much room; answers the tags written. */
+export type DecodeRecords = (
+  rulesAt: number,
+  sourceAt: number,
+  records: number,
+  timeAt: number,
+  channelAt: number,
+) => number;
+
 /** What `wasm/tags.ts` exports; addresses (`...At`) and counts are numbers. Each is described there. */
 export interface TagExports {
-  decodeRecords(
+  decodeAny(
     rulesAt: number,
     sourceAt: number,
-    recordBytes: number,
-    isBig: number,
     records: number,
     timeAt: number,
     channelAt: number,
+    recordBytes: number,
+    isBig: number,
   ): number;
+  decodeEight: DecodeRecords;
+  decodeEightHigh: DecodeRecords;
+  decodeEightBig: DecodeRecords;
+  decodeFour: DecodeRecords;
+  decodeFourBig: DecodeRecords;
   takeTags(
     deltaAt: number,
     channelAt: number,

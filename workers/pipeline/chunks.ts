@@ -3,7 +3,7 @@ import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
 /**
  * The tasks a file is cut into. They depend on the file alone, never on the number of workers, and parts are merged in
  * file order: floating sums come out bit by bit the same on one worker, on many, and on another machine. Where a counter
- * rolls over, each worker's reader goes on from the rollovers it knows and scans only what another worker read.
+ * rolls over, chunks tell each other their rollovers (`OffsetChain`); their bytes, some 32 MiB, stay at hand meanwhile.
  */
 const FIRST_RECORDS = 2 ** 20;
 /** Records of the first look for the coincidence peak: whole chunks, so that their pairs tell it as well. */

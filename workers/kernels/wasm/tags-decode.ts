@@ -17,8 +17,6 @@ const EPOCH: usize = 48;
 const PREVIOUS: usize = 56;
 const NEXT: usize = 64;
 const KEPT: usize = 68;
-/** 1 when channel and tests of 8-byte records lie in their upper four bytes. */
-const IS_HIGH: usize = 72;
 /** Mask and value of each test, the rollover marker first when there is one. */
 const TEST: usize = 80;
 
@@ -364,28 +362,34 @@ function decodeNarrow(rules: usize, source: usize, isBig: bool, end: i32, time: 
   return decodeSingly(rules, source, 4, isBig ? 1 : 0, i, end, time, channel, n);
 }
 
-/**
- * Decodes `records` records of `bytes` bytes into columns of as much room. Returns the tags written; the record it
- * stopped before is left at NEXT. Up to 8 bytes after the last record are read and not used.
- */
-export function decodeRecords(
-  rules: usize, source: usize, bytes: i32, isBig: i32, records: i32, time: usize, channel: usize,
+// One function a kind of record: the engine optimises each in a short time, and only the one that is used. All decode
+// `records` records into columns of as much room and return the tags written; the record they stopped before is left at
+// NEXT. Up to 8 bytes after the last record are read and not used.
+
+/** Records of `bytes` bytes, 1 to 8, one at a time. */
+export function decodeAny(
+  rules: usize, source: usize, records: i32, time: usize, channel: usize, bytes: i32, isBig: i32,
 ): i32 {
-  if (bytes == 8) {
-    const isHigh = load<i32>(rules + IS_HIGH) != 0;
-    if (isBig != 0) {
-      return isHigh
-        ? decodeWide(rules, source, true, true, records, time, channel)
-        : decodeWide(rules, source, true, false, records, time, channel);
-    }
-    return isHigh
-      ? decodeWide(rules, source, false, true, records, time, channel)
-      : decodeWide(rules, source, false, false, records, time, channel);
-  }
-  if (bytes == 4) {
-    return isBig != 0
-      ? decodeNarrow(rules, source, true, records, time, channel)
-      : decodeNarrow(rules, source, false, records, time, channel);
-  }
   return decodeSingly(rules, source, bytes, isBig, 0, records, time, channel, 0);
+}
+
+export function decodeEight(rules: usize, source: usize, records: i32, time: usize, channel: usize): i32 {
+  return decodeWide(rules, source, false, false, records, time, channel);
+}
+
+/** Eight bytes, the channel and everything tested in the upper four. */
+export function decodeEightHigh(rules: usize, source: usize, records: i32, time: usize, channel: usize): i32 {
+  return decodeWide(rules, source, false, true, records, time, channel);
+}
+
+export function decodeEightBig(rules: usize, source: usize, records: i32, time: usize, channel: usize): i32 {
+  return decodeWide(rules, source, true, false, records, time, channel);
+}
+
+export function decodeFour(rules: usize, source: usize, records: i32, time: usize, channel: usize): i32 {
+  return decodeNarrow(rules, source, false, records, time, channel);
+}
+
+export function decodeFourBig(rules: usize, source: usize, records: i32, time: usize, channel: usize): i32 {
+  return decodeNarrow(rules, source, true, records, time, channel);
 }
