@@ -30,8 +30,8 @@ export interface CoarseMatch {
   threshold: number;
 }
 
-/** Bins from which noise is judged. */
-const judged = 20_000;
+/** Bins among which the base of a peak and its noise are judged. */
+const blockBins = 256;
 
 /**
  * Offset and relative rate of two free-running clocks by cross-correlation of binned counts. Main clicks are shrunk about
@@ -126,39 +126,59 @@ function correlate(fft: FFT, counts: Float64Array, companion: Float64Array): Flo
   return spectrum;
 }
 
+/** The best bin or pair of neighbours, each against the bins around it, so that short files may have a sloping base. */
 function highestOf(correlation: Float64Array, part: 0 | 1, lags: number): Highest {
   const size = correlation.length / 2;
-  const value = (lag: number): number => correlation[2 * ((lag + size) % size) + part]!;
-  let single = { count: Number.NEGATIVE_INFINITY, lag: 0 };
-  let double = { count: Number.NEGATIVE_INFINITY, lag: 0 };
-  let before = value(-lags - 1);
-  for (let lag = -lags; lag <= lags; lag += 1) {
-    const count = value(lag);
-    if (count > single.count) single = { count, lag };
-    if (count + before > double.count) double = { count: count + before, lag: lag - 0.5 };
-    before = count;
-  }
-  const { mean, excess } = noiseOf(value, lags);
   // Rounding in the transform may leave a count of none slightly below it.
-  const zOf = (count: number, expected: number): number =>
-    poissonZ(Math.max(0, count), Math.max(expected, 1e-3)) / excess;
-  const [z1, z2] = [zOf(single.count, mean), zOf(double.count, 2 * mean)];
-  return z1 >= z2 ? { z: z1, lag: single.lag } : { z: z2, lag: double.lag };
+  const value = (lag: number): number => Math.max(0, correlation[2 * ((lag + size) % size) + part]!);
+  const blocks: BlockHighest[] = [];
+  for (let from = -lags; from + blockBins <= lags; from += blockBins) blocks.push(highestIn(value, from));
+  const excesses = Float64Array.from(blocks, ({ excess }) => excess).sort();
+  const excess = Math.max(1, excesses[excesses.length >> 1] ?? 1);
+  let best: Highest = { z: Number.NEGATIVE_INFINITY, lag: 0 };
+  for (const { single, double, at, mean } of blocks) {
+    const z1 = poissonZ(single, mean) / excess;
+    const z2 = poissonZ(double, 2 * mean) / excess;
+    if (z1 > best.z) best = { z: z1, lag: at };
+    if (z2 > best.z) best = { z: z2, lag: at + (value(at + 1) >= value(at - 1) ? 0.5 : -0.5) };
+  }
+  return best;
 }
 
-/** Mean count of a bin and its scatter over that of counting, from bins spread over the whole range. */
-function noiseOf(value: (lag: number) => number, lags: number): { mean: number; excess: number } {
-  const hop = Math.max(1, Math.floor((2 * lags + 1) / judged));
-  let n = 0;
+interface BlockHighest {
+  /** Counts of the highest bin and of it with its higher neighbour. */
+  single: number;
+  double: number;
+  at: number;
+  /** Of the other bins of the block: mean, and scatter over that of counting. */
+  mean: number;
+  excess: number;
+}
+
+function highestIn(value: (lag: number) => number, from: number): BlockHighest {
+  let at = from;
   let sum = 0;
   let squares = 0;
-  for (let lag = -lags; lag <= lags; lag += hop) {
+  for (let lag = from; lag < from + blockBins; lag += 1) {
     const count = value(lag);
-    n += 1;
+    if (count > value(at)) at = lag;
     sum += count;
     squares += count * count;
   }
-  const mean = Math.max(0, sum / n);
-  const variance = Math.max(0, squares / n - mean * mean);
-  return { mean, excess: mean > 0 ? Math.max(1, Math.sqrt(variance / mean)) : 1 };
+  let bins = blockBins;
+  for (let lag = Math.max(from, at - 2); lag <= Math.min(from + blockBins - 1, at + 2); lag += 1) {
+    bins -= 1;
+    sum -= value(lag);
+    squares -= value(lag) ** 2;
+  }
+  const single = value(at);
+  const variance = Math.max(0, squares / bins - (sum / bins) ** 2);
+  return {
+    single,
+    double: single + Math.max(value(at - 1), value(at + 1)),
+    at,
+    // One count more than was seen: an empty block does not make a single pair significant.
+    mean: (sum + 1) / bins,
+    excess: sum > 0 ? Math.sqrt((variance * bins) / sum) : 1,
+  };
 }

@@ -103,6 +103,14 @@ describe('two free-running clocks', () => {
     60_000,
   );
 
+  it('in a run shorter than the range searched, whose correlation slopes', async () => {
+    const given: ClockTruth = { ...truth, seconds: 0.15, rates: [4e5, 6e5], pairs: 5e4, offsetPs: -4e10 };
+    const result = await match(given, 3);
+    if (result === null) throw new Error('expected a match');
+    expect(Math.abs(result.offset.value - given.offsetPs)).toBeLessThan(5 * result.offset.sigma);
+    expect(Math.abs(result.found.drift.value - given.drift)).toBeLessThan(5 * result.found.drift.sigma);
+  }, 60_000);
+
   it('a clock whose rate changes shows in what the line leaves', async () => {
     const result = await match({ ...truth, wanderPs: 2000 }, 6);
     if (result === null) throw new Error('expected a match');
