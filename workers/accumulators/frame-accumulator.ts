@@ -119,7 +119,8 @@ export class FrameAccumulator {
       tally.blockTotals[block] = sums.frames > 0 ? sums.total / sums.frames : 0;
       tally.blockDifferences[block] = sums.differences;
     }
-    addEnds(tally, this.#segments);
+    addEnds(tally, this.#segments, () => this.#openMaps(null));
+    this.#settle();
     return this.#shape.normalised ? scaleToMean(tally) : tally;
   }
 

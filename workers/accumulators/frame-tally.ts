@@ -1,20 +1,20 @@
 import type { FrameTally } from '../../shared/contracts/tally';
-import { FrameSpectra } from '../kernels/frame-spectra';
+import type { FrameMaps } from '../kernels/frame-maps';
 import { addDiagonal, addOuter, projectFrame, subtract } from '../kernels/frame-sums';
 import type { Segment } from './frame-part';
 import { addInto } from './pair-store';
 
 /**
  * Adds (first first - last last)/2 of every gapless stretch, written (first - last)(first + last)/2 to keep its digits:
- * one transform in f64 a stretch and one inverse.
+ * one transform a stretch and one inverse, by kernels that hold no differences.
  */
-export function addEnds(tally: FrameTally, segments: readonly Segment[]): void {
+export function addEnds(tally: FrameTally, segments: readonly Segment[], openMaps: () => FrameMaps): void {
   const { width, height } = tally;
   const less = new Float64Array(width * height);
   const more = new Float64Array(width * height);
   const vectors = [width, height, width, height].map((length) => new Float64Array(length));
   const [lessX, lessY, moreX, moreY] = vectors as [Float64Array, Float64Array, Float64Array, Float64Array];
-  let spectra: FrameSpectra | null = null;
+  let maps: FrameMaps | null = null;
   for (const { firstImage, lastImage } of segments) {
     subtract(firstImage, lastImage, less);
     // Nothing to correct, and the transform would leave its rounding behind.
@@ -26,10 +26,13 @@ export function addEnds(tally: FrameTally, segments: readonly Segment[]): void {
     projectFrame(more, moreX, moreY);
     addOuter(lessX, moreX, 0.5, tally.jointX);
     addOuter(lessY, moreY, 0.5, tally.jointY);
-    spectra ??= new FrameSpectra(width, height);
-    spectra.addProduct(less, more);
+    maps ??= openMaps();
+    maps.addProduct(less, more);
   }
-  spectra?.moveTo(tally.plus, tally.minus, 0.5);
+  if (maps === null) return;
+  const { plus, minus } = maps.close();
+  addInto(tally.plus, plus);
+  addInto(tally.minus, minus);
 }
 
 /**

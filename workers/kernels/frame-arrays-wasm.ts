@@ -76,6 +76,7 @@ export function placeArrays(wasm: FrameWasm, sizes: FrameArraySizes) {
     positionsX: wasm.place(4 * padWidth),
     positionsY: wasm.place(4 * padHeight),
     work: wasm.place(Math.max(padWidth, padHeight) * CELL),
+    other: wasm.place(padWidth * CELL),
     half: wasm.place((batch + 1) * frameBytes),
     squares: wasm.place(strips * padWidth * SQUARES),
     totals: wasm.place(strips * padWidth * 2 * SQUARES),

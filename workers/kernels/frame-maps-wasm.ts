@@ -130,6 +130,34 @@ export class CompiledFrameMaps implements FrameMaps {
     this.#filled = 0;
   }
 
+  addProduct(x: Float64Array, y: Float64Array): void {
+    this.pause();
+    const at = this.#at;
+    // Differences with a frame of zeros between: x - 0 and 0 - (-y).
+    this.#put(x, 0);
+    this.#put(
+      y.map((v) => -v),
+      2,
+    );
+    // The second may have turned the slots to f64.
+    this.#put(x, 0);
+    this.#wasm.u8(this.#slot(1), at.slotBytes).fill(0);
+    this.#transformPair(this.#slot(0), this.#slot(1), this.#slot(2), at.half);
+    this.#wasm.call.addProduct(
+      at.half,
+      this.#strips,
+      this.#padWidth,
+      at.twiddlesX,
+      at.work,
+      at.other,
+      at.squares,
+      this.#stripBytes,
+      this.#frameBytes,
+    );
+    this.#unflushed += 1;
+    this.#transformed = true;
+  }
+
   last(): Float64Array {
     const { width, height } = this.#shape;
     const slot = this.#slot(this.#filled - 1);
@@ -348,23 +376,11 @@ export class CompiledFrameMaps implements FrameMaps {
   #addTransforms(count: number): void {
     const { call } = this.#wasm;
     const at = this.#at;
-    const transform = this.#double ? call.transformColumnsF64 : call.transformColumnsF32;
     for (let k = 0; k < count; k += 2) {
       const second = this.#slot(k + 1);
-      transform(
-        this.#slot(k),
-        second,
-        // An odd difference out has the difference of a frame with itself beside it.
-        k + 1 < count ? this.#slot(k + 2) : second,
-        this.#columns,
-        this.#padHeight,
-        at.twiddlesY,
-        at.positionsY,
-        at.work,
-        at.half + k * this.#frameBytes,
-        this.#stripBytes,
-        this.#frameBytes,
-      );
+      // An odd difference out has the difference of a frame with itself beside it.
+      const third = k + 1 < count ? this.#slot(k + 2) : second;
+      this.#transformPair(this.#slot(k), second, third, at.half + k * this.#frameBytes);
     }
     call.addSquares(
       at.half,
@@ -380,6 +396,25 @@ export class CompiledFrameMaps implements FrameMaps {
     this.#unflushed += count;
     if (this.#unflushed >= FLUSH) this.#flush();
     this.#transformed = true;
+  }
+
+  #transformPair(first: number, second: number, third: number, to: number): void {
+    const { call } = this.#wasm;
+    const { twiddlesY, positionsY, work } = this.#at;
+    const transform = this.#double ? call.transformColumnsF64 : call.transformColumnsF32;
+    transform(
+      first,
+      second,
+      third,
+      this.#columns,
+      this.#padHeight,
+      twiddlesY,
+      positionsY,
+      work,
+      to,
+      this.#stripBytes,
+      this.#frameBytes,
+    );
   }
 
   #flush(): void {

@@ -47,6 +47,8 @@ export interface FrameMaps {
   follow(image: Float64Array): void;
   /** The next frame begins a run. */
   pause(): void;
+  /** Adds x y / 2, symmetrised, to the maps of the block, not to its diagonal; a run ends with it. */
+  addProduct(x: Float64Array, y: Float64Array): void;
   /** Prepared image taken last, a copy. */
   last(): Float64Array;
   /** Sums of the differences since the last call; valid until the next call of anything. */
@@ -116,6 +118,11 @@ export class ReadableFrameMaps implements FrameMaps {
 
   pause(): void {
     this.#running = false;
+  }
+
+  addProduct(x: Float64Array, y: Float64Array): void {
+    this.pause();
+    this.#spectra.addProduct(x, y);
   }
 
   last(): Float64Array {

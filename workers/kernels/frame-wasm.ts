@@ -124,6 +124,17 @@ export interface FrameExports {
     stripBytes: number,
     frameBytes: number,
   ): void;
+  addProduct(
+    from: number,
+    strips: number,
+    padWidth: number,
+    twiddles: number,
+    work: number,
+    other: number,
+    sums: number,
+    stripBytes: number,
+    frameBytes: number,
+  ): void;
   flushSquares(sums: number, totals: number, n: number): void;
   invertSquares(
     totals: number,

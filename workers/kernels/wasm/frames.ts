@@ -170,6 +170,49 @@ export function addSquares(
   }
 }
 
+/** One column of a strip along x, all stages. */
+@inline
+function transformRow(p: usize, padWidth: i32, twiddles: usize, work: usize): void {
+  const quarter = <usize>(padWidth >> 2) * CELL;
+  let w = twiddles;
+  for (let cell = work; cell < work + quarter; cell += CELL) {
+    openButterfly<f32>(
+      cell, quarter, w, v128.load(p), v128.load(p, 16), v128.load(p + quarter), v128.load(p + quarter, 16),
+    );
+    p += CELL;
+    w += 24;
+  }
+  middleStages<f32>(work, padWidth, twiddles);
+  lastStage<f32>(work, padWidth);
+}
+
+/** As `addSquares`, for the symmetrised product of two half-transformed frames; `other` is a second column of room. */
+export function addProduct(
+  from: usize, strips: i32, padWidth: i32, twiddles: usize, work: usize, other: usize, sums: usize,
+  stripBytes: usize, frameBytes: usize,
+): void {
+  const half = f32x4.splat(0.5);
+  let to = sums;
+  for (let s = 0; s < strips; s++) {
+    const strip = from + <usize>s * stripBytes;
+    transformRow(strip, padWidth, twiddles, work);
+    transformRow(strip + frameBytes, padWidth, twiddles, other);
+    for (let at: usize = 0; at < <usize>padWidth * CELL; at += CELL) {
+      const aRe = v128.load(work + at);
+      const aIm = v128.load(work + at, 16);
+      const bRe = v128.load(other + at);
+      const bIm = v128.load(other + at, 16);
+      const re = f32x4.mul(aRe, bRe);
+      const im = f32x4.mul(aIm, bIm);
+      const crossed = f32x4.add(f32x4.mul(aRe, bIm), f32x4.mul(aIm, bRe));
+      v128.store(to, f32x4.add(v128.load(to), f32x4.sub(re, im)));
+      v128.store(to, f32x4.add(v128.load(to, 16), f32x4.mul(half, crossed)), 16);
+      v128.store(to, f32x4.add(v128.load(to, 32), f32x4.add(re, im)), 32);
+      to += 48;
+    }
+  }
+}
+
 /** totals (f64) += sums (f32), and the sums start again from zero; `n` values, a multiple of 4. */
 export function flushSquares(sums: usize, totals: usize, n: i32): void {
   const zero = i32x4.splat(0);
