@@ -1,5 +1,4 @@
 import { CompiledFrameMaps } from '../../../workers/kernels/frame-maps-wasm';
-import { FrameSpectra } from '../../../workers/kernels/frame-spectra';
 import { loadU16, type OpenKernel } from './adapter';
 import { kernelsOf } from './kernels';
 
@@ -17,7 +16,6 @@ export const frames: OpenKernel = async (folder, [side]) => {
     normalised: false,
   };
   const maps = new CompiledFrameMaps(await kernelsOf('frames'), shape);
-  const spectra = new FrameSpectra(width, width);
   const sums = {
     sum: new Float64Array(pixels),
     sumSquares: new Float64Array(pixels),
@@ -32,9 +30,6 @@ export const frames: OpenKernel = async (folder, [side]) => {
     work(items) {
       maps.pause();
       for (let k = 0; k < items; k++) maps.take(stack, k * pixels);
-      const closed = maps.close();
-      plus.set(closed.plus);
-      minus.set(closed.minus);
       maps.drain(sums);
       const less = new Float64Array(pixels);
       const more = new Float64Array(pixels);
@@ -43,8 +38,10 @@ export const frames: OpenKernel = async (folder, [side]) => {
         less[i] = stack[i]! - stack[last + i]!;
         more[i] = stack[i]! + stack[last + i]!;
       }
-      spectra.addProduct(less, more);
-      spectra.moveTo(plus, minus, 0.5);
+      maps.addProduct(less, more);
+      const closed = maps.close();
+      plus.set(closed.plus);
+      minus.set(closed.minus);
     },
     answer: () => both,
   };
