@@ -55,6 +55,7 @@ interface Part {
   measure(): Promise<ReportRow[]>;
 }
 
+const rows: ReportRow[] = [];
 const findings: Finding[] = [];
 const parts: Part[] = [
   ...kernelRows.map((row) => ({
@@ -69,7 +70,13 @@ const parts: Part[] = [
   { name: 'pair-cache', measure: async () => [await measurePairCache(settings)] },
   { name: 'command-line', measure: async () => [await measureCommandLine(settings)] },
 ];
-const browser: Part = { name: 'browser', measure: () => measureBrowser(settings) };
+const browser: Part = {
+  name: 'browser',
+  async measure() {
+    await measureBrowser(settings, (found) => rows.push(...found));
+    return [];
+  },
+};
 
 async function run(): Promise<boolean> {
   const { only } = values;
@@ -77,7 +84,6 @@ async function run(): Promise<boolean> {
   const chosen = listed.filter(({ name }) => only === undefined || name.startsWith(only));
   if (chosen.length === 0)
     throw new Error(`--only names no row: ${only}. There are ${listed.map(({ name }) => name).join(', ')}.`);
-  const rows: ReportRow[] = [];
   const failures: string[] = [];
   for (const part of chosen) {
     console.error(part.name);

@@ -148,7 +148,7 @@ export interface CancelLatency {
 export async function cancelRun({ page }: Visit, preset: Preset, path: string): Promise<CancelLatency> {
   await openBench(page, preset);
   await giveFile(page, path);
-  await page.locator('[data-map]').first().waitFor({ timeout: 60_000 });
+  await page.locator('[data-map]').first().waitFor({ state: 'attached', timeout: 60_000 });
   const start = performance.now();
   const saidMs = Number(await page.evaluate(cancelScript));
   return { saidMs, restMs: await untilRest(start) };

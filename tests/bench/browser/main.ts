@@ -17,8 +17,14 @@ interface LongFile {
   preset: Preset;
 }
 
-/** The file-drop path of the built page in headless Chromium, on long files of records and of frames. */
-export async function measureBrowser(settings: BenchSettings): Promise<ReportRow[]> {
+/**
+ * The file-drop path of the built page in headless Chromium, on long files of records and of frames. Rows are told as they
+ * are found: what fails later does not take them along.
+ */
+export async function measureBrowser(
+  settings: BenchSettings,
+  add: (rows: ReportRow[]) => void,
+): Promise<void> {
   const isQuick = settings.passes <= 3;
   if (!existsSync(join(rootFolder, 'dist/server/main.js'))) {
     const built = spawnSync('npm', ['run', '--silent', 'build'], { cwd: rootFolder, stdio: 'inherit' });
@@ -46,11 +52,11 @@ export async function measureBrowser(settings: BenchSettings): Promise<ReportRow
       preset: samplePreset('joint-map-frames.json', null),
     };
     const rounds = isQuick ? 1 : 3;
-    return [
-      ...(await measureSharing(server.url, records, rounds)),
-      ...(await measureDrop(server.url, records)),
-      ...(await measureDrop(server.url, frames)),
-    ];
+    add(await measureSharing(server.url, records, rounds));
+    for (const file of [records, frames]) {
+      add(await measureDrop(server.url, file));
+      add(await measureCancel(server.url, file));
+    }
   } finally {
     await server.close();
     rmSync(folder, { recursive: true, force: true });
@@ -94,13 +100,12 @@ async function measureSharing(
   ];
 }
 
-/** One whole run with as many workers as the machine has cores, and one that is cancelled. */
+const WORKERS = 2;
+
+/** One whole run. */
 async function measureDrop(url: string, { what, path, preset }: LongFile): Promise<ReportRow[]> {
-  const workers = 2;
   console.error(`${what}: whole run`);
-  const drop = await withVisit(url, workers, (visit) => dropFile(visit, preset, path, true));
-  console.error(`${what}: cancel`);
-  const cancel = await withVisit(url, workers, (visit) => cancelRun(visit, preset, path));
+  const drop = await withVisit(url, WORKERS, (visit) => dropFile(visit, preset, path, true));
   const size = `${(statSync(path).size / 1e9).toFixed(1)} GB of ${what}`;
   const first = {
     figure: drop.firstMapSeconds,
@@ -114,6 +119,13 @@ async function measureDrop(url: string, { what, path, preset }: LongFile): Promi
     plainRow(`Chromium, file drop to counts, ${size}`, drop.countedSeconds, 's'),
     plainRow(`Chromium, file drop to the end, fingerprint included, ${size}`, drop.doneSeconds, 's'),
     plainRow(`Chromium, longest task on the page's thread, ${size}`, drop.longestTaskMs, 'ms'),
+  ];
+}
+async function measureCancel(url: string, { what, path, preset }: LongFile): Promise<ReportRow[]> {
+  console.error(`${what}: cancel`);
+  const cancel = await withVisit(url, WORKERS, (visit) => cancelRun(visit, preset, path));
+  const size = `${(statSync(path).size / 1e9).toFixed(1)} GB of ${what}`;
+  return [
     plainRow(`Chromium, cancel until said, ${size}`, cancel.saidMs, 'ms'),
     ...(cancel.restMs === null
       ? []
