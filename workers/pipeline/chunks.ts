@@ -5,7 +5,7 @@ import type { ReaderFacts, ReadRange } from '../../shared/contracts/reader';
  * file order: floating sums come out bit by bit the same on one worker, on many, and on another machine. Where a counter
  * rolls over, chunks tell each other their rollovers (`OffsetChain`); their bytes, some 32 MiB, stay at hand meanwhile.
  */
-const FIRST_RECORDS = 2 ** 20;
+const FIRST_RECORDS = 2 ** 19;
 /** Records of the first look for the coincidence peak: whole chunks, so that their pairs tell it as well. */
 export const SEARCH_RECORDS = 2 * FIRST_RECORDS;
 const RECORDS = 2 ** 22;

@@ -257,8 +257,9 @@ export async function findChosen(
   const { facts } = input.studyInput;
   if (spec === null || facts.kind !== 'tags') return {};
   const request = { ...input, spec };
-  // When nothing stands out of the first records, the whole acquisition is searched.
-  for (const end of new Set([Math.min(SEARCH_RECORDS, facts.records), facts.records])) {
+  // When nothing stands out of the first records, more are searched, at last all.
+  const ends = [SEARCH_RECORDS, 16 * SEARCH_RECORDS, facts.records];
+  for (const end of new Set(ends.map((each) => Math.min(each, facts.records)))) {
     const tally = await countRange(job, request, { start: 0, end }, memo);
     const found = tally.kind === 'tags' ? study.choose(tally, input.studyInput, dials) : null;
     if (found !== null) return found;

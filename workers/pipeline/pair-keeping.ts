@@ -9,7 +9,7 @@ const MARGIN = 1 / 8;
 const MOST_TICKS = 2 ** 32;
 /**
  * The pass that looks for the delay may keep this much, two pairs a record: beyond, keeping takes longer than reading
- * its two million records again.
+ * its million records again.
  */
 const SEARCH_BYTES = 32 * 2 ** 20;
 

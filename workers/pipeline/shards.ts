@@ -38,7 +38,7 @@ export interface ShardRequest extends RunRequest {
  * A run in pieces, each on a machine of its own. Shard i of n counts chunks floor((i-1) m/n) to floor(i m/n) of the m
  * chunks of every input, which the file alone decides, so the parts merge as the chunks of one machine would.
  *
- * Cost of a shard beside its chunks: the search for the delay over the first two million records (over all of them when
+ * Cost of a shard beside its chunks: the search for the delay over the first million records (over more, at last over all of them, when
  * no peak stands out), unless the dials say delay and window; and, where a counter rolls over, a scan of what comes
  * before its chunks, by each of its workers.
  */
