@@ -29,7 +29,7 @@ export interface FramePeak {
   shape: PeakShape;
   /** Cut-out of the map that was fitted: first bin and size; and the model there. */
   region: MapRegion;
-  model: Float64Array;
+  readonly model: Float64Array;
   /** The cut-out reaches past the window that is known block by block: errors would come out too small. */
   uncovered: boolean;
   /** Share of the peak on bins that were left out (own pairs, crosstalk). */
@@ -39,7 +39,7 @@ export interface FramePeak {
   /** Whether the envelope of the other coordinate was used. */
   enveloped: boolean;
   /** blocks * FIT_PARAMETERS. */
-  influence: Float64Array;
+  readonly influence: Float64Array;
 }
 
 export const DIFFERENCE_PIXEL_VARIANCE = 1 / 6;
@@ -243,13 +243,18 @@ function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null 
   const used = use.reduce((n, u) => n + u, 0);
   // Difference bins d and -d are copies: half of the chi^2 and half of the bins.
   const share = minus ? 0.5 : 1;
-  const influence = blockInfluence(
-    fit,
-    map.blocks,
-    byBlock(use, (b) => cells.sum((bin) => map.blockValue(b, bin))),
-    held === null ? () => ({ amplitude: 0, background: 0 }) : held.share,
-  );
-  scaleInfluence(influence, side);
+  const computeInfluence = (): Float64Array => {
+    const influence = blockInfluence(
+      fit,
+      map.blocks,
+      byBlock(use, (b) => cells.sum((bin) => map.blockValue(b, bin))),
+      held === null ? () => ({ amplitude: 0, background: 0 }) : held.share,
+    );
+    scaleInfluence(influence, side);
+    return influence;
+  };
+  let influence: Float64Array | null = null;
+  let model: Float64Array | null = side === 1 ? fit.model : null;
   return {
     kind: map.kind,
     fit,
@@ -260,13 +265,20 @@ function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null 
     my: shape.my,
     shape,
     region,
-    model: side === 1 ? fit.model : fineModel(map, fit, region, origin, shape, envelopeAt),
+    get model() {
+      model ??= fineModel(map, fit, region, origin, shape, envelopeAt);
+      return model;
+    },
     uncovered: reachesPast(region, map.blockWindow),
     hidden: hiddenShare(fit, cells, use),
     chi2: share * fit.objective,
     ndf: Math.max(Math.round(share * used) - fit.free.length, 0),
     enveloped: other !== null,
-    influence,
+    // Costs more than the fit and is wanted of the last round alone.
+    get influence() {
+      influence ??= computeInfluence();
+      return influence;
+    },
   };
 }
 
