@@ -4,7 +4,7 @@ import { Problem } from '../../shared/errors/problem';
 import { type CompiledKernels, NO_COMPILED_KERNELS } from './compiled-kernels';
 import { createFrameAccumulator, frameAccumulatorFromPart } from './frame-accumulator';
 import type { FramePart } from './frame-part';
-import { createTagAccumulator, tagAccumulatorFromPart } from './tag-accumulator';
+import { createTagAccumulator, TagAccumulator, tagAccumulatorFromPart } from './tag-accumulator';
 import type { TagPart } from './tag-part';
 
 export type Part = TagPart | FramePart;
@@ -46,4 +46,10 @@ export function accumulatorFromPart(spec: TallySpec, part: Part): Accumulator {
   if (spec.kind === 'tags' && part.kind === 'tags') return tagAccumulatorFromPart(spec, part);
   if (spec.kind === 'frames' && part.kind === 'frames') return frameAccumulatorFromPart(spec, part);
   throw new Problem('bad-input', `A part of ${spec.kind} was expected, one of ${part.kind} was found.`);
+}
+
+/** As `merge` of an accumulator made from the part of `spec`, without making one where that can be avoided. */
+export function mergePart(into: Accumulator, spec: TallySpec, part: Part): void {
+  if (into instanceof TagAccumulator && part.kind === 'tags') into.mergePart(part);
+  else into.merge(accumulatorFromPart(spec, part));
 }

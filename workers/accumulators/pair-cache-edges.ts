@@ -18,13 +18,9 @@ export interface EdgeTags {
 
 /** Follows the earliest and the latest tags of blocks; nothing is sorted while blocks come in order. */
 export class EdgeKeeper {
-  #edges: EdgeTags;
+  #edges: EdgeTags = { earliest: [], latest: [] };
   /** Last tags of blocks that may be among the latest. */
   #waiting: { refTick: bigint; time: Float64Array; site: Int32Array }[] = [];
-
-  constructor(edges: EdgeTags = { earliest: [], latest: [] }) {
-    this.#edges = edges;
-  }
 
   /** Takes the sorted tags [start, stop) into account. */
   offer({ time, site }: TagColumns, start: number, stop: number, refTick: bigint): void {
@@ -50,8 +46,8 @@ export class EdgeKeeper {
     }
   }
 
-  join(next: EdgeKeeper): void {
-    const [own, others] = [this.edges(), next.edges()];
+  join(others: EdgeTags): void {
+    const own = this.edges();
     this.#edges = {
       earliest: inOrder([...own.earliest, ...others.earliest]).slice(0, EDGE_TAGS),
       latest: inOrder([...own.latest, ...others.latest]).slice(-EDGE_TAGS),

@@ -1,12 +1,13 @@
 import type { TagSpec } from '../../shared/contracts/tally';
 import type { TagColumns } from '../kernels/tag-columns';
-import type { PairCandidates } from '../kernels/tag-scan';
 import { EdgeKeeper, type EdgeTags } from './pair-cache-edges';
-import { BYTES_PER_PAIR, type KeptPairs, keptBytes, PairColumnsKept } from './pair-cache-store';
-import { type SliceGrid, SliceRing, type SlotClock, sliceEnd, slotOf } from './slice-grid';
+import { BYTES_PER_PAIR, type FoundPairs, type KeptPairs, keptBytes } from './pair-cache-store';
+import type { SliceGrid, SliceRing } from './slice-grid';
 
 /** Above this many pixels in both arms singles are not kept per pixel and slice, and another mask needs the bytes. */
-const MASKABLE_SITES = 8192;
+export const MASKABLE_SITES = 8192;
+/** Pairs sealed at a time: they and their copy stay in the last-level cache. */
+export const SEALED_PAIRS = 2 ** 20;
 
 /** What a range has kept beside its counts, as plain data. */
 export interface KeptPart {
@@ -18,23 +19,30 @@ export interface KeptPart {
 
 /**
  * Keeps every pair with tau in the range of `TagSpec.keepPairs`, and of the tags what another mask would change. Used by
- * the tag accumulator at the moments its counts change; the slice grid is that of the accumulator.
- * Memory: 7 bytes a pair, 8 bytes a slice and pixel.
+ * the tag accumulator at the moments its counts change; the slice grid is that of the accumulator, pairs and tags per
+ * slice and site come from its machine.
+ * Memory: 7 bytes a pair, 16 MiB for those to be sealed, 8 bytes a slice and pixel.
  */
 export class PairKeeper {
-  readonly #found: PairColumnsKept;
-  readonly #sites: number;
+  readonly #found: FoundPairs;
+  readonly #grid: SliceGrid;
   readonly #most: number;
   readonly #singles: SliceRing | null;
   #stores: KeptPairs[] = [];
   #edges = new EdgeKeeper();
   #isOverfull = false;
 
-  constructor(spec: TagSpec, range: NonNullable<TagSpec['keepPairs']>) {
-    this.#found = new PairColumnsKept(range);
+  constructor(
+    range: NonNullable<TagSpec['keepPairs']>,
+    grid: SliceGrid,
+    found: FoundPairs,
+    singles: SliceRing | null,
+  ) {
+    this.#found = found;
+    this.#grid = grid;
     this.#most = range.most ?? Number.POSITIVE_INFINITY;
-    this.#sites = spec.a.width * spec.a.height + spec.b.width * spec.b.height;
-    this.#singles = this.#sites <= MASKABLE_SITES ? new SliceRing(this.#sites) : null;
+    this.#singles = singles;
+    found.onGrowth = () => this.#makeRoom();
   }
 
   /** Bytes of the pairs so far. */
@@ -49,25 +57,9 @@ export class PairKeeper {
     return this.#isOverfull;
   }
 
-  /** Candidates of a scan, before the windows choose among them. */
-  takePairs(candidates: PairCandidates, count: number, clock: SlotClock): void {
-    if (this.#isOverfull) return;
-    this.#found.add(candidates, count, clock);
-    this.#checkRoom();
-  }
-
-  /** Sorted tags [start, stop) with times after `refTick`, which the grid covers already. */
-  takeTags(tags: TagColumns, start: number, stop: number, refTick: bigint, grid: SliceGrid): void {
+  /** Sorted tags [start, stop) with times after `refTick`. */
+  takeTags(tags: TagColumns, start: number, stop: number, refTick: bigint): void {
     this.#edges.offer(tags, start, stop, refTick);
-    if (this.#singles === null) return;
-    const { time, site } = tags;
-    const { counts } = this.#singles;
-    const clock = grid.clockAt(refTick);
-    for (let i = start; i < stop; ) {
-      const end = sliceEnd(clock, time[i]!);
-      const row = slotOf(clock, time[i]!) * this.#sites;
-      for (; i < stop && time[i]! < end; i++) counts[row + site[i]!]! += 1;
-    }
   }
 
   /** After the grid doubled its slices; [first, first + count) were in use before. */
@@ -76,41 +68,41 @@ export class PairKeeper {
     this.#singles?.fold(doublings, first, count);
   }
 
-  /** Adds what the following range has kept, whose grid is `nextGrid`; this one's covers it already. */
-  merge(next: PairKeeper, nextGrid: SliceGrid, doublings: number): void {
-    this.#stores.push(...next.#sealed(nextGrid));
-    this.#checkRoom();
-    this.#edges.join(next.#edges);
-    if (next.#singles !== null) {
-      this.#singles?.addRing(next.#singles, doublings, nextGrid.first, nextGrid.count);
-    }
+  /** Adds what the following range has kept over slices [first, first + count), shorter by `doublings` doublings. */
+  merge(next: KeptPart, doublings: number, first: number, count: number): void {
+    if (this.#isOverfull) return;
+    this.#stores.push(...next.stores);
+    this.#makeRoom();
+    this.#edges.join(next.edges);
+    if (next.singles !== null) this.#singles?.addDense(next.singles, first, count, doublings);
   }
 
-  toPart(grid: SliceGrid): KeptPart {
+  toPart(): KeptPart {
+    this.#seal();
     return {
-      stores: this.#sealed(grid),
-      singles: this.#singles?.toDense(grid.first, grid.count) ?? null,
+      stores: [...this.#stores],
+      singles: this.#singles?.toDense(this.#grid.first, this.#grid.count) ?? null,
       edges: this.#edges.edges(),
     };
   }
 
-  load(part: KeptPart, grid: SliceGrid): void {
-    this.#stores = [...part.stores];
-    this.#edges = new EdgeKeeper(part.edges);
-    if (part.singles !== null) this.#singles?.addDense(part.singles, grid.first, grid.count);
-  }
-
-  #checkRoom(): void {
-    const pairs = this.#stores.reduce((sum, store) => sum + store.offset.length, this.#found.count);
-    if (pairs <= this.#most) return;
+  #makeRoom(): void {
+    // Of the pairs found some may be beyond the range to be kept: sealing tells.
+    if (this.#found.count >= SEALED_PAIRS || this.#pairs > this.#most) this.#seal();
+    if (!this.#isOverfull && this.#pairs <= this.#most) return;
     this.#isOverfull = true;
     this.#stores = [];
     this.#found.clear();
   }
 
+  get #pairs(): number {
+    return this.#stores.reduce((sum, store) => sum + store.offset.length, this.#found.count);
+  }
+
   /** Sealed stores are never written again and may be shared. */
-  #sealed(grid: SliceGrid): KeptPairs[] {
-    const sealed = this.#found.count === 0 ? [] : [this.#found.seal(grid.bits, grid.first)];
-    return [...this.#stores, ...sealed];
+  #seal(): void {
+    if (this.#found.count === 0 || this.#isOverfull) return;
+    this.#stores.push(this.#found.seal(this.#grid.bits, this.#grid.first));
+    this.#found.clear();
   }
 }

@@ -28,15 +28,29 @@ export interface KeptPairs extends KeptColumns {
   starts: Uint32Array;
 }
 
-export function bucketBitsOf({ minTauTick, maxTauTick }: KeptRange): number {
+export function bucketsOf({ minTauTick, maxTauTick }: KeptRange): { bucketBits: number; buckets: number } {
   const span = maxTauTick - minTauTick + 1;
-  let bits = 0;
-  while (bits < MOST_BUCKET_BITS && span / 2 ** bits > BUCKETS) bits += 1;
-  return bits;
+  let bucketBits = 0;
+  while (bucketBits < MOST_BUCKET_BITS && span / 2 ** bucketBits > BUCKETS) bucketBits += 1;
+  return { bucketBits, buckets: Math.ceil(span / 2 ** bucketBits) };
 }
 
-/** Growing columns of pairs as the scans find them. */
-export class PairColumnsKept {
+/** Pairs as the scans find them, until they are sealed. */
+export interface FoundPairs {
+  readonly count: number;
+  /** Called whenever there are more of them, which is the time to seal many of them. */
+  onGrowth: () => void;
+  /** Slots after the slice length doubled `doublings` times; `firstSlice` was the first in use before. */
+  fold(doublings: number, firstSlice: number): void;
+  /** A copy in buckets of tau. Counting sort, O(pairs + buckets). */
+  seal(bits: number, firstSlice: number): KeptPairs;
+  /** Forgets them. */
+  clear(): void;
+}
+
+/** In growing columns. */
+export class PairColumnsKept implements FoundPairs {
+  onGrowth: () => void = () => undefined;
   readonly #range: KeptRange;
   #rise = new Uint32Array(0);
   #pixelA = new Uint16Array(0);
@@ -67,29 +81,21 @@ export class PairColumnsKept {
       at += 1;
     }
     this.count = at;
+    this.onGrowth();
   }
 
-  /** Forgets the pairs and their memory. */
   clear(): void {
-    this.#rise = new Uint32Array(0);
-    this.#pixelA = new Uint16Array(0);
-    this.#pixelB = new Uint16Array(0);
-    this.#slot = new Uint8Array(0);
     this.count = 0;
   }
 
-  /** Slots after the slice length doubled `doublings` times; `firstSlice` was the first in use before. */
   fold(doublings: number, firstSlice: number): void {
     const folded = foldSlots(doublings, firstSlice);
     const slot = this.#slot;
     for (let i = 0; i < this.count; i++) slot[i] = folded[slot[i]!]!;
   }
 
-  /** A copy in buckets of tau. Counting sort, O(pairs + buckets). */
   seal(bits: number, firstSlice: number): KeptPairs {
-    const { minTauTick, maxTauTick } = this.#range;
-    const bucketBits = bucketBitsOf(this.#range);
-    const buckets = Math.floor((maxTauTick - minTauTick) / 2 ** bucketBits) + 1;
+    const { bucketBits, buckets } = bucketsOf(this.#range);
     const mask = 2 ** bucketBits - 1;
     const count = this.count;
     const rise = this.#rise;
@@ -176,7 +182,7 @@ export function slicesOfSlots(doublings: number, firstSlice: number): Float64Arr
   return slices;
 }
 
-function foldSlots(doublings: number, firstSlice: number): Uint8Array {
+export function foldSlots(doublings: number, firstSlice: number): Uint8Array {
   return Uint8Array.from(slicesOfSlots(doublings, firstSlice), (slice) => slice & (SLICE_LIMIT - 1));
 }
 

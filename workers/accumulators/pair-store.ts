@@ -66,14 +66,12 @@ export class PairStore {
     for (const ring of Object.values(this.#rings)) ring.fold(doublings, first, count);
   }
 
-  addStore(other: PairStore, doublings: number, first: number, count: number): void {
-    for (const name of ringNames) this.#rings[name].addRing(other.#rings[name], doublings, first, count);
-    this.#addTotals(other.#difference.values, other.#sum.values, other.#matrix?.values ?? null);
-  }
-
-  addTally(tally: PairTally, first: number, count: number): void {
-    for (const name of ringNames) this.#rings[name].addDense(tally[name], first, count);
-    this.#addTotals(tally.difference, tally.sum, tally.matrix);
+  /** Adds what slices [first, first + count), shorter by `doublings` doublings, have counted. */
+  addTally(tally: PairTally, doublings: number, first: number, count: number): void {
+    for (const name of ringNames) this.#rings[name].addDense(tally[name], first, count, doublings);
+    addInto(this.#difference.values, tally.difference);
+    addInto(this.#sum.values, tally.sum);
+    if (this.#matrix !== null && tally.matrix !== null) addInto(this.#matrix.values, tally.matrix);
   }
 
   tally(first: number, count: number): PairTally {
@@ -88,12 +86,6 @@ export class PairStore {
       sum: this.#sum.values.slice(),
       matrix: this.#matrix?.values.slice() ?? null,
     };
-  }
-
-  #addTotals(difference: Float64Array, sum: Float64Array, matrix: Float64Array | null): void {
-    addInto(this.#difference.values, difference);
-    addInto(this.#sum.values, sum);
-    if (this.#matrix !== null && matrix !== null) addInto(this.#matrix.values, matrix);
   }
 }
 

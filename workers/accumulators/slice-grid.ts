@@ -110,16 +110,11 @@ export class SliceRing {
     }
   }
 
-  /** Adds another ring whose slices are shorter by `doublings` doublings. */
-  addRing(other: SliceRing, doublings: number, first: number, count: number): void {
-    for (let slice = first; slice < first + count; slice++) {
-      this.#addSlot(Math.floor(slice / 2 ** doublings), other.counts, slotOfSlice(slice) * this.cells);
+  /** Adds `count` slices in order of time, as `toDense` gives them, that are shorter by `doublings` doublings. */
+  addDense(dense: Float64Array, first: number, count: number, doublings: number): void {
+    for (let i = 0; i < count; i++) {
+      this.#addSlot(Math.floor((first + i) / 2 ** doublings), dense, i * this.cells);
     }
-  }
-
-  /** Adds `count` slices in order of time, as `toDense` gives them. */
-  addDense(dense: Float64Array, first: number, count: number): void {
-    for (let i = 0; i < count; i++) this.#addSlot(first + i, dense, i * this.cells);
   }
 
   /** A copy in order of time, [slice][cell]. */

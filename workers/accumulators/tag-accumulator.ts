@@ -54,11 +54,13 @@ export class TagAccumulator {
     this.#spec = spec;
     this.#plan = planTags(spec);
     this.#grid = new SliceGrid(spec.tickFs, leastBits);
-    this.#keeper = spec.keepPairs ? new PairKeeper(spec, spec.keepPairs) : null;
     this.#machine =
-      kernels !== null && canCompile(kernels, this.#plan)
-        ? new CompiledTagMachine(kernels, spec, this.#plan, this.#keeper)
-        : new ScriptTagMachine(spec, this.#plan, this.#keeper);
+      kernels !== null && canCompile(kernels, spec, this.#plan)
+        ? new CompiledTagMachine(kernels, spec, this.#plan)
+        : new ScriptTagMachine(spec, this.#plan);
+    const { found, sitesPerSlice } = this.#machine;
+    this.#keeper =
+      spec.keepPairs && found ? new PairKeeper(spec.keepPairs, this.#grid, found, sitesPerSlice) : null;
     this.#tail = createBorder(this.#machine.work);
   }
 
@@ -82,7 +84,7 @@ export class TagAccumulator {
     const machine = this.#machine;
     const { work } = machine;
     const start = work.count;
-    const { latest, late } = machine.take(from, to, this.#tail.markTick);
+    const { latest, late, isSorted } = machine.take(from, to, this.#tail.markTick);
     this.#tail.markTick = latest;
     this.#outOfOrder += late;
     const stop = work.count;
@@ -93,15 +95,17 @@ export class TagAccumulator {
       this.#head.markTick = this.#plan.horizonTick + this.#plan.reachTick;
     }
     this.#tags += stop - start;
-    machine.sort(start, stop);
+    if (!isSorted) machine.sort(start, stop);
     const { time } = work;
     this.#cover(baseTick + BigInt(time[start]!), baseTick + BigInt(time[stop - 1]!));
     this.#countPerSlice(start, stop);
-    this.#keeper?.takeTags(work, start, stop, baseTick, this.#grid);
+    this.#keeper?.takeTags(work, start, stop, baseTick);
     offerToHead(this.#head, work, start, stop, baseTick);
     const clock = this.#grid.clockAt(baseTick);
     machine.scanBorder(start, work, start, stop, clock);
     machine.scanWithin(start, stop, clock);
+    // Both the tail and what was appended to it are in order.
+    if (start > 0 && work.time[start - 1]! > work.time[start]!) machine.sort(0, stop);
     this.#trimTail();
   }
 
@@ -113,32 +117,43 @@ export class TagAccumulator {
         'Tag counts can only be merged with tag counts of the same acquisition.',
       );
     }
-    this.#records += next.#records;
-    this.#unmapped += next.#unmapped;
-    this.#outOfOrder += next.#outOfOrder;
-    const { firstTick, lastTick } = next.#grid;
-    if (firstTick === null || lastTick === null) return;
-    this.#cover(firstTick, lastTick);
-    next.#machine.settle();
-    addInto(this.#machine.singles, next.#machine.singles);
-    addInto(this.#machine.histogram, next.#machine.histogram);
-    const doublings = this.#grid.bits - next.#grid.bits;
-    const { first, count } = next.#grid;
-    this.#singlesPerSlice.addRing(next.#singlesPerSlice, doublings, first, count);
-    this.#machine.prompt.addStore(next.#machine.prompt, doublings, first, count);
-    this.#machine.shifted.addStore(next.#machine.shifted, doublings, first, count);
-    if (next.#keeper !== null && !next.#keeper.isOverfull)
-      this.#keeper?.merge(next.#keeper, next.#grid, doublings);
+    this.mergePart(next.toPart());
+  }
+
+  /**
+   * Adds the range that follows this one in the acquisition.
+   * @throws Problem `newer-version` for a part of a later engine, `bad-input` for one of other arms or windows.
+   */
+  mergePart(part: TagPart): void {
+    assertTagPart(this.#spec, part);
+    const { tally, kept } = part;
+    this.#records += tally.records;
+    this.#unmapped += tally.unmapped;
+    this.#outOfOrder += tally.outOfOrder;
+    if (tally.firstTick === null || tally.lastTick === null) return;
+    this.#cover(tally.firstTick, tally.lastTick);
+    const machine = this.#machine;
+    const { sitesA } = this.#plan;
+    addInto(machine.singles.subarray(0, sitesA), tally.a.singles);
+    addInto(machine.singles.subarray(sitesA), tally.b.singles);
+    addInto(machine.histogram, tally.histogram.counts);
+    const { firstSlice: first, slices: count } = tally;
+    const doublings = this.#grid.bits - Math.log2(tally.sliceTick);
+    const perSlice = interleave(tally.a.singlesPerSlice, tally.b.singlesPerSlice);
+    this.#singlesPerSlice.addDense(perSlice, first, count, doublings);
+    machine.prompt.addTally(tally.prompt, doublings, first, count);
+    machine.shifted.addTally(tally.shifted, doublings, first, count);
+    if (kept) this.#keeper?.merge(kept, doublings, first, count);
     else this.dropKept();
-    const head = borderFromPart(borderToPart(next.#head));
-    const tail = borderFromPart(borderToPart(next.#tail));
+    const head = borderFromPart(part.head);
+    const tail = borderFromPart(part.tail);
     if (this.#tags === 0) {
       this.#head = head;
       this.#loadTail(tail);
     } else {
       this.#joinBorders(head, tail);
     }
-    this.#tags += next.#tags;
+    this.#tags += tally.tags;
   }
 
   tally(): TagTally {
@@ -183,7 +198,7 @@ export class TagAccumulator {
 
   /** What was kept beside the counts; null when `TagSpec.keepPairs` did not ask, or some of it was dropped. */
   kept(): KeptPart | null {
-    return this.#keeper === null || this.#keeper.isOverfull ? null : this.#keeper.toPart(this.#grid);
+    return this.#keeper === null || this.#keeper.isOverfull ? null : this.#keeper.toPart();
   }
 
   /** Bytes of the pairs kept so far; null where `kept` is. */
@@ -194,33 +209,7 @@ export class TagAccumulator {
   /** Keeps no pairs any more and forgets those at hand; the counts go on. */
   dropKept(): void {
     this.#keeper = null;
-    this.#machine.dropKeeper();
-  }
-
-  /** Fills an accumulator that has counted nothing yet. */
-  load(part: TagPart): void {
-    const { tally } = part;
-    this.#records = tally.records;
-    this.#tags = tally.tags;
-    this.#unmapped = tally.unmapped;
-    this.#outOfOrder = tally.outOfOrder;
-    if (tally.firstTick !== null && tally.lastTick !== null)
-      this.#grid.cover(tally.firstTick, tally.lastTick);
-    const { first, count } = this.#grid;
-    this.#machine.singles.set(tally.a.singles, 0);
-    this.#machine.singles.set(tally.b.singles, this.#plan.sitesA);
-    this.#singlesPerSlice.addDense(
-      interleave(tally.a.singlesPerSlice, tally.b.singlesPerSlice),
-      first,
-      count,
-    );
-    this.#machine.histogram.set(tally.histogram.counts);
-    this.#machine.prompt.addTally(tally.prompt, first, count);
-    this.#machine.shifted.addTally(tally.shifted, first, count);
-    this.#head = borderFromPart(part.head);
-    this.#loadTail(borderFromPart(part.tail));
-    if (part.kept) this.#keeper?.load(part.kept, this.#grid);
-    else this.dropKept();
+    this.#machine.dropKept();
   }
 
   /** Slices are 2^sliceBits ticks long by now: never shorter later. */
@@ -259,17 +248,17 @@ export class TagAccumulator {
       const high = firstAtLeast(time, low + 1, stop, sliceEnd(clock, time[low]!));
       const cell = 2 * slotOf(clock, time[low]!);
       const ofA = this.#machine.countArmA(low, high);
+      this.#machine.countSites(low, high, cell / 2);
       counts[cell]! += ofA;
       counts[cell + 1]! += high - low - ofA;
       low = high;
     }
   }
 
-  /** Drops the tags that no later tag can meet. */
+  /** Drops the tags, sorted, that no later tag can meet. */
   #trimTail(): void {
     const { tags, markTick } = this.#tail;
     const { horizonTick, reachTick } = this.#plan;
-    this.#machine.sort(0, tags.count);
     tags.dropBefore(firstAtLeast(tags.time, 0, tags.count, markTick - horizonTick - reachTick));
   }
 
@@ -282,6 +271,7 @@ export class TagAccumulator {
     joinHeads(this.#head, head);
     rebaseTail(this.#tail, tail.refTick);
     this.#tail.tags.append(tail.tags.time, tail.tags.site, 0, tail.tags.count, 0);
+    this.#machine.sort(0, this.#tail.tags.count);
     this.#tail.markTick = Math.max(this.#tail.markTick, tail.markTick);
     this.#trimTail();
   }
@@ -326,6 +316,6 @@ export function createTagAccumulator(
 export function tagAccumulatorFromPart(spec: TagSpec, part: TagPart): TagAccumulator {
   assertTagPart(spec, part);
   const accumulator = new TagAccumulator(spec, null, Math.log2(part.tally.sliceTick));
-  accumulator.load(part);
+  accumulator.mergePart(part);
   return accumulator;
 }

@@ -1,13 +1,15 @@
 import type { TagBlock } from '../../shared/contracts/blocks';
 import type { ArmSpec, TagSpec } from '../../shared/contracts/tally';
-import { type PlacedWindow, ScanPlan } from '../kernels/scan-plan';
+import { MOST_SPAN, PairScan, type PlacedWindow } from '../kernels/pair-scan';
 import type { TagColumns } from '../kernels/tag-columns';
 import { PlacedTagColumns } from '../kernels/tag-columns-wasm';
+import { firstAtLeast } from '../kernels/tag-sort';
 import type { TagWasm } from '../kernels/tag-wasm';
-import { type PlaceCounts, placeInHeap } from './count-array';
-import type { PairKeeper } from './pair-cache-keeper';
+import { type CountArray, type PlaceCounts, placeInHeap } from './count-array';
+import { MASKABLE_SITES, SEALED_PAIRS } from './pair-cache-keeper';
+import { PlacedPairs } from './pair-cache-placed';
 import { PairStore } from './pair-store';
-import type { SlotClock } from './slice-grid';
+import { SliceRing, type SlotClock, sliceEnd, slotOf } from './slice-grid';
 import type { Disorder, TagMachine } from './tag-machine';
 import type { TagPlan } from './tag-plan';
 
@@ -19,17 +21,23 @@ const TURNS = 64;
 /** Modules whose memory an accumulator holds: there is one at a time, because memory is given back in reverse. */
 const busy = new WeakSet<TagWasm>();
 
-/** The scans find a bin by rounding, exact for so many bins away from the first. */
-const MOST_BINS = 2 ** 50;
+/** Pixels of both arms of a pair share 32 bits. */
+const MOST_PIXELS = 2 ** 16;
 
-/** Whether the compiled loops can serve the plan: nobody else holds the module, and its delays are within their range. */
-export function canCompile(wasm: TagWasm, { reachTick, loTick, binTick }: TagPlan): boolean {
-  return !busy.has(wasm) && (reachTick + Math.abs(loTick)) / binTick < MOST_BINS;
+/** Whether the compiled loops can serve: nobody else holds the module, and delays and pixels are within their range. */
+export function canCompile(wasm: TagWasm, { a, b }: TagSpec, { minTauTick, maxTauTick }: TagPlan): boolean {
+  return (
+    !busy.has(wasm) &&
+    a.width * a.height <= MOST_PIXELS &&
+    b.width * b.height <= MOST_PIXELS &&
+    maxTauTick - minTauTick <= MOST_SPAN
+  );
 }
 
 /**
  * The loops compiled, on columns in the module's memory. Blocks that lie there already are not copied. Memory: the
- * counters of the two `PairStore`s, about 1 MiB of tables, and 12 bytes a tag of the tail and a piece.
+ * counters of the two `PairStore`s, about 1 MiB of tables, 12 bytes a tag of the tail and a piece, and 16 MiB where pairs
+ * are kept.
  */
 export class CompiledTagMachine implements TagMachine {
   readonly pieceTags = PIECE;
@@ -41,22 +49,24 @@ export class CompiledTagMachine implements TagMachine {
   readonly #wasm: TagWasm;
   readonly #mark: number;
   readonly #plan: TagPlan;
-  readonly #scan: ScanPlan;
+  /** null when nothing is to be found in pairs. */
+  readonly #scan: PairScan | null;
   readonly #scratch: PlacedTagColumns;
   readonly #tableAt: number;
   readonly #singlesAt: number;
   readonly #orderAt: number;
   readonly #copyAt: number;
-  #keeper: PairKeeper | null;
+  found: PlacedPairs | null = null;
+  sitesPerSlice: SliceRing | null = null;
+  #sitesPerSliceAt = 0;
   #source: TagBlock | { deltaAt: number; channelAt: number } = { deltaAt: 0, channelAt: 0 };
   #turns = 0;
 
-  constructor(wasm: TagWasm, spec: TagSpec, plan: TagPlan, keeper: PairKeeper | null) {
+  constructor(wasm: TagWasm, spec: TagSpec, plan: TagPlan) {
     busy.add(wasm);
     this.#wasm = wasm;
     this.#mark = wasm.mark;
     this.#plan = plan;
-    this.#keeper = keeper;
     this.singles = new Float64Array(plan.sites);
     this.histogram = new Float64Array(spec.histogram.bins);
     const windows: PlacedWindow[] = [];
@@ -75,8 +85,21 @@ export class CompiledTagMachine implements TagMachine {
         windows.push({ loTick: loTick + shift, hiTick: hiTick + shift, countersAt: shifted.countersAt });
       }
     }
-    const collect = windows.length > 0 || keeper !== null;
-    this.#scan = new ScanPlan(wasm, plan, spec.histogram.bins, windows, collect);
+    const room = spec.keepPairs ? SEALED_PAIRS : 0;
+    this.#scan =
+      plan.minTauTick <= plan.maxTauTick
+        ? new PairScan(wasm, plan, spec.histogram.bins, windows, room)
+        : null;
+    if (spec.keepPairs && this.#scan !== null) {
+      this.found = new PlacedPairs(wasm, this.#scan, spec.keepPairs);
+      if (plan.sites <= MASKABLE_SITES) {
+        this.sitesPerSlice = new SliceRing(plan.sites, (length) => {
+          const { at, counters } = placeCounters(wasm, length);
+          this.#sitesPerSliceAt = at;
+          return counters;
+        });
+      }
+    }
     this.#singlesAt = wasm.place(4 * (plan.sites + 1));
     this.#tableAt = placeChannels(wasm, plan, this.#singlesAt);
     this.#orderAt = wasm.place(24);
@@ -99,8 +122,8 @@ export class CompiledTagMachine implements TagMachine {
     const wasm = this.#wasm;
     const { work } = this;
     const count = to - from;
-    // The kernels read one tag past the last.
-    work.reserve(work.count + count + 1);
+    // The kernels read up to four tags past the last.
+    work.reserve(work.count + count + 4);
     let deltaAt = this.#copyAt;
     let channelAt = this.#copyAt + 8 * PIECE;
     const source = this.#source;
@@ -116,10 +139,10 @@ export class CompiledTagMachine implements TagMachine {
     const kept = wasm.call.takeTags(deltaAt, channelAt, count, this.#tableAt, timeAt, siteAt);
     wasm.call.orderOf(timeAt, kept, latest, this.#plan.horizonTick, this.#orderAt);
     work.count += kept;
-    const order = wasm.f64(this.#orderAt, 2);
+    const order = wasm.f64(this.#orderAt, 3);
     this.#turns += 1;
     if (this.#turns >= TURNS) this.settle();
-    return { latest: order[0]!, late: order[1]! };
+    return { latest: order[0]!, late: order[1]!, isSorted: order[2] === 1 };
   }
 
   sort(start: number, stop: number): void {
@@ -136,38 +159,70 @@ export class CompiledTagMachine implements TagMachine {
     return this.#wasm.call.countBelow(this.work.siteAt + 4 * start, stop - start, this.#plan.sitesA);
   }
 
+  countSites(start: number, stop: number, slot: number): void {
+    if (this.sitesPerSlice === null) return;
+    const rowAt = this.#sitesPerSliceAt + 8 * slot * this.sitesPerSlice.cells;
+    this.#wasm.call.countSites(this.work.siteAt + 4 * start, stop - start, rowAt);
+  }
+
+  /** Slice by slice, so that all pairs inside a slice are known to be of that one. */
   scanWithin(start: number, stop: number, clock: SlotClock): void {
+    const scan = this.#scan;
+    if (scan === null) return;
     const { timeAt, siteAt } = this.work;
     const { call } = this.#wasm;
-    this.#scan.setClock(clock.slot, clock.offsetTick, clock.perTick);
-    while (call.scanTags(this.#scan.at, timeAt, siteAt, start, stop, stop) !== 0) this.#drain(clock);
-    this.#drain(clock);
+    for (let low = start; low < stop; ) {
+      // Looked at anew each turn: sealing pairs may move the memory.
+      const { time } = this.work;
+      const high = firstAtLeast(time, low + 1, stop, sliceEnd(clock, time[low]!));
+      const slot = slotOf(clock, time[low]!);
+      const left = { timeAt: timeAt + 8 * start, siteAt: siteAt + 4 * start };
+      const right = { timeAt: timeAt + 8 * low, siteAt: siteAt + 4 * low };
+      this.#scanBetween(scan, left, low - start, right, high - low, clock);
+      scan.setSlot(slot);
+      while (call.scanPairs(scan.at, timeAt, siteAt, low, high) !== 0) this.#drain(scan);
+      this.#drain(scan);
+      low = high;
+    }
   }
 
   scanBorder(workStop: number, tags: TagColumns, start: number, stop: number, clock: SlotClock): void {
-    if (workStop === 0 || start >= stop) return;
-    const { call } = this.#wasm;
+    if (this.#scan === null || workStop === 0 || start >= stop) return;
     const right = this.#placed(tags, start, stop);
-    const { timeAt, siteAt } = this.work;
-    const count = stop - start;
-    const plan = this.#scan.at;
-    this.#scan.setClock(clock.slot, clock.offsetTick, clock.perTick);
-    while (call.scanBetween(plan, timeAt, siteAt, workStop, right.timeAt, right.siteAt, count) !== 0) {
-      this.#drain(clock);
+    this.#scanBetween(this.#scan, this.work, workStop, right, stop - start, clock);
+  }
+
+  #scanBetween(
+    scan: PairScan,
+    left: { timeAt: number; siteAt: number },
+    leftCount: number,
+    right: { timeAt: number; siteAt: number },
+    rightCount: number,
+    clock: SlotClock,
+  ): void {
+    const { call } = this.#wasm;
+    const { timeAt, siteAt } = left;
+    scan.setClock(clock.slot, clock.offsetTick, clock.perTick);
+    while (
+      call.scanBetween(scan.at, timeAt, siteAt, leftCount, right.timeAt, right.siteAt, rightCount) !== 0
+    ) {
+      this.#drain(scan);
     }
-    this.#drain(clock);
+    this.#drain(scan);
   }
 
   settle(): void {
     this.#turns = 0;
-    this.#scan.takeHistogram(this.histogram);
+    this.#scan?.takeHistogram(this.histogram);
     const counts = this.#wasm.u32(this.#singlesAt, this.singles.length + 1);
     for (let i = 0; i < this.singles.length; i++) this.singles[i]! += counts[i + 1]!;
     counts.fill(0);
   }
 
-  dropKeeper(): void {
-    this.#keeper = null;
+  dropKept(): void {
+    this.found?.clear();
+    this.found = null;
+    this.sitesPerSlice = null;
   }
 
   release(): void {
@@ -187,13 +242,17 @@ export class CompiledTagMachine implements TagMachine {
     return { timeAt, siteAt };
   }
 
-  #drain(clock: SlotClock): void {
-    if (this.#scan.capacity === 0) return;
-    if (this.#keeper !== null) {
-      const { count, columns } = this.#scan.candidates();
-      this.#keeper.takePairs(columns, count, clock);
+  /** Counts the pairs at hand; they stay there as long as somebody keeps them. */
+  #drain(scan: PairScan): void {
+    const { pairs, slot } = scan.uncounted;
+    if (pairs === 0) return;
+    this.#wasm.call.countPairs(scan.at);
+    if (this.found === null) {
+      scan.clear();
+    } else {
+      this.found.add(slot, pairs);
+      this.found.onGrowth();
     }
-    this.#wasm.call.countWindows(this.#scan.at);
   }
 }
 
@@ -211,6 +270,17 @@ function placeChannels(wasm: TagWasm, { siteOfChannel, delayOfChannel }: TagPlan
   return at;
 }
 
+function placeCounters(wasm: TagWasm, length: number): { at: number; counters: CountArray } {
+  const at = wasm.place(8 * length);
+  wasm.f64(at, length).fill(0);
+  const counters = {
+    get values() {
+      return wasm.f64(at, length);
+    },
+  };
+  return { at, counters };
+}
+
 /** A store whose counters lie in the module, and the settings that tell the kernels where. */
 function placeStore(
   wasm: TagWasm,
@@ -219,14 +289,9 @@ function placeStore(
 ): { store: PairStore; countersAt: number } {
   const placed: number[] = [];
   const place: PlaceCounts = (length) => {
-    const at = wasm.place(8 * length);
-    wasm.f64(at, length).fill(0);
+    const { at, counters } = placeCounters(wasm, length);
     placed.push(at);
-    return {
-      get values() {
-        return wasm.f64(at, length);
-      },
-    };
+    return counters;
   };
   const store = new PairStore(a, b, true, place);
   const countersAt = wasm.place(64);

@@ -3,8 +3,9 @@ import type { TagSpec } from '../../shared/contracts/tally';
 import { TagColumns } from '../kernels/tag-columns';
 import { scanBetween, scanHistogram, scanWindows } from '../kernels/tag-scan';
 import { sortTags } from '../kernels/tag-sort';
-import type { PairKeeper } from './pair-cache-keeper';
-import type { SlotClock } from './slice-grid';
+import { MASKABLE_SITES } from './pair-cache-keeper';
+import { PairColumnsKept } from './pair-cache-store';
+import { SliceRing, type SlotClock } from './slice-grid';
 import type { Disorder, TagMachine } from './tag-machine';
 import type { TagPlan } from './tag-plan';
 import { WindowCounter } from './window-counter';
@@ -15,6 +16,8 @@ export class ScriptTagMachine implements TagMachine {
   readonly work = new TagColumns();
   readonly singles: Float64Array;
   readonly histogram: Float64Array;
+  found: PairColumnsKept | null;
+  sitesPerSlice: SliceRing | null;
   readonly #plan: TagPlan;
   readonly #windows: WindowCounter;
   readonly #scratch = new TagColumns();
@@ -22,11 +25,13 @@ export class ScriptTagMachine implements TagMachine {
   #wantsPairs: boolean;
   readonly #hasWindow: boolean;
 
-  constructor(spec: TagSpec, plan: TagPlan, keeper: PairKeeper | null) {
+  constructor(spec: TagSpec, plan: TagPlan) {
     this.#plan = plan;
-    this.#windows = new WindowCounter(spec, keeper);
+    this.found = spec.keepPairs ? new PairColumnsKept(spec.keepPairs) : null;
+    this.sitesPerSlice = spec.keepPairs && plan.sites <= MASKABLE_SITES ? new SliceRing(plan.sites) : null;
+    this.#windows = new WindowCounter(spec, this.found);
     this.#hasWindow = spec.window !== null;
-    this.#wantsPairs = this.#hasWindow || keeper !== null;
+    this.#wantsPairs = this.#hasWindow || this.found !== null;
     this.singles = new Float64Array(plan.sites);
     this.histogram = new Float64Array(spec.histogram.bins);
   }
@@ -44,7 +49,7 @@ export class ScriptTagMachine implements TagMachine {
 
   take(from: number, to: number, latest: number): Disorder {
     const block = this.#block;
-    if (block === null) return { latest, late: 0 };
+    if (block === null) return { latest, late: 0, isSorted: true };
     const { siteOfChannel, delayOfChannel, horizonTick } = this.#plan;
     const { deltaTick, channel } = block;
     const { work, singles } = this;
@@ -65,7 +70,7 @@ export class ScriptTagMachine implements TagMachine {
       else if (latest - t > horizonTick) late += 1;
     }
     work.count = at;
-    return { latest, late };
+    return { latest, late, isSorted: false };
   }
 
   sort(start: number, stop: number): void {
@@ -79,6 +84,14 @@ export class ScriptTagMachine implements TagMachine {
     // The sign bit instead of a comparison: arms alternate at random and a branch would be mispredicted.
     for (let i = start; i < stop; i++) ofA += (site[i]! - sitesA) >>> 31;
     return ofA;
+  }
+
+  countSites(start: number, stop: number, slot: number): void {
+    if (this.sitesPerSlice === null) return;
+    const { counts, cells } = this.sitesPerSlice;
+    const { site } = this.work;
+    const row = slot * cells;
+    for (let i = start; i < stop; i++) counts[row + site[i]!]! += 1;
   }
 
   scanWithin(start: number, stop: number, clock: SlotClock): void {
@@ -97,8 +110,10 @@ export class ScriptTagMachine implements TagMachine {
 
   settle(): void {}
 
-  dropKeeper(): void {
-    this.#windows.dropKeeper();
+  dropKept(): void {
+    this.found = null;
+    this.sitesPerSlice = null;
+    this.#windows.dropKept();
     this.#wantsPairs = this.#hasWindow;
   }
 

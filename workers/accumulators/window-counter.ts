@@ -1,7 +1,7 @@
 import type { ArmSpec, TagSpec } from '../../shared/contracts/tally';
 import { createPairColumns } from '../kernels/pair-counts';
 import type { PairSink } from '../kernels/tag-scan';
-import type { PairKeeper } from './pair-cache-keeper';
+import type { PairColumnsKept } from './pair-cache-store';
 import { PairStore } from './pair-store';
 import { type SlotClock, slotOf } from './slice-grid';
 
@@ -23,14 +23,14 @@ export class WindowCounter implements PairSink {
   readonly #chosen: ReturnType<typeof createPairColumns>;
   readonly #a: PixelTable;
   readonly #b: PixelTable;
-  #keeper: PairKeeper | null;
+  #kept: PairColumnsKept | null;
   #clock: SlotClock = { slot: 0, offsetTick: 0, perTick: 1 };
 
-  /** With a keeper all candidates go to it as well. */
-  constructor(spec: TagSpec, keeper: PairKeeper | null = null) {
+  /** All candidates go to `kept` as well. */
+  constructor(spec: TagSpec, kept: PairColumnsKept | null = null) {
     const enabled = spec.window !== null;
-    this.#keeper = keeper;
-    this.capacity = enabled || keeper !== null ? CAPACITY : 1;
+    this.#kept = kept;
+    this.capacity = enabled || kept !== null ? CAPACITY : 1;
     this.timeA = new Float64Array(this.capacity);
     this.tau = new Float64Array(this.capacity);
     this.pixelA = new Int32Array(this.capacity);
@@ -48,13 +48,13 @@ export class WindowCounter implements PairSink {
     this.#clock = clock;
   }
 
-  dropKeeper(): void {
-    this.#keeper = null;
+  dropKept(): void {
+    this.#kept = null;
   }
 
   drain(count: number): void {
     if (count === 0) return;
-    this.#keeper?.takePairs(this, count, this.#clock);
+    this.#kept?.add(this, count, this.#clock);
     if (this.#window === null) return;
     const { loTick, hiTick, shiftsTick } = this.#window;
     this.prompt.add(this.#chosen, this.#choose(count, loTick, hiTick));

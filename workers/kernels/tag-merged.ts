@@ -1,4 +1,4 @@
-import { ScanPlan } from './scan-plan';
+import { HistogramScan } from './histogram-scan';
 import { TagColumns } from './tag-columns';
 import { rangeWithin, type TickWindow } from './tag-lists';
 import { counted, lent } from './tag-lists-wasm';
@@ -52,9 +52,8 @@ export function compileMergedScans(wasm: TagWasm): MergedScans {
   return {
     histogram: (tags, loTick, binTick, out) =>
       lent(wasm, () => {
-        const range = histogramRange(tags.sitesA, loTick, binTick, out.length);
-        const plan = new ScanPlan(wasm, range, out.length, [], false);
-        const reach = Math.max(range.maxTauTick, -range.minTauTick);
+        const plan = new HistogramScan(wasm, tags.sitesA, loTick, binTick, out.length);
+        const reach = Math.max(loTick + out.length * binTick - 1, -loTick);
         inPieces(wasm, tags, reach, (timeAt, siteAt, startStop, stop) => {
           call.scanTags(plan.at, timeAt, siteAt, 0, startStop, stop);
         });

@@ -45,7 +45,8 @@ export interface TagExports {
     start: number,
     startStop: number,
     stop: number,
-  ): number;
+  ): void;
+  scanPairs(planAt: number, timeAt: number, siteAt: number, start: number, stop: number): number;
   scanBetween(
     planAt: number,
     leftTimeAt: number,
@@ -55,7 +56,35 @@ export interface TagExports {
     siteAt: number,
     stop: number,
   ): number;
-  countWindows(planAt: number): void;
+  countPairs(planAt: number): void;
+  countSites(siteAt: number, count: number, countsAt: number): void;
+  countBuckets(
+    riseAt: number,
+    count: number,
+    from: number,
+    span: number,
+    bits: number,
+    countsAt: number,
+  ): void;
+  toBuckets(
+    riseAt: number,
+    pixelAt: number,
+    count: number,
+    from: number,
+    span: number,
+    bits: number,
+    slot: number,
+    nextAt: number,
+    intoAt: number,
+  ): void;
+  toColumns(
+    fromAt: number,
+    count: number,
+    offsetAt: number,
+    pixelAAt: number,
+    pixelBAt: number,
+    slotAt: number,
+  ): void;
   matrixMerged(
     timeAt: number,
     siteAt: number,

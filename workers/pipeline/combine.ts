@@ -1,6 +1,6 @@
 import type { InputProvenance, RunResult } from '../../shared/contracts/engine';
 import { Problem } from '../../shared/errors/problem';
-import { type Accumulator, accumulatorFromPart, createAccumulator } from '../accumulators/accumulator';
+import { type Accumulator, createAccumulator, mergePart } from '../accumulators/accumulator';
 import { assertWholePart } from '../accumulators/whole-part';
 import { studyById } from '../studies/registry';
 import type { CountedInput, StudyInput } from '../studies/study';
@@ -49,7 +49,7 @@ export async function combineParts(
     }
     countings.push({ input, studyInput, spec, accumulator: createAccumulator(spec) });
   }
-  for (const { place } of [first, ...others]) await mergePart(countings, place, await load(place));
+  for (const { place } of [first, ...others]) await mergeFile(countings, place, await load(place));
   const counted = countings.map(({ input, studyInput, accumulator }): [string, CountedInput] => [
     input.name,
     { ...studyInput, tally: accumulator.tally(), chosen: input.chosen },
@@ -78,12 +78,12 @@ interface Counting {
   accumulator: Accumulator;
 }
 
-async function mergePart(countings: readonly Counting[], place: string, file: PartFile): Promise<void> {
+async function mergeFile(countings: readonly Counting[], place: string, file: PartFile): Promise<void> {
   for (const { input, spec, accumulator } of countings) {
     try {
       const part = file.parts[input.name];
       assertWholePart(spec, part);
-      accumulator.merge(accumulatorFromPart(spec, part));
+      mergePart(accumulator, spec, part);
     } catch (thrown) {
       if (thrown instanceof Problem) {
         throw new Problem(thrown.code, thrown.message, `${place}, input "${input.name}"`);

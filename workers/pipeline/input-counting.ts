@@ -1,11 +1,6 @@
 import type { ReadRange } from '../../shared/contracts/reader';
 import type { TagSpec, TagTally, Tally, TallySpec } from '../../shared/contracts/tally';
-import {
-  type Accumulator,
-  accumulatorFromPart,
-  createAccumulator,
-  type Part,
-} from '../accumulators/accumulator';
+import { type Accumulator, createAccumulator, mergePart, type Part } from '../accumulators/accumulator';
 import { type CompiledKernels, NO_COMPILED_KERNELS } from '../accumulators/compiled-kernels';
 import { isKeepable, PairCache } from '../accumulators/pair-cache';
 import { TagAccumulator } from '../accumulators/tag-accumulator';
@@ -110,7 +105,7 @@ export class InputCounting {
     const before = this.#merged;
     for (let next = this.#waiting.get(this.#merged); next; next = this.#waiting.get(this.#merged)) {
       this.#waiting.delete(this.#merged);
-      this.#accumulator.merge(accumulatorFromPart(this.spec, next));
+      mergePart(this.#accumulator, this.spec, next);
       if (this.#keeping !== null && this.chunks[this.#merged]?.end === SEARCH_RECORDS) {
         this.#first = this.#cacheOf(this.tally());
       }

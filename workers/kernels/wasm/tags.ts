@@ -10,5 +10,14 @@ export {
   decodeFourBig,
 } from './tags-decode';
 export { countTriples, histogramLists, imageLists, matrixLists } from './tags-lists';
-export { countWindows, matrixMerged, scanBetween, scanTags } from './tags-scan';
+export {
+  countBuckets,
+  countPairs,
+  countSites,
+  scanBetween,
+  scanPairs,
+  toBuckets,
+  toColumns,
+} from './tags-pairs';
+export { matrixMerged, scanTags } from './tags-scan';
 export { countBelow, dropDead, isSorted, orderOf, sortTags, takeTags } from './tags-take';
