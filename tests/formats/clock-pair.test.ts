@@ -1,5 +1,6 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
+import { createClockMap, mapTick } from '../../workers/formats/clock-map';
 import { openClockPair } from '../../workers/formats/clock-pair';
 import { openReader } from '../../workers/formats/registry';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
@@ -101,6 +102,45 @@ describe('tags of two clocks', () => {
     const whole = await readTags(reader);
     expect(whole.ticks.every((tick, i) => i === 0 || tick >= whole.ticks[i - 1]!)).toBe(true);
     expect(await readTags(reader, [1, 70_000, 98_304, 150_001, 224_999])).toEqual(whole);
+  });
+
+  it('come in short blocks when the second file is far denser and longer than the first', async () => {
+    const channelOf = (ticks: readonly bigint[]) => ticks.map((_, i) => i % 3);
+    const a = Array.from({ length: 50 }, (_, i) => BigInt(i) * 3_000_001n + 40n);
+    const b = Array.from({ length: 250_000 }, (_, i) => BigInt(i) * 1009n + BigInt((i * 7919) % 1000));
+    const main = await file('main', a, channelOf(a), 1000);
+    const companion = await file('companion', b, channelOf(b), 1000);
+    const clock = { offsetPs: 0, drift: 0 };
+    const reader = await openClockPair(main, companion, { channelOffset: 100, clock });
+    const wanted = [
+      ...a.map((tick, i) => ({ tick, channel: i % 3 })),
+      ...b.map((tick, i) => ({ tick, channel: 100 + (i % 3) })),
+    ].sort((x, y) => (x.tick === y.tick ? x.channel - y.channel : x.tick < y.tick ? -1 : 1));
+    for (const cuts of [[], [7, 65_536, 65_590, 131_072, 249_999]]) {
+      const { ticks, channels } = await readTags(reader, cuts);
+      expect(ticks.every((tick, i) => tick === wanted[i]!.tick)).toBe(true);
+      expect(channels.every((channel, i) => channel === wanted[i]!.channel)).toBe(true);
+      expect(ticks.length).toBe(wanted.length);
+    }
+    let longest = 0;
+    for await (const block of reader.read({ start: 0, end: wanted.length }, 0n, { cancelled: false })) {
+      longest = Math.max(longest, block.count);
+    }
+    expect(longest).toBeLessThanOrEqual(2 * 2 ** 16);
+  });
+
+  it('keep what the drift adds beside an offset of weeks', () => {
+    // 2^60 ticks of 1 ps: doubles there are 256 ticks apart; a drift of 2^-20 adds 2^20 ticks a cell of 2^40.
+    const map = createClockMap(1000, 1000, { offsetPs: 2 ** 60, drift: 2 ** -20 });
+    for (const cell of [0n, 1n, 3n, 70n]) {
+      for (const inside of [0n, 2n ** 20n, 5n * 2n ** 20n]) {
+        const tick = (cell << 40n) + inside;
+        expect(mapTick(map, tick)).toBe(2n ** 60n + tick + (tick >> 20n));
+      }
+    }
+    const odd = createClockMap(1000, 1000, { offsetPs: 2 ** 60, drift: 2 ** -36 });
+    for (const cell of [1n, 2n, 3n, 9n])
+      expect(mapTick(odd, cell << 40n) - (cell << 40n)).toBe(2n ** 60n + 16n * cell);
   });
 
   it('channels that pass 65535 are refused', async () => {

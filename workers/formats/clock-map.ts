@@ -23,6 +23,9 @@ export function createClockMap(
   const { numerator, denominator } = planScale(companionTickFs, mainTickFs);
   const ratio = companionTickFs / mainTickFs;
   const offsetTick = (offsetPs * 1000) / mainTickFs;
+  // Whole ticks go their own way: beside a long offset a double has no room for what the drift adds.
+  const wholeOffset = Math.floor(offsetTick);
+  const offsetRest = offsetTick - wholeOffset;
   return {
     scale: ratio * (1 + drift),
     startOf(cell) {
@@ -34,10 +37,10 @@ export function createClockMap(
         tick -= 1n;
         rest += denominator;
       }
-      const moved = Number(start) * ratio * drift + offsetTick;
+      const moved = Number(start) * ratio * drift + offsetRest;
       const floor = Math.floor(moved);
       return {
-        tick: tick + BigInt(floor),
+        tick: tick + BigInt(wholeOffset) + BigInt(floor),
         fraction: moved - floor + Number(rest) / Number(denominator),
       };
     },

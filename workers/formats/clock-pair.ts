@@ -25,8 +25,11 @@ export interface ClockPairLayout {
   clock: { offsetPs: number; drift: number };
 }
 
-/** Where a page of the main file begins in the companion, and in the merged tags. */
+/** Where a stretch begins: in a page of the main file, in the companion, and in the merged tags. */
 interface Border {
+  page: number;
+  /** Tags of the page before it. */
+  ownTag: number;
   companionTag: number;
   merged: number;
 }
@@ -34,8 +37,9 @@ interface Border {
 /**
  * Tags of two files of two clocks as one stream in time order, those of the companion moved to the main clock. A record
  * is a tag. Each page of the main file is merged with the companion's tags up to the first one later than all main tags
- * before the next page, so borders depend on the files alone and any split gives the same tags. Both files are gone
- * through once on opening, and the companion once more to find the borders.
+ * before the next page, and cut again at every page of the companion, so that a stretch holds a page of each at most,
+ * whichever file is the denser or the longer. Borders depend on the files alone and any split gives the same tags. Both
+ * files are gone through once on opening, and parts of them once more to find the borders.
  * @throws Problem `wrong-type` for frames, `bad-input` where channels pass 65535 on reading.
  */
 export async function openClockPair(
@@ -63,11 +67,14 @@ export async function openClockPair(
     tickOffsetAt: async () => 0n,
     async *read(range, tickOffset, token) {
       assertRange(range, total, 'tags', main.name);
-      for (let segment = 0; segment + 1 < borders.length; segment += 1) {
-        const [from, to] = [borders[segment]!, borders[segment + 1]!];
+      let held: { page: number; tags: TagPage } = { page: -1, tags: emptyPage() };
+      for (let stretch = 0; stretch + 1 < borders.length; stretch += 1) {
+        const [from, to] = [borders[stretch]!, borders[stretch + 1]!];
         if (to.merged <= range.start || from.merged >= range.end) continue;
         await passTurn(token);
-        const own = segment < a.pages.length ? await readPage(a, segment, token) : emptyPage();
+        const { page } = from;
+        if (page !== held.page) held = { page, tags: await mainPage(a, page, token) };
+        const own = tagsBetween(held.tags, from.ownTag, to.page === page ? to.ownTag : held.tags.count);
         const other = await readTagRange(b, from.companionTag, to.companionTag, token);
         const merged = merge(own, other, map, channelOffset, companion.name);
         const start = Math.max(0, range.start - from.merged);
@@ -89,9 +96,44 @@ const emptyPage = (): TagPage => ({
   count: 0,
 });
 
-/** One border before every main page, one before what is left of the companion, one at the end. */
+/** Behind the last page there are no tags. */
+async function mainPage(a: TimeIndex, page: number, token: CancelToken): Promise<TagPage> {
+  return page < a.pages.length ? readPage(a, page, token) : emptyPage();
+}
+
+function tagsBetween({ baseTick, deltaTick, channel }: TagPage, start: number, end: number): TagPage {
+  return {
+    baseTick,
+    deltaTick: deltaTick.subarray(start, end),
+    channel: channel.subarray(start, end),
+    count: end - start,
+  };
+}
+
+/**
+ * One border before every main page, one before what is left of the companion, one at the end, and between them one at
+ * every page of the companion.
+ */
 async function findBorders(a: TimeIndex, b: TimeIndex, map: ClockMap, token: CancelToken): Promise<Border[]> {
-  const borders: Border[] = [{ companionTag: 0, merged: 0 }];
+  const borders: Border[] = [{ page: 0, ownTag: 0, companionTag: 0, merged: 0 }];
+  const cuts = b.pages.filter(({ tagsBefore }, p) => tagsBefore > (b.pages[p - 1]?.tagsBefore ?? 0));
+  let nextCut = 0;
+  /** Borders at the companion's pages, among its tags before `end` that are merged with this main page. */
+  const cutUpTo = async (page: number, end: number): Promise<void> => {
+    const start = borders.at(-1)!.companionTag;
+    while (nextCut < cuts.length && cuts[nextCut]!.tagsBefore <= start) nextCut += 1;
+    if (!(nextCut < cuts.length && cuts[nextCut]!.tagsBefore < end)) return;
+    const { baseTick, deltaTick, count } = await mainPage(a, page, token);
+    const before = a.pages[page]?.tagsBefore ?? a.tags;
+    let ownTag = 0;
+    for (; nextCut < cuts.length && cuts[nextCut]!.tagsBefore < end; nextCut += 1) {
+      const { tagsBefore: companionTag, latestBefore } = cuts[nextCut]!;
+      // Merging takes main tags until one is later than every companion tag before the cut.
+      const limit = Number(mapTick(map, latestBefore!) - baseTick);
+      while (ownTag < count && deltaTick[ownTag]! <= limit) ownTag += 1;
+      borders.push({ page, ownTag, companionTag, merged: before + ownTag + companionTag });
+    }
+  };
   let held: { page: number; zeroTick: bigint; mapped: Float64Array } = {
     page: -1,
     zeroTick: 0n,
@@ -100,7 +142,7 @@ async function findBorders(a: TimeIndex, b: TimeIndex, map: ClockMap, token: Can
   for (let k = 1; k <= a.pages.length; k += 1) {
     const tagsBefore = a.pages[k]?.tagsBefore ?? a.tags;
     const latest = k < a.pages.length ? a.pages[k]!.latestBefore : a.lastTick;
-    let companionTag = borders[k - 1]!.companionTag;
+    let companionTag = borders.at(-1)!.companionTag;
     if (latest !== null && b.pages.length > 0) {
       const page = pageWhere(b, (tick) => mapTick(map, tick) <= latest);
       if (held.page !== page) held = { page, ...(await readMapped(b, page, map, token)) };
@@ -110,9 +152,11 @@ async function findBorders(a: TimeIndex, b: TimeIndex, map: ClockMap, token: Can
       const upTo = b.pages[page]!.tagsBefore + (later < 0 ? mapped.length : later);
       companionTag = Math.max(companionTag, upTo);
     }
-    borders.push({ companionTag, merged: tagsBefore + companionTag });
+    await cutUpTo(k - 1, companionTag);
+    borders.push({ page: k, ownTag: 0, companionTag, merged: tagsBefore + companionTag });
   }
-  borders.push({ companionTag: b.tags, merged: a.tags + b.tags });
+  await cutUpTo(a.pages.length, b.tags);
+  borders.push({ page: a.pages.length, ownTag: 0, companionTag: b.tags, merged: a.tags + b.tags });
   return borders;
 }
 
