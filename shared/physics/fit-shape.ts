@@ -55,6 +55,8 @@ export interface ShapeFit {
   backgroundCoupling: Float64Array;
   amplitudeCoupling: Float64Array;
   converged: boolean;
+  /** At a minimum that the data determine. A fit along a flat valley converges and is not. */
+  settled: boolean;
   /** The narrow axis ended at `leastVariance`. */
   atFloor: boolean;
   /** Minus twice the log-likelihood up to a constant, or chi^2. */
@@ -282,7 +284,7 @@ function withinReach(p: Float64Array, grid: CellGrid): boolean {
 function report(problem: ShapeProblem, state: State, free: number[], converged: boolean): ShapeFit {
   const { data, background } = problem;
   const k = free.length;
-  const { fisher } = normalEquations(problem, state, free);
+  const { fisher, score } = normalEquations(problem, state, free);
   const inverted = invertScaled(fisher, 0);
   const covariance = new Float64Array(k * k);
   for (let a = 0; a < k; a += 1) for (let b = 0; b < k; b += 1) covariance[a * k + b] = inverted.get(a, b);
@@ -317,9 +319,23 @@ function report(problem: ShapeProblem, state: State, free: number[], converged: 
     backgroundCoupling,
     amplitudeCoupling,
     converged,
+    settled: converged && isDetermined(fisher, inverted) && isAtRest(inverted, score),
     atFloor: narrow <= problem.leastVariance * 1.001,
     objective: state.objective,
   };
+}
+
+/** Of a true inverse no variance is below that with all other parameters known; one of lower rank, cut off, may say 0. */
+function isDetermined(fisher: Matrix, inverted: Matrix): boolean {
+  return fisher.diagonal().every((f, a) => f * inverted.get(a, a) > 1 - 1e-6);
+}
+
+/** The next step would be a small part of a standard error. Steps that were refused or cut leave a fit elsewhere. */
+function isAtRest(inverted: Matrix, score: Float64Array): boolean {
+  return score.every((_, a) => {
+    const step = score.reduce((sum, s, b) => sum + s * inverted.get(a, b), 0);
+    return Math.abs(step) < 0.1 * Math.sqrt(inverted.get(a, a));
+  });
 }
 
 /**

@@ -26,7 +26,12 @@ export interface FrameScene {
   treatment?: Pick<FrameSpec, 'offset' | 'threshold' | 'normalised' | 'blockSide'>;
 }
 
-export function simulateFrames(scene: FrameScene, random: Random): FrameTally {
+/** @param keep is given every frame, in order. */
+export function simulateFrames(
+  scene: FrameScene,
+  random: Random,
+  keep?: (image: Float64Array) => void,
+): FrameTally {
   const { size, frames, blocks, truth } = scene;
   const masked = new Uint8Array(size * size);
   for (const pixel of scene.maskedPixels ?? []) masked[pixel] = 1;
@@ -69,6 +74,9 @@ export function simulateFrames(scene: FrameScene, random: Random): FrameTally {
       const scale = gain * (1 + flicker * random.normal());
       for (let i = f * size * size; i < (f + 1) * size * size; i += 1)
         pixels[i] = offset + scale * pixels[i]! + readNoise * random.normal();
+    }
+    for (let f = 0; keep !== undefined && f < count; f += 1) {
+      keep(pixels.slice(f * size * size, (f + 1) * size * size));
     }
     accumulator.push({
       kind: 'frames',

@@ -3,8 +3,9 @@ import type { Plane } from '../../../shared/contracts/plane';
 import type { FrameTally } from '../../../shared/contracts/tally';
 import { amplitudeSigma, type FramePeak } from '../../../shared/physics/fit-frames';
 import { FIT_PARAMETERS } from '../../../shared/physics/fit-shape';
+import type { BlockSpread } from '../../../shared/physics/frame-blocks';
 import type { FrameMap, FrameMapKind } from '../../../shared/physics/frame-maps';
-import { LEAST_SNR, MOST_HIDDEN } from './frame-trust';
+import { isRepeated, LEAST_ROOM, LEAST_SNR, LEAST_SPREAD, MOST_HIDDEN, roomOf } from './frame-trust';
 import { checkBlocks } from './plane-checks';
 
 export interface FrameChecksRequest {
@@ -13,6 +14,8 @@ export interface FrameChecksRequest {
   peaks: Record<FrameMapKind, FramePeak | null>;
   narrow: FrameMapKind;
   blocks: number;
+  /** Null where there is too little to judge. */
+  spread: BlockSpread | null;
   crosstalk: number;
   plane: Plane;
 }
@@ -31,6 +34,8 @@ export function checkFramePlane(request: FrameChecksRequest): Check[] {
   ];
   const cut = checkBlockWindow(request);
   if (cut !== null) checks.push(cut);
+  const apart = checkBlockSpread(request);
+  if (apart !== null) checks.push(apart);
   const { plane } = request;
   if (plane.kind === 'far' && plane.signalNm.value !== plane.idlerNm.value) {
     checks.push({
@@ -47,12 +52,24 @@ export function checkFramePlane(request: FrameChecksRequest): Check[] {
 
 const nameOf = (kind: FrameMapKind): string => (kind === 'minus' ? 'difference' : 'sum');
 
-function checkPeak({ peaks, narrow }: FrameChecksRequest): Check {
+function checkPeak({ peaks, narrow, spread }: FrameChecksRequest): Check {
   const peak = peaks[narrow];
   const id = 'peak-found';
   if (peak === null || !peak.fit.converged) {
     const sentence = `No correlation peak stands out of the ${nameOf(narrow)} map, so no width is given; take more frames, or check that the camera really looks at the ${narrow === 'minus' ? 'near' : 'far'} field.`;
     return { id, status: 'fail', figure: null, unit: 'sigma', sentence };
+  }
+  if (peak.fit.atFloor) {
+    const sentence = `The peak of the ${nameOf(narrow)} map is narrower than its pixels can tell, so no width is given; magnify more.`;
+    return { id, status: 'fail', figure: null, unit: 'sigma', sentence };
+  }
+  if (!peak.fit.settled) {
+    const sentence = `The fit to the ${nameOf(narrow)} map came to no rest: width and height of its peak trade for each other, so no width is given; take more frames or use more of the sensor.`;
+    return { id, status: 'fail', figure: null, unit: 'sigma', sentence };
+  }
+  if (isRepeated(spread)) {
+    const sentence = `The ${nameOf(narrow)} map has a peak, but its height over its error is not known: the blocks of frames are too much alike.`;
+    return { id, status: 'caution', figure: null, unit: 'sigma', sentence };
   }
   const snr = peak.fit.amplitude / amplitudeSigma(peak);
   const base = { id, figure: snr, unit: 'sigma' };
@@ -114,18 +131,16 @@ function checkTruncation({ peaks, narrow, maps }: FrameChecksRequest): Check {
       sentence: 'Without a peak its edge is not known.',
     };
   }
-  const map = maps[narrow];
-  const cx = peak.mx + (narrow === 'minus' ? map.width - 1 : 0);
-  const cy = peak.my + (narrow === 'minus' ? map.height - 1 : 0);
-  const room = Math.min(
-    Math.min(cx, map.nx - 1 - cx) / Math.sqrt(peak.xx),
-    Math.min(cy, map.ny - 1 - cy) / Math.sqrt(peak.yy),
-  );
+  const room = roomOf(peak, maps[narrow]);
   const base = { id, figure: room, unit: 'sigma' };
   const found = `The nearest edge of the ${nameOf(narrow)} map is ${room.toFixed(1)} sigma from the peak`;
   if (room >= 4) return { ...base, status: 'pass', sentence: `${found}.` };
-  const sentence = `${found}: peak and pedestal are hard to tell apart. Use more of the sensor.`;
-  return { ...base, status: room >= 2 ? 'caution' : 'fail', sentence };
+  if (room >= LEAST_ROOM) {
+    const sentence = `${found}: peak and pedestal are hard to tell apart. Use more of the sensor.`;
+    return { ...base, status: 'caution', sentence };
+  }
+  const sentence = `${found}: peak and pedestal cannot be told apart, so no width is given. Use more of the sensor; if the light flickers, scale the frames to the mean total.`;
+  return { ...base, status: 'fail', sentence };
 }
 
 /** Of large maps only a window around the middle is kept block by block. Null where it is the whole map. */
@@ -141,6 +156,17 @@ function checkBlockWindow({ peaks, narrow, maps }: FrameChecksRequest): Check | 
   return { ...base, status: 'fail', sentence };
 }
 
+/** Frames that repeat are no new data: their blocks agree better than counting allows. */
+function checkBlockSpread({ spread }: FrameChecksRequest): Check | null {
+  if (spread === null) return null;
+  const { ratio, apart } = spread;
+  const base = { id: 'blocks-apart', figure: ratio, unit: 'counting noise' };
+  const found = `Blocks of frames ${apart === 1 ? 'next to each other' : `${apart} apart`}, the most alike, differ by ${ratio.toPrecision(2)} times the variance of counting noise`;
+  if (!isRepeated(spread)) return { ...base, status: 'pass', sentence: `${found}.` };
+  const sentence = `${found}, where at least ${LEAST_SPREAD} was expected: frames come more than once in the stack (copied, padded, or averaged over time), so errors would come out too small and no width is given. Use a stack in which every frame was exposed anew.`;
+  return { ...base, status: 'fail', sentence };
+}
+
 function checkEnvelope({ peaks, narrow }: FrameChecksRequest): Check {
   const base = { id: 'envelope-known', figure: null, unit: '' };
   if (peaks[narrow]?.enveloped === true) {
@@ -152,8 +178,12 @@ function checkEnvelope({ peaks, narrow }: FrameChecksRequest): Check {
   return { ...base, status: 'caution', sentence };
 }
 
-function checkWidthDrift({ peaks, narrow }: FrameChecksRequest): Check {
+function checkWidthDrift({ peaks, narrow, spread }: FrameChecksRequest): Check {
   const id = 'width-drift';
+  if (isRepeated(spread)) {
+    const sentence = 'Blocks of frames that are too much alike do not tell whether the width drifts.';
+    return { id, status: 'caution', figure: null, unit: 'sigma', sentence };
+  }
   const influence = peaks[narrow]?.influence;
   if (influence === undefined) {
     return {
