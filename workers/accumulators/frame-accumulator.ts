@@ -1,9 +1,10 @@
 import type { FrameBlock } from '../../shared/contracts/blocks';
 import type { FrameSpec, FrameTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
-import { borrowFrameMaps, returnFrameMaps } from '../kernels/frame-loans';
+import { borrowFrameKernels, type FrameKernels, returnFrameKernels } from '../kernels/frame-loans';
 import { type FrameMaps, type FrameShape, ReadableFrameMaps } from '../kernels/frame-maps';
 import type { FrameWasm } from '../kernels/frame-wasm';
+import { ReadableJoint } from '../kernels/joint-distribution';
 import {
   assertFramePart,
   type BlockSums,
@@ -12,6 +13,7 @@ import {
   type FramePart,
   type FrameTotals,
   frameKey,
+  jointPixels,
   type Segment,
   totalNames,
 } from './frame-part';
@@ -25,7 +27,8 @@ import { addInto } from './pair-store';
  * (derived here). Ranges that are not neighbours may be merged: stretches join when the gap between them closes.
  *
  * Memory: whole maps in doubles for the totals, 16 (2H-1)(2W-1) bytes; 8 bytes per cell of the block window for every
- * touched block, 134 MB for 64 blocks of 256 x 256. Looks share the block maps, they do not copy them.
+ * touched block, 134 MB for 64 blocks of 256 x 256. Looks share the block maps, they do not copy them. The joint distribution
+ * of a region of n pixels is summed in f32 (4 n^2 bytes) and kept in f64 (4 n^2 bytes), not block by block.
  */
 export class FrameAccumulator {
   readonly kind = 'frames';
@@ -39,8 +42,10 @@ export class FrameAccumulator {
   /** In order of frames. */
   #segments: Segment[] = [];
   /** Kernels in use, and the stretch whose end they hold; its `lastImage` is behind. */
-  #maps: FrameMaps | null = null;
-  #readable: ReadableFrameMaps | null = null;
+  #lent: FrameKernels | null = null;
+  #readable: FrameKernels | null = null;
+  /** Room for the region of the joint distribution. */
+  readonly #inRegion: Float64Array;
   #running: Segment | null = null;
   /** Block whose differences the kernels sum, null when none. */
   #open: number | null = null;
@@ -49,6 +54,7 @@ export class FrameAccumulator {
     const { width, height, masked } = spec;
     this.#spec = spec;
     this.#kernels = kernels;
+    this.#inRegion = new Float64Array(jointPixels(spec));
     this.#shape = {
       width,
       height,
@@ -105,6 +111,7 @@ export class FrameAccumulator {
       differences: 0,
       masked: masked.slice(),
       ...totals,
+      ...(this.#spec.jointRegion ? { jointRegion: { ...this.#spec.jointRegion } } : {}),
       blockFrames: new Float64Array(blocks),
       blockTotals: new Float64Array(blocks),
       blockDifferences: new Float64Array(blocks),
@@ -119,7 +126,7 @@ export class FrameAccumulator {
       tally.blockTotals[block] = sums.frames > 0 ? sums.total / sums.frames : 0;
       tally.blockDifferences[block] = sums.differences;
     }
-    addEnds(tally, this.#segments, () => this.#openMaps(null));
+    addEnds(tally, this.#segments, () => this.#openKernels(null).maps);
     this.#settle();
     return this.#shape.normalised ? scaleToMean(tally) : tally;
   }
@@ -153,6 +160,8 @@ export class FrameAccumulator {
     this.#settle();
     const totals = this.#ownTotals();
     for (const name of totalNames) addInto(totals[name], part.totals[name]);
+    if (totals.joint !== undefined && part.totals.joint !== undefined)
+      addInto(totals.joint, part.totals.joint);
     for (const from of part.touched) {
       const to = this.#blockSums(from.block);
       to.frames += from.frames;
@@ -172,11 +181,15 @@ export class FrameAccumulator {
     const index = block.firstFrame + i;
     const segment = this.#segments.find(({ last }) => last + 1 === index);
     if (segment === undefined || segment !== this.#running) this.#leaveRun();
-    const maps = this.#openMaps(segment === undefined ? null : this.#blockOf(index - 1));
-    if (segment !== undefined && this.#running === null) maps.resume(segment.lastImage);
+    const { maps } = this.#openKernels(segment === undefined ? null : this.#blockOf(index - 1));
+    if (segment !== undefined && this.#running === null) {
+      maps.resume(segment.lastImage);
+      this.#takeRegion();
+    }
     const { total, finite } = maps.take(block.pixels, i * width * height);
     if (!finite) throw notNumber(block, i, this.#spec);
     if (this.#shape.normalised && !(total > 0)) throw noLight(index, total);
+    this.#takeRegion();
     const sums = this.#blockSums(this.#blockOf(index));
     sums.frames += 1;
     sums.total += total;
@@ -192,36 +205,53 @@ export class FrameAccumulator {
   }
 
   /** The kernels, summing differences of `block`; null: whichever, as no difference comes next. */
-  #openMaps(block: number | null): FrameMaps {
+  #openKernels(block: number | null): FrameKernels {
     if (block !== null && block !== this.#open) {
       this.#closeBlock();
       this.#open = block;
     }
-    if (this.#maps === null) {
+    if (this.#lent === null) {
+      const pixels = this.#inRegion.length;
       if (this.#kernels === null) {
-        this.#readable ??= new ReadableFrameMaps(this.#shape);
-        this.#maps = this.#readable;
-        this.#maps.pause();
-      } else this.#maps = borrowFrameMaps(this.#kernels, this.#shape, () => this.#settle());
+        this.#readable ??= {
+          maps: new ReadableFrameMaps(this.#shape),
+          joint: pixels > 0 ? new ReadableJoint(pixels) : null,
+        };
+        this.#lent = this.#readable;
+        this.#pause(this.#lent);
+      } else this.#lent = borrowFrameKernels(this.#kernels, this.#shape, pixels, () => this.#settle());
     }
-    return this.#maps;
+    return this.#lent;
+  }
+
+  #pause({ maps, joint }: FrameKernels): void {
+    maps.pause();
+    joint?.pause();
+  }
+
+  /** The image that the maps took last, to the joint distribution too. */
+  #takeRegion(): void {
+    const region = this.#spec.jointRegion ?? null;
+    if (region === null || this.#lent?.joint == null) return;
+    this.#lent.maps.lastIn(region, this.#inRegion);
+    this.#lent.joint.take(this.#inRegion, 0);
   }
 
   /** Brings the end of the running stretch up to date; the next frame begins another. */
   #leaveRun(): void {
-    if (this.#running === null || this.#maps === null) return;
-    this.#running.lastImage = this.#maps.last();
+    if (this.#running === null || this.#lent === null) return;
+    this.#running.lastImage = this.#lent.maps.last();
     this.#running = null;
-    this.#maps.pause();
+    this.#pause(this.#lent);
   }
 
   /** Brings the open block's differences to its maps. Maps add, so a block may be closed and opened at any time. */
   #closeBlock(): void {
     const block = this.#open;
     this.#open = null;
-    if (block === null || this.#maps === null) return;
+    if (block === null || this.#lent === null) return;
     const { width, height } = this.#spec;
-    const closed = this.#maps.close();
+    const closed = this.#lent.maps.close();
     const totals = this.#ownTotals();
     addInto(totals.plus, closed.plus);
     addInto(totals.minus, closed.minus);
@@ -247,12 +277,14 @@ export class FrameAccumulator {
 
   /** Takes everything out of the kernels and gives them back. */
   #settle(): void {
-    if (this.#maps === null) return;
+    if (this.#lent === null) return;
     this.#leaveRun();
     this.#closeBlock();
-    this.#maps.drain(this.#ownTotals());
-    this.#maps = null;
-    if (this.#kernels !== null) returnFrameMaps(this.#kernels);
+    const totals = this.#ownTotals();
+    this.#lent.maps.drain(totals);
+    if (totals.joint !== undefined) this.#lent.joint?.drain(totals.joint);
+    this.#lent = null;
+    if (this.#kernels !== null) returnFrameKernels(this.#kernels);
   }
 
   #joinSegments(): void {
@@ -275,9 +307,11 @@ export class FrameAccumulator {
   #addSeam(before: Segment, after: Segment): void {
     this.#settle();
     const block = this.#blockOf(before.last);
-    const maps = this.#openMaps(block);
+    const { maps } = this.#openKernels(block);
     maps.resume(before.lastImage);
+    this.#takeRegion();
     maps.follow(after.firstImage);
+    this.#takeRegion();
     this.#blockSums(block).differences += 1;
     this.#settle();
   }

@@ -29,6 +29,8 @@ export interface FrameTotals {
   plus: Float64Array;
   minus: Float64Array;
   diagonal: Float64Array;
+  /** Of the region of the specification, as `FrameTally.joint`; without one left out. */
+  joint?: Float64Array;
 }
 
 /** Version 2. Only the bootstrap blocks that the range has touched are in it. */
@@ -44,11 +46,24 @@ export interface FramePart {
 
 export function frameKey(spec: FrameSpec): string {
   const { width, height, frames, blocks } = spec;
-  const { offset, threshold, normalised, blockSide } = spec;
+  const { offset, threshold, normalised, blockSide, jointRegion = null } = spec;
   return JSON.stringify([
     [width, height, frames, blocks],
     [offset ?? 0, threshold ?? null, normalised ?? false, blockSide ?? BLOCK_SIDE],
+    ...(jointRegion === null ? [] : [[jointRegion.x0, jointRegion.y0, jointRegion.x1, jointRegion.y1]]),
   ]);
+}
+
+/** Pixels of a region, and values of their joint distribution. */
+export function jointPixels({ jointRegion }: FrameSpec): number {
+  if (jointRegion === null || jointRegion === undefined) return 0;
+  const { x0, y0, x1, y1 } = jointRegion;
+  return (x1 - x0 + 1) * (y1 - y0 + 1);
+}
+
+export function jointLength(spec: FrameSpec): number {
+  const n = jointPixels(spec);
+  return (n * (n + 1)) / 2;
 }
 
 /** The whole map of 256 pixels. */
@@ -64,7 +79,8 @@ export function blockWindow(spec: FrameSpec): { x: number; y: number; nx: number
   return { x: Math.floor((wide - nx) / 2), y: Math.floor((high - ny) / 2), nx, ny };
 }
 
-export function createTotals({ width, height }: FrameSpec): FrameTotals {
+export function createTotals(spec: FrameSpec): FrameTotals {
+  const { width, height } = spec;
   const pixels = width * height;
   const cells = (2 * width - 1) * (2 * height - 1);
   return {
@@ -75,6 +91,7 @@ export function createTotals({ width, height }: FrameSpec): FrameTotals {
     plus: new Float64Array(cells),
     minus: new Float64Array(cells),
     diagonal: new Float64Array(pixels),
+    ...(jointPixels(spec) > 0 ? { joint: new Float64Array(jointLength(spec)) } : {}),
   };
 }
 

@@ -1,5 +1,6 @@
+import type { Region } from '../../shared/contracts/dial';
 import type { FrameTally } from '../../shared/contracts/tally';
-import type { FrameMaps } from '../kernels/frame-maps';
+import { copyRectangle, type FrameMaps } from '../kernels/frame-maps';
 import { addDiagonal, addOuter, projectFrame, subtract } from '../kernels/frame-sums';
 import type { Segment } from './frame-part';
 import { addInto } from './pair-store';
@@ -9,7 +10,7 @@ import { addInto } from './pair-store';
  * one transform a stretch and one inverse, by kernels that hold no differences.
  */
 export function addEnds(tally: FrameTally, segments: readonly Segment[], openMaps: () => FrameMaps): void {
-  const { width, height } = tally;
+  const { width, height, jointRegion, joint } = tally;
   const less = new Float64Array(width * height);
   const more = new Float64Array(width * height);
   const vectors = [width, height, width, height].map((length) => new Float64Array(length));
@@ -26,6 +27,7 @@ export function addEnds(tally: FrameTally, segments: readonly Segment[], openMap
     projectFrame(more, moreX, moreY);
     addOuter(lessX, moreX, 0.5, tally.jointX);
     addOuter(lessY, moreY, 0.5, tally.jointY);
+    if (jointRegion !== undefined && joint !== undefined) addTriangle(less, more, width, jointRegion, joint);
     maps ??= openMaps();
     maps.addProduct(less, more);
   }
@@ -33,6 +35,26 @@ export function addEnds(tally: FrameTally, segments: readonly Segment[], openMap
   const { plus, minus } = maps.close();
   addInto(tally.plus, plus);
   addInto(tally.minus, minus);
+}
+
+/** The part of the symmetrised product x y / 2 that `FrameTally.joint` holds. */
+function addTriangle(
+  x: Float64Array,
+  y: Float64Array,
+  width: number,
+  region: Region,
+  joint: Float64Array,
+): void {
+  const pixels = (region.x1 - region.x0 + 1) * (region.y1 - region.y0 + 1);
+  const [u, v] = [x, y].map((image) => {
+    const inside = new Float64Array(pixels);
+    copyRectangle(image, width, region, inside);
+    return inside;
+  }) as [Float64Array, Float64Array];
+  let to = 0;
+  for (let i = 0; i < pixels; i++) {
+    for (let j = i; j < pixels; j++) joint[to++]! += 0.25 * (u[i]! * v[j]! + u[j]! * v[i]!);
+  }
 }
 
 /**
@@ -47,7 +69,8 @@ export function scaleToMean(tally: FrameTally): FrameTally {
   const scaled = (maps: readonly (Float32Array | null)[]): (Float32Array | null)[] =>
     maps.map((map) => map?.map((v) => v * squared) ?? null);
   for (let i = 0; i < tally.sum.length; i++) tally.sum[i]! *= factor;
-  for (const map of [tally.sumSquares, tally.diagonal, tally.plus, tally.minus, tally.jointX, tally.jointY]) {
+  const { sumSquares, diagonal, plus, minus, jointX, jointY, joint } = tally;
+  for (const map of [sumSquares, diagonal, plus, minus, jointX, jointY, joint ?? []]) {
     for (let i = 0; i < map.length; i++) map[i]! *= squared;
   }
   tally.blockPlus = scaled(tally.blockPlus);

@@ -7,6 +7,7 @@ import {
   countSum,
   type PairColumns,
 } from '../kernels/pair-counts';
+import { lagsOfMatrix, pairCells } from '../kernels/pair-recount';
 import { type CountArray, type PlaceCounts, placeInHeap } from './count-array';
 import { SliceRing } from './slice-grid';
 
@@ -72,6 +73,16 @@ export class PairStore {
     addInto(this.#difference.values, tally.difference);
     addInto(this.#sum.values, tally.sum);
     if (this.#matrix !== null && tally.matrix !== null) addInto(this.#matrix.values, tally.matrix);
+  }
+
+  /** Difference and sum coordinate anew from the matrix, where one is kept: for counts that left them out. */
+  settleLags(): void {
+    if (this.#matrix === null) return;
+    const whole = (arm: ArmSpec) => ({ ...arm, removed: new Uint8Array(arm.width * arm.height) });
+    lagsOfMatrix(this.#matrix.values, pairCells(whole(this.#a), whole(this.#b)), {
+      difference: this.#difference.values,
+      sum: this.#sum.values,
+    });
   }
 
   tally(first: number, count: number): PairTally {

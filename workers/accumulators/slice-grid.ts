@@ -99,14 +99,19 @@ export class SliceRing {
 
   /** Joins slices after the length doubled `doublings` times; [first, first + count) were in use before. */
   fold(doublings: number, first: number, count: number): void {
-    if (doublings === 0 || count === 0 || this.cells === 0) return;
-    const before = this.toDense(first, count);
     const { counts, cells } = this;
+    if (doublings === 0 || count === 0 || cells === 0) return;
+    const firstAfter = Math.floor(first / 2 ** doublings);
+    const after = Math.floor((first + count - 1) / 2 ** doublings) - firstAfter + 1;
+    const joined = roomFor(after * cells);
     for (let slice = first; slice < first + count; slice++) {
-      counts.fill(0, slotOfSlice(slice) * cells, (slotOfSlice(slice) + 1) * cells);
+      const from = slotOfSlice(slice) * cells;
+      const to = (Math.floor(slice / 2 ** doublings) - firstAfter) * cells;
+      for (let i = 0; i < cells; i++) joined[to + i]! += counts[from + i]!;
+      counts.fill(0, from, from + cells);
     }
-    for (let i = 0; i < count; i++) {
-      this.#addSlot(Math.floor((first + i) / 2 ** doublings), before, i * cells);
+    for (let i = 0; i < after; i++) {
+      counts.set(joined.subarray(i * cells, (i + 1) * cells), slotOfSlice(firstAfter + i) * cells);
     }
   }
 
@@ -133,4 +138,12 @@ export class SliceRing {
     const { counts, cells } = this;
     for (let i = 0; i < cells; i++) counts[to + i]! += from[fromIndex + i]!;
   }
+}
+
+let room = new Float64Array(0);
+
+/** Zeros, good until the next call: a run folds its rings many times, and new memory costs more than the sums. */
+function roomFor(length: number): Float64Array {
+  if (room.length < length) room = new Float64Array(length);
+  return room.subarray(0, length).fill(0);
 }

@@ -141,7 +141,7 @@ export class CompiledTagMachine implements TagMachine {
     work.count += kept;
     const order = wasm.f64(this.#orderAt, 3);
     this.#turns += 1;
-    if (this.#turns >= TURNS) this.settle();
+    if (this.#turns >= TURNS) this.#widen();
     return { latest: order[0]!, late: order[1]!, isSorted: order[2] === 1 };
   }
 
@@ -212,6 +212,13 @@ export class CompiledTagMachine implements TagMachine {
   }
 
   settle(): void {
+    this.#widen();
+    this.prompt.settleLags();
+    this.shifted.settleLags();
+  }
+
+  /** Moves the 32-bit counts to where there is room for more. */
+  #widen(): void {
     this.#turns = 0;
     this.#scan?.takeHistogram(this.histogram);
     const counts = this.#wasm.u32(this.#singlesAt, this.singles.length + 1);

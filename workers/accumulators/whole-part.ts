@@ -10,7 +10,7 @@ import type {
 import { Problem } from '../../shared/errors/problem';
 import { z } from '../../shared/util/zod';
 import type { Part } from './accumulator';
-import { blockWindow, type FramePart, frameKey } from './frame-part';
+import { blockWindow, type FramePart, frameKey, jointLength, jointPixels } from './frame-part';
 import { MATRIX_LIMIT } from './pair-store';
 import { SliceGrid } from './slice-grid';
 import type { TagPart } from './tag-part';
@@ -181,6 +181,7 @@ function framePartSchema(spec: FrameSpec): z.ZodType<FramePart> {
       plus: doubles(cells),
       minus: doubles(cells),
       diagonal: doubles(pixels),
+      ...(jointPixels(spec) > 0 ? { joint: doubles(jointLength(spec)) } : {}),
     }),
     touched: z.array(touched),
     segments: z.array(segment),

@@ -1,6 +1,14 @@
 import type { PixelArray } from '../../shared/contracts/blocks';
 import { CELL, pairLimit, placeArrays, SKEW, SQUARES } from './frame-arrays-wasm';
-import type { DifferenceSums, FrameLight, FrameMaps, FrameShape, PixelSums } from './frame-maps';
+import {
+  copyRectangle,
+  type DifferenceSums,
+  type FrameLight,
+  type FrameMaps,
+  type FrameShape,
+  type PixelSums,
+  type Rectangle,
+} from './frame-maps';
 import { normalisation } from './frame-sums';
 import { compiledLength } from './frame-transform-tables';
 import type { FrameWasm } from './frame-wasm';
@@ -168,6 +176,13 @@ export class CompiledFrameMaps implements FrameMaps {
       for (let x = 0; x < width; x++) out[y * width + x] = image[y * this.#columns + x]!;
     }
     return out;
+  }
+
+  lastIn(region: Rectangle, out: Float64Array): void {
+    const slot = this.#slot(this.#filled - 1);
+    const length = this.#columns * this.#shape.height;
+    const image = this.#double ? this.#wasm.f64(slot, length) : this.#wasm.f32(slot, length);
+    copyRectangle(image, this.#columns, region, out);
   }
 
   close(): DifferenceSums {

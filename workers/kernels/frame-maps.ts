@@ -10,6 +10,14 @@ export interface FrameShape extends FrameTreatment {
   masked: Uint8Array;
 }
 
+/** Both ends included. */
+export interface Rectangle {
+  x0: number;
+  y0: number;
+  x1: number;
+  y1: number;
+}
+
 export interface FrameLight {
   /** After offset, threshold and mask, before it is normalised. */
   total: number;
@@ -51,6 +59,8 @@ export interface FrameMaps {
   addProduct(x: Float64Array, y: Float64Array): void;
   /** Prepared image taken last, a copy. */
   last(): Float64Array;
+  /** Its pixels in a rectangle, row by row, into the caller's array. */
+  lastIn(region: Rectangle, out: Float64Array): void;
   /** Sums of the differences since the last call; valid until the next call of anything. */
   close(): DifferenceSums;
   /** Adds all else since the last call to the caller's arrays. */
@@ -129,6 +139,10 @@ export class ReadableFrameMaps implements FrameMaps {
     return this.#before.slice();
   }
 
+  lastIn(region: Rectangle, out: Float64Array): void {
+    copyRectangle(this.#before, this.#shape.width, region, out);
+  }
+
   close(): DifferenceSums {
     if (this.#waiting) this.#spectra.addSquares(this.#waitingDifference, null);
     this.#waiting = false;
@@ -174,5 +188,18 @@ export class ReadableFrameMaps implements FrameMaps {
     this.#difference = this.#waitingDifference;
     this.#waitingDifference = difference;
     this.#waiting = true;
+  }
+}
+
+/** Pixels of a rectangle of an image of `columns` values a row, row by row. */
+export function copyRectangle(
+  image: Float64Array | Float32Array,
+  columns: number,
+  { x0, y0, x1, y1 }: Rectangle,
+  out: Float64Array,
+): void {
+  let to = 0;
+  for (let y = y0; y <= y1; y++) {
+    for (let x = x0; x <= x1; x++) out[to++] = image[y * columns + x]!;
   }
 }

@@ -14,6 +14,8 @@ export interface JointDistribution {
   pause(): void;
   /** J so far; valid until the next call of anything. */
   view(): Float32Array;
+  /** Adds J, its rows from the diagonal on one after the other, n (n + 1) / 2 values, and starts again from zero. */
+  drain(into: Float64Array): void;
 }
 
 /** Most pixels of a region: J of 64 x 64 pixels takes 64 MB. */
@@ -48,6 +50,11 @@ export class ReadableJoint implements JointDistribution {
 
   view(): Float32Array {
     return this.#joint;
+  }
+
+  drain(into: Float64Array): void {
+    addTriangle(this.#joint, this.#n, this.#n, into);
+    this.#joint.fill(0);
   }
 }
 
@@ -122,6 +129,13 @@ export class CompiledJoint implements JointDistribution {
     return joint;
   }
 
+  drain(into: Float64Array): void {
+    this.#run();
+    const joint = this.#wasm.f32(this.#at.joint, this.#padded ** 2);
+    addTriangle(joint, this.#n, this.#padded, into);
+    joint.fill(0);
+  }
+
   /** Counts what the rows hold and leaves the last frame in the first row. */
   #run(): void {
     const count = this.#filled - 1;
@@ -183,4 +197,11 @@ export class CompiledJoint implements JointDistribution {
 /** Tiles on the diagonal are square and reach below it. */
 function clearLower(joint: Float32Array, n: number): void {
   for (let i = 0; i < n; i++) joint.fill(0, i * n + Math.max(0, i - 7), i * n + i);
+}
+
+function addTriangle(joint: Float32Array, n: number, stride: number, into: Float64Array): void {
+  let to = 0;
+  for (let i = 0; i < n; i++) {
+    for (let j = i; j < n; j++) into[to++]! += joint[i * stride + j]!;
+  }
 }

@@ -139,8 +139,12 @@ export function recountLags(stretch: KeptStretch, weight: number, cells: PairCel
   }
 }
 
-/** Sum and difference coordinate anew from the whole matrix [pixelB][pixelA]: O(cells), for more pairs than cells. */
-export function lagsOfMatrix(matrix: Float64Array, cells: PairCells, out: WindowCounts): void {
+/** Sum and difference coordinate anew from the whole matrix [pixelB][pixelA]: O(cells). */
+export function lagsOfMatrix(
+  matrix: Float64Array,
+  cells: PairCells,
+  out: Pick<WindowCounts, 'difference' | 'sum'>,
+): void {
   const { difference, sum } = out;
   const { lagCentre } = cells;
   const lagA = cells.a.lag;

@@ -386,27 +386,30 @@ function addOne(counters: usize, cell: i32): void {
   store<f64>(at, load<f64>(at) + 1);
 }
 
-/** Per slice, maps per slice, difference, sum and channel pairs. */
+/** Per slice, maps per slice, and channel pairs, or where no matrix is kept difference and sum, which follow from it. */
 function addPair(into: usize, slot: i32, a: i32, b: i32): void {
   const widthA = load<i32>(into + STORE_WIDTH_A);
   const heightA = load<i32>(into + STORE_HEIGHT_A);
   const widthB = load<i32>(into + STORE_WIDTH_B);
   const heightB = load<i32>(into + STORE_HEIGHT_B);
-  const width = widthA + widthB - 1;
   const pixelsA = widthA * heightA;
   const xA = load<i32>(load<usize>(into + STORE_X_A) + (<usize>a << 2));
   const yA = load<i32>(load<usize>(into + STORE_Y_A) + (<usize>a << 2));
   const xB = load<i32>(load<usize>(into + STORE_X_B) + (<usize>b << 2));
   const yB = load<i32>(load<usize>(into + STORE_Y_B) + (<usize>b << 2));
-  const matrix = load<usize>(into + STORE_MATRIX);
   addOne(load<usize>(into + STORE_PAIRS), slot);
   addOne(load<usize>(into + STORE_JOINT_X), (slot * widthB + xB) * widthA + xA);
   addOne(load<usize>(into + STORE_JOINT_Y), (slot * heightB + yB) * heightA + yA);
   addOne(load<usize>(into + STORE_IMAGE_B), slot * widthB * heightB + b);
   addOne(load<usize>(into + STORE_IMAGE_A), slot * pixelsA + a);
+  const matrix = load<usize>(into + STORE_MATRIX);
+  if (matrix != 0) {
+    addOne(matrix, b * pixelsA + a);
+    return;
+  }
+  const width = widthA + widthB - 1;
   addOne(load<usize>(into + STORE_DIFFERENCE), (heightA - 1 + yB - yA) * width + widthA - 1 + xB - xA);
   addOne(load<usize>(into + STORE_SUM), (yA + yB) * width + xA + xB);
-  if (matrix != 0) addOne(matrix, b * pixelsA + a);
 }
 
 /** counts[(rise - from) >> bits] += 1 (u32) for rises of [from, from + span]. */
