@@ -1,3 +1,5 @@
+import type { Region } from './dial';
+
 /**
  * What accumulators have counted so far: the only thing studies see of the data. All arrays are row-major.
  * Arm A and arm B are whatever the study pairs (signal and idler; bucket and array). tau = t_B - t_A.
@@ -134,6 +136,12 @@ export interface FrameTally {
    */
   blockPlus: readonly (Float32Array | null)[];
   blockMinus: readonly (Float32Array | null)[];
+  /**
+   * Full joint distribution of the pixels of `jointRegion`, n of them row-major: G_ij times (F-1) for i <= j, row by row,
+   * n (n + 1) / 2 values, corrected for the end frames. Masked pixels hold 0. Both are there where they were asked for.
+   */
+  jointRegion?: Region;
+  joint?: Float64Array;
 }
 
 export interface FrameSpec {
@@ -152,6 +160,8 @@ export interface FrameSpec {
   normalised?: boolean;
   /** Largest side of the maps that are kept block by block; left out: 511, the whole map of 256 pixels. */
   blockSide?: number;
+  /** Pixels whose full joint distribution is summed, at most 4096; null or left out: none. */
+  jointRegion?: Region | null;
 }
 
 export type Tally = TagTally | FrameTally;

@@ -2,7 +2,7 @@ import type { FrameBlock } from '../../shared/contracts/blocks';
 import type { FrameSpec, FrameTally } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
 import { borrowFrameKernels, type FrameKernels, returnFrameKernels } from '../kernels/frame-loans';
-import { type FrameMaps, type FrameShape, ReadableFrameMaps } from '../kernels/frame-maps';
+import { type FrameShape, ReadableFrameMaps } from '../kernels/frame-maps';
 import type { FrameWasm } from '../kernels/frame-wasm';
 import { ReadableJoint } from '../kernels/joint-distribution';
 import {
@@ -232,9 +232,10 @@ export class FrameAccumulator {
   /** The image that the maps took last, to the joint distribution too. */
   #takeRegion(): void {
     const region = this.#spec.jointRegion ?? null;
-    if (region === null || this.#lent?.joint == null) return;
-    this.#lent.maps.lastIn(region, this.#inRegion);
-    this.#lent.joint.take(this.#inRegion, 0);
+    const lent = this.#lent;
+    if (region === null || lent === null || lent.joint === null) return;
+    lent.maps.lastIn(region, this.#inRegion);
+    lent.joint.take(this.#inRegion, 0);
   }
 
   /** Brings the end of the running stretch up to date; the next frame begins another. */

@@ -181,7 +181,7 @@ function framePartSchema(spec: FrameSpec): z.ZodType<FramePart> {
       plus: doubles(cells),
       minus: doubles(cells),
       diagonal: doubles(pixels),
-      ...(jointPixels(spec) > 0 ? { joint: doubles(jointLength(spec)) } : {}),
+      joint: jointPixels(spec) > 0 ? doubles(jointLength(spec)) : z.never().optional(),
     }),
     touched: z.array(touched),
     segments: z.array(segment),

@@ -1,6 +1,6 @@
 import type { TallySpec } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
-import { blockWindow } from '../accumulators/frame-part';
+import { blockWindow, jointPixels } from '../accumulators/frame-part';
 import { compiledLength } from '../kernels/frame-transform-tables';
 
 /** One accumulator may take this much; each compute worker holds one, the coordinator one and a copy. */
@@ -18,7 +18,9 @@ export function estimateBytes(spec: TallySpec): number {
     const { nx, ny } = blockWindow(spec);
     // Spectra, maps and a batch of frames in the kernels: 70 to 115 bytes a padded pixel.
     const kernels = 115 * compiledLength(width) * compiledLength(height);
-    return 8 * nx * ny * blocks + 16 * cells + 8 * (width * width + height * height) + kernels;
+    // Joint distribution of a region: single precision in the kernels, half of it in doubles here.
+    const joint = 8 * jointPixels(spec) ** 2;
+    return 8 * nx * ny * blocks + 16 * cells + 8 * (width * width + height * height) + kernels + joint;
   }
   if (spec.window === null) return 8 * spec.histogram.bins;
   const { a, b } = spec;

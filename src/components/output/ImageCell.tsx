@@ -6,8 +6,8 @@ import { type CellProps, noteOf } from './cell-context';
 import { isRegion, plotToRegion, regionToPlot } from './dial-marks';
 import { StageMap, usePresentable } from './StageMap';
 
-/** The image itself, not what it was made from: regions are drawn on it. */
-const IS_RESULT = /^image(\.(raw|net))?$/;
+/** The image itself, not what it was made from, or the mean frame of a camera: regions are drawn on it. */
+const IS_RESULT = /^(image(\.(raw|net))?|mean\.frame)$/;
 
 type RegionDial = Extract<DialSpec, { type: 'region' }>;
 

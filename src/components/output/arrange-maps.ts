@@ -24,7 +24,7 @@ function kindOf(id: string, map: MapData): CellKind {
     return 'line';
   }
   if (id.startsWith('joint.')) return 'joint';
-  return id.startsWith('image') ? 'image' : 'map';
+  return id.startsWith('image') || id === 'mean.frame' ? 'image' : 'map';
 }
 
 interface Rule {

@@ -1,6 +1,8 @@
-import type { DialSpec, DialValues } from '../../../shared/contracts/dial';
+import type { DialSpec, DialValues, Region } from '../../../shared/contracts/dial';
 import type { FrameSpec } from '../../../shared/contracts/tally';
-import { autoDial, numberDial } from '../dials';
+import { Problem } from '../../../shared/errors/problem';
+import { JOINT_PIXELS } from '../../kernels/joint-distribution';
+import { autoDial, numberDial, regionDial } from '../dials';
 
 const offsetDial: DialSpec = {
   id: 'offset',
@@ -79,6 +81,40 @@ const overlapDial: DialSpec = {
   ],
   default: 'mean',
 };
+
+export const jointRegionDial: DialSpec = {
+  id: 'joint.region',
+  label: 'Region of the full joint distribution',
+  reason:
+    'Sums the covariance of every pixel of the region with every other, up to 4096 pixels (64 x 64): the partners of the brightest pixel and of all, and up to 2048 pixels every pair. Takes longer the more pixels; not drawn, only the maps of sum, difference and each axis are summed.',
+  needs: 'bytes',
+  for: 'frames',
+  type: 'region',
+  default: null,
+};
+
+/** @throws Problem `bad-dial` for a region that is larger than can be summed or not on the camera. */
+export function jointRegionOf(dials: DialValues, width: number, height: number): Region | null {
+  const region = regionDial(dials, jointRegionDial.id);
+  if (region === null) return null;
+  const { x0, y0, x1, y1 } = region;
+  if (x1 >= width || y1 >= height) {
+    throw new Problem(
+      'bad-dial',
+      `The region x ${x0} to ${x1}, y ${y0} to ${y1} was given, but the frames end at x ${width - 1}, y ${height - 1}; draw it on the frame.`,
+      jointRegionDial.id,
+    );
+  }
+  const [wide, high] = [x1 - x0 + 1, y1 - y0 + 1];
+  if (wide * high > JOINT_PIXELS) {
+    throw new Problem(
+      'bad-dial',
+      `A region of at most ${JOINT_PIXELS} pixels (64 x 64) was expected, one of ${wide} x ${high} was given; draw a smaller one, or bin the frames.`,
+      jointRegionDial.id,
+    );
+  }
+  return region;
+}
 
 /** What only camera frames have to be asked for. */
 export const frameDials: readonly DialSpec[] = [

@@ -3,6 +3,7 @@ import type { FrameTally } from '../../../shared/contracts/tally';
 import type { PlaneScale } from '../../../shared/physics/calibration';
 import type { FramePeak } from '../../../shared/physics/fit-frames';
 import type { FrameMap, FrameMapKind } from '../../../shared/physics/frame-maps';
+import { frameJointMaps } from './frame-joint-maps';
 import type { AxisName } from './plane-result';
 
 export interface FrameMapsRequest {
@@ -23,7 +24,14 @@ export function framePlaneMaps(request: FrameMapsRequest): Record<string, MapDat
     'mean.frame': meanFrame(request),
     'joint.x': jointMap(request, 'x'),
     'joint.y': jointMap(request, 'y'),
+    ...frameJointMaps(request.tally, (axis, from, n) => regionAxis(request, axis, from, n)),
   };
+}
+
+function regionAxis(request: FrameMapsRequest, axis: AxisName, from: number, n: number): Axis {
+  const whole = axisOf(request, axis, axis === 'x' ? request.tally.width : request.tally.height, '', '');
+  const part = axisOf(request, axis, n, '', '');
+  return { ...part, start: whole.start + from * whole.step };
 }
 
 function axisOf(

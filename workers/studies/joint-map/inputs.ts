@@ -15,7 +15,7 @@ import {
 import { type ArmPair, blindChoice, buildSearchSpec, choosePeak } from '../peak-search';
 import type { CountedInput, Study, StudyInput } from '../study';
 import { buildMainSpec, validateTagInput } from '../tag-main';
-import { frameChoices, frameDials } from './frame-dials';
+import { frameChoices, frameDials, jointRegionOf } from './frame-dials';
 import { analyseFramePlane } from './frame-plane';
 import type { PlaneRequest, PlaneResult } from './plane-result';
 import { analyseTagPlane } from './tag-plane';
@@ -102,7 +102,9 @@ function frameSpec(input: StudyInput, dials: DialValues): FrameSpec {
   }
   // A block of one frame has no difference of its own.
   const blocks = Math.max(1, Math.min(numberDial(dials, 'blocks'), Math.floor(frames / 2)));
-  return { kind: 'frames', width, height, frames, blocks, masked, ...frameChoices(dials).treatment };
+  const { treatment } = frameChoices(dials);
+  const jointRegion = jointRegionOf(dials, width, height);
+  return { kind: 'frames', width, height, frames, blocks, masked, ...treatment, jointRegion };
 }
 
 export function analysePlane(input: CountedInput, request: PlaneRequest): PlaneResult {

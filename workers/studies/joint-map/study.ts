@@ -1,5 +1,6 @@
 import type { Study } from '../study';
 import { finishJointMap } from './finish';
+import { jointRegionDial } from './frame-dials';
 import { planeCounting, planeDials, validatePlaneInput } from './inputs';
 
 export const jointMapStudy: Study = {
@@ -17,7 +18,7 @@ export const jointMapStudy: Study = {
         plane: 'any',
       },
     ],
-    dials: planeDials,
+    dials: [...planeDials, jointRegionDial],
   },
   ...planeCounting,
   validate(inputs, dials) {

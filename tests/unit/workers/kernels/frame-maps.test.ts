@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { PixelArray } from '../../../../shared/contracts/blocks';
 import { createRandom } from '../../../../shared/util/random';
-import { borrowFrameMaps } from '../../../../workers/kernels/frame-loans';
+import { borrowFrameKernels } from '../../../../workers/kernels/frame-loans';
 import { type FrameMaps, type FrameShape, ReadableFrameMaps } from '../../../../workers/kernels/frame-maps';
 import { CompiledFrameMaps } from '../../../../workers/kernels/frame-maps-wasm';
 import type { FrameExports } from '../../../../workers/kernels/frame-wasm';
@@ -161,11 +161,13 @@ describe('compiled frame maps', () => {
   it('are lent to one borrower at a time', () => {
     const shape = shapeOf(5, 5);
     let asked = 0;
-    const first = borrowFrameMaps(wasm, shape, () => {
+    const { maps: first } = borrowFrameKernels(wasm, shape, 0, () => {
       asked += 1;
     });
-    expect(borrowFrameMaps(wasm, { ...shape, masked: shape.masked.slice() }, () => {})).toBe(first);
+    expect(borrowFrameKernels(wasm, { ...shape, masked: shape.masked.slice() }, 0, () => {}).maps).toBe(
+      first,
+    );
     expect(asked).toBe(1);
-    expect(borrowFrameMaps(wasm, shapeOf(6, 5), () => {})).not.toBe(first);
+    expect(borrowFrameKernels(wasm, shapeOf(6, 5), 0, () => {}).maps).not.toBe(first);
   });
 });
