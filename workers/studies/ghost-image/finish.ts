@@ -1,12 +1,13 @@
 import type { DialValues } from '../../../shared/contracts/dial';
 import type { StudyOutput } from '../../../shared/contracts/output';
 import type { TagTally } from '../../../shared/contracts/tally';
+import { checkClock, clockQuantities } from '../clock';
 import { LOOK_RESAMPLES, numberDial } from '../dials';
 import { formatFigure } from '../format-figure';
 import { type ArmPair, describeArms } from '../peak-search';
 import { listQuantities, settingQuantity } from '../quantities';
 import { resampleSlices } from '../resample-slices';
-import type { Chosen } from '../study';
+import type { Chosen, ClockFacts } from '../study';
 import { countTags, pairedImage, type TagCount } from '../tag-count';
 import { chosenDials } from '../tag-main';
 import { histogramMap, pixelMap, rateMap } from '../tag-maps';
@@ -29,12 +30,13 @@ export interface GhostImageRequest {
   arms: ArmPair;
   dials: DialValues;
   chosen: Chosen;
+  clock?: ClockFacts | undefined;
   seed: number;
   partial: boolean;
 }
 
 export function finishGhostImage(request: GhostImageRequest): StudyOutput {
-  const { tally, arms, dials, chosen, seed, partial } = request;
+  const { tally, arms, dials, chosen, clock, seed, partial } = request;
   const count = countTags(tally);
   const regions = findRegions(tally, dials);
   const sides = regions && {
@@ -66,6 +68,7 @@ export function finishGhostImage(request: GhostImageRequest): StudyOutput {
     study: 'ghost-image',
     quantities: {
       ...list.quantities,
+      ...clockQuantities(clock),
       'window.width': settingQuantity(
         count.windowPs,
         'ps',
@@ -74,7 +77,7 @@ export function finishGhostImage(request: GhostImageRequest): StudyOutput {
       ),
     },
     verdicts: {},
-    checks: checkGhostImage(count, arms, dials, images.net, contrast, list.excess),
+    checks: [...checkGhostImage(count, arms, dials, images.net, contrast, list.excess), ...checkClock(clock)],
     maps: {
       'image.net': {
         ...pixelMap('Ghost image, accidentals subtracted', tally.b, images.net, images.netSigma, arms.b),

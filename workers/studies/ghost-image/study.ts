@@ -44,6 +44,6 @@ export const ghostImageStudy: Study = {
   spec: (input, dials, chosen) => buildMainSpec(input, armsOf(input), dials, chosen),
   finish({ inputs, dials, seed, partial }) {
     const { tally, chosen, input } = requireTagInput(inputs, 'tags');
-    return finishGhostImage({ tally, chosen, arms: armsOf(input), dials, seed, partial });
+    return finishGhostImage({ tally, chosen, clock: input.clock, arms: armsOf(input), dials, seed, partial });
   },
 };

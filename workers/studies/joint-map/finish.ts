@@ -1,5 +1,6 @@
 import type { Quantity, StudyOutput } from '../../../shared/contracts/output';
 import { Problem } from '../../../shared/errors/problem';
+import { checkClock, clockQuantities } from '../clock';
 import { LOOK_RESAMPLES, numberDial } from '../dials';
 import { listQuantities } from '../quantities';
 import type { FinishRequest } from '../study';
@@ -29,9 +30,10 @@ export function finishJointMap({ inputs, dials, seed, partial }: FinishRequest):
       ...(input.tally.kind === 'tags'
         ? listQuantities(coincidencesOf(countTags(input.tally)), null, input.tally.slices).quantities
         : {}),
+      ...clockQuantities(input.clock),
     },
     verdicts: {},
-    checks: [...plane.checks, checkCalibration(plane.scale)],
+    checks: [...plane.checks, checkCalibration(plane.scale), ...checkClock(input.clock)],
     maps: plane.maps,
     chosen: input.tally.kind === 'tags' ? chosenDials(dials, input.chosen) : {},
     statement: stateJointMap(plane),

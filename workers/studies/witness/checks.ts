@@ -5,9 +5,9 @@ import type { PlaneResult } from '../joint-map/plane-result';
 import type { CountedInput } from '../study';
 
 /** Checks of one plane, told apart by the plane's name. */
-export function planeChecks(name: 'near' | 'far', plane: PlaneResult): Check[] {
+export function planeChecks(name: 'near' | 'far', checks: readonly Check[]): Check[] {
   const title = name === 'near' ? 'Near field' : 'Far field';
-  return plane.checks.map((check) => ({
+  return checks.map((check) => ({
     ...check,
     id: `${check.id}.${name}`,
     sentence: `${title}: ${check.sentence}`,

@@ -1,4 +1,5 @@
 import type { MapData, Quantity, StudyOutput, Verdict } from '../../../shared/contracts/output';
+import { checkClock, clockQuantities } from '../clock';
 import { LOOK_RESAMPLES, numberDial } from '../dials';
 import { formatMeasured } from '../format-figure';
 import { frameChoices } from '../joint-map/frame-dials';
@@ -81,8 +82,11 @@ function takePlane(
   if (input === undefined) return null;
   const plane = analysePlane(input, request);
   Object.assign(output.maps, renamed(plane.maps, name));
-  output.checks.push(...planeChecks(name, plane));
+  output.checks.push(...planeChecks(name, [...plane.checks, ...checkClock(input.clock)]));
   addWidths(output.quantities, name, plane);
+  for (const [id, quantity] of Object.entries(clockQuantities(input.clock))) {
+    output.quantities[`${id}.${name}`] = quantity;
+  }
   if (input.tally.kind === 'tags') {
     for (const [id, value] of Object.entries(chosenDials(dials, input.chosen))) {
       output.chosen[`${id}.${name}`] = value;
