@@ -264,16 +264,22 @@ export class CompiledTagMachine implements TagMachine {
 }
 
 /** The table of `takeTags`: of each channel the delay, the site and where it is counted. */
-function placeChannels(wasm: TagWasm, { siteOfChannel, delayOfChannel }: TagPlan, singlesAt: number): number {
-  const channels = siteOfChannel.length;
-  const at = wasm.place(16 * channels);
-  const delays = wasm.f64(at, 2 * channels);
-  const sites = wasm.i32(at, 4 * channels);
-  for (let c = 0; c < channels; c++) {
-    delays[2 * c] = delayOfChannel[c]!;
-    sites[4 * c + 2] = siteOfChannel[c]!;
-    sites[4 * c + 3] = singlesAt + 4 * (siteOfChannel[c]! + 1);
-  }
+function placeChannels(wasm: TagWasm, plan: TagPlan, singlesAt: number): number {
+  const { siteOfChannel, delayOfChannel } = plan;
+  const entries = siteOfChannel.length;
+  const at = wasm.place(16 * entries);
+  const delays = wasm.f64(at, 2 * entries);
+  const sites = wasm.i32(at, 4 * entries);
+  const write = (channel: number, site: number, delay: number): void => {
+    delays[2 * channel] = delay;
+    sites[4 * channel + 2] = site;
+    sites[4 * channel + 3] = singlesAt + 4 * (site + 1);
+  };
+  // Copies of the first entry, twice as many at a time: this is done for every chunk.
+  write(0, -1, 0);
+  for (let done = 1; done < entries; done *= 2)
+    sites.copyWithin(4 * done, 0, 4 * Math.min(done, entries - done));
+  for (const channel of plan.channels) write(channel, siteOfChannel[channel]!, delayOfChannel[channel]!);
   return at;
 }
 

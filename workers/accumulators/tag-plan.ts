@@ -1,4 +1,4 @@
-import type { TagSpec } from '../../shared/contracts/tally';
+import type { ArmSpec, TagSpec } from '../../shared/contracts/tally';
 import { Problem } from '../../shared/errors/problem';
 import type { ScanRange } from '../kernels/tag-scan';
 
@@ -12,6 +12,8 @@ export interface TagPlan extends ScanRange {
   /** Site of each channel, -1 when it belongs to no arm or is masked. */
   siteOfChannel: Int32Array;
   delayOfChannel: Float64Array;
+  /** Those that have a site: a few hundred of 65536, mostly. */
+  channels: number[];
   /** Largest |tau| of any use. */
   reachTick: number;
   /** A tag may come this long after a later one and still meet all its partners. */
@@ -21,7 +23,7 @@ export interface TagPlan extends ScanRange {
 /** @throws Problem `bad-dial` for ticks that are not whole, `bad-detector` for a channel in both arms. */
 export function planTags(spec: TagSpec): TagPlan {
   requireWhole(spec);
-  const { siteOfChannel, delayOfChannel, delaySpreadTick } = planChannels(spec);
+  const { siteOfChannel, delayOfChannel, channels, delaySpreadTick } = planChannels(spec);
   const { loTick, binTick, bins } = spec.histogram;
   const centres = spec.window === null ? [] : [0, ...spec.window.shiftsTick];
   const kept = spec.keepPairs;
@@ -41,6 +43,7 @@ export function planTags(spec: TagSpec): TagPlan {
     sites: sitesA + spec.b.width * spec.b.height,
     siteOfChannel,
     delayOfChannel,
+    channels,
     minTauTick,
     maxTauTick,
     loTick,
@@ -77,25 +80,30 @@ function requireWhole(spec: TagSpec): void {
 function planChannels(spec: TagSpec) {
   const siteOfChannel = new Int32Array(CHANNELS).fill(-1);
   const delayOfChannel = new Float64Array(CHANNELS);
-  const sitesA = spec.a.width * spec.a.height;
+  const channels: number[] = [];
+  const place = ({ pixelOfChannel, delayTickOfChannel }: ArmSpec, firstSite: number): void => {
+    const stop = Math.min(CHANNELS, pixelOfChannel.length);
+    for (let channel = 0; channel < stop; channel++) {
+      const pixel = pixelOfChannel[channel]!;
+      if (pixel < 0) continue;
+      if (siteOfChannel[channel]! >= 0) {
+        throw new Problem(
+          'bad-detector',
+          `Channel ${channel} is in both arms of the detector map; give each channel to one arm.`,
+        );
+      }
+      siteOfChannel[channel] = firstSite + pixel;
+      delayOfChannel[channel] = delayTickOfChannel[channel] ?? 0;
+      channels.push(channel);
+    }
+  };
+  place(spec.a, 0);
+  place(spec.b, spec.a.width * spec.a.height);
   let least = Number.POSITIVE_INFINITY;
   let most = Number.NEGATIVE_INFINITY;
-  for (let channel = 0; channel < CHANNELS; channel++) {
-    const pixelA = spec.a.pixelOfChannel[channel] ?? -1;
-    const pixelB = spec.b.pixelOfChannel[channel] ?? -1;
-    if (pixelA < 0 && pixelB < 0) continue;
-    if (pixelA >= 0 && pixelB >= 0) {
-      throw new Problem(
-        'bad-detector',
-        `Channel ${channel} is in both arms of the detector map; give each channel to one arm.`,
-      );
-    }
-    const arm = pixelA >= 0 ? spec.a : spec.b;
-    const delay = arm.delayTickOfChannel[channel] ?? 0;
-    siteOfChannel[channel] = pixelA >= 0 ? pixelA : sitesA + pixelB;
-    delayOfChannel[channel] = delay;
-    least = Math.min(least, delay);
-    most = Math.max(most, delay);
+  for (const channel of channels) {
+    least = Math.min(least, delayOfChannel[channel]!);
+    most = Math.max(most, delayOfChannel[channel]!);
   }
-  return { siteOfChannel, delayOfChannel, delaySpreadTick: most >= least ? most - least : 0 };
+  return { siteOfChannel, delayOfChannel, channels, delaySpreadTick: most >= least ? most - least : 0 };
 }
