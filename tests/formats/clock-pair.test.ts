@@ -7,6 +7,18 @@ import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
 import { recordsLayout, writeTags } from './support/record-writer';
 import { memorySource, problemOf, readTags } from './support/sources';
 
+const textLayout = {
+  version: 1,
+  format: 'text',
+  kind: 'tags',
+  delimiter: 'semicolon',
+  decimal: 'point',
+  headerLines: 0,
+  timeColumn: 1,
+  channelColumn: 0,
+  timeUnitFs: 1000,
+  tickFs: 1000,
+} as const;
 const wide = { time: { firstBit: 0, bits: 52 }, channel: { firstBit: 52, bits: 12 } };
 
 async function file(name: string, ticks: readonly bigint[], channels: readonly number[], tickFs: number) {
@@ -127,6 +139,26 @@ describe('tags of two clocks', () => {
       longest = Math.max(longest, block.count);
     }
     expect(longest).toBeLessThanOrEqual(2 * 2 ** 16);
+  });
+
+  it('stay exact where few tags span more than doubles hold', async () => {
+    // 3000 tags over 38 hours of 1 ps, then a long silence.
+    const a = Array.from(
+      { length: 3000 },
+      (_, i) => BigInt(i) * 45_678_901_234_567n + (i > 2000 ? 2n ** 61n : 0n),
+    );
+    const b = a.map((tick) => tick + 3n);
+    const open = async (name: string, all: readonly bigint[]) => {
+      const bytes = new TextEncoder().encode(all.map((tick) => `0;${tick}\n`).join(''));
+      const reader = await openReader(memorySource(bytes, name), textLayout, nodeEnvironment);
+      return { name, reader, bytes: bytes.length };
+    };
+    const clock = { offsetPs: 0, drift: 0 };
+    const main = await open('main', a);
+    const reader = await openClockPair(main, await open('companion', b), { channelOffset: 1, clock });
+    const { ticks, channels } = await readTags(reader, [777, 4001]);
+    expect(ticks).toEqual(a.flatMap((tick) => [tick, tick + 3n]));
+    expect(channels).toEqual(a.flatMap(() => [0, 1]));
   });
 
   it('keep what the drift adds beside an offset of weeks', () => {

@@ -14,6 +14,8 @@ export interface TimeIndex {
 }
 
 interface TimePage {
+  /** Its first record. */
+  start: number;
   /** Rollovers before the page. */
   offsetTick: bigint;
   /** Tags in all pages before it, and the latest of them; null before the first tag. */
@@ -30,6 +32,8 @@ export interface TagPage {
 }
 
 export const pageRecords = 2 ** 16;
+/** Tags of a page further from its base than this begin a page of their own: differences stay exact in doubles. */
+const farthestTick = 2n ** 52n;
 
 /** Goes through the whole file once. Memory: some tens of bytes a page. */
 export async function buildTimeIndex(
@@ -48,20 +52,31 @@ export async function buildTimeIndex(
     lastTick: null,
     tags: 0,
   };
-  for (let start = 0; start < records; start += pageRecords) {
+  for (let start = 0; start < records; ) {
     const offsetTick = await reader.tickOffsetAt(start, token);
-    index.pages.push({ offsetTick, tagsBefore: index.tags, latestBefore: index.lastTick });
-    const range = { start, end: Math.min(records, start + pageRecords) };
-    for await (const block of reader.read(range, offsetTick, token)) {
+    index.pages.push({ start, offsetTick, tagsBefore: index.tags, latestBefore: index.lastTick });
+    let end = Math.min(records, start + pageRecords);
+    let pageTick: bigint | null = null;
+    for await (const block of reader.read({ start, end }, offsetTick, token)) {
       if (block.kind !== 'tags') continue;
+      if (block.count > 0) {
+        const ends = endsOf(block);
+        if (pageTick !== null && isFar(ends, pageTick)) {
+          end = block.firstRecord;
+          break;
+        }
+        pageTick ??= block.baseTick;
+        noteBlock(index, block.count, ends);
+      }
       onBytes?.(block.bytes);
-      if (block.count > 0) noteBlock(index, block);
     }
+    start = end;
   }
   return index;
 }
 
-function noteBlock(index: TimeIndex, { baseTick, deltaTick, count }: TagBlock): void {
+/** Earliest and latest tag. */
+function endsOf({ baseTick, deltaTick, count }: TagBlock): [bigint, bigint] {
   let low = deltaTick[0]!;
   let high = low;
   for (let i = 1; i < count; i += 1) {
@@ -69,7 +84,14 @@ function noteBlock(index: TimeIndex, { baseTick, deltaTick, count }: TagBlock): 
     if (delta < low) low = delta;
     if (delta > high) high = delta;
   }
-  const [first, last] = [baseTick + BigInt(low), baseTick + BigInt(high)];
+  return [baseTick + BigInt(low), baseTick + BigInt(high)];
+}
+
+function isFar([first, last]: [bigint, bigint], fromTick: bigint): boolean {
+  return first - fromTick < -farthestTick || last - fromTick > farthestTick;
+}
+
+function noteBlock(index: TimeIndex, count: number, [first, last]: [bigint, bigint]): void {
   if (index.firstTick === null || first < index.firstTick) index.firstTick = first;
   if (index.lastTick === null || last > index.lastTick) index.lastTick = last;
   index.tags += count;
@@ -77,8 +99,8 @@ function noteBlock(index: TimeIndex, { baseTick, deltaTick, count }: TagBlock): 
 
 /** The tags of a page about one base. */
 export async function readPage(index: TimeIndex, page: number, token: CancelToken): Promise<TagPage> {
-  const start = page * pageRecords;
-  const range = { start, end: Math.min(index.records, start + pageRecords) };
+  const { start, offsetTick } = index.pages[page]!;
+  const range = { start, end: index.pages[page + 1]?.start ?? index.records };
   const length = range.end - range.start;
   const found: TagPage = {
     baseTick: 0n,
@@ -86,7 +108,7 @@ export async function readPage(index: TimeIndex, page: number, token: CancelToke
     channel: new Uint16Array(length),
     count: 0,
   };
-  for await (const block of index.reader.read(range, index.pages[page]!.offsetTick, token)) {
+  for await (const block of index.reader.read(range, offsetTick, token)) {
     if (block.kind !== 'tags' || block.count === 0) continue;
     if (found.count === 0) found.baseTick = block.baseTick;
     const shift = Number(block.baseTick - found.baseTick);
