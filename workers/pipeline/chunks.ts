@@ -15,7 +15,7 @@ const LEAST_FRAMES = 16;
 export function planChunks(facts: ReaderFacts): ReadRange[] {
   if (facts.kind === 'frames') {
     const frames = Math.max(LEAST_FRAMES, Math.floor(PIXELS / (facts.width * facts.height)));
-    return cut(facts.frames, frames, frames);
+    return cut(facts.frames, Math.max(LEAST_FRAMES, Math.floor(frames / 2)), frames);
   }
   return cut(facts.records, FIRST_RECORDS, RECORDS);
 }

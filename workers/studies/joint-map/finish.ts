@@ -21,6 +21,7 @@ export function finishJointMap({ inputs, dials, seed, partial }: FinishRequest):
   const plane = analysePlane(input, {
     resamples: partial ? LOOK_RESAMPLES : numberDial(dials, 'resamples'),
     seed,
+    look: partial,
     frames: frameChoices(dials),
   });
   return {

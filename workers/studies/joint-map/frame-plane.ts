@@ -40,8 +40,10 @@ export function analyseFramePlane(
   const { crosstalk, perPair, treatment } = request.frames;
   const maps = buildFrameMaps(tally, selfMapsOf(tally), crosstalk);
   const narrow: FrameMapKind = plane.kind === 'near' ? 'minus' : 'plus';
-  const peaks = fitFramePeaks(maps, narrow);
   const blocks = tally.blockTotals.filter((_, b) => (tally.blockDifferences[b] ?? 0) > 0).length;
+  // So few blocks give no error and so no number: the first looks show the maps without waiting for fits.
+  const mapsAlone = request.look && blocks < LEAST_BLOCKS;
+  const peaks = mapsAlone ? { plus: null, minus: null } : fitFramePeaks(maps, narrow);
   const spread = blockSpread(tally, tally.blockDifferences, maps.plus);
   const first = peaks[narrow];
   // The other peak takes its amplitude from this one.
@@ -59,7 +61,9 @@ export function analyseFramePlane(
       x: axisOf(peaks, 3, pixel, weights, tally.frames, method),
       y: axisOf(peaks, 5, pixel, weights, tally.frames, method),
     },
-    checks: checkFramePlane({ tally, maps, peaks, narrow, blocks, spread, crosstalk, plane }),
+    checks: mapsAlone
+      ? []
+      : checkFramePlane({ tally, maps, peaks, narrow, blocks, spread, crosstalk, plane }),
     maps: framePlaneMaps({ tally, maps, peaks, pixel, scale, perPair }),
     statement: [
       `${plane.kind === 'near' ? 'Near' : 'Far'} field: covariance of ${tally.frames} frames of ${tally.width} x ${tally.height} pixels less that of consecutive frames, own pairs left out${crosstalk > 0 ? `, difference bins up to ${crosstalk} pixels left out` : ''}.${treatmentWords(treatment)}`,

@@ -57,5 +57,7 @@ export const LEAST_BLOCKS = 8;
 export interface PlaneRequest {
   resamples: number;
   seed: number;
+  /** A look while reading: what can give no number yet is left out. */
+  look: boolean;
   frames: FrameChoices;
 }

@@ -32,6 +32,7 @@ export function finishWitness({ inputs, dials, seed, partial }: FinishRequest): 
   const request: PlaneRequest = {
     resamples: partial ? LOOK_RESAMPLES : numberDial(dials, 'resamples'),
     seed,
+    look: partial,
     frames: frameChoices(dials),
   };
   const output: StudyOutput = {
