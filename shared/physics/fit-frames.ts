@@ -12,7 +12,7 @@ import { centreNode, type PeakShape, triangleNodes } from './gaussian-cells';
 
 /**
  * Chi^2 fit of a two-dimensional Gaussian on a pedestal to a sum or difference map, averaged over the triangle law of two
- * pixels. The pedestal follows the number of pairs per bin. The peak follows an envelope: how many pairs of the array
+ * pixels. The pedestal has the shape of `FrameMap.pedestal`. The peak follows an envelope: how many pairs of the array
  * can have this sum (difference), given the width of the other coordinate; where that width is not known, the plain
  * overlap, which leaves the width slightly too large and so on the safe side of a bound.
  */
@@ -93,8 +93,8 @@ function heldBy(
   wide: FrameMapKind,
   peak: FramePeak,
 ): Held {
-  // Pedestals are kept for the bin of most pairs.
-  const ratio = mostPairs(maps[wide]) / mostPairs(maps[narrow]);
+  // Pedestals are kept for the bin where they are highest.
+  const ratio = mostOf(maps[wide].pedestal) / mostOf(maps[narrow].pedestal);
   return {
     amplitude: peak.fit.amplitude,
     background: peak.fit.background * ratio,
@@ -105,8 +105,8 @@ function heldBy(
   };
 }
 
-function mostPairs(map: FrameMap): number {
-  return map.pairs.reduce((a, b) => Math.max(a, b), 1);
+function mostOf(values: Float64Array): number {
+  return values.reduce((a, b) => Math.max(a, b), Number.MIN_VALUE);
 }
 
 /** Standard error of the amplitude from the blocks; 0 where it was held. */
@@ -216,7 +216,7 @@ function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null 
   const variance = cells.sum((bin) => map.variance[bin] as number);
   const use = Uint8Array.from(cells.open, (n, c) => (n > 0 && (variance[c] as number) > 0 ? 1 : 0));
   if (use.reduce((n, u) => n + u, 0) < 12) return null;
-  const most = mostPairs(map);
+  const most = mostOf(map.pedestal);
   const envelopeAt = envelopeOf(map, other);
   // Three pixels wide and more, the triangle law only adds its variance; that is then in the fitted shape already.
   const broad = Math.min(start.shape.xx, start.shape.yy) > 9;
@@ -229,7 +229,7 @@ function fitWindow(map: FrameMap, given: Given, start: Start): FramePeak | null 
     use,
     // A density per cell is spread over its bins.
     envelope: cells.sum((bin) => envelopeAt(bin) / area),
-    background: cells.sum((bin) => (map.pairs[bin] as number) / most),
+    background: cells.sum((bin) => (map.pedestal[bin] as number) / most),
     backgroundAmplitude: held?.background ?? 0,
     freeAmplitude: held === null,
     freeBackground: held === null,
@@ -319,7 +319,7 @@ function fineModel(
   const { mx, my, xx, xy, yy } = shape;
   const det = xx * yy - xy * xy;
   const norm = fit.amplitude / (2 * Math.PI * Math.sqrt(det));
-  const most = mostPairs(map);
+  const most = mostOf(map.pedestal);
   return Float64Array.from({ length: region.nx * region.ny }, (_, c) => {
     const x = region.x + (c % region.nx);
     const y = region.y + Math.floor(c / region.nx);
@@ -327,7 +327,7 @@ function fineModel(
     const v = y - origin.y - my;
     const bin = y * map.nx + x;
     const bell = norm * Math.exp(-(yy * u * u - 2 * xy * u * v + xx * v * v) / (2 * det));
-    return envelopeAt(bin) * bell + (fit.background * (map.pairs[bin] as number)) / most;
+    return envelopeAt(bin) * bell + (fit.background * (map.pedestal[bin] as number)) / most;
   });
 }
 
@@ -372,7 +372,7 @@ function hiddenShare(fit: ShapeFit, { side, open }: CoarseCells, use: Uint8Array
  */
 function envelopeOf(map: FrameMap, other: FramePeak | null): (bin: number) => number {
   if (other === null) {
-    const most = mostPairs(map);
+    const most = mostOf(map.pairs);
     return (bin) => (map.pairs[bin] as number) / most;
   }
   const ex = axisEnvelope(map.kind, map.width, other.mx, other.xx);

@@ -38,6 +38,10 @@ export interface FrameMap {
   pairs: Float64Array;
   /** The same on an array without masked pixels. */
   fullPairs: Float64Array;
+  /** Products of the mean light of both pixels, in the bins of `value`. */
+  light: Float64Array;
+  /** Shape of what lies under the peak, as `Pedestal` has it: `pairs` or `light`. */
+  pedestal: Float64Array;
   /** Variance of `value` from counting noise. */
   variance: Float64Array;
   /** 1 where the bin is left out: overlap under 5 % of the largest, own pairs, neighbour crosstalk. */
@@ -49,6 +53,13 @@ export interface FrameMap {
   blockValue(block: number, cell: number): number;
 }
 
+/**
+ * pairs: the same for all pairs of pixels, as slow drift leaves it. light: as the light of both pixels. Frames scaled to one
+ * total have lost Cov(I_i, T) with the total T; where every photon has a partner as often as any other that is f_i f_j Var T, f
+ * the shares of light (derived here, to first order).
+ */
+export type Pedestal = 'pairs' | 'light';
+
 const LEAST_OVERLAP = 0.05;
 const CONSECUTIVE_VARIANCE = 1.5;
 
@@ -57,6 +68,7 @@ export function buildFrameMaps(
   sums: FrameSums,
   selfMaps: SelfMaps,
   crosstalk: number,
+  pedestal: Pedestal = 'pairs',
 ): Record<FrameMapKind, FrameMap> {
   const { width, height, frames, masked } = sums;
   const open = Float64Array.from(masked, (m) => (m === 1 ? 0 : 1));
@@ -64,6 +76,8 @@ export function buildFrameMaps(
   const spreadSquared = spread.map((s) => s * s);
   const overlap = selfMaps(open);
   const noise = selfMaps(spread);
+  const light = selfMaps(sums.sum);
+  const lightSquared = sums.sum.map((s) => s * s);
   const size = { nx: 2 * width - 1, ny: 2 * height - 1, width, height };
   const blocks = sums.blockTotals.length;
   const per = 1 / Math.max(frames - 1, 1);
@@ -72,12 +86,15 @@ export function buildFrameMaps(
 
   const plusPairs = overlap.plus.map((n, c) => Math.max(Math.round(n) - ownShare(c, size, open), 0));
   const plusFull = overlap.plus.map((_, c) => fullOverlap(c, size, 'plus'));
+  const plusLight = light.plus.map((v, c) => Math.max(v - ownShare(c, size, lightSquared), 0));
   const plus: FrameMap = {
     kind: 'plus',
     ...size,
     value: sums.plus.map((v, c) => per * (v - ownShare(c, size, sums.diagonal))),
     pairs: plusPairs,
     fullPairs: plusFull,
+    light: plusLight,
+    pedestal: pedestal === 'light' ? plusLight : plusPairs,
     variance: noise.plus.map(
       (v, c) => 2 * CONSECUTIVE_VARIANCE * per * Math.max(v - ownShare(c, size, spreadSquared), 0),
     ),
@@ -95,12 +112,15 @@ export function buildFrameMaps(
     const dy = Math.floor(c / size.nx) - (height - 1);
     if (dx * dx + dy * dy <= crosstalk * crosstalk) minusBlocked[c] = 1;
   }
+  const minusLight = light.minus.map((v, c) => (c === centre ? 0 : Math.max(v, 0)));
   const minus: FrameMap = {
     kind: 'minus',
     ...size,
     value: sums.minus.map((v, c) => (c === centre ? 0 : per * v)),
     pairs: minusPairs,
     fullPairs: overlap.minus.map((_, c) => fullOverlap(c, size, 'minus')),
+    light: minusLight,
+    pedestal: pedestal === 'light' ? minusLight : minusPairs,
     variance: noise.minus.map((v) => CONSECUTIVE_VARIANCE * per * Math.max(v, 0)),
     blocked: minusBlocked,
     blocks,

@@ -32,6 +32,8 @@ function mapOf(xx: number, yy: number, xy: number): FrameMap {
     value,
     pairs,
     fullPairs: pairs,
+    light: pairs,
+    pedestal: pairs,
     variance: new Float64Array(cells).fill(variance),
     blocked: Uint8Array.from(pairs, (n) => (n < 0.05 * most ? 1 : 0)),
     blocks: 2,

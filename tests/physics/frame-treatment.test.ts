@@ -1,6 +1,8 @@
 import { describe, expect, it } from 'vitest';
 import type { DialValues } from '../../shared/contracts/dial';
+import type { FrameSpec } from '../../shared/contracts/tally';
 import { createRandom } from '../../shared/util/random';
+import { FrameAccumulator } from '../../workers/accumulators/frame-accumulator';
 import { fillDials } from '../../workers/studies/dials';
 import { frameChoices } from '../../workers/studies/joint-map/frame-dials';
 import { jointMapStudy } from '../../workers/studies/joint-map/study';
@@ -71,6 +73,13 @@ describe('What is done to the pixels of frames', () => {
     // All covariances together: the flicker's (0.15 times the mean total)^2 against what the total may still vary.
     const all = (map: Float64Array) => map.reduce((sum, v) => sum + v, 0);
     expect(Math.abs(all(scaled.tally.minus))).toBeLessThan(1e-3 * all(plain.tally.minus));
+    // With a flat pedestal the mean is -2: the negative one of scaled frames takes the flanks off the peak.
+    const seeds = Array.from({ length: 8 }, (_, k) => 100 + k);
+    const pulls = seeds.map((seed) => {
+      const { value, sigma } = widthOf(study(bright, seed, { offset: 100, normalise: 'on' }));
+      return (value - truth) / sigma;
+    });
+    expect(Math.abs(pulls.reduce((sum, v) => sum + v, 0) / 8)).toBeLessThan(3 / Math.sqrt(8));
     const width = widthOf(scaled);
     expect(Math.abs(width.value - truth)).toBeLessThan(3 * width.sigma);
     expect(width.sigma).toBeLessThan(0.1 * truth);
@@ -78,6 +87,52 @@ describe('What is done to the pixels of frames', () => {
     // The counts are those of the mean frame.
     expect(all(scaled.tally.sum) / all(plain.tally.sum)).toBeCloseTo(1, 6);
     expect(scaled.output.statement).toMatch(/every frame was scaled to the mean total/);
+  });
+
+  it('a threshold lowers the covariance of pairs by e^-m of each pixel, scaling by the shares of light', () => {
+    // Two pixels of Poisson singles and Poisson pairs between them; laws as the dials state them.
+    const [single, pair, frames] = [0.25, 0.05, 60_000];
+    const random = createRandom(12);
+    const pixels = Float64Array.from({ length: 2 * frames });
+    for (let l = 0; l < frames; l += 1) {
+      const both = random.poisson(pair);
+      pixels[2 * l] = both + random.poisson(single);
+      pixels[2 * l + 1] = both + random.poisson(2 * single);
+    }
+    const covariance = (treatment: Pick<FrameSpec, 'threshold' | 'normalised'>, light = 0) => {
+      const accumulator = new FrameAccumulator({
+        kind: 'frames',
+        width: 2,
+        height: 1,
+        frames,
+        blocks: 4,
+        masked: new Uint8Array(2),
+        jointRegion: { x0: 0, y0: 0, x1: 1, y1: 0 },
+        ...treatment,
+      });
+      const lit = pixels.map((v) => v + light);
+      accumulator.push({
+        kind: 'frames',
+        firstFrame: 0,
+        count: frames,
+        width: 2,
+        height: 1,
+        pixels: lit,
+        bytes: 0,
+      });
+      return accumulator.tally().joint![1]! / (frames - 1);
+    };
+    const means = [single + pair, 2 * single + pair] as const;
+    const [p, q] = means.map((m) => 1 - Math.exp(-m)) as [number, number];
+    const clicks = (1 - p) * (1 - q) * Math.expm1(pair);
+    const clickError = Math.sqrt((1.5 * p * (1 - p) * q * (1 - q)) / frames);
+    expect(Math.abs(covariance({ threshold: 0 }) - clicks)).toBeLessThan(4 * clickError);
+    expect(Math.abs(covariance({}) - pair)).toBeLessThan(4 * Math.sqrt((1.5 * means[0] * means[1]) / frames));
+    // To first order in the spread of the total, so on a level of 50 counts.
+    const totals = [means[0] + pair, means[1] + pair] as const;
+    const [f, g] = means.map((m) => (m + 50) / (means[0] + means[1] + 100)) as [number, number];
+    const law = pair - f * totals[1] - g * totals[0] + f * g * (totals[0] + totals[1]);
+    expect(covariance({ normalised: true }, 50)).toBeCloseTo(law, 2);
   });
 
   it('maps as sums are maps as means times the pairs of the bin, and quantities stay', () => {

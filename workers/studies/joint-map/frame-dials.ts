@@ -20,11 +20,17 @@ const offsetDial: DialSpec = {
   auto: false,
 };
 
+/**
+ * Biases. A click is 1 - e^-m of m Poisson photons, and for Poisson pairs c and singles G_ij = (1 - p_i)(1 - p_j)(e^c - 1)
+ * with p the click probabilities, so G is low by e^-(m_i + m_j) and never too high; below it the share FN of photons is
+ * lost, so pairs are by (1 - FN)^2, and dark pixels above it (FP) only add singles. Basden, Haniff & Mackay, MNRAS 345, 985
+ * (2003), from memory, for FP and FN; Defienne, Reichert & Fleischer, PRL 120, 203604 (2018) for the covariance.
+ */
 const thresholdDial: DialSpec = {
   id: 'threshold',
   label: 'Photon-counting threshold',
   reason:
-    'A pixel above it (offset taken off) counts 1, any other 0: takes out the noise of read-out and gain where light is weak. Two photons on one pixel then count as one, so stay below about 0.2 photons a pixel and frame. Left empty, pixels count what they hold.',
+    'A pixel above it (offset taken off) counts 1, any other 0: takes out the noise of read-out and gain where light is weak. Two photons on one pixel count as one: covariances come out low by e^-m for each pixel of m photons a frame, a third low at 0.2, most where light is brightest, which flattens the beam; photons below it are lost, squared in pairs. Left empty, pixels count what they hold.',
   needs: 'bytes',
   for: 'frames',
   type: 'number',
@@ -36,11 +42,16 @@ const thresholdDial: DialSpec = {
   auto: true,
 };
 
+/**
+ * Bias. With the totals T alike, sum_j Cov(I_i, I_j) = 0 for every i: to first order in the spread of T,
+ * Cov'_ij = Cov_ij - f_i Cov(T, I_j) - f_j Cov(T, I_i) + f_i f_j Var T, f_i the share of pixel i in the light (derived here). Shot
+ * noise alone gives -f_i f_j T; a common gain's (dT/T)^2 I_i I_j goes entirely.
+ */
 const normaliseDial: DialSpec = {
   id: 'normalise',
   label: 'Frames scaled to the mean total',
   reason:
-    'Takes out a gain or pump that flickers from frame to frame, which otherwise correlates all pixels alike. It also takes out what pairs add to the total: every bin loses about its share of light times that, a broad negative pedestal, and with few photons a frame the total is mostly shot noise. Off unless the light flickers; set the offset first.',
+    'Takes out a gain or pump that flickers from frame to frame, which otherwise correlates all pixels alike. It also takes out what pairs add to the total: the covariance of the whole frame is then zero, so that every pair of pixels loses about its share of light times what was there, a broad negative pedestal, and with few photons a frame the total is mostly shot noise. Off unless the light flickers; set the offset first.',
   needs: 'bytes',
   for: 'frames',
   type: 'choice',
@@ -86,7 +97,7 @@ export const jointRegionDial: DialSpec = {
   id: 'joint.region',
   label: 'Region of the full joint distribution',
   reason:
-    'Sums the covariance of every pixel of the region with every other, up to 4096 pixels (64 x 64): the partners of the brightest pixel and of all, and up to 2048 pixels every pair. Takes longer the more pixels; not drawn, only the maps of sum, difference and each axis are summed.',
+    'Sums the covariance of every pixel of the region with every other, up to 4096 pixels (64 x 64): the partners of the brightest pixel and of all, and up to 1600 pixels (40 x 40) every pair. Work grows as the square of the pixels. Not drawn, only the maps of sum, difference and each axis are summed.',
   needs: 'bytes',
   for: 'frames',
   type: 'region',

@@ -1,8 +1,8 @@
 import type { Axis, MapData } from '../../../shared/contracts/output';
 import type { FrameTally } from '../../../shared/contracts/tally';
 
-/** A map of a result holds at most 2^22 numbers: 2048 pixels against as many. */
-const MOST_PIXELS = 2048;
+/** All pairs of 40 x 40 pixels are 27 MB of a result, which is refused from 64 MB on when it is saved. */
+export const MOST_PAIRED_PIXELS = 1600;
 /** Of the symmetrised consecutive-frame estimator, relative to s_i^2 s_j^2 / F (derived in shared/physics/frame-maps). */
 const CONSECUTIVE_VARIANCE = 1.5;
 
@@ -13,8 +13,10 @@ export type RegionAxis = (axis: 'x' | 'y', from: number, n: number) => Axis;
  * Pixel-by-pixel joint distribution of a region, G_ij of consecutive frames with the end frames corrected, counts^2 per
  * frame: all pairs [pixel 2][pixel 1] where they fit in a result, the image of the partners of the brightest pixel (the
  * conditional image), and that of the partners of all pixels (their sum). Own pairs i = j are left out, neighbours
- * (crosstalk) are not. Errors are the counting noise of uncorrelated pixels, Var G_ij = 1.5 s_i^2 s_j^2 / (F - 1)
- * (Defienne, Reichert & Fleischer, PRL 120, 203604 (2018) for the estimator; its variance is derived). O(n^2) for n
+ * (crosstalk) are not. Errors, given for the images, are the counting noise of uncorrelated pixels: Var G_ij =
+ * 1.5 s_i^2 s_j^2 / (F - 1) + (m_i^2 s_j^2 + m_j^2 s_i^2) / [2 (F - 1)^2], m the means; the second part is that of the two
+ * end frames and counts where a level is large or many pixels are summed. Defienne, Reichert & Fleischer, PRL 120, 203604
+ * (2018) for the estimator; its variance is derived. O(n^2) for n
  * pixels. Empty without a region.
  */
 export function frameJointMaps(tally: FrameTally, axisOf: RegionAxis): Record<string, MapData> {
@@ -28,17 +30,21 @@ export function frameJointMaps(tally: FrameTally, axisOf: RegionAxis): Record<st
     { length: n },
     (_, i) => (region.y0 + Math.floor(i / wide)) * tally.width + region.x0 + (i % wide),
   );
-  const variance = Float64Array.from(pixels, (p) => {
-    const mean = (tally.sum[p] as number) / Math.max(frames, 1);
-    return Math.max((tally.sumSquares[p] as number) / Math.max(frames, 1) - mean * mean, 0);
-  });
+  const mean = Float64Array.from(pixels, (p) => (tally.sum[p] as number) / Math.max(frames, 1));
+  const variance = Float64Array.from(pixels, (p, i) =>
+    Math.max((tally.sumSquares[p] as number) / Math.max(frames, 1) - (mean[i] as number) ** 2, 0),
+  );
   const masked = Uint8Array.from(pixels, (p) => tally.masked[p] as number);
   const at = (i: number, j: number): number => {
     const low = Math.min(i, j);
     return per * (joint[low * n - (low * (low - 1)) / 2 + Math.max(i, j) - low] as number);
   };
-  const noise = (i: number, j: number): number =>
-    Math.sqrt(CONSECUTIVE_VARIANCE * per * (variance[i] as number) * (variance[j] as number));
+  /** Of the sum of pixel i with others, whose means and variances add up to what is given. */
+  const noise = (i: number, means: number, variances: number): number => {
+    const own = variance[i] as number;
+    const ends = means * means * own + (mean[i] as number) ** 2 * variances;
+    return Math.sqrt(per * (CONSECUTIVE_VARIANCE * own * variances + (per * ends) / 2));
+  };
   const image = {
     shape: [high, wide],
     axes: [axisOf('x', region.x0, wide), axisOf('y', region.y0, high)],
@@ -58,10 +64,11 @@ export function frameJointMaps(tally: FrameTally, axisOf: RegionAxis): Record<st
     ...image,
     data: Float64Array.from(pixels, (_, j) => (j === brightest ? 0 : at(brightest, j))),
     masked: masked.map((m, j) => (j === brightest ? 1 : m)),
-    sigma: Float64Array.from(pixels, (_, j) => noise(brightest, j)),
+    sigma: Float64Array.from(pixels, (_, j) => noise(brightest, mean[j] as number, variance[j] as number)),
   };
 
-  const all = variance.reduce((sum, v) => sum + v, 0);
+  const total = (values: Float64Array): number => values.reduce((sum, v) => sum + v, 0);
+  const [means, variances] = [total(mean), total(variance)];
   const partners = new Float64Array(n);
   for (let i = 0; i < n; i += 1) {
     for (let j = i + 1; j < n; j += 1) {
@@ -75,10 +82,10 @@ export function frameJointMaps(tally: FrameTally, axisOf: RegionAxis): Record<st
     ...image,
     data: partners,
     masked: masked.slice(),
-    sigma: variance.map((v) => Math.sqrt(CONSECUTIVE_VARIANCE * per * v * (all - v))),
+    sigma: variance.map((v, i) => noise(i, means - (mean[i] as number), variances - v)),
   };
 
-  if (n > MOST_PIXELS) return maps;
+  if (n > MOST_PAIRED_PIXELS) return maps;
   const axis = (which: string): Axis => ({
     label: `pixel of the ${which} photon, row by row`,
     unit: '',
@@ -86,7 +93,6 @@ export function frameJointMaps(tally: FrameTally, axisOf: RegionAxis): Record<st
     step: 1,
   });
   const data = new Float64Array(n * n);
-  const sigma = new Float64Array(n * n);
   const left = new Uint8Array(n * n);
   for (let j = 0; j < n; j += 1) {
     for (let i = 0; i < n; i += 1) {
@@ -94,7 +100,6 @@ export function frameJointMaps(tally: FrameTally, axisOf: RegionAxis): Record<st
       const isOut = i === j || masked[i] === 1 || masked[j] === 1;
       left[c] = isOut ? 1 : 0;
       data[c] = isOut ? 0 : at(i, j);
-      sigma[c] = noise(i, j);
     }
   }
   maps['joint.full'] = {
@@ -105,7 +110,6 @@ export function frameJointMaps(tally: FrameTally, axisOf: RegionAxis): Record<st
     scale: 'signed',
     data,
     masked: left,
-    sigma,
   };
   return maps;
 }

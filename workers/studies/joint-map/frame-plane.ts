@@ -38,7 +38,7 @@ export function analyseFramePlane(
   const scale = planeScale(plane);
   const pixel = (detector.pitchUm * (scale.signal + scale.idler)) / 2;
   const { crosstalk, perPair, treatment } = request.frames;
-  const maps = buildFrameMaps(tally, selfMapsOf(tally), crosstalk);
+  const maps = buildFrameMaps(tally, selfMapsOf(tally), crosstalk, treatment.normalised ? 'light' : 'pairs');
   const narrow: FrameMapKind = plane.kind === 'near' ? 'minus' : 'plus';
   const blocks = tally.blockTotals.filter((_, b) => (tally.blockDifferences[b] ?? 0) > 0).length;
   // So few blocks give no error and so no number: the first looks show the maps without waiting for fits.
