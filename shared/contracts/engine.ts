@@ -78,6 +78,8 @@ export interface InputProvenance {
   layout: Layout;
   detector: Detector;
   plane: Plane | null;
+  /** Of a second file on a clock of its own: what was added to its channels, and the clock its times were read by. */
+  second?: { channelOffset: number; offsetPs: number; drift: number };
 }
 
 /** Pairs at hand after a run of time tags: dials that need pairs are then answered without the bytes. Or why not. */

@@ -103,6 +103,9 @@ export const resultFileSchema = z.strictObject({
           layout: layoutSchema,
           detector: detectorSchema,
           plane: planeSchema.nullable(),
+          second: z
+            .strictObject({ channelOffset: z.int(), offsetPs: z.number(), drift: z.number() })
+            .optional(),
         }),
       )
       .max(10_000),

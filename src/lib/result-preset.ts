@@ -8,8 +8,11 @@ import type { ResultFile } from '../../shared/contracts/result';
  */
 export function toPreset(file: ResultFile, name: string): Preset | null {
   const inputs: Record<string, InputSetting> = {};
-  for (const { name: input, layout, detector, plane } of file.provenance.inputs) {
+  for (const { name: input, layout, detector, plane, second } of file.provenance.inputs) {
     inputs[input] ??= { layout, detector, plane };
+    if (second === undefined) continue;
+    const { channelOffset, offsetPs, drift } = second;
+    inputs[input].companion = { layout, channelOffset, clock: { offsetPs, drift } };
   }
   const { dials, preset } = file.provenance;
   const parsed = presetSchema.safeParse({

@@ -49,7 +49,7 @@ export function startNodeEngine(
   const hosts = Array.from({ length: workers }, () => connectCompute(lazyEndpoint(start)));
   return {
     engine: createEngine(hosts, options, compileKernels),
-    shards: createShardEngine(hosts, openPathSource),
+    shards: createShardEngine(hosts, openPathSource, compileKernels),
     async close() {
       await Promise.all(threads.map((thread) => thread.terminate()));
     },

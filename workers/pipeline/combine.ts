@@ -1,6 +1,7 @@
 import type { InputProvenance, RunResult } from '../../shared/contracts/engine';
 import { Problem } from '../../shared/errors/problem';
 import { type Accumulator, createAccumulator, mergePart } from '../accumulators/accumulator';
+import { type CompiledKernels, NO_COMPILED_KERNELS } from '../accumulators/compiled-kernels';
 import { assertWholePart } from '../accumulators/whole-part';
 import { studyById } from '../studies/registry';
 import type { CountedInput, StudyInput } from '../studies/study';
@@ -26,6 +27,7 @@ export interface GivenPart {
 export async function combineParts(
   given: readonly GivenPart[],
   load: (place: string) => Promise<PartFile>,
+  kernels: CompiledKernels = NO_COMPILED_KERNELS,
 ): Promise<RunResult> {
   const from = Date.now();
   const [first, ...others] = inOrder(given);
@@ -47,7 +49,12 @@ export async function combineParts(
         `it was counted by another specification than this engine makes for "${input.name}"`,
       );
     }
-    countings.push({ input, studyInput, spec, accumulator: createAccumulator(spec) });
+    countings.push({
+      input,
+      studyInput,
+      spec,
+      accumulator: createAccumulator(spec, { ...kernels, tags: null }),
+    });
   }
   for (const { place } of [first, ...others]) await mergeFile(countings, place, await load(place));
   const counted = countings.map(({ input, studyInput, accumulator }): [string, CountedInput] => [

@@ -72,8 +72,9 @@ export async function countInputs(
 export async function countShard(
   job: Job,
   shares: readonly { request: CountRequest; chunks: ReadRange[] }[],
+  kernels: CompiledKernels,
 ): Promise<Map<string, Part>> {
-  const countings = shares.map(({ request, chunks }) => new InputCounting(request, chunks));
+  const countings = shares.map(({ request, chunks }) => new InputCounting(request, chunks, 0, kernels));
   const bytes = countings.reduce((sum, { request, chunks }) => sum + bytesOf(request, chunks), 0);
   const stage = createStage(job.id, 'reading', bytes, job.emit);
   await Promise.all(

@@ -1,6 +1,7 @@
 import type { Detector } from '../../shared/contracts/detector';
 import type { DialValues } from '../../shared/contracts/dial';
 import type {
+  Companion,
   Engine,
   EngineOptions,
   InputProvenance,
@@ -300,6 +301,11 @@ function createLook(
   };
 }
 
+/** The clock is found before counting, so that it is known here. */
+function secondOf({ channelOffset, clock }: Companion): InputProvenance['second'] {
+  return clock === null ? undefined : { channelOffset, ...clock };
+}
+
 /** One entry a file, so that every byte the numbers come from is named. */
 async function fingerprintInputs(
   job: Job,
@@ -309,19 +315,26 @@ async function fingerprintInputs(
   const known = (source: SourceRef): string | undefined =>
     kept.find((entry) => isSameSource(entry.source, source))?.sha256;
   const files = requests.flatMap(({ name, input }) =>
-    filesOf(input).map((file) => ({ ...file, name, detector: input.detector, plane: input.plane })),
+    filesOf(input).map((file) => ({
+      ...file,
+      name,
+      detector: input.detector,
+      plane: input.plane,
+      second: file === input.companion ? secondOf(input.companion) : undefined,
+    })),
   );
   const bytes = files.reduce((sum, { source }) => sum + (known(source) === undefined ? source.size : 0), 0);
   const stage = bytes > 0 ? createStage(job.id, 'fingerprints of the files', bytes, job.emit) : null;
   return Promise.all(
-    files.map(async ({ name, source, layout, detector, plane }) => {
+    files.map(async ({ name, source, layout, detector, plane, second }) => {
       const sha256 =
         known(source) ??
         (await job.run(name, (host, taskId) =>
           host.fingerprint(taskId, source, (progress) => stage?.add(progress.bytes, 0)),
         ));
       if (known(source) === undefined) kept.push({ source, sha256 });
-      return { name, fileName: source.name, sha256, bytes: source.size, layout, detector, plane };
+      const entry = { name, fileName: source.name, sha256, bytes: source.size, layout, detector, plane };
+      return second === undefined ? entry : { ...entry, second };
     }),
   );
 }

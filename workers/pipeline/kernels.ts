@@ -25,9 +25,15 @@ async function load<Exports extends object>(
 ): Promise<WasmModule<Exports> | null> {
   try {
     const compiled = await compile(name);
-    return compiled && (await instantiateWasm<Exports>(compiled));
-  } catch {
+    if (compiled !== null) return await instantiateWasm<Exports>(compiled);
+    tell(name, 'they were not built, "npm run build:wasm" does');
+  } catch (thrown) {
     // A machine without SIMD, a policy that forbids compiling, a file that did not arrive: the twins count the same.
-    return null;
+    tell(name, thrown instanceof Error ? thrown.message : String(thrown));
   }
+  return null;
+}
+
+function tell(name: KernelName, why: string): void {
+  console.warn(`Counting goes on without the compiled kernels of ${name}, several times slower: ${why}.`);
 }

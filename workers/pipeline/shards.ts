@@ -3,6 +3,7 @@ import type { OnRunEvent, RunInput, RunRequest, SourceRef } from '../../shared/c
 import type { Outcome } from '../../shared/contracts/outcome';
 import type { ByteSource } from '../../shared/contracts/reader';
 import type { TallySpec } from '../../shared/contracts/tally';
+import type { CompiledKernels } from '../accumulators/compiled-kernels';
 import { fillDials } from '../studies/dials';
 import { studyById } from '../studies/registry';
 import type { Chosen } from '../studies/study';
@@ -14,6 +15,7 @@ import { countShard } from './counting';
 import { findChosen, gatherInputs } from './engine';
 import { type FrozenArray, freeze } from './freeze';
 import { Job } from './job';
+import { type CompileKernels, loadKernels } from './kernels';
 import { assertFitsMemory } from './memory';
 import type { PartFile } from './part-file';
 import type { PartFileFacts, PartInput } from './part-head';
@@ -52,7 +54,9 @@ const END_BYTES = 2 ** 20;
 export function createShardEngine(
   hosts: readonly ComputeHost[],
   openSource: (ref: SourceRef) => Promise<ByteSource>,
+  compileKernels: CompileKernels,
 ): ShardEngine {
+  const kernels = loadKernels(compileKernels);
   const pool = createPool(hosts);
   const jobs = new Map<string, Job>();
   return {
@@ -63,7 +67,7 @@ export function createShardEngine(
       });
       jobs.set(request.jobId, job);
       try {
-        const outcome = await answer(() => runShard(job, request, openSource));
+        const outcome = await answer(() => runShard(job, request, openSource, kernels));
         if (outcome.status !== 'ok') job.cancel();
         return outcome;
       } finally {
@@ -80,6 +84,7 @@ async function runShard(
   job: Job,
   request: ShardRequest,
   openSource: (ref: SourceRef) => Promise<ByteSource>,
+  kernels: Promise<CompiledKernels>,
 ): Promise<PartFile> {
   const startedAt = new Date();
   const { shard, seed } = request;
@@ -102,6 +107,7 @@ async function runShard(
       request: each,
       chunks: planChunks(each.studyInput.facts).slice(range.first, range.stop),
     })),
+    await kernels,
   );
   const inputs: PartInput[] = [];
   for (const { request: each, chosen, range } of counted) {

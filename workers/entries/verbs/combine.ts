@@ -1,5 +1,7 @@
 import { Problem } from '../../../shared/errors/problem';
 import { combineParts } from '../../pipeline/combine';
+import { loadKernels } from '../../pipeline/kernels';
+import { compileKernels } from '../../pipeline/kernels-node';
 import { loadPart, loadPartHead } from '../part-io';
 import { readArguments } from './arguments';
 import type { Console } from './console';
@@ -20,7 +22,7 @@ export async function combine(args: readonly string[], out: Console): Promise<nu
   const given = await Promise.all(
     positionals.map(async (place) => ({ place, head: await loadPartHead(place) })),
   );
-  const result = await combineParts(given, loadPart);
+  const result = await combineParts(given, loadPart, await loadKernels(compileKernels));
   await writeResult(result, { name: given[0]!.head.preset }, values, out);
   return result.output.checks.some((check) => check.status === 'fail') ? 3 : 0;
 }
