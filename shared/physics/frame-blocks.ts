@@ -74,15 +74,40 @@ function varianceOf(n: number): number {
 
 /** Variance that the differences of neighbouring frames see over that of the pixels in the whole stack, 1 at most. */
 function localShare(sums: FrameSums, differences: Float64Array): number {
-  const { frames, masked, blockWindow: window } = sums;
-  const centre = (sums.height - 1 - window.y) * window.nx + (sums.width - 1 - window.x);
-  const seen = sums.blockMinus.reduce((sum, map) => sum + (map?.[centre] ?? 0), 0);
+  const { frames, masked } = sums;
   const count = differences.reduce((sum, n) => sum + n, 0);
   let spread = 0;
   sums.sum.forEach((total, i) => {
     if (masked[i] === 0) spread += (sums.sumSquares[i] as number) / frames - (total / frames) ** 2;
   });
-  return spread > 0 && count > 0 ? Math.min(1, seen / count / spread) : 0;
+  return spread > 0 && count > 0 ? Math.min(1, ownNoise(sums) / count / spread) : 0;
+}
+
+/** sum_i sum_k D_k(i)^2 / 2: lag 0 of the difference maps. */
+function ownNoise({ width, height, blockWindow: window, blockMinus }: FrameSums): number {
+  const centre = (height - 1 - window.y) * window.nx + (width - 1 - window.x);
+  return blockMinus.reduce((sum, map) => sum + (map?.[centre] ?? 0), 0);
+}
+
+export interface CommonLight {
+  /** Variance of the total of a frame, from differences of neighbours, over that of its pixels added up. */
+  ratio: number;
+  sigma: number;
+}
+
+/**
+ * sum_ij G_ij / sum_i G_ii without the end frames. Alone, photons give 1; pairs at most 2, as a photon has one partner; read
+ * noise and a noisy gain less. More is light, gain or a level that all pixels have in common from frame to frame. Standard error
+ * from the variance of a variance, 1.5 * 2 / F. Of maps that are cut to a window only what is in it counts, so a
+ * flicker may pass for less. Null where nothing varies. (Derived here.)
+ */
+export function commonLight(sums: FrameSums): CommonLight | null {
+  const own = ownNoise(sums);
+  if (!(own > 0)) return null;
+  let all = 0;
+  for (const map of sums.blockMinus) if (map !== null) for (const v of map) all += v;
+  const ratio = all / own;
+  return { ratio, sigma: Math.abs(ratio) * Math.sqrt(3 / sums.frames) };
 }
 
 function binsOf(map: FrameMap): number[] {

@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { FrameTally } from '../../shared/contracts/tally';
 import { fitShape } from '../../shared/physics/fit-shape';
-import { blockSpread } from '../../shared/physics/frame-blocks';
+import { blockSpread, commonLight } from '../../shared/physics/frame-blocks';
 import { buildFrameMaps } from '../../shared/physics/frame-maps';
 import { centreNode } from '../../shared/physics/gaussian-cells';
 import { createRandom } from '../../shared/util/random';
@@ -95,6 +95,37 @@ describe('How far apart the blocks of a stack lie', () => {
     { period: 210, most: 0.51 },
   ])('far less where frames come again after $period', ({ period, most }) => {
     expect(spreadOf(tallyOf(600, 30, repeating(period, 5))).ratio).toBeLessThan(most);
+  });
+});
+
+describe('What the pixels of a frame have in common', () => {
+  const scene = {
+    size,
+    frames: 1200,
+    blocks: 20,
+    truth: { v1: 3, v2: 3, c: 2.5 },
+    centre: 7.5,
+    pairsPerFrame: 30,
+    efficiency: 0.9,
+    darksPerFrame: 0,
+  };
+  // N pairs of efficiency h add 2 N h^2 to the 2 N h of their photons. Flat light of m photons a frame and m/n a pixel under
+  // a gain that flickers by s: [m (1 + s^2) + s^2 m^2] / [m (1 + s^2) + s^2 m^2 / n], with m = 60, s = 0.3, n = 256.
+  it.each([
+    { name: 'photons alone', changed: { pairsPerFrame: 0, darksPerFrame: 30 }, wanted: 1 },
+    { name: 'pairs', changed: {}, wanted: 1.9 },
+    {
+      name: 'photons under a flickering gain',
+      changed: {
+        pairsPerFrame: 0,
+        darksPerFrame: 60,
+        readout: { offset: 200, gain: 1, flicker: 0.3, readNoise: 0 },
+      },
+      wanted: (60 * 1.09 + 0.09 * 60 ** 2) / (60 * 1.09 + (0.09 * 60 ** 2) / 256),
+    },
+  ])('$name', ({ changed, wanted }) => {
+    const { ratio, sigma } = commonLight(simulateFrames({ ...scene, ...changed }, createRandom(6)))!;
+    expect(Math.abs(ratio - wanted)).toBeLessThan(4 * sigma);
   });
 });
 

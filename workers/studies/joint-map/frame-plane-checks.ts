@@ -3,9 +3,18 @@ import type { Plane } from '../../../shared/contracts/plane';
 import type { FrameTally } from '../../../shared/contracts/tally';
 import { amplitudeSigma, type FramePeak } from '../../../shared/physics/fit-frames';
 import { FIT_PARAMETERS } from '../../../shared/physics/fit-shape';
-import type { BlockSpread } from '../../../shared/physics/frame-blocks';
+import type { BlockSpread, CommonLight } from '../../../shared/physics/frame-blocks';
 import type { FrameMap, FrameMapKind } from '../../../shared/physics/frame-maps';
-import { isRepeated, LEAST_ROOM, LEAST_SNR, LEAST_SPREAD, MOST_HIDDEN, roomOf } from './frame-trust';
+import {
+  isFlickering,
+  isRepeated,
+  LEAST_ROOM,
+  LEAST_SNR,
+  LEAST_SPREAD,
+  MOST_COMMON,
+  MOST_HIDDEN,
+  roomOf,
+} from './frame-trust';
 import { checkBlocks } from './plane-checks';
 
 export interface FrameChecksRequest {
@@ -16,6 +25,8 @@ export interface FrameChecksRequest {
   blocks: number;
   /** Null where there is too little to judge. */
   spread: BlockSpread | null;
+  /** Null where nothing varies. */
+  common: CommonLight | null;
   crosstalk: number;
   plane: Plane;
 }
@@ -30,6 +41,7 @@ export function checkFramePlane(request: FrameChecksRequest): Check[] {
     checkEnvelope(request),
     checkWidthDrift(request),
     checkLightDrift(request),
+    checkCommonLight(request),
     checkPixels(request),
   ];
   const cut = checkBlockWindow(request);
@@ -227,6 +239,17 @@ function checkLightDrift({ tally }: FrameChecksRequest): Check {
   if (Math.abs(percent) < 3) return { ...base, status: 'pass', sentence: `${found}.` };
   const sentence = `${found}; consecutive frames cancel most of it, but look for the cause.`;
   return { ...base, status: Math.abs(percent) < 20 ? 'caution' : 'fail', sentence };
+}
+
+/** From frame to frame; drift is slower. */
+function checkCommonLight({ common }: FrameChecksRequest): Check {
+  const base = { id: 'light-steady', figure: common?.ratio ?? null, unit: 'times' };
+  if (common === null)
+    return { ...base, status: 'caution', sentence: 'No pixel changes from frame to frame.' };
+  const found = `The total of a frame varies by ${common.ratio.toFixed(2)} times what its pixels do together, where pairs can make it ${MOST_COMMON} times at most`;
+  if (!isFlickering(common)) return { ...base, status: 'pass', sentence: `${found}.` };
+  const sentence = `${found}: light, gain or dark level flickers from frame to frame, which correlates all pixels under the peak, so no width is given. Set the offset and scale the frames to the mean total.`;
+  return { ...base, status: 'fail', sentence };
 }
 
 /** Pixels that never changed (dead or saturated) and pixels far noisier than the rest. */

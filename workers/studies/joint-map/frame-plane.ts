@@ -5,14 +5,14 @@ import { planeScale } from '../../../shared/physics/calibration';
 import { type FramePeak, fitFramePeaks } from '../../../shared/physics/fit-frames';
 import { totalInfluence } from '../../../shared/physics/fit-pair';
 import { FIT_PARAMETERS } from '../../../shared/physics/fit-shape';
-import { blockSpread } from '../../../shared/physics/frame-blocks';
+import { blockSpread, commonLight } from '../../../shared/physics/frame-blocks';
 import { buildFrameMaps, type FrameMapKind, type SelfMaps } from '../../../shared/physics/frame-maps';
 import { FrameSpectra } from '../../kernels/frame-spectra';
 import type { CountedInput } from '../study';
 import { treatmentWords } from './frame-dials';
 import { checkFramePlane } from './frame-plane-checks';
 import { framePlaneMaps } from './frame-plane-maps';
-import { isRepeated, isTrusted, LEAST_ROOM, roomOf } from './frame-trust';
+import { isFlickering, isRepeated, isTrusted, LEAST_ROOM, roomOf } from './frame-trust';
 import {
   type AxisResult,
   LEAST_BLOCKS,
@@ -45,11 +45,12 @@ export function analyseFramePlane(
   const mapsAlone = request.look && blocks < LEAST_BLOCKS;
   const peaks = mapsAlone ? { plus: null, minus: null } : fitFramePeaks(maps, narrow);
   const spread = blockSpread(tally, tally.blockDifferences, maps.plus);
+  const common = commonLight(tally);
   const first = peaks[narrow];
   // The other peak takes its amplitude from this one.
   const sound = isTrusted(first) && roomOf(first, maps[narrow]) >= LEAST_ROOM;
   const weights =
-    !sound || blocks < LEAST_BLOCKS || isRepeated(spread)
+    !sound || blocks < LEAST_BLOCKS || isRepeated(spread) || isFlickering(common)
       ? null
       : drawBlockWeights(tally.blockTotals.length, request.resamples, request.seed);
   const method = `Gaussian on a pedestal fitted to the ${narrow === 'minus' ? 'difference' : 'sum'} map, chi^2, pixel blur left in; block bootstrap, ${blocks} blocks of frames`;
@@ -63,7 +64,7 @@ export function analyseFramePlane(
     },
     checks: mapsAlone
       ? []
-      : checkFramePlane({ tally, maps, peaks, narrow, blocks, spread, crosstalk, plane }),
+      : checkFramePlane({ tally, maps, peaks, narrow, blocks, spread, common, crosstalk, plane }),
     maps: framePlaneMaps({ tally, maps, peaks, pixel, scale, perPair }),
     statement: [
       `${plane.kind === 'near' ? 'Near' : 'Far'} field: covariance of ${tally.frames} frames of ${tally.width} x ${tally.height} pixels less that of consecutive frames, own pairs left out${crosstalk > 0 ? `, difference bins up to ${crosstalk} pixels left out` : ''}.${treatmentWords(treatment)}`,

@@ -1,5 +1,5 @@
 import { amplitudeSigma, blockSigma, type FramePeak } from '../../../shared/physics/fit-frames';
-import type { BlockSpread } from '../../../shared/physics/frame-blocks';
+import type { BlockSpread, CommonLight } from '../../../shared/physics/frame-blocks';
 import type { FrameMap } from '../../../shared/physics/frame-maps';
 
 /** More of the peak than this on bins that had to be left out, and its width would be invented. */
@@ -26,6 +26,14 @@ export function roomOf(peak: FramePeak, map: FrameMap): number {
     Math.min(cx, map.nx - 1 - cx) / Math.sqrt(peak.xx),
     Math.min(cy, map.ny - 1 - cy) / Math.sqrt(peak.yy),
   );
+}
+
+/** Pairs alone cannot make the variance of the total more than this many times that of the pixels. */
+export const MOST_COMMON = 2;
+
+/** What all pixels have in common is more than pairs can give them: it lies under the peak, as broad as the light. */
+export function isFlickering(common: CommonLight | null): boolean {
+  return common !== null && common.ratio > MOST_COMMON + 4 * common.sigma;
 }
 
 /** Whether the peak's width may be quoted. */
