@@ -1,20 +1,21 @@
 // Pixels to padded frames, and the sums that need no transform. Twins: ../frame-sums.ts.
 
+/** Four pixels of an 8- or 16-bit type as i32. */
+@inline
+function loadWhole<P>(at: usize): v128 {
+  if (sizeof<P>() == 1) {
+    const bytes = v128.load32_zero(at);
+    return isSigned<P>()
+      ? i32x4.extend_low_i16x8_s(i16x8.extend_low_i8x16_s(bytes))
+      : i32x4.extend_low_i16x8_u(i16x8.extend_low_i8x16_u(bytes));
+  }
+  return isSigned<P>() ? v128.load_ext<i16>(at) : v128.load_ext<u16>(at);
+}
+
 /** Four pixels of a narrow type as f32, exactly. */
 @inline
 function loadSingle<P>(at: usize): v128 {
-  if (isFloat<P>()) return v128.load(at);
-  if (sizeof<P>() == 1) {
-    const bytes = v128.load32_zero(at);
-    return f32x4.convert_i32x4_s(
-      isSigned<P>()
-        ? i32x4.extend_low_i16x8_s(i16x8.extend_low_i8x16_s(bytes))
-        : i32x4.extend_low_i16x8_u(i16x8.extend_low_i8x16_u(bytes)),
-    );
-  }
-  return f32x4.convert_i32x4_s(
-    isSigned<P>() ? v128.load_ext<i16>(at) : v128.load_ext<u16>(at),
-  );
+  return isFloat<P>() ? v128.load(at) : f32x4.convert_i32x4_s(loadWhole<P>(at));
 }
 
 @inline
@@ -106,10 +107,47 @@ function prepare<P, S>(
   return horizontal(total);
 }
 
+/**
+ * As `prepare` without a threshold, for narrow whole numbers and f32 slots, whose offset is whole: totals are added in i32 a
+ * row (up to 2^17 columns), and the offset is taken from them at the end.
+ */
+@inline
+function prepareWhole<P>(
+  from: usize, width: i32, height: i32, columns: i32, mask: usize, to: usize, offset: f64,
+): f64 {
+  const offsets = f32x4.splat(<f32>offset);
+  let total = f64x2.splat(0);
+  let opened = i32x4.splat(0);
+  for (let y = 0; y < height; y++) {
+    let p = from + <usize>(y * width) * sizeof<P>();
+    let row = i32x4.splat(0);
+    for (let x = 0; x < columns; x += 4) {
+      const open = v128.load(mask);
+      const four = v128.and(loadWhole<P>(p), open);
+      v128.store(to, f32x4.sub(f32x4.convert_i32x4_s(four), v128.and(offsets, open)));
+      row = i32x4.add(row, four);
+      opened = i32x4.sub(opened, open);
+      p += 4 * sizeof<P>();
+      to += 16;
+      mask += 16;
+    }
+    total = f64x2.add(
+      total,
+      f64x2.add(f64x2.convert_low_i32x4_s(row), f64x2.convert_low_i32x4_s(upper(row))),
+    );
+  }
+  const open = f64x2.add(f64x2.convert_low_i32x4_s(opened), f64x2.convert_low_i32x4_s(upper(opened)));
+  return horizontal(total) - offset * horizontal(open);
+}
+
 function prepareAs<P>(
   from: usize, width: i32, height: i32, columns: i32, mask: usize, to: usize, double: bool, offset: f64,
   counting: bool, threshold: f64, squares: usize,
 ): f64 {
+  if (!isFloat<P>() && !double && !counting) {
+    store<f64>(squares, 0);
+    return prepareWhole<P>(from, width, height, columns, mask, to, offset);
+  }
   if (double) return prepare<P, f64>(from, width, height, columns, mask, to, offset, counting, threshold, squares);
   return prepare<P, f32>(from, width, height, columns, mask, to, offset, counting, threshold, squares);
 }
