@@ -7,9 +7,13 @@ const SLICE_BYTES = 2 ** 23;
 /** Blocks of the readable decoder, and so slices, hold at most so many records. */
 export const recordsPerSlice = 2 ** 20;
 
+/** Memory of readings that have ended, for the next ones: each chunk of a file is one, and new memory costs time. */
+const spare: Uint8Array[] = [];
+const MOST_SPARE = 2;
+
 export interface RecordSlice {
   first: number;
-  /** Whole records from `first` on; they may be overwritten once the next but one slice is asked for. */
+  /** Whole records from `first` on; to be overwritten once the next but one slice is asked for, or the reading ends. */
   bytes: Uint8Array;
 }
 
@@ -41,7 +45,7 @@ export async function* readSlices(
 ): AsyncGenerator<RecordSlice> {
   const records = Math.max(1, Math.min(recordsPerSlice, Math.floor(SLICE_BYTES / plan.recordBytes)));
   const room = Math.min(records, range.end - range.start) * plan.recordBytes;
-  const buffers = keep ? [] : [new Uint8Array(room), new Uint8Array(room)];
+  const buffers = keep ? [] : [takeRoom(room), takeRoom(room)];
   const read = (first: number, turn: number): Promise<Uint8Array> | null => {
     if (first >= range.end) return null;
     const bytes = readRecordBytes(
@@ -61,4 +65,14 @@ export async function* readSlices(
     ahead = read(first + records, turn);
     yield { first, bytes };
   }
+  // Not where somebody stopped: the source may still be writing there.
+  spare.push(...buffers.slice(0, MOST_SPARE - spare.length));
+}
+
+function takeRoom(bytes: number): Uint8Array {
+  const at = spare.findIndex(({ length }) => length >= bytes);
+  if (at >= 0) return spare.splice(at, 1)[0]!;
+  // Too small for what is read now: else they would take the place of larger ones.
+  spare.length = 0;
+  return new Uint8Array(bytes);
 }
