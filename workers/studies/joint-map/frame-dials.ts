@@ -163,6 +163,7 @@ export function treatmentWords({ offset, threshold, normalised }: FrameTreatment
   const words: string[] = [];
   if (offset !== 0) words.push(`an offset of ${offset} counts was taken from every pixel`);
   if (threshold !== null) words.push(`pixels above ${threshold} counts counted as one photon`);
-  if (normalised) words.push('every frame was scaled to the mean total');
+  if (normalised)
+    words.push('every frame was scaled to the mean total, and the pedestal has the shape of the light');
   return words.length === 0 ? '' : ` Before that, ${words.join(', ')}.`;
 }

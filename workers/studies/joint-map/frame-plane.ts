@@ -53,7 +53,7 @@ export function analyseFramePlane(
     !sound || blocks < LEAST_BLOCKS || isRepeated(spread) || isFlickering(common)
       ? null
       : drawBlockWeights(tally.blockTotals.length, request.resamples, request.seed);
-  const method = `Gaussian on a pedestal fitted to the ${narrow === 'minus' ? 'difference' : 'sum'} map, chi^2, pixel blur left in; block bootstrap, ${blocks} blocks of frames`;
+  const method = `chi^2, pixel blur left in; block bootstrap, ${blocks} blocks of frames`;
   return {
     kind: 'frames',
     plane: plane.kind,
@@ -68,9 +68,17 @@ export function analyseFramePlane(
     maps: framePlaneMaps({ tally, maps, peaks, pixel, scale, perPair }),
     statement: [
       `${plane.kind === 'near' ? 'Near' : 'Far'} field: covariance of ${tally.frames} frames of ${tally.width} x ${tally.height} pixels less that of consecutive frames, own pairs left out${crosstalk > 0 ? `, difference bins up to ${crosstalk} pixels left out` : ''}.${treatmentWords(treatment)}`,
+      ...jointWords(tally),
     ],
     blocks,
   };
+}
+
+function jointWords({ jointRegion: region }: FrameTally): string[] {
+  if (region === undefined) return [];
+  return [
+    `The joint distribution of the pixels x ${region.x0} to ${region.x1}, y ${region.y0} to ${region.y1} is that covariance pixel by pixel, with the end frames corrected.`,
+  ];
 }
 
 function selfMapsOf(tally: FrameTally): SelfMaps {
@@ -103,7 +111,13 @@ function axisOf(
       { length: weights.resamples },
       (_, r) => pixel * pixel * (central + (moves[r * FIT_PARAMETERS + parameter] as number) - base),
     );
-    return { value: pixel * pixel * central, resampled, method, n: frames };
+    const map = peak.kind === 'minus' ? 'difference' : 'sum';
+    return {
+      value: pixel * pixel * central,
+      resampled,
+      method: `Gaussian on a pedestal fitted to the ${map} map, ${method}`,
+      n: frames,
+    };
   };
   return {
     net: { ...noVariances, minus: part(peaks.minus), plus: part(peaks.plus) },
