@@ -1,6 +1,5 @@
 import { scenarioSchema } from '../../../shared/contracts/scenario';
 import { Cancelled, Problem } from '../../../shared/errors/problem';
-import { simulateToFile } from '../node-writers';
 import { readArguments, readJsonFile, requireOne } from './arguments';
 import type { Console } from './console';
 
@@ -18,6 +17,8 @@ export async function simulate(
     throw new Problem('bad-input', `simulate needs --out FILE. Usage: ${simulateUsage}`, '--out');
   }
   const scenario = await readJsonFile(path, scenarioSchema, 'scenario');
+  // The HDF5 library behind it takes a tenth of a second to load, which other verbs need not wait for.
+  const { simulateToFile } = await import('../node-writers');
   try {
     await out.json(
       await simulateToFile(
