@@ -1,27 +1,10 @@
 import { describe, expect, it } from 'vitest';
-import { type TextLayout, textLayoutSchema } from '../../shared/contracts/layout';
+import type { TextLayout } from '../../shared/contracts/layout';
 import type { ByteSource } from '../../shared/contracts/reader';
 import { inspectSource, openReader } from '../../workers/formats/registry';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
 import { memorySource, problemOf, readTags } from './support/sources';
-
-const bytesOf = (text: string): Uint8Array => new TextEncoder().encode(text);
-
-function textLayout(parts: Partial<TextLayout> = {}): TextLayout {
-  return textLayoutSchema.parse({
-    version: 1,
-    format: 'text',
-    kind: 'tags',
-    delimiter: 'comma',
-    decimal: 'point',
-    headerLines: 0,
-    timeColumn: 0,
-    channelColumn: 1,
-    timeUnitFs: 1000,
-    tickFs: 1000,
-    ...parts,
-  });
-}
+import { bytesOf, textLayout } from './support/text';
 
 const open = (source: ByteSource, parts: Partial<TextLayout> = {}) =>
   openReader(source, textLayout(parts), nodeEnvironment);

@@ -8,24 +8,7 @@ import { inspectSource, openReader } from '../../workers/formats/registry';
 import { afterLineEnds, countLineEnds } from '../../workers/formats/text/line-ends';
 import { nodeEnvironment } from '../../workers/pipeline/hdf5-node';
 import { makeFolder, memorySource, problemOf, readTags, type Tags } from './support/sources';
-
-const bytesOf = (text: string): Uint8Array => new TextEncoder().encode(text);
-
-function textLayout(parts: Partial<TextLayout> = {}): TextLayout {
-  return textLayoutSchema.parse({
-    version: 1,
-    format: 'text',
-    kind: 'tags',
-    delimiter: 'comma',
-    decimal: 'point',
-    headerLines: 0,
-    timeColumn: 0,
-    channelColumn: 1,
-    timeUnitFs: 1000,
-    tickFs: 1000,
-    ...parts,
-  });
-}
+import { bytesOf, textLayout } from './support/text';
 
 async function read(text: string, parts: Partial<TextLayout> = {}, cuts: number[] = []): Promise<Tags> {
   return readTags(await openReader(memorySource(bytesOf(text)), textLayout(parts), nodeEnvironment), cuts);

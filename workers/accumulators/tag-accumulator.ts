@@ -16,7 +16,7 @@ import {
   type TagBorder,
 } from './tag-border';
 import type { TagMachine } from './tag-machine';
-import { CompiledTagMachine, canCompile } from './tag-machine-compiled';
+import { canCompile, compileMachine } from './tag-machine-compiled';
 import { ScriptTagMachine } from './tag-machine-script';
 import { assertTagPart, NO_WINDOW, type TagPart } from './tag-part';
 import { planTags, type TagPlan } from './tag-plan';
@@ -56,7 +56,7 @@ export class TagAccumulator {
     this.#grid = new SliceGrid(spec.tickFs, leastBits);
     this.#machine =
       kernels !== null && canCompile(kernels, spec, this.#plan)
-        ? new CompiledTagMachine(kernels, spec, this.#plan)
+        ? compileMachine(kernels, spec, this.#plan)
         : new ScriptTagMachine(spec, this.#plan);
     const { found, sitesPerSlice } = this.#machine;
     this.#keeper =

@@ -34,12 +34,23 @@ export function canCompile(wasm: TagWasm, { a, b }: TagSpec, { minTauTick, maxTa
   );
 }
 
+/** @throws RangeError where the machine has no more memory; what was placed by then is given back. */
+export function compileMachine(wasm: TagWasm, spec: TagSpec, plan: TagPlan): CompiledTagMachine {
+  const { mark } = wasm;
+  try {
+    return new CompiledTagMachine(wasm, spec, plan);
+  } catch (thrown) {
+    wasm.release(mark);
+    throw thrown;
+  }
+}
+
 /**
  * The loops compiled, on columns in the module's memory. Blocks that lie there already are not copied. Memory: the
  * counters of the two `PairStore`s, about 1 MiB of tables, 12 bytes a tag of the tail and a piece, and 16 MiB where pairs
  * are kept.
  */
-export class CompiledTagMachine implements TagMachine {
+class CompiledTagMachine implements TagMachine {
   readonly pieceTags = PIECE;
   readonly work: PlacedTagColumns;
   readonly prompt: PairStore;
@@ -63,7 +74,6 @@ export class CompiledTagMachine implements TagMachine {
   #turns = 0;
 
   constructor(wasm: TagWasm, spec: TagSpec, plan: TagPlan) {
-    busy.add(wasm);
     this.#wasm = wasm;
     this.#mark = wasm.mark;
     this.#plan = plan;
@@ -107,6 +117,8 @@ export class CompiledTagMachine implements TagMachine {
     this.#scratch = new PlacedTagColumns(wasm, PIECE);
     this.work = new PlacedTagColumns(wasm, 8 * PIECE);
     wasm.u32(this.#singlesAt, plan.sites + 1).fill(0);
+    // Last: where the machine has no room for all this, nobody holds the module.
+    busy.add(wasm);
   }
 
   begin(block: TagBlock): void {

@@ -240,6 +240,25 @@ describe('compiled tag accumulator', () => {
     );
   });
 
+  it('gives the module back where the machine has no room for it', async () => {
+    const kernels = await tagKernels();
+    const spec = plainSpec({ a: armSpec(3, 2, 0) });
+    const { mark } = kernels;
+    const place = kernels.place.bind(kernels);
+    let left = 3;
+    kernels.place = (bytes) => {
+      if (left-- === 0) throw new RangeError('no more memory');
+      return place(bytes);
+    };
+    expect(() => createTagAccumulator(spec, kernels)).toThrow('no more memory');
+    expect(kernels.mark).toBe(mark);
+    kernels.place = place;
+    const next = createTagAccumulator(spec, kernels);
+    expect(kernels.mark).toBeGreaterThan(mark);
+    next.release();
+    expect(kernels.mark).toBe(mark);
+  });
+
   it('equals the readable one over many pieces, with candidates that fill their columns again and again', async () => {
     const kernels = await tagKernels();
     let state = 12345;
